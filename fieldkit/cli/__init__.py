@@ -1,0 +1,1 @@
+"""The command line: text for people, JSON for programs."""

@@ -1,0 +1,1 @@
+"""From evidence and span to a cure: excitation, match, fixes, verdicts."""

@@ -1,0 +1,1 @@
+"""Recordings, taps, spectra and measured modes. Knows nothing of pipes."""

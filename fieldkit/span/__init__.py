@@ -1,0 +1,1 @@
+"""The pipe span as a structure: layout, elements, modes, static answers. Knows nothing of signals."""
