@@ -1,1 +1,1 @@
-"""The pipe span as a structure: layout, elements, modes, static answers. Knows nothing of signals."""
+"""The pipe span as a structure: layout, elements, modes, statics. Blind to signals."""

@@ -11,6 +11,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 from functools import cached_property
+from itertools import pairwise
 from typing import Literal
 
 import numpy as np
@@ -136,7 +137,9 @@ class Piece:
     @property
     def arc_length_m(self) -> float:
         """True length along the centre line (shorter than the station difference on an arc)."""
-        return self.radius_m * self.angle_rad if self.centre is not None else self.end_m - self.start_m
+        if self.centre is None:
+            return self.end_m - self.start_m
+        return self.radius_m * self.angle_rad
 
     def at(self, station_m: float) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
         """Position and unit tangent at a station inside this piece."""
@@ -161,7 +164,7 @@ class CentreLine:
     def through(cls, legs: tuple[Leg, ...]) -> CentreLine:
         """Straight pieces joined by arcs, starting at the origin."""
         directions = [np.asarray(leg.direction, dtype=float) for leg in legs]
-        cuts = [0.0] + [_tangent_length(a, b) for a, b in zip(legs, legs[1:], strict=False)] + [0.0]
+        cuts = [0.0] + [_tangent_length(a, b) for a, b in pairwise(legs)] + [0.0]
         pieces: list[Piece] = []
         corner = np.zeros(3)
         station = 0.0
@@ -194,8 +197,11 @@ def axis_vectors(tangent: NDArray[np.float64], axis: str) -> NDArray[np.float64]
     """Unit vectors (k, 3) that a named axis means where the pipe runs along ``tangent``.
 
     One row, except ``lateral`` on a vertical pipe (both horizontals) and ``rotation`` (the two
-    axes across the pipe, to be read as rotation vectors).
+    axes across the pipe, to be read as rotation vectors). ``torsion`` is the axis of the pipe,
+    to be read as a rotation vector.
     """
+    if axis == "torsion":
+        return tangent[None]
     unit = {"x": (1.0, 0.0, 0.0), "y": (0.0, 1.0, 0.0), "z": (0.0, 0.0, 1.0)}
     if axis in unit:
         return np.array([unit[axis]])
@@ -208,7 +214,8 @@ def axis_vectors(tangent: NDArray[np.float64], axis: str) -> NDArray[np.float64]
     lateral = lateral / np.linalg.norm(lateral)
     vertical = np.cross(tangent, lateral)
     named = {"vertical": vertical[None], "lateral": lateral[None], "axial": tangent[None]}
-    return named.get(axis, np.array([lateral, vertical]))
+    vectors: NDArray[np.float64] = named.get(axis, np.array([lateral, vertical]))
+    return vectors
 
 
 def is_vertical(tangent: NDArray[np.float64]) -> bool:
@@ -250,35 +257,69 @@ def _arc(
 
 
 def _check(span: Span) -> None:
-    def bad(what: str, remedy: str, where: str) -> InputError:
-        return InputError(what, remedy, Place(field=where))
-
     if not span.legs:
-        raise bad("the span has no leg", "add a [[leg]] with direction and length", "leg")
+        raise _bad("the span has no leg", "add a [[leg]] with direction and length", "leg")
     for i, leg in enumerate(span.legs):
-        if not leg.length_m > 0 or not math.isfinite(leg.length_m):
-            raise bad(f"a leg of {leg.length_m:g} m", "give a length above zero", f"leg[{i}].length")
-    cuts = [_corner_cut(span.legs, i) for i in range(1, len(span.legs))]
-    for i, leg in enumerate(span.legs):
+        _check_leg(leg, span.pipe, i)
+    _check_bends_fit(span.legs)
+    for i, support in enumerate(span.supports):
+        _check_station("support", i, support.at_m, span.length_m)
+        _check_stiffness(support, i)
+    for i, mass in enumerate(span.masses):
+        _check_station("mass", i, mass.at_m, span.length_m)
+        if not mass.mass_kg >= 0 or not math.isfinite(mass.mass_kg):
+            what = f"a mass of {mass.mass_kg:g} kg"
+            raise _bad(what, "give a mass of zero or more", f"mass[{i}].mass")
+
+
+def _bad(what: str, remedy: str, where: str) -> InputError:
+    return InputError(what, remedy, Place(field=where))
+
+
+def _check_leg(leg: Leg, pipe: PipeSection, i: int) -> None:
+    if not leg.length_m > 0 or not math.isfinite(leg.length_m):
+        what = f"a leg of {leg.length_m:g} m"
+        raise _bad(what, "give a length above zero", f"leg[{i}].length")
+    if not math.isclose(math.hypot(*leg.direction), 1.0, rel_tol=1e-6):
+        what = f"the direction {leg.direction} is no unit vector"
+        raise _bad(what, "divide it by its length", f"leg[{i}].direction")
+    radius = leg.bend_radius_m
+    if radius is not None and not pipe.outside_diameter_m / 2 < radius < math.inf:
+        raise _bad(
+            f"a bend radius of {radius * 1e3:g} mm does not fit a pipe of "
+            f"{pipe.outside_diameter_m * 1e3:g} mm",
+            "give the radius to the centre line, above half the outside diameter",
+            f"leg[{i}].bend_radius",
+        )
+
+
+def _check_bends_fit(legs: tuple[Leg, ...]) -> None:
+    cuts = [_corner_cut(legs, i) for i in range(1, len(legs))]
+    for i, leg in enumerate(legs):
         used = sum(cuts[max(0, i - 1) : i + 1])
         if used > leg.length_m + END_TOLERANCE_M:
-            raise bad(
+            raise _bad(
                 f"the bends take {used:.3f} m of a leg only {leg.length_m:.3f} m long",
                 "give a smaller bend_radius, or the leg's length from corner to corner",
                 f"leg[{i}].length",
             )
-    end = span.length_m
-    for name, items in (("support", span.supports), ("mass", span.masses)):
-        for i, item in enumerate(items):
-            if not -END_TOLERANCE_M <= item.at_m <= end + END_TOLERANCE_M:
-                raise bad(
-                    f"{name} at {item.at_m:g} m lies outside the span, which runs from 0 to {end:g} m",
-                    "correct the station, or the length of the legs",
-                    f"{name}[{i}].at",
-                )
-    for i, mass in enumerate(span.masses):
-        if not mass.mass_kg >= 0 or not math.isfinite(mass.mass_kg):
-            raise bad(f"a mass of {mass.mass_kg:g} kg", "give a mass of zero or more", f"mass[{i}].mass")
+
+
+def _check_station(name: str, i: int, at_m: float, end_m: float) -> None:
+    if not -END_TOLERANCE_M <= at_m <= end_m + END_TOLERANCE_M:
+        raise _bad(
+            f"{name} at {at_m:g} m lies outside the span, which runs from 0 to {end_m:g} m",
+            "correct the station, or the length of the legs",
+            f"{name}[{i}].at",
+        )
+
+
+def _check_stiffness(support: Support, i: int) -> None:
+    for axis in AXES:
+        value = getattr(support, axis)
+        if not isinstance(value, str) and not value >= 0:
+            what = f"a stiffness of {value:g}"
+            raise _bad(what, "give zero (free) or more", f"support[{i}].{axis}")
 
 
 def _corner_cut(legs: tuple[Leg, ...], i: int) -> float:

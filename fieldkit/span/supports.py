@@ -8,14 +8,21 @@ clamps with their structure on compressor piping, 17.5 to 175 MN/m, brackets the
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass
+from itertools import pairwise
 
-from fieldkit.span.layout import Span, Stiffness, Support, is_vertical
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.errors import InputError, Place
+from fieldkit.span.layout import Span, Stiffness, Support, axis_vectors, is_vertical
 
 REFERENCE_DIAMETER_M = 0.1143
 RIGID_N_PER_M = 1e12
 RIGID_N_M_PER_RAD = 1e12
+_TRANSLATIONS = ("vertical", "lateral", "axial", "x", "y", "z")
+_SAME_LINE = 0.99
+"""Cosine above which two directions are one."""
 UNKNOWN_SD_LN = 1.7
 """Least doubt behind the word ``unknown``: about three decades between -2 and +2 deviations."""
 
@@ -38,41 +45,30 @@ class SupportKind:
     axial: Doubtful | None
     rotation: Doubtful | None
     grips_pipe: bool
-    """Turns with the pipe: on a riser it holds both horizontals like ``lateral``, z like ``axial``."""
+    """Turns with the pipe: on a riser it holds both horizontals as across a level pipe, and z as
+    along one."""
     structural: bool = True
     """Whether a stiffer version of it is a sensible change."""
 
 
-KINDS: dict[str, SupportKind] = {
-    kind.name: kind
-    for kind in (
-        SupportKind(
-            "anchor", Doubtful(5e8, 0.6), Doubtful(5e8, 0.6), Doubtful(5e8, 0.6), Doubtful(5, 1.8),
-            grips_pipe=True,
-        ),
-        SupportKind(
-            "nozzle", Doubtful(3e7, 1.4), Doubtful(3e7, 1.4), Doubtful(3e7, 1.4), Doubtful(1, 1.8),
-            grips_pipe=True, structural=False,
-        ),
-        SupportKind(
-            "clamp", Doubtful(1.5e7, 1.3), Doubtful(8e6, 1.3), Doubtful(8e6, 1.4), Doubtful(0.4, 1.8),
-            grips_pipe=True,
-        ),
-        SupportKind(
-            "u-bolt", Doubtful(6e6, 1.6), Doubtful(2e6, 1.6), Doubtful(2e5, 1.7), Doubtful(0.05, 1.8),
-            grips_pipe=True,
-        ),
-        SupportKind("guide", Doubtful(4e6, 1.4), Doubtful(4e6, 1.4), None, None, grips_pipe=True),
-        SupportKind(
-            "rest", Doubtful(6e6, 1.6), Doubtful(2e5, 1.6), Doubtful(2e5, 1.6), None, grips_pipe=False
-        ),
-        SupportKind(
-            "hanger", Doubtful(8e5, 1.3), Doubtful(2e4, 1.3), Doubtful(2e4, 1.3), None,
-            grips_pipe=False,
-        ),
-        SupportKind("free", None, None, None, None, grips_pipe=False, structural=False),
-    )
-}  # fmt: skip
+def _kinds(*kinds: SupportKind) -> dict[str, SupportKind]:
+    return {kind.name: kind for kind in kinds}
+
+
+_D = Doubtful
+KINDS = _kinds(
+    SupportKind("anchor", _D(5e8, 0.6), _D(5e8, 0.6), _D(5e8, 0.6), _D(5, 1.8), grips_pipe=True),
+    SupportKind(
+        "nozzle", _D(3e7, 1.4), _D(3e7, 1.4), _D(3e7, 1.4), _D(1, 1.8),
+        grips_pipe=True, structural=False,
+    ),
+    SupportKind("clamp", _D(1.5e7, 1.3), _D(8e6, 1.3), _D(8e6, 1.4), _D(0.4, 1.8), grips_pipe=True),
+    SupportKind("u-bolt", _D(6e6, 1.6), _D(2e6, 1.6), _D(2e5, 1.7), _D(0.05, 1.8), grips_pipe=True),
+    SupportKind("guide", _D(4e6, 1.4), _D(4e6, 1.4), None, None, grips_pipe=True),
+    SupportKind("rest", _D(6e6, 1.6), _D(2e5, 1.6), _D(2e5, 1.6), None, grips_pipe=False),
+    SupportKind("hanger", _D(8e5, 1.3), _D(2e4, 1.3), _D(2e4, 1.3), None, grips_pipe=False),
+    SupportKind("free", None, None, None, None, grips_pipe=False, structural=False),
+)  # fmt: skip
 
 
 @dataclass(frozen=True)
@@ -82,7 +78,8 @@ class Spring:
     support: int
     at_m: float
     axis: str
-    """A name of ``layout.AXES``; ``rotation`` is in N m/rad, the others in N/m."""
+    """A name of ``layout.AXES`` or ``torsion`` (about the pipe's own axis); ``rotation`` and
+    ``torsion`` are in N m/rad, the others in N/m."""
     stiffness: float
     """Median."""
     sd_ln: float
@@ -98,16 +95,69 @@ def springs(span: Span) -> tuple[Spring, ...]:
 
 def _springs_of(span: Span, index: int) -> list[Spring]:
     support = span.supports[index]
-    kind = KINDS[support.kind]
-    riser = is_vertical(span.centre_line.at(support.at_m)[1])
-    implied = _implied(kind, riser)
+    tangent = span.centre_line.at(support.at_m)[1]
+    implied = _implied(_kind(support, index), is_vertical(tangent))
     found = []
     for axis in ("vertical", "lateral", "axial", "rotation", "x", "y", "z"):
         stated: Stiffness = getattr(support, axis)
         resolved = _resolve(stated, implied.get(axis), _unit(span, support, axis), axis)
-        if resolved is not None:
-            found.append(Spring(index, support.at_m, axis, *resolved))
-    return found
+        if resolved is None:
+            continue
+        kept = _left_to_imply(support, axis, tangent) if stated == "implied" else (axis,)
+        found += [Spring(index, support.at_m, name, *resolved) for name in kept]
+    return found + _torsion(span, index)
+
+
+def _kind(support: Support, index: int) -> SupportKind:
+    if support.kind not in KINDS:
+        raise InputError(
+            f"no support is called {support.kind!r}",
+            f"use one of {', '.join(KINDS)}",
+            Place(field=f"support[{index}].kind"),
+        )
+    return KINDS[support.kind]
+
+
+def _left_to_imply(support: Support, axis: str, tangent: NDArray[np.float64]) -> tuple[str, ...]:
+    """What is left of an implied axis once every direction stated on the support is taken out.
+
+    The kind speaks only where the job does not: ``z`` stated on a level pipe replaces the implied
+    ``vertical``, ``vertical`` stated on a riser the implied ``axial``, ``x`` one half of a
+    riser's ``lateral``.
+    """
+    if axis == "rotation":
+        return (axis,)
+    stated = [n for n in _TRANSLATIONS if n != axis and getattr(support, n) != "implied"]
+    taken = [row for name in stated for row in axis_vectors(tangent, name)]
+    rows = axis_vectors(tangent, axis)
+    open_rows = [row for row in rows if all(abs(row @ other) < _SAME_LINE for other in taken)]
+    if len(open_rows) == len(rows):
+        return (axis,)
+    return tuple("xyz"[int(np.argmax(np.abs(row)))] for row in open_rows)
+
+
+def _torsion(span: Span, index: int) -> list[Spring]:
+    """Hold on the pipe against turning about its own axis, by supports that grip it all round.
+
+    As stiff as their hold against turning across the pipe (4 EI/L is 5.2 GJ/L): common practice,
+    no source. It is doubtful only where it matters, that is where a bend or an offset mass couples
+    twist with bending; on any other span it is taken as known.
+    """
+    support = span.supports[index]
+    implied = KINDS[support.kind].rotation
+    if implied is None:
+        return []
+    unit = _unit(span, support, "rotation")
+    stated = support.rotation if support.rotation != 0 else "implied"
+    resolved = _resolve(stated, implied, unit, "rotation")
+    if resolved is None:
+        return []
+    stiffness, sd_ln = resolved
+    return [Spring(index, support.at_m, "torsion", stiffness, sd_ln if _twists(span) else 0.0)]
+
+
+def _twists(span: Span) -> bool:
+    return len(span.legs) > 1 or any(any(mass.offset_m) for mass in span.masses)
 
 
 def _implied(kind: SupportKind, riser: bool) -> dict[str, Doubtful | None]:
@@ -153,11 +203,11 @@ def _unit(span: Span, support: Support, axis: str) -> float:
 def _neighbour_distance(span: Span, support: Support) -> float:
     """Mean distance to the next supports (or the ends) on either side."""
     stations = sorted({0.0, span.length_m, *(s.at_m for s in span.supports)})
-    gaps = [b - a for a, b in zip(stations, stations[1:], strict=False) if b - a > 1e-6]
+    gaps = [b - a for a, b in pairwise(stations) if b - a > 1e-6]
     beside = [
         b - a
-        for a, b in zip(stations, stations[1:], strict=False)
-        if b - a > 1e-6 and (math.isclose(a, support.at_m) or math.isclose(b, support.at_m))
+        for a, b in pairwise(stations)
+        if b - a > 1e-6 and min(abs(a - support.at_m), abs(b - support.at_m)) < 1e-6
     ]
     chosen = beside or gaps
     return sum(chosen) / len(chosen)
