@@ -2,13 +2,27 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+import math
+from dataclasses import dataclass, replace
+from pathlib import Path
 
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.errors import InputError, Place
+from fieldkit.signal.audio_file import read_audio
+from fieldkit.signal.text_lines import looks_like_text
+from fieldkit.signal.text_recording import read_text
+
 QUANTITIES = ("acceleration", "velocity", "displacement", "pressure")
 SI_UNIT = {"acceleration": "m/s^2", "velocity": "m/s", "displacement": "m", "pressure": "Pa"}
+
+LOWEST_RATE_HZ = 100.0
+HIGHEST_RATE_HZ = 192_000.0
+
+_AUDIO_SUFFIXES = (".wav", ".flac", ".aif", ".aiff", ".aifc")
+_TEXT_SUFFIXES = (".csv", ".txt", ".tsv")
+_AUDIO_MARKS = (b"RIFF", b"RF64", b"fLaC", b"FORM", b"OggS")
 
 
 @dataclass(frozen=True)
@@ -41,3 +55,128 @@ class Recording:
     def duration_s(self) -> float:
         """Length in time."""
         return len(self.samples) / self.rate_hz
+
+
+def load(path: Path, *, rate_hz: float | None = None) -> Recording:
+    """Read WAV, FLAC, AIFF and what else libsndfile knows, or columns of numbers as text.
+
+    ``rate_hz`` states the sampling rate of a text file that has no time column; where a file
+    tells its rate, the two must agree. Integer audio has full scale 1, and its highest positive
+    sample lies one step below that. Raises InputError, with the line for a text file, where
+    there is no recording in it: see ``read_audio`` and ``read_text``; and where the rate is out
+    of range, a sample is not finite, or all channels are silent.
+    """
+    _check_stated(rate_hz)
+    _check_readable(path)
+    recording = _from_text(path, rate_hz) if _is_text(path) else _from_audio(path, rate_hz)
+    _check_rate(recording.rate_hz, path)
+    _check_finite(recording, path)
+    return _without_silence(recording, path)
+
+
+def channel_signal(recording: Recording, channel: int) -> NDArray[np.float64]:
+    """Samples (n,) of one channel; counts from 1, as printed on the box."""
+    count = len(recording.channels)
+    if not 1 <= channel <= count:
+        has = "only channel 1" if count == 1 else f"channels 1 to {count}"
+        raise InputError(
+            f"there is no channel {channel}: the recording has {has}",
+            "name one it has",
+            Place(Path(recording.source)),
+        )
+    return np.ascontiguousarray(recording.samples[:, channel - 1])
+
+
+def _check_stated(rate_hz: float | None) -> None:
+    if rate_hz is not None and not (math.isfinite(rate_hz) and rate_hz > 0):
+        raise InputError(f"a sampling rate of {rate_hz:g} Hz", "state a rate above zero")
+
+
+def _check_readable(path: Path) -> None:
+    place = Place(path)
+    if path.is_dir():
+        raise InputError("this is a folder, not a recording", "name a file in it", place)
+    if not path.exists():
+        raise InputError("there is no such file", "check its name and folder", place)
+    if not path.is_file():
+        raise InputError("this is not a regular file", "name a recording on disk", place)
+    try:
+        empty = not _head(path)
+    except OSError as error:
+        reason = (error.strerror or "unreadable").lower()
+        raise InputError(f"the file cannot be opened: {reason}", "check it", place) from error
+    if empty:
+        raise InputError("the file is empty (0 bytes)", "copy or record it again", place)
+
+
+def _head(path: Path) -> bytes:
+    with path.open("rb") as file:
+        return file.read(4096)
+
+
+def _is_text(path: Path) -> bool:
+    head, suffix = _head(path), path.suffix.lower()
+    if suffix in _AUDIO_SUFFIXES or head.startswith(_AUDIO_MARKS):
+        return False
+    return suffix in _TEXT_SUFFIXES or looks_like_text(head)
+
+
+def _from_audio(path: Path, rate_hz: float | None) -> Recording:
+    audio = read_audio(path)
+    if rate_hz is not None and not math.isclose(rate_hz, audio.rate_hz, rel_tol=1e-3):
+        raise InputError(
+            f"the file is sampled at {audio.rate_hz:g} Hz, and {rate_hz:g} Hz was stated",
+            "leave the stated rate out",
+            Place(path),
+        )
+    channels = tuple(Channel(f"channel {i + 1}") for i in range(audio.samples.shape[1]))
+    full_scale = 1.0 if audio.integer else None
+    return Recording(
+        audio.samples, audio.rate_hz, channels, str(path), full_scale, tuple(audio.notes)
+    )
+
+
+def _from_text(path: Path, rate_hz: float | None) -> Recording:
+    text = read_text(path, None if rate_hz is None else float(rate_hz))
+    channels = tuple(
+        Channel(label.name or f"channel {i}", label.quantity, label.scale)
+        for i, label in enumerate(text.labels, start=1)
+    )
+    return Recording(text.samples, text.rate_hz, channels, str(path), None, text.notes)
+
+
+def _check_rate(rate_hz: float, path: Path) -> None:
+    if not LOWEST_RATE_HZ * (1 - 1e-9) <= rate_hz <= HIGHEST_RATE_HZ * (1 + 1e-9):
+        raise InputError(
+            f"a sampling rate of {rate_hz:.6g} Hz is out of range: "
+            f"{LOWEST_RATE_HZ:g} Hz to {HIGHEST_RATE_HZ / 1e3:g} kHz can be used",
+            "check the rate, or record again",
+            Place(path),
+        )
+
+
+def _check_finite(recording: Recording, path: Path) -> None:
+    if np.isfinite(recording.samples.sum()) or np.isfinite(recording.samples).all():
+        return
+    row, column = np.argwhere(~np.isfinite(recording.samples))[0]
+    raise InputError(
+        f"channel {column + 1} is not a finite number at {row / recording.rate_hz:.6f} s "
+        f"(sample {row + 1})",
+        "export or record it again",
+        Place(path),
+    )
+
+
+def _without_silence(recording: Recording, path: Path) -> Recording:
+    """The recording with a note on its silent channels; InputError where all are silent."""
+    silent = np.ptp(recording.samples, axis=0) == 0.0
+    if len(recording.samples) < 2:
+        raise InputError("the recording holds a single sample", "record it again", Place(path))
+    if silent.all():
+        raise InputError(
+            "the recording is silent: all samples are equal",
+            "check cable, sensor supply and input level, then record again",
+            Place(path),
+        )
+    notes = tuple(f"channel {i + 1} is silent" for i in np.flatnonzero(silent))
+    return replace(recording, notes=(*recording.notes, *notes))

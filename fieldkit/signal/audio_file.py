@@ -1,0 +1,181 @@
+"""Read audio files: samples, rate, and what became of the end of a damaged file."""
+
+from __future__ import annotations
+
+import io
+import re
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any, BinaryIO
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.errors import InputError, Place
+
+MAX_SAMPLES = 2**28
+"""Most samples, over all channels, that are held in memory at once: 2 GiB as float64."""
+SHORTEST_RESCUE_S = 0.5
+"""Of a damaged file at least this much must be readable."""
+
+_BLOCK_SAMPLES = 2**16
+_UNKNOWN_LENGTH_FRAMES = 2**35
+_OPEN_ENDED_BYTES = 0x7FFFF000
+"""Writers that cannot go back to the header leave a length at or above this one in it."""
+_EXACT_SUBTYPES = re.compile(r"PCM_|ALAC|ULAW|ALAW|DWVW|DPCM|ADPCM")
+_FLOAT_SUBTYPES = ("FLOAT", "DOUBLE")
+_LYING_LENGTH = re.compile(r"^\s*(?:data|SSND|riff)\s*:\s*(\d+) \(should be (\d+)\)", re.MULTILINE)
+
+
+@dataclass(frozen=True)
+class AudioSamples:
+    """What an audio file holds."""
+
+    samples: NDArray[np.float64]
+    """(n, channels), full scale 1."""
+    rate_hz: float
+    integer: bool
+    """Whether the samples are stored as whole numbers, which clip at full scale."""
+    notes: tuple[str, ...] = ()
+
+
+def read_audio(path: Path) -> AudioSamples:
+    """Read a file through libsndfile, block by block, never trusting the length in its header.
+
+    A file that ends early is returned as far as it can be read, with a note, when that is at
+    least SHORTEST_RESCUE_S. Raises InputError where it is not audio, empty, or too long.
+    """
+    with _opened(path, str(path)) as audio:
+        if audio.frames > 0:
+            return _read_open(audio, path)
+    mended = _mended_wav(path)
+    if mended is None:
+        raise InputError("the recording is empty (0 samples)", "record it again", Place(path))
+    with _opened(path, mended) as audio:
+        read = _read_open(audio, path)
+    note = "the recorder never wrote the length into the file's header; read to the end of the file"
+    return AudioSamples(read.samples, read.rate_hz, read.integer, (note, *read.notes))
+
+
+def _opened(path: Path, source: str | BinaryIO) -> Any:
+    import soundfile
+
+    try:
+        return soundfile.SoundFile(source)
+    except (soundfile.SoundFileError, TypeError, ValueError, OSError) as error:
+        raise InputError(
+            "cannot be read as audio: damaged from its start, or not an audio file",
+            "give WAV, FLAC or AIFF, or numbers as CSV",
+            Place(path),
+        ) from error
+
+
+def _read_open(audio: Any, path: Path) -> AudioSamples:
+    samples, broke_off = _read_blocks(audio, path)
+    rate_hz = float(audio.samplerate)
+    notes = [*_ending_notes(audio, len(samples), broke_off, path), *_coding_notes(audio)]
+    integer = bool(_EXACT_SUBTYPES.search(audio.subtype))
+    return AudioSamples(samples, rate_hz, integer, tuple(notes))
+
+
+def _read_blocks(audio: Any, path: Path) -> tuple[NDArray[np.float64], bool]:
+    """All frames that can be decoded, and whether decoding broke off with an error."""
+    import soundfile
+
+    block = np.empty((max(1, _BLOCK_SAMPLES // audio.channels), audio.channels))
+    samples = np.empty_like(block)
+    count, broke_off = 0, False
+    while not broke_off:
+        block.fill(np.nan)
+        try:
+            frames = len(audio.read(out=block))
+        except soundfile.SoundFileError:
+            broke_off, frames = True, _filled_frames(block)
+        if frames == 0:
+            break
+        if (count + frames) * audio.channels > MAX_SAMPLES:
+            raise _too_long(audio, path)
+        if count + frames > len(samples):
+            samples.resize((2 * len(samples), audio.channels), refcheck=False)
+        samples[count : count + frames] = block[:frames]
+        count += frames
+    samples.resize((count, audio.channels), refcheck=False)
+    return samples, broke_off
+
+
+def _filled_frames(block: NDArray[np.float64]) -> int:
+    """Frames that arrived in a block, pre-filled with NaN, before its decoding failed."""
+    missing = np.isnan(block).any(axis=1)
+    return int(np.argmax(missing)) if missing.any() else len(block)
+
+
+def _too_long(audio: Any, path: Path) -> InputError:
+    minutes = MAX_SAMPLES / audio.channels / audio.samplerate / 60
+    return InputError(
+        f"the recording is too long: more than {minutes:.0f} min at {audio.samplerate} Hz "
+        f"with {audio.channels} channel(s)",
+        "cut it to the part that matters, or store it at a lower rate",
+        Place(path),
+    )
+
+
+def _ending_notes(audio: Any, frames: int, broke_off: bool, path: Path) -> list[str]:
+    promised = _promised_frames(audio, frames)
+    if promised is not None and frames >= promised:
+        return []
+    readable_s = frames / audio.samplerate
+    if promised is None:
+        ending = "the file does not state its length" if broke_off else ""
+        whole = ""
+    else:
+        ending = "the file is damaged or ends early"
+        whole = f" of {promised / audio.samplerate:.2f} s"
+    if readable_s < SHORTEST_RESCUE_S and ending:
+        raise InputError(
+            f"{ending}: only {readable_s:.3f} s{whole} can be read",
+            "copy it again from the recorder, or record it again",
+            Place(path),
+        )
+    return [f"{ending}: {readable_s:.2f} s{whole} could be read"] if ending else []
+
+
+def _promised_frames(audio: Any, frames: int) -> int | None:
+    """How many frames the header promises; None where it leaves that open."""
+    lying = _LYING_LENGTH.findall(audio.extra_info)
+    claims = [(int(claimed), int(held)) for claimed, held in lying if int(held) < int(claimed)]
+    if any(claimed >= _OPEN_ENDED_BYTES for claimed, _ in claims):
+        return None
+    if claims:
+        claimed, held = claims[-1]
+        return max(frames + 1, round(frames * claimed / max(held, 1)))
+    return None if audio.frames >= _UNKNOWN_LENGTH_FRAMES else int(audio.frames)
+
+
+def _coding_notes(audio: Any) -> list[str]:
+    if _EXACT_SUBTYPES.search(audio.subtype) or audio.subtype in _FLOAT_SUBTYPES:
+        return []
+    return [
+        f"the audio is stored with loss ({audio.subtype}), which alters level and decay; "
+        "record as WAV or FLAC"
+    ]
+
+
+def _mended_wav(path: Path) -> BinaryIO | None:
+    """A WAV whose header still says zero length, as a recorder cut off from power leaves it.
+
+    None where that is not what is wrong, or nothing follows the header.
+    """
+    if path.stat().st_size > 4 * MAX_SAMPLES:
+        return None
+    data = bytearray(path.read_bytes())
+    if data[:4] != b"RIFF" or data[8:12] != b"WAVE":
+        return None
+    at = 12
+    while at + 8 <= len(data):
+        name, size = data[at : at + 4], int.from_bytes(data[at + 4 : at + 8], "little")
+        if name == b"data":
+            held = len(data) - at - 8
+            data[at + 4 : at + 8] = held.to_bytes(4, "little")
+            return io.BytesIO(bytes(data)) if size == 0 and held > 0 else None
+        at += 8 + size + size % 2
+    return None

@@ -1,0 +1,127 @@
+"""Numbers out of the rows of a table, and the line of the first one that is bad."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.errors import InputError
+from fieldkit.signal.text_cells import (
+    NUMBER,
+    is_data,
+    is_not_finite,
+    number_in,
+    seconds_in,
+    split_cells,
+    with_point,
+)
+from fieldkit.signal.text_layout import Layout
+
+_ROWS_AT_ONCE = 20_000
+_LONGEST_QUOTE = 30
+
+
+@dataclass(frozen=True)
+class Table:
+    """The rows of a text file as numbers."""
+
+    values: NDArray[np.float64]
+    """(rows, columns); clock times and dates in seconds."""
+    lines: NDArray[np.int64]
+    """(rows,) line of each row in the file, counted from 1."""
+
+
+def read_table(lines: Sequence[str], layout: Layout, path: Path) -> Table:
+    """All rows from the first one to the end of the file.
+
+    Raises InputError with the line of the first row that has a different number of columns,
+    text in place of a number, or a value that is missing or not finite.
+    """
+    rows = [i for i in range(layout.first_row, len(lines)) if is_data(lines[i])]
+    blocks = []
+    for start in range(0, len(rows), _ROWS_AT_ONCE):
+        at_once = rows[start : start + _ROWS_AT_ONCE]
+        texts = [lines[i] for i in at_once]
+        block = _read_fast(texts, layout)
+        if block is None:
+            block = _read_carefully(texts, at_once, layout, path)
+        blocks.append(block)
+    return Table(np.concatenate(blocks), np.asarray(rows, dtype=np.int64) + 1)
+
+
+def _read_fast(texts: list[str], layout: Layout) -> NDArray[np.float64] | None:
+    """The rows by numpy's own reader; None where anything at all is out of the ordinary."""
+    if layout.delimiter == layout.decimal or any(kind != NUMBER for kind in layout.kinds):
+        return None
+    joined = "\n".join(texts)
+    if not joined.isascii() or '"' in joined or "_" in joined:
+        return None
+    spare = " \t\r" if layout.delimiter is None else layout.delimiter + " \t\r"
+    rows = (row.rstrip(spare) for row in joined.replace(layout.decimal, ".").split("\n"))
+    try:
+        block = np.loadtxt(rows, delimiter=layout.delimiter, comments=None, ndmin=2)
+    except ValueError:
+        return None
+    if block.shape != (len(texts), len(layout.kinds)) or not np.isfinite(block).all():
+        return None
+    return block
+
+
+def _read_carefully(
+    texts: list[str], at: Sequence[int], layout: Layout, path: Path
+) -> NDArray[np.float64]:
+    block = np.empty((len(texts), len(layout.kinds)))
+    for row, (text, i) in enumerate(zip(texts, at, strict=True)):
+        try:
+            block[row] = _row_values(text, layout)
+        except InputError as error:
+            raise error.at(file=path, line=i + 1) from None
+    return block
+
+
+def _row_values(text: str, layout: Layout) -> list[float]:
+    cells = split_cells(text, layout.delimiter)
+    if len(cells) != len(layout.kinds):
+        raise InputError(
+            f"the row has {len(cells)} column(s) where {len(layout.kinds)} are expected",
+            "give every row the same columns; look for a row that was cut off",
+        )
+    return [
+        _value(cell, kind, column, layout.decimal)
+        for column, (cell, kind) in enumerate(zip(cells, layout.kinds, strict=True), start=1)
+    ]
+
+
+def _value(cell: str, kind: str, column: int, decimal: str) -> float:
+    if kind != NUMBER:
+        seconds = seconds_in(cell)
+        if seconds is None:
+            raise InputError(
+                f"{quoted(cell)} in column {column} is not a time",
+                "write times as hh:mm:ss.fff or 2024-01-31T12:30:00.000",
+            )
+        return seconds
+    text = with_point(cell, decimal)
+    value = number_in(text)
+    if value is not None and np.isfinite(value):
+        return value
+    if not cell:
+        raise InputError(f"column {column} is empty", "fill in the value or remove the row")
+    if value is not None or is_not_finite(text):
+        raise InputError(
+            f"{quoted(cell)} in column {column} is no finite number",
+            "remove the rows without a value, or record again",
+        )
+    raise InputError(
+        f"{quoted(cell)} in column {column} is not a number",
+        "remove text from among the rows, or start the line with #",
+    )
+
+
+def quoted(text: str) -> str:
+    """Text out of a file, safe to print: control characters escaped, cut to a readable length."""
+    return repr(text if len(text) <= _LONGEST_QUOTE else text[:_LONGEST_QUOTE] + "...")
