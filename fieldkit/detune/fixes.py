@@ -108,7 +108,9 @@ class StiffenSupport:
             old,
             vertical=old.vertical if self.vertical_n_per_m is None else self.vertical_n_per_m,
             lateral=old.lateral if self.lateral_n_per_m is None else self.lateral_n_per_m,
-            rotation=old.rotation if self.rotation_n_m_per_rad is None else self.rotation_n_m_per_rad,
+            rotation=old.rotation
+            if self.rotation_n_m_per_rad is None
+            else self.rotation_n_m_per_rad,
         )
         return _swap_support(span, self.index, new)
 

@@ -2,12 +2,35 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.detune import posterior
+from fieldkit.detune.evidence import Evidence
+from fieldkit.detune.field import Field, field
+from fieldkit.detune.likelihood import Peaks
+from fieldkit.detune.posterior import Population, Problem, Seen
+from fieldkit.detune.reduced import ReducedModel, build
+from fieldkit.detune.tracking import follow, followed
+from fieldkit.detune.unknowns import Unknown, unknowns_of
+from fieldkit.errors import Refusal
+from fieldkit.progress import Progress
 from fieldkit.signal.modes import MeasuredMode
+from fieldkit.span.layout import Span, State
+
+Array = NDArray[np.float64]
+
+SEED = 7
+INFORMED_SD = 0.75
+"""A parameter counts as informed when the tap cut its doubt to this share of the prior."""
+BELONGS = 0.5
+"""A peak is paired when it belongs to some mode with at least this probability."""
+FREE_HZ = 0.2
+MARGIN_ABOVE_TYPED = 1.08
+"""Typed-in peaks: nobody looked for modes higher than this times the highest one."""
 
 
 @dataclass(frozen=True)
@@ -88,3 +111,292 @@ class Match:
     tapped_modes: tuple[ModelMode, ...]
     next_measurement: str
     warnings: tuple[str, ...] = ()
+
+
+def match(
+    span: Span,
+    tapped: State,
+    running: State,
+    evidence: Evidence,
+    *,
+    up_to_hz: float,
+    handbook_hz: float | None = None,
+    progress: Progress | None = None,
+) -> Match:
+    """Fit every unknown of the span to the measured modes.
+
+    Raises Refusal when nothing was measured, or when no plausible parameter set explains it.
+    """
+    progress = progress or Progress()
+    if not evidence.modes:
+        raise Refusal(
+            "no natural frequency was measured, so there is nothing to match the model to",
+            "record a tap test, or type measured peaks into [[measured]]",
+        )
+    unknowns = unknowns_of(span, (tapped, running))
+    states = (tapped, running)
+    models = tuple(build(span, state, unknowns, up_to_hz) for state in states)
+    groups = grouped(evidence.modes, up_to_hz)
+    problem = Problem(models, tuple(_seen(span, models, states, group) for group in groups))
+    population = posterior.sample(problem, np.random.default_rng(SEED), progress)
+    reading = _Reading(span, tapped, running, models, groups, problem, population)
+    _require_plausible(reading)
+    return _answer(reading, evidence, unknowns, handbook_hz)
+
+
+@dataclass(frozen=True)
+class Group:
+    """Measured modes of one state and direction."""
+
+    modes: tuple[MeasuredMode, ...]
+    peaks: Peaks
+
+
+def grouped(modes: Sequence[MeasuredMode], up_to_hz: float) -> tuple[Group, ...]:
+    """Peaks by state, direction and station, each in rising frequency."""
+    keys = dict.fromkeys((m.state, m.direction, m.at_m) for m in modes)
+    groups = []
+    for key in keys:
+        own = sorted(
+            (m for m in modes if (m.state, m.direction, m.at_m) == key),
+            key=lambda m: m.frequency_hz,
+        )
+        frequency = np.array([m.frequency_hz for m in own])
+        recorded = any(m.taps for m in own)
+        highest = up_to_hz if recorded else MARGIN_ABOVE_TYPED * float(frequency.max())
+        peaks = Peaks(
+            frequency,
+            np.array([max(m.frequency_sd_hz, 1e-4 * m.frequency_hz) for m in own]),
+            key[1],
+            key[0],
+            max(highest, 1.02 * float(frequency.max())),
+        )
+        groups.append(Group(tuple(own), peaks))
+    return tuple(groups)
+
+
+def _seen(
+    span: Span, models: tuple[ReducedModel, ...], states: tuple[State, State], group: Group
+) -> Seen:
+    number = [state.name for state in states].index(group.peaks.state)
+    model = models[number]
+    stations = np.linspace(0, span.length_m, 25)
+    at_m = group.modes[0].at_m
+    axes = (group.peaks.direction,) if group.peaks.direction else ("vertical", "lateral", "axial")
+    places = stations if at_m is None else np.array([at_m])
+    return Seen(
+        group.peaks,
+        number,
+        _motion(model, places, axes),
+        _motion(model, stations, ("vertical", "lateral", "axial")),
+    )
+
+
+def _motion(model: ReducedModel, stations: Array, axes: Sequence[str]) -> Array:
+    """(k, r) rows scaled so that their squares add up to the mean square over the stations."""
+    rows = [
+        model.structure.motion_rows(float(station), axis) for station in stations for axis in axes
+    ]
+    return np.concatenate(rows) @ model.basis / np.sqrt(len(stations))
+
+
+@dataclass(frozen=True)
+class _Reading:
+    """The finished population with everything needed to read it."""
+
+    span: Span
+    tapped: State
+    running: State
+    models: tuple[ReducedModel, ...]
+    groups: tuple[Group, ...]
+    problem: Problem
+    population: Population
+
+    def belonging(self, number: int) -> Array:
+        """(members, peaks, modes) of one group."""
+        found, _, _ = posterior.alignments(self.problem, self.population.z)
+        return found[number].responsibility
+
+
+def _require_plausible(reading: _Reading) -> None:
+    """Refuse when most peaks belong to no computed mode for any member."""
+    explained = [
+        float(share)
+        for number in range(len(reading.groups))
+        for share in reading.belonging(number).sum(axis=2).mean(axis=0)
+    ]
+    if sum(share >= BELONGS for share in explained) >= max(1, (len(explained) + 1) // 2):
+        return
+    peaks = [m.frequency_hz for group in reading.groups for m in group.modes]
+    lost = [f"{f:.1f}" for f, share in zip(peaks, explained, strict=True) if share < BELONGS]
+    raise Refusal(
+        "no plausible model of this span explains the measured frequencies "
+        f"({', '.join(lost)} Hz belong to no computed mode)",
+        "check the pipe size, the lengths, the state (full or empty) and that every support and "
+        "heavy item between the ends is listed; then check whether the taps were on this pipe, or "
+        "a support hangs loose",
+    )
+
+
+def _answer(
+    reading: _Reading, evidence: Evidence, unknowns: tuple[Unknown, ...], handbook_hz: float | None
+) -> Match:
+    z = reading.population.z
+    tapped = field(reading.span, reading.models[0], z)
+    pairs, unpaired = _pairs(reading, handbook_hz)
+    parameters = tuple(_parameter(unknown, z[:, i]) for i, unknown in enumerate(unknowns))
+    modes = model_modes(tapped)
+    return Match(
+        measured=evidence.modes,
+        pairs=pairs,
+        unpaired=unpaired,
+        parameters=parameters,
+        ensemble=Ensemble(tuple(u.name for u in unknowns), z, np.full(len(z), 1.0 / len(z))),
+        tapped_modes=modes,
+        next_measurement=next_measurement(modes, pairs, evidence),
+        warnings=_warnings(pairs, unpaired, parameters, z),
+    )
+
+
+def _parameter(unknown: Unknown, z: Array) -> ParameterReading:
+    prior = unknown.at(np.array([-1.6449, 0.0, 1.6449]))
+    low, median, high = np.quantile(unknown.at(z), (0.05, 0.5, 0.95))
+    return ParameterReading(
+        unknown.name,
+        unknown.unit,
+        float(prior[1]),
+        float(prior[0]),
+        float(prior[2]),
+        float(median),
+        float(low),
+        float(high),
+        informed=bool(z.std() < INFORMED_SD),
+    )
+
+
+def _pairs(
+    reading: _Reading, handbook_hz: float | None
+) -> tuple[tuple[Pair, ...], tuple[MeasuredMode, ...]]:
+    pairs: list[Pair] = []
+    unpaired: list[MeasuredMode] = []
+    for number, group in enumerate(reading.groups):
+        model = reading.models[reading.problem.seen[number].model]
+        seen = field(reading.span, model, reading.population.z)
+        belonging = reading.belonging(number)
+        followed_modes = _Followed.of(seen, belonging.shape[2])
+        share = followed_modes.probability(belonging)
+        for i, measured in enumerate(group.modes):
+            best = int(np.argmax(share[i]))
+            if share[i, best] < BELONGS * share[i].sum() or share[i].sum() < BELONGS:
+                unpaired.append(measured)
+            else:
+                pairs.append(followed_modes.pair(best, measured, handbook_hz))
+    pairs.sort(key=lambda pair: pair.measured.frequency_hz)
+    return tuple(pairs), tuple(unpaired)
+
+
+@dataclass(frozen=True)
+class _Followed:
+    """Modes of one state followed through the ensemble."""
+
+    frequency_hz: Array
+    """(members, modes)."""
+    chosen: NDArray[np.intp]
+    prior_hz: Array
+    direction: tuple[str, ...]
+
+    @classmethod
+    def of(cls, seen: Field, count: int) -> _Followed:
+        vector, frequency = seen.modes.vector, seen.modes.frequency_hz
+        reference = vector[seen.central][:, :count]
+        chosen = follow(vector, reference)
+        prior = seen.model.modes(np.zeros((1, seen.z.shape[1])))
+        prior_chosen = follow(prior.vector, reference)
+        return cls(
+            followed(frequency, chosen),
+            chosen,
+            followed(prior.frequency_hz, prior_chosen)[0],
+            seen.directions(seen.central)[:count],
+        )
+
+    def probability(self, belonging: Array) -> Array:
+        """(peaks, modes) that a peak belongs to a followed mode."""
+        _, peaks, modes = belonging.shape
+        inside = self.chosen < modes
+        index = np.minimum(self.chosen, modes - 1)[:, None, :].repeat(peaks, axis=1)
+        taken = np.take_along_axis(belonging, index, axis=2)
+        return np.asarray((taken * inside[:, None, :]).mean(axis=0))
+
+    def pair(self, j: int, measured: MeasuredMode, handbook_hz: float | None) -> Pair:
+        low, median, high = np.quantile(self.frequency_hz[:, j], (0.05, 0.5, 0.95))
+        vibrating = int(np.sum(np.median(self.frequency_hz, axis=0)[:j] > FREE_HZ))
+        return Pair(
+            vibrating + 1,
+            measured,
+            float(self.prior_hz[j]),
+            float(median),
+            float(low),
+            float(high),
+            self.direction[j],
+            handbook_hz if vibrating == 0 else None,
+        )
+
+
+def model_modes(seen: Field) -> tuple[ModelMode, ...]:
+    """Modes of the ensemble with their intervals, direction and where they move most."""
+    vector, frequency = seen.modes.vector, seen.modes.frequency_hz
+    count = min(vector.shape[2], 12)
+    reference = vector[seen.central][:, :count]
+    tracked = followed(frequency, follow(vector, reference))
+    directions = seen.directions(seen.central)
+    found = []
+    for j in range(count):
+        low, median, high = np.quantile(tracked[:, j], (0.05, 0.5, 0.95))
+        if median > FREE_HZ:
+            where = seen.largest_at(seen.central, j)
+            found.append(ModelMode(float(median), float(low), float(high), directions[j], where))
+    return tuple(sorted(found, key=lambda mode: mode.median_hz))
+
+
+def next_measurement(modes: Sequence[ModelMode], pairs: Sequence[Pair], evidence: Evidence) -> str:
+    """Which further blow would narrow the answer most, from the spread of what was not seen."""
+    seen = {round(pair.model_hz, 6) for pair in pairs}
+    highest = 1.2 * max(m.frequency_hz for m in evidence.modes)
+    unseen = [m for m in modes if round(m.median_hz, 6) not in seen and m.median_hz < highest]
+    if not unseen:
+        return (
+            "every computed mode in the range was seen; a further tap would add little, unless the "
+            "span can be tapped in its running state (full and warm)"
+        )
+    widest = max(unseen, key=lambda mode: (mode.high_hz - mode.low_hz) / mode.median_hz)
+    return (
+        f"tap in {widest.direction} direction near {widest.where_m:.2f} m with the sensor beside "
+        f"it: the {widest.direction} mode expected between {widest.low_hz:.1f} and "
+        f"{widest.high_hz:.1f} Hz was not seen, and it is the least certain one"
+    )
+
+
+def _warnings(
+    pairs: Sequence[Pair],
+    unpaired: Sequence[MeasuredMode],
+    parameters: Sequence[ParameterReading],
+    z: Array,
+) -> tuple[str, ...]:
+    found = [
+        f"the peak at {mode.frequency_hz:.2f} Hz belongs to no computed mode: another line, a "
+        "loose part, the wall itself or the contents may ring there; check before relying on it"
+        for mode in unpaired
+    ]
+    if len(pairs) == 1:
+        found.append(
+            "one measured mode fixes one unknown only; a second one, best in the other direction, "
+            "narrows the prediction more than anything else"
+        )
+    far = np.abs(z.mean(axis=0)) > 2.5
+    for parameter, is_far in zip(parameters, far, strict=True):
+        if is_far:
+            found.append(
+                f"{parameter.name} had to go far from what is usual ({parameter.median:.3g} "
+                f"{parameter.unit}): check how it is really built"
+            )
+    return tuple(found)

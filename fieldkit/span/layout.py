@@ -54,6 +54,8 @@ class Support:
     x: Stiffness = "implied"
     y: Stiffness = "implied"
     z: Stiffness = "implied"
+    torsion: Stiffness = "implied"
+    """About the pipe's own axis; implied by the grip, not written in a job file."""
 
 
 @dataclass(frozen=True)
@@ -210,9 +212,10 @@ def axis_vectors(tangent: NDArray[np.float64], axis: str) -> NDArray[np.float64]
         horizontals = np.array([unit["x"], unit["y"]])
         across = {"vertical": up[None], "axial": up[None], "lateral": horizontals}
         return across.get(axis, horizontals)
-    lateral = np.cross(up, tangent)
-    lateral = lateral / np.linalg.norm(lateral)
-    vertical = np.cross(tangent, lateral)
+    tx, ty, tz = (float(part) for part in tangent)
+    level = math.hypot(tx, ty)
+    lateral = np.array([-ty, tx, 0.0]) / level
+    vertical = np.array([-tx * tz, -ty * tz, level**2]) / level
     named = {"vertical": vertical[None], "lateral": lateral[None], "axial": tangent[None]}
     vectors: NDArray[np.float64] = named.get(axis, np.array([lateral, vertical]))
     return vectors
@@ -315,7 +318,7 @@ def _check_station(name: str, i: int, at_m: float, end_m: float) -> None:
 
 
 def _check_stiffness(support: Support, i: int) -> None:
-    for axis in AXES:
+    for axis in (*AXES, "torsion"):
         value = getattr(support, axis)
         if not isinstance(value, str) and not value >= 0:
             what = f"a stiffness of {value:g}"

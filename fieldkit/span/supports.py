@@ -145,10 +145,12 @@ def _torsion(span: Span, index: int) -> list[Spring]:
     """
     support = span.supports[index]
     implied = KINDS[support.kind].rotation
-    if implied is None:
+    if implied is None and support.torsion == "implied":
         return []
     unit = _unit(span, support, "rotation")
-    stated = support.rotation if support.rotation != 0 else "implied"
+    stated = support.torsion
+    if stated == "implied" and support.rotation != 0:
+        stated = support.rotation
     resolved = _resolve(stated, implied, unit, "rotation")
     if resolved is None:
         return []

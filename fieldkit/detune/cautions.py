@@ -1,0 +1,137 @@
+"""What a fix does besides moving frequencies, and what to check before doing it."""
+
+from __future__ import annotations
+
+import numpy as np
+
+from fieldkit.detune.effort import pipe_mass_kg
+from fieldkit.detune.excitation import Goal
+from fieldkit.detune.fixes import (
+    AddMass,
+    AddSupport,
+    Change,
+    MoveMass,
+    MoveSupport,
+    SetMass,
+    StiffenSupport,
+)
+from fieldkit.errors import Refusal
+from fieldkit.quantity import show
+from fieldkit.span.layout import Span, State
+from fieldkit.span.static import thermal_movement, weight_answer
+
+ALWAYS = (
+    "to be confirmed by the responsible piping engineer under the local code before any work; "
+    "do not weld, clamp or unbolt on a line in service without the site's permit"
+)
+HEAVY_SHARE = 0.2
+"""An added mass above this share of the pipe's own deserves a word."""
+NOTABLE_MOVEMENT_M = 0.5e-3
+
+
+def cautions(
+    change: Change,
+    span: Span,
+    tapped: State,
+    running: State,
+    least_share: float | None,
+    goal: Goal,
+    units: str,
+) -> tuple[str, ...]:
+    """In words for the person who will do it; ``least_share`` is of the drawn stiffness."""
+    found: list[str] = []
+    if least_share is not None:
+        found.append(_stiffness_needed(change, least_share, goal, units))
+    found += _weight(change, span, running, units)
+    found += _heat(change, span, tapped, running, units)
+    found += _mass(change, span, units)
+    return (*(text for text in found if text), ALWAYS)
+
+
+def _stiffness_needed(change: Change, least_share: float, goal: Goal, units: str) -> str:
+    drawn = max(
+        (getattr(change, f"{axis}_n_per_m", None) or 0.0)
+        for axis in ("vertical", "lateral", "axial")
+    )
+    if not drawn:
+        return ""
+    least = show(least_share * drawn, "stiffness", units, 2)
+    return (
+        f"clamp, bracket and what they stand on together must give at least {least}: below that "
+        f"the chance falls under {goal.chance:.0%}"
+    )
+
+
+def _weight(change: Change, span: Span, running: State, units: str) -> list[str]:
+    """Sag and support load before and after, filled and running."""
+    try:
+        before = weight_answer(span, running)
+        after = weight_answer(change.apply(span), running)
+    except Refusal as refusal:
+        return [f"sag and support loads could not be computed: {refusal}"]
+    found = []
+    if abs(after.sag_m - before.sag_m) > max(0.05e-3, 0.1 * before.sag_m):
+        found.append(
+            f"sag under weight goes from {show(before.sag_m, 'length', units, 2)} to "
+            f"{show(after.sag_m, 'length', units, 2)}"
+        )
+    loads = [float(np.linalg.norm(load)) for _, load in after.support_loads]
+    held = _support_number(change, span)
+    if held is not None and held < len(loads):
+        found.append(
+            f"this support carries about {loads[held] / 1e3:.2g} kN of weight if it is set with "
+            "the line empty of strain; shim it so that it neither lifts nor hangs"
+        )
+    return found
+
+
+def _support_number(change: Change, span: Span) -> int | None:
+    if isinstance(change, AddSupport):
+        return len(span.supports)
+    return change.index if isinstance(change, MoveSupport | StiffenSupport) else None
+
+
+def _heat(change: Change, span: Span, tapped: State, running: State, units: str) -> list[str]:
+    """Free thermal movement at the station that a new restraint would hold back."""
+    station = _restrained_at(change, span)
+    if station is None or abs(running.temperature_k - tapped.temperature_k) < 1.0:
+        return []
+    try:
+        movement = thermal_movement(span, tapped, running, station)
+    except Refusal as refusal:
+        return [f"thermal movement could not be computed: {refusal}"]
+    size = float(np.linalg.norm(movement))
+    if size < NOTABLE_MOVEMENT_M:
+        return []
+    parts = ", ".join(
+        f"{axis} {1e3 * value:+.1f} mm" for axis, value in zip("xyz", movement, strict=True)
+    )
+    return [
+        f"between tapped and running the pipe wants to move {show(size, 'length', units, 2)} here "
+        f"({parts}): a support that holds this back loads pipe and nozzles; use a guide with a "
+        "gap, or have the flexibility checked"
+    ]
+
+
+def _restrained_at(change: Change, span: Span) -> float | None:
+    if isinstance(change, AddSupport):
+        return change.at_m
+    if isinstance(change, MoveSupport):
+        return change.to_m
+    return span.supports[change.index].at_m if isinstance(change, StiffenSupport) else None
+
+
+def _mass(change: Change, span: Span, units: str) -> list[str]:
+    if isinstance(change, AddMass):
+        share = change.mass_kg / pipe_mass_kg(span)
+        heavy = " - heavy for this line: check the supports" if share > HEAVY_SHARE else ""
+        return [
+            f"the mass is {share:.0%} of the pipe's own{heavy}; clamp it so that it cannot slip"
+        ]
+    if isinstance(change, SetMass):
+        if change.mass_kg == 0:
+            return [f"only if the line can do without the {span.masses[change.index].name}"]
+        return [f"needs a {show(change.mass_kg, 'mass', units)} replacement of the same duty"]
+    if isinstance(change, MoveMass):
+        return ["needs a new spool piece; access and process function must allow it"]
+    return []

@@ -1,0 +1,65 @@
+"""How big a change is, as a number to rank by (common practice, no source).
+
+1 is about one bracket welded to nearby steel; nothing here is a price.
+"""
+
+from __future__ import annotations
+
+import math
+
+from fieldkit.detune.fixes import (
+    AddMass,
+    AddSupport,
+    Change,
+    MoveMass,
+    MoveSupport,
+    SetMass,
+    StiffenSupport,
+)
+from fieldkit.span.layout import Span
+from fieldkit.span.supports import REFERENCE_DIAMETER_M
+
+MOVE_BASE = 0.8
+STIFFEN_BASE = 0.5
+SUPPORT_BASE = 1.0
+MASS_BASE = 0.4
+VALVE_BASE = 1.2
+"""Taking out, changing or moving an item that is part of the line."""
+SECOND_DIRECTION = 0.25
+EASY_STIFFNESS_N_PER_M = 1e6
+PER_DECADE = 0.5
+PER_METRE_MOVED = 0.15
+
+
+def effort(change: Change, span: Span) -> float:
+    """Size of a change on this span; smaller is easier."""
+    if isinstance(change, AddSupport):
+        return SUPPORT_BASE + _stiffness_effort(
+            span, change.vertical_n_per_m, change.lateral_n_per_m, change.axial_n_per_m
+        )
+    if isinstance(change, StiffenSupport):
+        return STIFFEN_BASE + _stiffness_effort(
+            span, change.vertical_n_per_m, change.lateral_n_per_m, change.rotation_n_m_per_rad
+        )
+    if isinstance(change, MoveSupport):
+        return MOVE_BASE + PER_METRE_MOVED * abs(change.to_m - span.supports[change.index].at_m)
+    if isinstance(change, AddMass):
+        return MASS_BASE + 2 * change.mass_kg / pipe_mass_kg(span)
+    if isinstance(change, SetMass):
+        old = span.masses[change.index].mass_kg
+        return VALVE_BASE + abs(change.mass_kg - old) / old
+    if isinstance(change, MoveMass):
+        return VALVE_BASE + PER_METRE_MOVED * abs(change.to_m - span.masses[change.index].at_m)
+    return SUPPORT_BASE
+
+
+def pipe_mass_kg(span: Span) -> float:
+    """Mass of the bare pipe wall."""
+    return span.pipe.wall_area_m2 * span.material.density_kg_per_m3 * span.length_m
+
+
+def _stiffness_effort(span: Span, *stiffness_n_per_m: float | None) -> float:
+    stated = [k for k in stiffness_n_per_m if k]
+    scale = span.pipe.outside_diameter_m / REFERENCE_DIAMETER_M
+    decades = math.log10(max(*stated, 1.0) / (scale * EASY_STIFFNESS_N_PER_M))
+    return PER_DECADE * max(0.0, decades) + SECOND_DIRECTION * (len(stated) - 1)

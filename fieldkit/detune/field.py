@@ -1,0 +1,185 @@
+"""The ensemble in the running state, read at every station: what the screening works on.
+
+A *port* is a row of motion: a direction at a station. Fixes act on ports. For every port the
+field holds the motion of each member's modes and the static flexibility that the basis leaves out
+(residual flexibility: MacNeal 1971, Computers and Structures 1, 581, from memory), which does not
+depend on support stiffness because the basis contains the deflection under every support.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from functools import cached_property
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.detune.reduced import (
+    SHIFT_RAD2_PER_S2,
+    Modes,
+    ReducedModel,
+    Sparse,
+    mass_rows,
+    solve_blocks,
+    spring_rows,
+)
+from fieldkit.detune.tracking import central_member
+from fieldkit.span.layout import Span
+from fieldkit.span.supports import springs
+
+Array = NDArray[np.float64]
+
+GRID_STEPS = 64
+AXES = ("vertical", "lateral", "axial")
+"""Ports of the grid; axes that only a support of the span uses come on top."""
+
+
+@dataclass(frozen=True)
+class Ports:
+    """Rows of motion on the reduced model; ports of one key belong together."""
+
+    keys: tuple[tuple[str, float], ...]
+    """(axis, station) of grid ports."""
+    groups: dict[tuple[str, int], NDArray[np.intp]]
+    """``(axis, station number)``, ``("spring", i)``, ``("mass", i)`` -> port numbers."""
+    rows: Array
+    """(ports, r)."""
+    model: ReducedModel
+    full_rows: Sparse
+    """(ports, 6N)."""
+
+    @cached_property
+    def residual(self) -> Array:
+        """(ports, ports) m/N: static flexibility that the basis cannot show."""
+        return _residual(self.model, self.full_rows.toarray())
+
+    def of(self, name: str, number: int) -> NDArray[np.intp]:
+        """Port numbers of a group."""
+        return self.groups[(name, number)]
+
+    def along(self, axis: str) -> NDArray[np.intp]:
+        """Numbers of all grid ports of an axis."""
+        return np.array([i for i, (name, _) in enumerate(self.keys) if name == axis])
+
+
+@dataclass(frozen=True)
+class Field:
+    """Members in the running state."""
+
+    model: ReducedModel
+    span: Span
+    z: Array
+    """(members, parameters)."""
+    modes: Modes
+    station_m: Array
+    """(stations,) where something can be attached or looked at."""
+    ports: Ports
+    central: int
+    """The member nearest the middle of the ensemble."""
+
+    @cached_property
+    def shape(self) -> Array:
+        """(members, ports, r) motion of the modes at the ports."""
+        return self.ports.rows @ self.modes.vector
+
+    @property
+    def members(self) -> int:
+        """How many parameter sets."""
+        return len(self.z)
+
+    def without(self, spring_numbers: Sequence[int], mass_numbers: Sequence[int]) -> Field:
+        """The field with some springs or masses taken off, as the base for moving them."""
+        stiffness, mass = self.model.matrices(self.z)
+        for i in spring_numbers:
+            rows = self.ports.rows[self.ports.of("spring", i)]
+            stiffness = stiffness - self.spring_value(i)[:, None, None] * (rows.T @ rows)
+        for i in mass_numbers:
+            rows = self.ports.rows[self.ports.of("mass", i)]
+            mass = mass - self.mass_value(i)[:, None, None] * (rows.T @ rows)
+        return replace(self, modes=solve_blocks(stiffness, mass, self.model.blocks))
+
+    def spring_value(self, i: int) -> Array:
+        """(members,) stiffness of a spring of the span."""
+        return self._value("spring", i, springs(self.span)[i].stiffness)
+
+    def mass_value(self, i: int) -> Array:
+        """(members,) kilograms of a mass of the span."""
+        return self._value("mass", i, self.span.masses[i].mass_kg)
+
+    def directions(self, member: int) -> tuple[str, ...]:
+        """The axis that holds most of the motion of each mode of a member."""
+        return self.directions_of(self.modes.vector[member])
+
+    def directions_of(self, vector: Array) -> tuple[str, ...]:
+        """The same for any vectors (r, count) in the coordinates of the basis."""
+        motion = (self.ports.rows @ vector) ** 2
+        energy = np.stack([motion[self.ports.along(axis)].sum(axis=0) for axis in AXES])
+        return tuple(AXES[i] for i in np.argmax(energy, axis=0))
+
+    def largest_at(self, member: int, mode: int) -> float:
+        """Station where a mode of a member moves most."""
+        motion = (self.ports.rows @ self.modes.vector[member][:, mode]) ** 2
+        total = [
+            sum(float(motion[self.ports.of(axis, i)].sum()) for axis in AXES)
+            for i in range(len(self.station_m))
+        ]
+        return float(self.station_m[int(np.argmax(total))])
+
+    def _value(self, role: str, index: int, stated: float) -> Array:
+        for column, unknown in enumerate(self.model.unknowns):
+            if (unknown.role, unknown.index) == (role, index):
+                return unknown.at(self.z[:, column])
+        return np.full(self.members, stated)
+
+
+def field(span: Span, model: ReducedModel, z: Array) -> Field:
+    """Read the ensemble at every station of a grid and at every support and mass."""
+    stations = np.linspace(0.0, span.length_m, GRID_STEPS + 1)
+    ports = _ports(span, model, stations)
+    modes = model.modes(z)
+    return Field(model, span, z, modes, stations, ports, central_member(z))
+
+
+def _ports(span: Span, model: ReducedModel, stations: Array) -> Ports:
+    from scipy.sparse import csr_array
+
+    structure = model.structure
+    groups: dict[tuple[str, int], NDArray[np.intp]] = {}
+    keys: list[tuple[str, float]] = []
+    blocks: list[Array] = []
+    count = 0
+
+    def add(name: str, number: int, station: float, rows: Array) -> None:
+        nonlocal count
+        groups[(name, number)] = np.arange(count, count + len(rows))
+        keys.extend([(name, station)] * len(rows))
+        blocks.append(rows)
+        count += len(rows)
+
+    axes = dict.fromkeys((*AXES, *(spring.axis for spring in springs(span))))
+    for axis in axes:
+        for i, station in enumerate(stations):
+            add(axis, i, float(station), structure.motion_rows(float(station), axis))
+    for i, spring in enumerate(springs(span)):
+        add("spring", i, spring.at_m, spring_rows(structure, spring))
+    for i, mass in enumerate(span.masses):
+        add("mass", i, mass.at_m, mass_rows(structure, mass))
+    full = csr_array(np.concatenate(blocks))
+    return Ports(tuple(keys), groups, full @ model.basis, model, full)
+
+
+def _residual(model: ReducedModel, rows: Array) -> Array:
+    """Static flexibility between ports that the basis cannot show, at the prior medians."""
+    from scipy.sparse.linalg import splu
+
+    shifted = model.middle_stiffness + SHIFT_RAD2_PER_S2 * model.middle_mass
+    whole = rows @ splu(shifted.tocsc()).solve(rows.T)
+    reduced_rows = rows @ model.basis
+    middle = np.zeros((1, len(model.unknowns)))
+    stiffness, mass = model.matrices(middle)
+    shown = reduced_rows @ np.linalg.solve(
+        stiffness[0] + SHIFT_RAD2_PER_S2 * mass[0], reduced_rows.T
+    )
+    residual = whole - shown
+    return np.asarray(0.5 * (residual + residual.T))

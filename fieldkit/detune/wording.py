@@ -1,0 +1,73 @@
+"""A change in one sentence, in the units the job shows."""
+
+from __future__ import annotations
+
+from fieldkit.detune.fixes import (
+    AddMass,
+    AddSupport,
+    Change,
+    MoveMass,
+    MoveSupport,
+    SetMass,
+    StiffenSupport,
+)
+from fieldkit.quantity import show
+from fieldkit.span.layout import Span
+
+
+def summary(change: Change, span: Span, units: str) -> str:
+    """What to do, where, how stiff or heavy."""
+    if isinstance(change, AddSupport):
+        stiffness = _stiffness(change, units)
+        return f"add a support at {_length(change.at_m, units)}: {stiffness}"
+    if isinstance(change, StiffenSupport):
+        stiffness = _stiffness(change, units)
+        return f"stiffen the {_support(span, change.index, units)} to {stiffness} in all"
+    if isinstance(change, MoveSupport):
+        where = _length(change.to_m, units)
+        return f"move the {_support(span, change.index, units)} to {where}"
+    if isinstance(change, AddMass):
+        mass = show(change.mass_kg, "mass", units)
+        return f"clamp {mass} on at {_length(change.at_m, units)}"
+    if isinstance(change, SetMass):
+        return _set_mass(change, span, units)
+    if isinstance(change, MoveMass):
+        old = span.masses[change.index]
+        return (
+            f"move the {old.name} from {_length(old.at_m, units)} to {_length(change.to_m, units)}"
+        )
+    raise TypeError(f"no wording for {type(change).__name__}")
+
+
+def _set_mass(change: SetMass, span: Span, units: str) -> str:
+    old = span.masses[change.index]
+    was = show(old.mass_kg, "mass", units)
+    if change.mass_kg == 0:
+        return f"take out the {old.name} ({was})"
+    word = "lighten" if change.mass_kg < old.mass_kg else "weight"
+    return f"{word} the {old.name} from {was} to {show(change.mass_kg, 'mass', units)}"
+
+
+def _length(at_m: float, units: str) -> str:
+    return show(at_m, "length", units, 3)
+
+
+def _support(span: Span, index: int, units: str) -> str:
+    support = span.supports[index]
+    return f"{support.kind} at {_length(support.at_m, units)}"
+
+
+def _stiffness(change: AddSupport | StiffenSupport, units: str) -> str:
+    stated = [
+        (name, getattr(change, f"{name}_n_per_m", None))
+        for name in ("vertical", "lateral", "axial")
+    ]
+    by_value: dict[str, list[str]] = {}
+    for name, value in stated:
+        if value is not None:
+            by_value.setdefault(show(value, "stiffness", units, 2), []).append(name)
+    parts = [f"{value} {' and '.join(names)}" for value, names in by_value.items()]
+    if change.rotation_n_m_per_rad is not None:
+        turning = show(change.rotation_n_m_per_rad, "rotational_stiffness", units, 2)
+        parts.append(f"{turning} against turning")
+    return ", ".join(parts)
