@@ -26,7 +26,8 @@ from fieldkit.signal.spectrum import Spectrum, tap_spectrum
 from fieldkit.signal.taps import TapSearch, cut, find_taps
 from fieldkit.span.handbook import HandbookEstimate, estimate
 from fieldkit.span.layout import Span, State
-from fieldkit.span.modes import Mode, span_modes
+from fieldkit.span.modes import Mode, free_directions, span_modes
+from fieldkit.span.static import WeightAnswer, weight_answer
 
 LEAST_HZ = 2.0
 NYQUIST_SHARE = 0.4
@@ -83,6 +84,8 @@ class StepRefusal:
     step: str
     """``tap``, ``running``, ``span``, ``match`` or ``detune``."""
     reason: str
+    bad_input: bool = False
+    """Whether the input is at fault, not what it can answer."""
 
 
 @dataclass(frozen=True)
@@ -117,7 +120,9 @@ def run(job: Job, progress: Progress | None = None) -> Workup:
     running = steps.attempt("running", 0.35, 0.45, lambda p: running_readings(job, p), ())
     states = steps.attempt("span", 0.45, 0.5, lambda p: state_modes(job, p), ())
     matched = steps.attempt("match", 0.5, 0.75, lambda p: matching(job, evidence, states, p), None)
-    detuned = steps.attempt("detune", 0.75, 1.0, lambda p: detuning(job, matched, p), None)
+    detuned = steps.attempt(
+        "detune", 0.75, 1.0, lambda p: detuning(job, evidence, matched, p), None
+    )
     return Workup(
         job=job,
         taps=taps,
@@ -314,8 +319,17 @@ def matching(
     )
 
 
-def detuning(job: Job, matched: Match | None, progress: Progress) -> Detuning:
-    """Ranked changes; InputError where the job names no excitation."""
+def detuning(job: Job, evidence: Evidence, matched: Match | None, progress: Progress) -> Detuning:
+    """Ranked changes; InputError where the job names no excitation.
+
+    Without any measured mode the ranking rests on the prior and says so; a measurement that the
+    model cannot explain is a Refusal, since no promise can be built on either of them.
+    """
+    if matched is None and evidence.modes:
+        raise Refusal(
+            "no change can be promised while the model does not explain the measurement",
+            "settle the match first",
+        )
     return detune(
         job.span,
         job.tapped,
@@ -347,7 +361,7 @@ class _Steps:
         try:
             return work(Progress(within, self.progress.stop))
         except (Refusal, InputError) as error:
-            self.refused.append(StepRefusal(step, str(error)))
+            self.refused.append(StepRefusal(step, str(error), isinstance(error, InputError)))
             return otherwise
 
 
@@ -383,3 +397,19 @@ def excitation_of(
             if low * (1 - tolerance) <= frequency_hz <= high * (1 + tolerance):
                 return name
     return None
+
+
+def weights(job: Job) -> dict[str, WeightAnswer]:
+    """Sag and support loads by state."""
+    return {state.name: weight_answer(job.span, state) for state in (job.tapped, job.running)}
+
+
+def span_notes(job: Job) -> tuple[str, ...]:
+    """What the span model leaves open, in words for the user."""
+    free = free_directions(job.span)
+    if not free:
+        return ()
+    return (
+        f"no support holds the span along {' and '.join(free)}: it is free to move that way, and "
+        "only the modes that remain are shown",
+    )

@@ -1,0 +1,1 @@
+"""What a finished workup says: documents for programs, advice for people."""

@@ -1,0 +1,241 @@
+"""The commands; ``fieldkit JOB`` opens the app."""
+
+from __future__ import annotations
+
+import sys
+from pathlib import Path
+from typing import Annotated, Any
+
+import typer
+from typer.core import TyperGroup
+
+from fieldkit import __version__
+from fieldkit.cli import output
+
+OPEN = "open"
+
+JobFile = Annotated[Path, typer.Argument(metavar="JOB", help="Job file (TOML).")]
+AsJson = Annotated[bool, typer.Option("--json", help="Print one JSON document.")]
+Channel = Annotated[int, typer.Option(help="Channel to read, counted from 1.", min=1)]
+Rate = Annotated[
+    float | None,
+    typer.Option("--rate", help="Sampling rate in Hz of text files without a time column."),
+]
+
+
+class _OpensJobs(TyperGroup):
+    """A first word that is no command is a job file to open."""
+
+    def parse_args(self, ctx: Any, args: list[str]) -> list[str]:
+        """Put ``open`` before a job file, or where nothing is said at all."""
+        asked = {"--help", "--version", "--install-completion", "--show-completion"}
+        if not args or (args[0] not in self.commands and args[0] not in asked):
+            args = [OPEN, *args]
+        return super().parse_args(ctx, args)
+
+
+app = typer.Typer(
+    cls=_OpensJobs,
+    add_completion=True,
+    rich_markup_mode=None,
+    pretty_exceptions_enable=False,
+    help="Find why a pipe shakes, and the smallest change that cures it.",
+    epilog="Example: fieldkit samples/glycol-booster/job.toml",
+)
+
+
+def run() -> None:
+    """Entry point of the program."""
+    app(prog_name="fieldkit")
+
+
+def _version(asked: bool) -> None:
+    if asked:
+        sys.stdout.write(f"fieldkit {__version__}\n")
+        raise typer.Exit
+
+
+@app.callback()
+def main(
+    version: Annotated[
+        bool, typer.Option("--version", callback=_version, is_eager=True, help="Print the version.")
+    ] = False,
+) -> None:
+    """Find why a pipe shakes, and the smallest change that cures it."""
+
+
+@app.command(OPEN, epilog="Example: fieldkit samples/glycol-booster/job.toml")
+def open_(
+    job: Annotated[
+        Path | None, typer.Argument(metavar="[JOB]", help="Job file; none opens the start screen.")
+    ] = None,
+) -> None:
+    """Open the app on a job; print its advice where the output is no terminal."""
+    if not sys.stdout.isatty() and job is not None:
+        _print_advice(job)
+        return
+    with output.answering(as_json=False):
+        if not sys.stdout.isatty():
+            output.reject(
+                "the app needs a terminal; name a job file to get its advice as text", as_json=False
+            )
+        from fieldkit.ui.app import FieldkitApp
+
+        FieldkitApp(job).run()
+
+
+@app.command(epilog="Example: fieldkit sample my-samples")
+def sample(
+    folder: Annotated[Path, typer.Argument(metavar="DIR", help="Folder to copy them into.")],
+    as_json: AsJson = False,
+) -> None:
+    """Copy the sample jobs with their recordings into a folder."""
+    with output.answering(as_json=as_json):
+        from fieldkit.cli.samples import copy_samples
+
+        jobs = copy_samples(folder)
+        lines = ["Copied. Open one with", *(f"  fieldkit {job}" for job in jobs)]
+        output.answer({"jobs": [str(job) for job in jobs]}, lines, as_json=as_json)
+
+
+@app.command(epilog="Example: fieldkit peaks tap-1.flac tap-2.flac --json")
+def peaks(
+    files: Annotated[
+        list[Path], typer.Argument(metavar="FILE", help="Tap recordings, or one job file.")
+    ],
+    as_json: AsJson = False,
+    channel: Channel = 1,
+    rate: Rate = None,
+    up_to: Annotated[float, typer.Option(help="Highest frequency looked at, Hz.", min=5.0)] = 200.0,
+) -> None:
+    """Find the taps in recordings, and natural frequencies and damping from them."""
+    with output.answering(as_json=as_json):
+        from fieldkit import workup
+        from fieldkit.sheet import documents, tables
+
+        progress = output.progress()
+        job = _job_among(files)
+        entries = (
+            job.recordings_of("tap")
+            if job
+            else [workup.entry_for(path, "tap", channel, rate) for path in files]
+        )
+        readings = workup.tap_readings(entries, progress)
+        evidence = workup.evidence_from(readings, job, progress, up_to)
+        output.clear_progress()
+        output.answer(
+            documents.peaks(readings, evidence), tables.peaks(readings, evidence), as_json=as_json
+        )
+
+
+@app.command(epilog="Example: fieldkit running samples/glycol-booster/job.toml")
+def running(
+    files: Annotated[
+        list[Path], typer.Argument(metavar="FILE", help="Running recordings, or one job file.")
+    ],
+    as_json: AsJson = False,
+    channel: Channel = 1,
+    rate: Rate = None,
+) -> None:
+    """Read the lines and the overall level of running recordings."""
+    with output.answering(as_json=as_json):
+        from fieldkit import workup
+        from fieldkit.sheet import documents, tables
+
+        job = _job_among(files)
+        entries = (
+            job.recordings_of("running")
+            if job
+            else [workup.entry_for(path, "running", channel, rate) for path in files]
+        )
+        readings = tuple(workup.read_running_entry(entry) for entry in entries)
+        output.answer(
+            documents.running(readings, job), tables.running(readings, job), as_json=as_json
+        )
+
+
+@app.command(epilog="Example: fieldkit span samples/riser/job.toml")
+def span(job_file: JobFile, as_json: AsJson = False) -> None:
+    """Compute the modes of the span and compare them with a handbook estimate."""
+    with output.answering(as_json=as_json):
+        from fieldkit import workup
+        from fieldkit.sheet import documents, tables
+
+        progress = output.progress()
+        job = _load(job_file)
+        states = workup.state_modes(job, progress)
+        weights = workup.weights(job)
+        notes = workup.span_notes(job)
+        output.clear_progress()
+        output.answer(
+            documents.span(states, weights, notes),
+            tables.span(job, states, weights, notes),
+            as_json=as_json,
+        )
+
+
+@app.command(epilog="Example: fieldkit match samples/glycol-booster/job.toml")
+def match(job_file: JobFile, as_json: AsJson = False) -> None:
+    """Fit the unknowns of the span to the tap."""
+    with output.answering(as_json=as_json):
+        from fieldkit import workup
+        from fieldkit.sheet import documents, tables
+
+        progress = output.progress()
+        job = _load(job_file)
+        _, evidence = workup.gather(job, progress)
+        states = workup.state_modes(job, progress)
+        found = workup.matching(job, evidence, states, progress)
+        output.clear_progress()
+        output.answer(documents.match(found), tables.match(found, job.units), as_json=as_json)
+
+
+@app.command(epilog="Example: fieldkit detune samples/glycol-booster/job.toml --json")
+def detune(job_file: JobFile, as_json: AsJson = False) -> None:
+    """Rank changes that move every mode out of every excitation band."""
+    with output.answering(as_json=as_json):
+        from fieldkit import workup
+        from fieldkit.sheet import documents, tables
+
+        work = workup.run(_load(job_file), output.progress())
+        output.clear_progress()
+        _stop_where_refused(work, as_json=as_json)
+        assert work.detuning is not None
+        extra = [*work.warnings, *(work.match.warnings if work.match else ())]
+        lines = [*tables.detune(work.detuning, work.job.units), *tables.warnings(extra)]
+        output.answer(documents.detune(work.detuning, extra), lines, as_json=as_json)
+
+
+def _print_advice(job_file: Path) -> None:
+    with output.answering(as_json=False):
+        from fieldkit import workup
+        from fieldkit.sheet import advice
+
+        work = workup.run(_load(job_file), output.progress())
+        output.clear_progress()
+        output.answer({}, advice.lines(work), as_json=False)
+        _stop_where_refused(work, as_json=False)
+
+
+def _stop_where_refused(work: Any, *, as_json: bool) -> None:
+    """Bad input anywhere on the way to the answer, or no answer, ends with its sentence."""
+    blocking = [r for r in work.refused if r.step in ("tap", "match", "detune")]
+    bad = [r.reason for r in blocking if r.bad_input]
+    if bad:
+        output.reject(bad[0], as_json=as_json)
+    if work.detuning is None:
+        reasons = [r.reason for r in blocking] or ["nothing to answer with"]
+        output.refuse("; ".join(reasons), as_json=as_json)
+
+
+def _load(path: Path) -> Any:
+    from fieldkit.job.schema import load_job
+
+    return load_job(path)
+
+
+def _job_among(files: list[Path]) -> Any:
+    """The job when the one file named is a job file, else None."""
+    if len(files) == 1 and files[0].suffix.lower() == ".toml":
+        return _load(files[0])
+    return None

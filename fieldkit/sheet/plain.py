@@ -1,0 +1,45 @@
+"""Plain text for terminals and files: columns that line up, nothing that steers a terminal."""
+
+from __future__ import annotations
+
+import textwrap
+import unicodedata
+from collections.abc import Sequence
+
+WIDTH = 78
+UNSAFE = ("Cc", "Cf", "Cs", "Co", "Zl", "Zp")
+
+
+def clean(text: str) -> str:
+    """Text from a file with control and formatting characters made visible as ``\\u..``."""
+    return "".join(
+        character if unicodedata.category(character) not in UNSAFE else f"\\u{ord(character):04x}"
+        for character in text
+    )
+
+
+def table(head: Sequence[str], rows: Sequence[Sequence[str]], indent: int = 2) -> list[str]:
+    """Columns as wide as their widest cell; the first column to the left, numbers to the right."""
+    cells = [list(head), *([clean(cell) for cell in row] for row in rows)]
+    widths = [max(len(row[i]) for row in cells) for i in range(len(head))]
+    lines = []
+    for row in cells:
+        parts = [
+            cell.rjust(width) if _numeric(cells, i) else cell.ljust(width)
+            for i, (cell, width) in enumerate(zip(row, widths, strict=True))
+        ]
+        lines.append((" " * indent + "  ".join(parts)).rstrip())
+    return lines
+
+
+def paragraph(text: str, indent: int = 2, mark: str = "") -> list[str]:
+    """One paragraph wrapped to the page; ``mark`` such as ``- `` hangs before it."""
+    blank = " " * (indent + len(mark))
+    return textwrap.wrap(
+        clean(text), WIDTH, initial_indent=" " * indent + mark, subsequent_indent=blank
+    )
+
+
+def _numeric(cells: Sequence[Sequence[str]], column: int) -> bool:
+    body = [row[column] for row in cells[1:] if row[column]]
+    return bool(body) and all(cell[0] in "0123456789+-±<>[" or cell == "rigid" for cell in body)
