@@ -81,6 +81,7 @@ DIMENSIONS: dict[str, Dimension] = {
     "density": _positive("a density", "kg/m^3", "'998 kg/m^3' or '62.4 lb/ft^3'", 3e4),
     "acceleration": Dimension("an acceleration", ("m/s^2",), "'9.81 m/s^2' or '1 g'"),
     "velocity": Dimension("a velocity", ("m/s",), "'18 mm/s' or '0.7 in/s'"),
+    "sound_pressure": Dimension("a sound pressure", ("Pa",), "'20 Pa' or '2 mbar'"),
     "voltage": Dimension("a voltage", ("V",), "'1.4 V' or '200 mV'"),
     "acceleration_sensitivity": _sensitivity(
         "a sensitivity to acceleration", "'100 mV/g' or '10.2 mV/(m/s^2)'",

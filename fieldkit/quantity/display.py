@@ -29,6 +29,7 @@ _UNITS: dict[str, tuple[_Steps, _Steps]] = {
     "density": (((0.0, "kg/m^3"),), ((0.0, "lb/ft^3"),)),
     "acceleration": (((0.0, "m/s^2"),), ((0.0, "g"),)),
     "velocity": (((1.0, "m/s"), (0.0, "mm/s")), ((0.0, "in/s"),)),
+    "sound_pressure": (((1.0, "Pa"), (0.0, "mPa")),) * 2,
     "voltage": (((0.5, "V"), (0.0, "mV")),) * 2,
     "acceleration_sensitivity": (((0.0, "mV/g"),),) * 2,
     "velocity_sensitivity": (((0.0, "mV/(mm/s)"),), ((0.0, "V/(in/s)"),)),
@@ -40,6 +41,7 @@ _UNITS: dict[str, tuple[_Steps, _Steps]] = {
 _UNITS["offset"] = _UNITS["length"]
 _UNITS["sensitivity"] = _UNITS["acceleration_sensitivity"]
 _DIGITS = {"length": 4, "offset": 4, "frequency": 4, "speed": 4, "temperature": 4, "modulus": 4}
+_ZERO_AS = {"pressure": 1e5}
 _STIFF = ("stiffness", "rotational_stiffness")
 
 
@@ -66,9 +68,9 @@ def _in_unit(value_si: float, unit: str, dimension: str) -> float:
 
 
 def _unit_for(value_si: float, dimension: str, units: str, places: int) -> str:
-    """The unit whose step the rounded magnitude reaches; zero is shown in the largest."""
+    """The unit whose step the rounded magnitude reaches; zero is shown as 1 SI would be."""
     steps = _UNITS[dimension][units == "US"]
-    size = abs(float(f"{value_si:.{places - 1}e}")) or math.inf
+    size = abs(float(f"{value_si:.{places - 1}e}")) or _ZERO_AS.get(dimension, 1.0)
     return next(unit for least, unit in steps if size >= least * (1 - 1e-9))
 
 

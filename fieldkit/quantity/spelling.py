@@ -9,8 +9,9 @@ from fieldkit.errors import InputError
 
 _OWN_SPELLING = (
     "m", "mm", "cm", "km", "um", "s", "ms", "kg", "g", "mg", "N", "mN", "kN", "MN", "GN", "Pa",
-    "hPa", "kPa", "MPa", "GPa", "bar", "mbar", "V", "mV", "uV", "kV", "Hz", "kHz", "MHz", "lbf",
-    "kgf", "kip", "psi", "ft", "in", "mil", "rad", "deg", "K", "tonne", "inch", "foot", "uin",
+    "mPa", "hPa", "kPa", "MPa", "GPa", "bar", "mbar", "V", "mV", "uV", "kV", "Hz", "kHz", "MHz",
+    "lbf", "kgf", "kip", "psi", "ft", "in", "mil", "rad", "deg", "K", "tonne", "inch", "foot",
+    "uin",
 )  # fmt: skip
 _SPELLINGS = {name: name for name in _OWN_SPELLING} | {
     "%": "percent",

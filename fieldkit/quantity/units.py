@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from functools import cache
 from typing import TYPE_CHECKING, Any
 
@@ -71,23 +72,26 @@ def to_si(unit: str, dimension: str) -> tuple[float, float]:
 
     Raises InputError when the unit is unknown or of another dimension.
     """
-    from pint.errors import DimensionalityError
-
     written = expression(unit, dimension)
     for si in DIMENSIONS[dimension].si:
-        try:
-            one = _in_base(written, si, 1.0)
-        except DimensionalityError:
+        one = _in_base(written, si, 1.0)
+        if one is None:
             continue
-        offset = _in_base(written, si, 0.0) if written in _WITH_OFFSET else 0.0
+        offset = _in_base(written, si, 0.0) or 0.0 if written in _WITH_OFFSET else 0.0
         return _tidied(one - offset), _tidied(offset)
     raise InputError(_mismatch(unit, dimension))
 
 
-def _in_base(written: str, si: str, number: float) -> float:
-    unit, base = _read(written), _read(expression(si, ""))
-    quantity = type(unit)(number * unit.magnitude, unit.units)
-    return float(quantity.to(base.units).magnitude / base.magnitude)
+def _in_base(written: str, si: str, number: float) -> float | None:
+    """``number`` of a unit in SI; None where the unit is of another dimension."""
+    from pint.errors import PintError
+
+    try:
+        unit, base = _read(written), _read(expression(si, ""))
+        quantity = type(unit)(number * unit.magnitude, unit.units)
+        return float(quantity.to(base.units).magnitude / base.magnitude)
+    except (PintError, ArithmeticError):
+        return None
 
 
 def _read(written: str) -> Quantity[Any]:
@@ -97,8 +101,9 @@ def _read(written: str) -> Quantity[Any]:
 
 
 def _tidied(factor: float) -> float:
-    """Without the rounding of the chain of conversions: 0.0254, not 0.025399999999999999."""
-    return float(f"{factor:.15g}")
+    """Without the rounding of a chain of conversions: 0.0254, not 0.025399999999999999."""
+    short = float(f"{factor:.12g}")
+    return short if math.isclose(short, factor, rel_tol=1e-15) else factor
 
 
 def _mismatch(unit: str, dimension: str) -> str:
@@ -110,12 +115,8 @@ def _mismatch(unit: str, dimension: str) -> str:
 
 
 def _is_unit_of(unit: str, dimension: str) -> bool:
-    from pint.errors import DimensionalityError
-
-    for si in DIMENSIONS[dimension].si:
-        try:
-            _in_base(expression(unit, dimension), si, 1.0)
-        except (InputError, DimensionalityError):
-            continue
-        return True
-    return False
+    try:
+        written = expression(unit, dimension)
+    except InputError:
+        return False
+    return any(_in_base(written, si, 1.0) is not None for si in DIMENSIONS[dimension].si)

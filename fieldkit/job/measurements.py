@@ -1,0 +1,118 @@
+"""What was measured: recordings with their calibration, and peaks typed in by hand."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from fieldkit.errors import InputError
+from fieldkit.job.document import RecordingEntry
+from fieldkit.job.file_model import MeasuredTable, RecordingTable
+from fieldkit.job.readers import bad
+from fieldkit.quantity import parse, quoted, show
+from fieldkit.signal.modes import MeasuredMode
+from fieldkit.span.layout import END_TOLERANCE_M, Span
+
+READING_DOUBT = 0.01
+"""Standard deviation of a frequency read off a screen, relative, where none is stated
+(common practice, no source)."""
+SCALED = {
+    "acceleration": "acceleration",
+    "velocity": "velocity",
+    "displacement": "length",
+    "pressure": "sound_pressure",
+}
+TEXT_FILES = (".csv", ".tsv", ".txt", ".dat", ".asc")
+
+
+def recording_entry(
+    table: RecordingTable, index: int, span: Span, path: Path | None
+) -> RecordingEntry:
+    """An entry of the file; raises InputError at its key."""
+    where = f"recording[{index}]"
+    if not table.file.isprintable():
+        raise bad(f"{where}.file", "the file name holds control characters", "rename the file")
+    _check_at(table.at, span, where)
+    folder = path.parent if path is not None else Path.cwd()
+    return RecordingEntry(
+        path=folder / table.file,
+        kind=table.kind,
+        state=table.state or ("tapped" if table.kind == "tap" else "running"),
+        channel=table.channel,
+        quantity=table.quantity,
+        scale=_scale(table, where),
+        direction=table.direction,
+        at_m=table.at,
+        rate_hz=table.rate,
+    )
+
+
+def _scale(table: RecordingTable, where: str) -> float | None:
+    """SI units per unit of sample; None where the file does not say.
+
+    A sensitivity alone calibrates a text file, taken to be in volts; a sound file needs the
+    voltage of its full scale as well.
+    """
+    if table.scale is not None and (table.sensitivity is not None or table.full_scale is not None):
+        what = "it has both a scale and a sensitivity"
+        raise bad(f"{where}.scale", what, "keep the one that is written on the sensor")
+    if table.scale is not None:
+        return _positive(_without_per_unit(table.scale), SCALED[table.quantity], f"{where}.scale")
+    if table.sensitivity is None and table.full_scale is None:
+        return None
+    if table.sensitivity is None:
+        what = "it has full_scale without sensitivity"
+        raise bad(f"{where}.full_scale", what, 'write sensitivity = "100 mV/g" beside it')
+    sensitivity = _positive(
+        table.sensitivity, f"{table.quantity}_sensitivity", f"{where}.sensitivity"
+    )
+    if table.full_scale is None:
+        in_volts = table.file.lower().endswith(TEXT_FILES)
+        return 1 / sensitivity if in_volts else None
+    return _positive(table.full_scale, "voltage", f"{where}.full_scale") / sensitivity
+
+
+def _without_per_unit(scale: object) -> object:
+    if not isinstance(scale, str):
+        return scale
+    spoken = " ".join(scale.split())
+    return spoken.removesuffix("/unit").removesuffix("per unit").rstrip()
+
+
+def _positive(value: object, dimension: str, where: str) -> float:
+    try:
+        si = parse(value, dimension)
+    except InputError as error:
+        raise error.at(field=where) from None
+    if si <= 0:
+        raise bad(
+            where,
+            f"{quoted(value)} is not above zero",
+            "write what one unit of the file stands for",
+        )
+    return si
+
+
+def measured_mode(table: MeasuredTable, index: int, span: Span) -> MeasuredMode:
+    """A typed-in peak; raises InputError at its key."""
+    where = f"measured[{index}]"
+    _check_at(table.at, span, where)
+    sd = READING_DOUBT * table.frequency if table.sd is None else table.sd
+    if sd >= table.frequency:
+        what = "this standard deviation is as large as the frequency"
+        raise bad(f"{where}.sd", what, 'write how far it may be off, such as "0.1 Hz"')
+    return MeasuredMode(
+        frequency_hz=table.frequency,
+        frequency_sd_hz=sd,
+        damping_ratio=table.damping,
+        damping_sd=None,
+        direction=table.direction,
+        state=table.state,
+        at_m=table.at,
+    )
+
+
+def _check_at(at_m: float | None, span: Span, where: str) -> None:
+    if at_m is not None and at_m > span.length_m + END_TOLERANCE_M:
+        end = show(span.length_m, "length")
+        what = f"{show(at_m, 'length')} lies beyond the end of the span at {end}"
+        raise bad(f"{where}.at", what, "correct the station, or the length of the legs")
