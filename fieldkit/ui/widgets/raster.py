@@ -1,0 +1,267 @@
+"""Draw with braille dots, patterns and text on a grid of terminal cells.
+
+A cell holds 2 x 4 dots. Dot coordinates count right and down from the top left corner. The
+finished picture leaves as rows of runs: stretches of one row that share their ink and ground, the
+names under which a widget looks up colours.
+"""
+
+from __future__ import annotations
+
+from itertools import pairwise
+from typing import NamedTuple
+
+import numpy as np
+from numpy.typing import ArrayLike, NDArray
+from rich.cells import cell_len
+
+from fieldkit.ui.widgets.glyphs import PLAIN_BRAILLE, plain_code
+
+BRAILLE = 0x2800
+DOT_BITS = np.array([[0x01, 0x08], [0x02, 0x10], [0x04, 0x20], [0x40, 0x80]], dtype=np.uint8)
+SPACE = ord(" ")
+WIDE_TAIL = 0xFFFF
+"""Stands in the second cell of a double-width character; a code point no text can hold."""
+
+Floats = NDArray[np.float64]
+
+
+class Run(NamedTuple):
+    """Neighbouring cells of one row that look alike."""
+
+    text: str
+    ink: str
+    ground: str
+
+
+class Canvas:
+    """A picture of ``columns`` x ``rows`` cells; whatever falls outside is left out.
+
+    Text stands over dots, dots over patterns. Where dots share a cell the later ink wins.
+    """
+
+    def __init__(self, columns: int, rows: int) -> None:
+        self.columns, self.rows = max(0, columns), max(0, rows)
+        shape = (self.rows, self.columns)
+        self.dots = np.zeros((4 * self.rows, 2 * self.columns), dtype=bool)
+        self._styles = [""]
+        self._dot_ink = np.zeros(shape, dtype=np.uint8)
+        self._text = np.zeros(shape, dtype=np.uint32)
+        self._text_ink = np.zeros(shape, dtype=np.uint8)
+        self._pattern = np.full(shape, SPACE, dtype=np.uint32)
+        self._pattern_ink = np.zeros(shape, dtype=np.uint8)
+        self._ground = np.zeros(shape, dtype=np.uint8)
+
+    @property
+    def dot_columns(self) -> int:
+        """Width in dots."""
+        return 2 * self.columns
+
+    @property
+    def dot_rows(self) -> int:
+        """Height in dots."""
+        return 4 * self.rows
+
+    def points(self, x: ArrayLike, y: ArrayLike, ink: str) -> None:
+        """Set single dots at the dots nearest to ``x``, ``y``; NaN is left out."""
+        across, down = np.asarray(x, dtype=float), np.asarray(y, dtype=float)
+        with np.errstate(invalid="ignore"):
+            inside = (across > -0.5) & (across < self.dot_columns - 0.5)
+            inside &= (down > -0.5) & (down < self.dot_rows - 0.5)
+        columns = np.rint(across[inside]).astype(int)
+        rows = np.rint(down[inside]).astype(int)
+        self.dots[rows, columns] = True
+        self._dot_ink[rows // 4, columns // 2] = self._style(ink)
+
+    def polyline(self, x: ArrayLike, y: ArrayLike, ink: str, *, dash: int = 0) -> None:
+        """Join points by straight lines; NaN breaks the line.
+
+        ``dash`` draws that many dots, then leaves out as many; 0 draws a full line.
+        """
+        starts, ends = clipped_segments(
+            np.column_stack([np.asarray(x, dtype=float), np.asarray(y, dtype=float)]),
+            self.dot_columns,
+            self.dot_rows,
+        )
+        across, down = _steps_along(starts, ends)
+        if dash:
+            drawn = np.arange(len(across)) // dash % 2 == 0
+            across, down = across[drawn], down[drawn]
+        self.points(across, down, ink)
+
+    def columns_filled(
+        self, first_dot_column: int, top: Floats, bottom: Floats, ink: str, *, dash: int = 0
+    ) -> None:
+        """Fill one dot column after another from ``top`` to ``bottom`` inclusive; NaN fills none.
+
+        ``dash`` leaves out every other group of that many columns.
+        """
+        count = max(0, min(len(top), self.dot_columns - first_dot_column))
+        if count == 0 or self.rows == 0:
+            return
+        rows = np.arange(self.dot_rows)[:, None]
+        with np.errstate(invalid="ignore"):
+            filled = (rows >= np.rint(top[:count])) & (rows <= np.rint(bottom[:count]))
+        if dash:
+            filled &= np.arange(count) // dash % 2 == 0
+        self.dots[:, first_dot_column : first_dot_column + count] |= filled
+        down, across = np.nonzero(filled)
+        self._dot_ink[down // 4, (across + first_dot_column) // 2] = self._style(ink)
+
+    def write(self, row: int, column: int, text: str, ink: str) -> int:
+        """Write text over the picture, cut at its edges; returns the column after its last cell.
+
+        Control and zero-width characters are left out, so no text can move the cursor.
+        """
+        style = self._style(ink)
+        for character in text:
+            width = cell_len(character) if character.isprintable() else 0
+            if width and 0 <= row < self.rows and 0 <= column <= self.columns - width:
+                self._text[row, column] = ord(character)
+                self._text[row, column + 1 : column + width] = WIDE_TAIL
+                self._text_ink[row, column : column + width] = style
+            column += width
+        return column
+
+    def pattern(
+        self, rows: slice, columns: slice, glyph: str, ink: str, ground: str | None = None
+    ) -> None:
+        """Fill a rectangle of cells with a glyph that shows wherever nothing else is drawn."""
+        self._pattern[rows, columns] = ord(glyph)
+        self._pattern_ink[rows, columns] = self._style(ink)
+        if ground is not None:
+            self._ground[rows, columns] = self._style(ground)
+
+    def ground(self, rows: slice, columns: slice, ground: str) -> None:
+        """Colour the ground of a rectangle of cells."""
+        self._ground[rows, columns] = self._style(ground)
+
+    def free(self, row: int, first: int, end: int) -> bool:
+        """Whether the cells of a row from ``first`` up to ``end`` lie inside and bear no text."""
+        if not 0 <= row < self.rows or first < 0 or end > self.columns:
+            return False
+        return not self._text[row, first:end].any()
+
+    def blank(self, row: int, first: int, end: int) -> bool:
+        """Whether these cells lie inside and bear neither text nor dots."""
+        if not self.free(row, first, end):
+            return False
+        return not self.dots[4 * row : 4 * row + 4, 2 * first : 2 * end].any()
+
+    def runs(self, *, plain: bool = False) -> list[list[Run]]:
+        """The picture, top row first; ``plain`` keeps to ASCII."""
+        if not self.rows or not self.columns:
+            return [[] for _ in range(self.rows)]
+        codes, ink = self._composed(plain)
+        look = ink.astype(np.uint16) * 256 + self._ground
+        lines = np.ascontiguousarray(codes).view(f"<U{self.columns}")[:, 0]
+        return [self._runs_of(str(line), look[row]) for row, line in enumerate(lines)]
+
+    def lines(self, *, plain: bool = False) -> list[str]:
+        """The picture as text alone."""
+        return ["".join(run.text for run in row) for row in self.runs(plain=plain)]
+
+    def _composed(self, plain: bool) -> tuple[NDArray[np.uint32], NDArray[np.uint8]]:
+        cells = self.dots.reshape(self.rows, 4, self.columns, 2)
+        bits = np.einsum("rxcy,xy->rc", cells, DOT_BITS, dtype=np.uint8, casting="unsafe")
+        dotted = bits > 0
+        drawn = PLAIN_BRAILLE[bits] if plain else bits.astype(np.uint32) + BRAILLE
+        codes = np.where(dotted, drawn, self._pattern)
+        ink = np.where(dotted, self._dot_ink, self._pattern_ink)
+        written = self._text > 0
+        codes = np.where(written, self._text, codes).astype("<u4")
+        ink = np.where(written, self._text_ink, ink)
+        if plain:
+            codes = _plain(codes)
+        return codes, np.where(codes == SPACE, 0, ink)
+
+    def _runs_of(self, line: str, look: NDArray[np.uint16]) -> list[Run]:
+        cuts = [0, *(np.flatnonzero(np.diff(look)) + 1).tolist(), len(line)]
+        tail = chr(WIDE_TAIL)
+        wide = tail in line
+        found = []
+        for start, end in pairwise(cuts):
+            text = line[start:end]
+            ink, ground = divmod(int(look[start]), 256)
+            found.append(
+                Run(
+                    text.replace(tail, "") if wide else text,
+                    self._styles[ink],
+                    self._styles[ground],
+                )
+            )
+        return found
+
+    def _style(self, name: str) -> int:
+        if name not in self._styles:
+            self._styles.append(name)
+        return self._styles.index(name)
+
+
+def envelope(x: Floats, y: Floats, edges: Floats) -> tuple[Floats, Floats]:
+    """Lowest and highest value of a curve between neighbouring ``edges``.
+
+    The curve joins the points (``x`` rising, ``y``) by straight lines, so the result is exact
+    whether a column holds a thousand points or none. NaN in ``y`` breaks the curve; columns
+    without any part of it are NaN.
+
+    Returns:
+        ``low``, ``high``: (len(edges) - 1,) each.
+    """
+    columns = len(edges) - 1
+    low = np.full(max(columns, 0), np.nan)
+    high = low.copy()
+    if columns < 1 or len(x) == 0:
+        return low, high
+    at_edges = np.interp(edges, x, y, left=np.nan, right=np.nan)
+    low = np.fmin(at_edges[:-1], at_edges[1:])
+    high = np.fmax(at_edges[:-1], at_edges[1:])
+    first = np.searchsorted(x, edges)
+    held = np.flatnonzero(np.diff(first) > 0)
+    if len(held):
+        inside = y[: first[-1]]
+        low[held] = np.fmin(low[held], np.fmin.reduceat(inside, first[held]))
+        high[held] = np.fmax(high[held], np.fmax.reduceat(inside, first[held]))
+    return low, high
+
+
+def clipped_segments(points: Floats, width: int, height: int) -> tuple[Floats, Floats]:
+    """Segments of a polyline (n, 2) cut to the rectangle of dots (Liang and Barsky 1984).
+
+    Returns:
+        ``starts``, ``ends``: (k, 2) each; segments outside or with NaN are left out.
+    """
+    starts, ends = points[:-1], points[1:]
+    whole = np.isfinite(starts).all(axis=1) & np.isfinite(ends).all(axis=1)
+    starts, ends = starts[whole], ends[whole]
+    along = ends - starts
+    low, high = np.full(2, -0.499), np.array([width, height]) - 0.501
+    with np.errstate(divide="ignore", invalid="ignore"):
+        at_low, at_high = (low - starts) / along, (high - starts) / along
+    still = along == 0
+    inside = (starts >= low) & (starts <= high)
+    enter = np.where(still, np.where(inside, 0.0, 2.0), np.minimum(at_low, at_high))
+    leave = np.where(still, np.where(inside, 1.0, -1.0), np.maximum(at_low, at_high))
+    first = np.maximum(0.0, enter.max(axis=1, initial=0.0))
+    last = np.minimum(1.0, leave.min(axis=1, initial=1.0))
+    seen = first <= last
+    first, last = first[seen, None], last[seen, None]
+    return starts[seen] + first * along[seen], starts[seen] + last * along[seen]
+
+
+def _steps_along(starts: Floats, ends: Floats) -> tuple[Floats, Floats]:
+    """Dots along every segment, one per dot of its longer side."""
+    along = ends - starts
+    steps = np.ceil(np.abs(along).max(axis=1, initial=0.0)).astype(int) + 1
+    owner = np.repeat(np.arange(len(starts)), steps)
+    first = np.repeat(np.cumsum(steps) - steps, steps)
+    share = (np.arange(len(owner)) - first) / np.maximum(1, steps[owner] - 1)
+    dots = starts[owner] + share[:, None] * along[owner]
+    return dots[:, 0], dots[:, 1]
+
+
+def _plain(codes: NDArray[np.uint32]) -> NDArray[np.uint32]:
+    strange = np.unique(codes[(codes > 126) & (codes != WIDE_TAIL)])
+    for code in strange:
+        codes[codes == code] = plain_code(int(code))
+    codes[codes == WIDE_TAIL] = SPACE
+    return codes

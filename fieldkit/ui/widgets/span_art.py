@@ -1,0 +1,193 @@
+"""Draw a span to scale: its centre line, supports, masses, a mode shape and a chosen station."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+from rich.cells import cell_len
+
+from fieldkit.span.layout import Span
+from fieldkit.ui.widgets.projection import (
+    Fit,
+    Plane,
+    best_plane,
+    centre_line_points,
+    fit,
+    positions,
+)
+from fieldkit.ui.widgets.raster import Canvas
+from fieldkit.ui.widgets.ticks import tick_step
+
+Floats = NDArray[np.float64]
+KIND_GLYPHS = {
+    "anchor": "▓", "nozzle": "▣", "clamp": "╫", "u-bolt": "∩", "guide": "‖",
+    "rest": "▲", "hanger": "┬", "free": "○",
+}  # fmt: skip
+BESIDE = {"rest": 1, "hanger": -1}
+"""Kinds that stand below or hang above the pipe: rows from it, down counted positive."""
+MASS_GLYPH, MARK_GLYPH = "●", "◎"
+SHAPE_SHARE, LEAST_SHAPE_DOTS = 0.16, 3.0
+
+
+class Shape(Protocol):
+    """Displacement along the span, as a computed mode or a ShapeLine has it."""
+
+    @property
+    def station_m(self) -> Floats:
+        """(n,)"""
+
+    @property
+    def shape(self) -> Floats:
+        """(n, 3)"""
+
+
+@dataclass(frozen=True)
+class ShapeLine:
+    """A mode shape to draw over a span."""
+
+    station_m: Floats
+    """(n,)"""
+    shape: Floats
+    """(n, 3) displacement; only its form counts, it is scaled to be seen."""
+    label: str = ""
+
+
+@dataclass(frozen=True)
+class Picture:
+    """What is to be drawn, and in which words."""
+
+    span: Span
+    shape: Shape | None
+    length_text: Callable[[float], str]
+    mass_text: Callable[[float], str]
+    plane: Plane | None = None
+    """None leaves the choice to the drawing."""
+    marked: tuple[float, str] | None = None
+    """A station to point at, and what for."""
+
+
+@dataclass(frozen=True)
+class Item:
+    """Something at a station: its glyph and its label, longest wording first."""
+
+    at_m: float
+    glyph: str
+    wordings: tuple[str, ...]
+    ink: str
+    rows_off: int = 0
+
+
+def chosen_plane(picture: Picture) -> Plane:
+    """The plane asked for, or the one that shows pipe and motion best."""
+    if picture.plane is not None:
+        return picture.plane
+    stations, points = centre_line_points(picture.span)
+    shape = picture.shape
+    return best_plane(points, _displacement(shape, stations) if shape is not None else None)
+
+
+def draw_span(canvas: Canvas, picture: Picture) -> None:
+    """Draw everything; on the smallest canvas only the line and the glyphs are left."""
+    plane = chosen_plane(picture)
+    stations, points = centre_line_points(picture.span)
+    flat = plane.project(points)
+    roomy = canvas.columns >= 24 and canvas.rows >= 6
+    side = min(10, canvas.columns / 6) if roomy else 1
+    above, below = (2, 3) if roomy else (0, 0)
+    onto = fit(
+        flat,
+        2 * side,
+        2 * (canvas.columns - side) - 1,
+        4 * above,
+        4 * (canvas.rows - below) - 1,
+    )
+    line = onto.dots(flat)
+    if picture.shape is not None:
+        _draw_shape(canvas, picture.shape, plane, stations, line)
+    canvas.polyline(line[:, 0], line[:, 1], "pipe")
+    items = _items(picture)
+    places = [_cell(onto, plane, picture.span, item) for item in items]
+    for item, (column, row) in zip(items, places, strict=True):
+        canvas.write(row, column, item.glyph, item.ink)
+    if roomy:
+        _write_foot(canvas, picture, plane, onto)
+        for item, (column, row) in zip(items, places, strict=True):
+            _write_label(canvas, column, row, item)
+
+
+def _displacement(shape: Shape, stations: Floats) -> Floats:
+    """Shape (n, 3) at other stations, largest 1."""
+    order = np.argsort(shape.station_m, kind="stable")
+    at, value = np.asarray(shape.station_m)[order], np.asarray(shape.shape)[order]
+    moved = np.column_stack([np.interp(stations, at, value[:, axis]) for axis in range(3)])
+    largest = float(np.linalg.norm(moved, axis=1).max(initial=0.0))
+    return moved / largest if math.isfinite(largest) and largest > 0 else np.zeros_like(moved)
+
+
+def _draw_shape(canvas: Canvas, shape: Shape, plane: Plane, stations: Floats, line: Floats) -> None:
+    fine = np.linspace(stations[0], stations[-1], 200)
+    seen = plane.project(_displacement(shape, fine)) * np.array([1.0, -1.0])
+    reach = max(LEAST_SHAPE_DOTS, SHAPE_SHARE * min(canvas.dot_rows, 0.5 * canvas.dot_columns))
+    along = np.column_stack([np.interp(fine, stations, line[:, axis]) for axis in range(2)])
+    moved = along + reach * seen
+    canvas.polyline(moved[:, 0], moved[:, 1], "shape", dash=2)
+
+
+def _items(picture: Picture) -> list[Item]:
+    """Most important last to draw, first to label: chosen station, masses, supports, ends."""
+    span, length = picture.span, picture.length_text
+    items = []
+    if picture.marked is not None:
+        at, words = picture.marked
+        items.append(Item(at, MARK_GLYPH, (f"{words} {length(at)}", words, length(at)), "marked"))
+    for mass in span.masses:
+        weight = picture.mass_text(mass.mass_kg)
+        items.append(
+            Item(mass.at_m, MASS_GLYPH, (f"{mass.name} {weight}", mass.name, weight), "mass")
+        )
+    for support in span.supports:
+        place = length(support.at_m)
+        wordings = (f"{support.kind} {place}", support.kind, place)
+        glyph = KIND_GLYPHS.get(support.kind, "?")
+        items.append(Item(support.at_m, glyph, wordings, "support", BESIDE.get(support.kind, 0)))
+    held = [support.at_m for support in span.supports]
+    for at, name in ((0.0, "start"), (span.length_m, "end")):
+        if not any(abs(at - other) < 1e-3 for other in held):
+            items.append(Item(at, "○", (f"{name} {length(at)}", name), "end"))
+    return items
+
+
+def _cell(onto: Fit, plane: Plane, span: Span, item: Item) -> tuple[int, int]:
+    at = min(max(item.at_m, 0.0), span.length_m)
+    dot = onto.dots(plane.project(positions(span, [at])))[0]
+    column, row = np.rint(dot).astype(int) // np.array([2, 4])
+    return int(column), int(row) + item.rows_off
+
+
+def _write_label(canvas: Canvas, column: int, row: int, item: Item) -> None:
+    """The longest wording that fits on blank cells nearby: below, above, or to the sides."""
+    for wording in item.wordings:
+        width = cell_len(wording)
+        for down in (1, -1, 0, 2, -2, 3, -3):
+            for start in (column - width // 2, column + 2, column - width - 1):
+                if canvas.blank(row + down, start - 1, start + width + 1):
+                    canvas.write(row + down, start, wording, item.ink)
+                    return
+
+
+def _write_foot(canvas: Canvas, picture: Picture, plane: Plane, onto: Fit) -> None:
+    """View and axes at the left, mode in the middle, scale bar at the right."""
+    row = canvas.rows - 1
+    bar = tick_step(0.25 * canvas.dot_columns / onto.dots_per_m, 1)
+    cells = max(2, round(bar * onto.dots_per_m / 2))
+    text = f"├{'─' * (cells - 2)}┤ {picture.length_text(bar)}"
+    canvas.write(row, canvas.columns - cell_len(text), text, "note")
+    column = canvas.write(row, 0, f"{plane.name} {plane.key}", "note")
+    label = getattr(picture.shape, "label", "")
+    if label and canvas.free(row, column + 2, column + 2 + cell_len(label)):
+        canvas.write(row, column + 2, label, "shape")
