@@ -11,6 +11,10 @@ import numpy as np
 import pytest
 
 from fieldkit.span import eigenvalues
+from fieldkit.span.layout import PointMass
+from fieldkit.span.pipes import PipeSection
+from tests.reference.element_chain import RZ, UY, chain, ends_held, frequencies_hz, kept, matrices
+from tests.reference.spans import hold, level_span, unit_hz, vertical_hz
 
 EXACT = {
     # mu: cantilever tip 1st, 2nd, 3rd; pinned centre 1st, 2nd; clamped centre 1st, 2nd symmetric
@@ -41,6 +45,8 @@ HANDBOOK = (
     ("clamped", 192, 0.37, 0.02),
     ("clamped", 192, 0.383, 0.02),
 )
+CAPILLARY = PipeSection(0.0025, 0.00025)
+"""Slender and yet stiff enough that a hundred times its own mass still sways above 0.1 Hz."""
 COLUMN = {"tip": 0, "pinned": 3, "clamped": 5}
 
 
@@ -84,3 +90,35 @@ def test_formulas_exact_without_mass():
     first = [EXACT[0.0][COLUMN[case]] for case in ("tip", "pinned", "clamped")]
     found = np.array([3, 48, 192]) / np.square(first)
     assert found == pytest.approx([0.242672, 0.492767, 0.383567], abs=1e-6)
+
+
+def by_elements(ends, mu, at, modes):
+    """lambda^2 of 80 slender elements of the package, a mass over the beam's at a share ``at``."""
+    k, m = matrices(chain(80, 1.0, 1.0, 1.0))
+    node = round(80 * at)
+    m[6 * node + UY, 6 * node + UY] += mu
+    mask = kept(len(k), (UY, RZ), ends_held(ends))
+    return 2 * math.pi * frequencies_hz(k, m, mask, modes)
+
+
+@pytest.mark.parametrize("mu", EXACT)
+def test_elements_meet_the_exact_columns(mu):
+    """Tip mass modes 1-3, centre masses modes 1 and 3 (mode 2 does not feel them), to 1e-5."""
+    tip, pinned, clamped = EXACT[mu][:3], EXACT[mu][3:5], EXACT[mu][5:]
+    assert by_elements("clamped-free", mu, 1.0, 3) == pytest.approx(tip, rel=1e-5)
+    assert by_elements("pinned-pinned", mu, 0.5, 3)[::2] == pytest.approx(pinned, rel=1e-5)
+    assert by_elements("clamped-clamped", mu, 0.5, 3)[::2] == pytest.approx(clamped, rel=1e-5)
+
+
+@pytest.mark.parametrize("mu", EXACT)
+def test_span_model_meets_the_exact_columns(mu):
+    """The whole span model on a pipe of L/D = 300, whose shear takes up to 1.5e-4 of mode 1."""
+    length = 300 * CAPILLARY.outside_diameter_m
+    mass = mu * 7850 * CAPILLARY.wall_area_m2 * length
+    for ends, at, column in (("free", 1.0, 0), ("pinned", 0.5, 3), ("clamped", 0.5, 5)):
+        first = hold(0.0, "pinned" if ends == "pinned" else "clamped")
+        last = [] if ends == "free" else [hold(length, ends)]
+        span = level_span(length, [first, *last], (PointMass(at * length, mass),), CAPILLARY)
+        unit = unit_hz(span, length)
+        found = vertical_hz(span, 1, 40 * unit)[0] / unit
+        assert found == pytest.approx(EXACT[mu][column], rel=2e-4)
