@@ -82,11 +82,10 @@ class Canvas:
             self.dot_columns,
             self.dot_rows,
         )
-        across, down = _steps_along(starts, ends)
+        dots = np.rint(_steps_along(starts, ends)).astype(int)
         if dash:
-            drawn = np.arange(len(across)) // dash % 2 == 0
-            across, down = across[drawn], down[drawn]
-        self.points(across, down, ink)
+            dots = _every_other(dots, dash)
+        self.points(dots[:, 0], dots[:, 1], ink)
 
     def columns_filled(
         self, first_dot_column: int, top: Floats, bottom: Floats, ink: str, *, dash: int = 0
@@ -172,7 +171,7 @@ class Canvas:
         ink = np.where(written, self._text_ink, ink)
         if plain:
             codes = _plain(codes)
-        return codes, np.where(codes == SPACE, 0, ink)
+        return codes, np.where((codes == SPACE) & ~written, 0, ink)
 
     def _runs_of(self, line: str, look: NDArray[np.uint16]) -> list[Run]:
         cuts = [0, *(np.flatnonzero(np.diff(look)) + 1).tolist(), len(line)]
@@ -248,15 +247,23 @@ def clipped_segments(points: Floats, width: int, height: int) -> tuple[Floats, F
     return starts[seen] + first * along[seen], starts[seen] + last * along[seen]
 
 
-def _steps_along(starts: Floats, ends: Floats) -> tuple[Floats, Floats]:
-    """Dots along every segment, one per dot of its longer side."""
+def _steps_along(starts: Floats, ends: Floats) -> Floats:
+    """Points (n, 2) along every segment, one per dot of its longer side."""
     along = ends - starts
     steps = np.ceil(np.abs(along).max(axis=1, initial=0.0)).astype(int) + 1
     owner = np.repeat(np.arange(len(starts)), steps)
     first = np.repeat(np.cumsum(steps) - steps, steps)
     share = (np.arange(len(owner)) - first) / np.maximum(1, steps[owner] - 1)
-    dots = starts[owner] + share[:, None] * along[owner]
-    return dots[:, 0], dots[:, 1]
+    return np.asarray(starts[owner] + share[:, None] * along[owner])
+
+
+def _every_other(dots: NDArray[np.int_], group: int) -> NDArray[np.int_]:
+    """Every other group of different dots along a line."""
+    fresh = np.ones(len(dots), dtype=bool)
+    fresh[1:] = (np.diff(dots, axis=0) != 0).any(axis=1)
+    dots = dots[fresh]
+    drawn = np.arange(len(dots)) // group % 2 == 0
+    return np.asarray(dots[drawn])
 
 
 def _plain(codes: NDArray[np.uint32]) -> NDArray[np.uint32]:

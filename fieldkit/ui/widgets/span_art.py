@@ -21,7 +21,7 @@ from fieldkit.ui.widgets.projection import (
     positions,
 )
 from fieldkit.ui.widgets.raster import Canvas
-from fieldkit.ui.widgets.ticks import tick_step
+from fieldkit.ui.widgets.ticks import round_down
 
 Floats = NDArray[np.float64]
 KIND_GLYPHS = {
@@ -111,7 +111,7 @@ def draw_span(canvas: Canvas, picture: Picture) -> None:
         _draw_shape(canvas, picture.shape, plane, stations, line)
     canvas.polyline(line[:, 0], line[:, 1], "pipe")
     items = _items(picture)
-    places = [_cell(onto, plane, picture.span, item) for item in items]
+    places = _places(onto, plane, picture.span, items)
     for item, (column, row) in zip(items, places, strict=True):
         canvas.write(row, column, item.glyph, item.ink)
     if roomy:
@@ -139,7 +139,7 @@ def _draw_shape(canvas: Canvas, shape: Shape, plane: Plane, stations: Floats, li
 
 
 def _items(picture: Picture) -> list[Item]:
-    """Most important last to draw, first to label: chosen station, masses, supports, ends."""
+    """The most important first: chosen station, masses, supports, ends."""
     span, length = picture.span, picture.length_text
     items = []
     if picture.marked is not None:
@@ -162,32 +162,55 @@ def _items(picture: Picture) -> list[Item]:
     return items
 
 
+def _places(onto: Fit, plane: Plane, span: Span, items: list[Item]) -> list[tuple[int, int]]:
+    """(column, row) of each glyph; what would cover an earlier one moves a cell aside."""
+    found: list[tuple[int, int]] = []
+    for item in items:
+        column, row = _cell(onto, plane, span, item)
+        asides = ((0, 0), (0, 1), (0, -1), (1, 0), (-1, 0))
+        free = [(column + a, row + d) for a, d in asides if (column + a, row + d) not in found]
+        found.append(free[0] if free else (column, row))
+    return found
+
+
 def _cell(onto: Fit, plane: Plane, span: Span, item: Item) -> tuple[int, int]:
     at = min(max(item.at_m, 0.0), span.length_m)
     dot = onto.dots(plane.project(positions(span, [at])))[0]
     column, row = np.rint(dot).astype(int) // np.array([2, 4])
-    return int(column), int(row) + item.rows_off
+    return int(column), int(row) + (item.rows_off if plane.up[2] else 0)
 
 
 def _write_label(canvas: Canvas, column: int, row: int, item: Item) -> None:
-    """The longest wording that fits on blank cells nearby: below, above, or to the sides."""
+    """The longest wording that fits on blank cells nearby, as close as can be."""
     for wording in item.wordings:
         width = cell_len(wording)
-        for down in (1, -1, 0, 2, -2, 3, -3):
-            for start in (column - width // 2, column + 2, column - width - 1):
-                if canvas.blank(row + down, start - 1, start + width + 1):
-                    canvas.write(row + down, start, wording, item.ink)
-                    return
+        for down, start in _around(column, width):
+            first, end = max(0, start - 1), min(canvas.columns, start + width + 1)
+            fits = start >= 0 and start + width <= canvas.columns
+            if fits and canvas.blank(row + down, first, end):
+                canvas.write(row + down, start, wording, item.ink)
+                return
+
+
+def _around(column: int, width: int) -> list[tuple[int, int]]:
+    """(rows down, first column) of places for a label: centred, then beside, then farther."""
+    centred, right, left = column - width // 2, column + 2, column - width - 1
+    near = [(1, centred), (-1, centred), (0, right), (0, left)]
+    shifted = (column, right, column - width + 1, left)
+    beside = [(down, start) for down in (1, -1) for start in shifted]
+    far = [(down, start) for down in (2, -2, 3, -3) for start in (centred, right, left)]
+    return near + beside + far
 
 
 def _write_foot(canvas: Canvas, picture: Picture, plane: Plane, onto: Fit) -> None:
-    """View and axes at the left, mode in the middle, scale bar at the right."""
+    """View and axes at the left, then the mode, a scale bar at the right where there is room."""
     row = canvas.rows - 1
-    bar = tick_step(0.25 * canvas.dot_columns / onto.dots_per_m, 1)
-    cells = max(2, round(bar * onto.dots_per_m / 2))
-    text = f"├{'─' * (cells - 2)}┤ {picture.length_text(bar)}"
-    canvas.write(row, canvas.columns - cell_len(text), text, "note")
-    column = canvas.write(row, 0, f"{plane.name} {plane.key}", "note")
+    column = canvas.write(row, 0, f"{plane.name}  {plane.key}", "note") + 2
     label = getattr(picture.shape, "label", "")
-    if label and canvas.free(row, column + 2, column + 2 + cell_len(label)):
-        canvas.write(row, column + 2, label, "shape")
+    if label and canvas.free(row, column, column + cell_len(label)):
+        column = canvas.write(row, column, label, "shape") + 2
+    bar_m = round_down(0.3 * canvas.dot_columns / onto.dots_per_m)
+    cells = round(bar_m * onto.dots_per_m / 2)
+    text = f"├{'─' * (cells - 2)}┤ {picture.length_text(bar_m)}"
+    if cells >= 3 and canvas.columns - cell_len(text) >= column:
+        canvas.write(row, canvas.columns - cell_len(text), text, "note")

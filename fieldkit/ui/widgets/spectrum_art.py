@@ -15,13 +15,21 @@ from fieldkit.ui.widgets.frame import Frame
 from fieldkit.ui.widgets.labels import Label, write_labels, write_ticks
 from fieldkit.ui.widgets.raster import Canvas, envelope
 from fieldkit.ui.widgets.spectrum_data import Mark, SpectrumData, highest_between
-from fieldkit.ui.widgets.ticks import amount_text, frequency_text, tick_labels, tick_step
+from fieldkit.ui.widgets.ticks import (
+    amount_text,
+    frequency_text,
+    round_down,
+    round_up,
+    tick_labels,
+    tick_step,
+)
 from fieldkit.ui.widgets.view_range import Axis
 
 Floats = NDArray[np.float64]
 GLYPHS = {"mode": "▼", "tone": "≈", "refused": "×", "model": "△"}
 DASHES = {"second": 6, "background": 1, "model": 3}
 SAMPLES = {"second": "╌╌", "background": "··", "model": "╌ "}
+KEYS = "←→ pan  +− zoom  ,. cursor  [] marks  l f scales"
 LEAST_GUTTER, MOST_GUTTER = 5, 9
 DEEPEST = 1e-6
 """Of the largest value: below it a logarithmic axis shows nothing unless moved there."""
@@ -74,9 +82,17 @@ def draw_spectrum(canvas: Canvas, data: SpectrumData, view: View) -> None:
     for curve, (low, high) in zip(data.curves, reduced, strict=True):
         _draw_curve(canvas, frame, amplitude, low, high, curve.role)
     _draw_axes(canvas, data, frame, amplitude)
-    if frame.top:
-        canvas.write(0, 0, readout(data, view, frame), "readout")
-        _write_legend(canvas, data, len(readout(data, view, frame)) + 2)
+    if _readout_rows(canvas.rows):
+        _write_head(canvas, data, view, frame)
+
+
+def _write_head(canvas: Canvas, data: SpectrumData, view: View, frame: Frame) -> None:
+    """The read-out before the legend, the legend before the keys."""
+    words = readout(data, view, frame)
+    start = canvas.write(0, 0, words, "readout")
+    legend_start = _write_legend(canvas, data, start + 2 if words else 0)
+    if view.focused and not words and len(KEYS) + 2 <= legend_start:
+        canvas.write(0, 0, KEYS, "axis")
 
 
 def amplitude_axis(reduced: Sequence[tuple[Floats, Floats]], view: View) -> Axis:
@@ -93,17 +109,7 @@ def amplitude_axis(reduced: Sequence[tuple[Floats, Floats]], view: View) -> Axis
     lows = lows[np.isfinite(lows) & (lows > 0)]
     floor = float(np.percentile(lows, 5)) if len(lows) else top / 100
     floor = min(max(floor, DEEPEST * top), top / 20)
-    return Axis(_round_down(floor), _round_up(1.2 * top), log=True).panned(view.lift)
-
-
-def _round_down(value: float) -> float:
-    decade = 10.0 ** math.floor(math.log10(value))
-    return max((m * decade for m in (1, 2, 5) if m * decade <= value * (1 + 1e-9)), default=decade)
-
-
-def _round_up(value: float) -> float:
-    decade = 10.0 ** math.floor(math.log10(value))
-    return min(m * decade for m in (1, 2, 5, 10) if m * decade >= value * (1 - 1e-9))
+    return Axis(round_down(floor), round_up(1.2 * top), log=True).panned(view.lift)
 
 
 def _draw_curve(
@@ -169,7 +175,7 @@ def _draw_amplitude_axis(canvas: Canvas, data: SpectrumData, frame: Frame, ampli
     line = frame.left - 1
     for row in range(frame.top, frame.bottom):
         canvas.write(row, line, "│", "axis")
-    ticks = amplitude.ticks(max(2, frame.rows // 3))
+    ticks = amplitude.ticks(max(2, frame.rows // 2))
     taken: set[int] = set()
     for tick, text in zip(ticks, tick_labels(ticks), strict=True):
         share = float(amplitude.share(tick))
@@ -201,10 +207,10 @@ def _draw_frequency_axis(canvas: Canvas, frame: Frame, *, line: bool) -> None:
 
 
 def readout(data: SpectrumData, view: View, frame: Frame) -> str:
-    """What the cursor stands on, or which keys there are."""
+    """What the cursor stands on; empty without a cursor."""
     cursor = view.cursor_hz
     if cursor is None:
-        return "keys: ←→ pan  +− zoom  ,. cursor  [] marks  l f scales" if view.focused else ""
+        return ""
     reading = read_cursor(data, view, frame)
     words = f"│ {frequency_text(cursor)} Hz"
     if reading is not None:
@@ -228,13 +234,16 @@ def read_cursor(data: SpectrumData, view: View, frame: Frame) -> tuple[float, fl
     return highest_between(data.curves[0], float(low), float(high))
 
 
-def _write_legend(canvas: Canvas, data: SpectrumData, from_column: int) -> None:
+def _write_legend(canvas: Canvas, data: SpectrumData, from_column: int) -> int:
+    """Names of the curves at the right end, where there is room; returns where they start."""
     entries = [(SAMPLES.get(c.role, "──"), c.label, c.role) for c in data.curves if c.label]
     width = sum(cell_len(sample) + cell_len(label) + 3 for sample, label, _ in entries) - 2
-    column = canvas.columns - width
-    if column < from_column:
-        return
+    start = canvas.columns - max(0, width)
+    if start < from_column:
+        return canvas.columns
+    column = start
     for sample, label, role in entries:
         ink = role if role in DASHES else "measured"
         column = canvas.write(0, column, sample, ink)
         column = canvas.write(0, column + 1, label, "axis") + 2
+    return start

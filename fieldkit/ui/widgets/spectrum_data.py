@@ -72,10 +72,9 @@ class SpectrumData:
     @property
     def lowest_positive_hz(self) -> float:
         """Where a logarithmic axis starts: the first line above zero, at most 400 times below."""
-        lines = [
-            float(f[f > 0][0]) for c in self.curves if (f := c.frequency_hz[:2]).max(initial=0)
-        ]
-        return max(min(lines, default=0.0), self.home_hz / 400)
+        lines = [c.frequency_hz[c.frequency_hz > 0][:1] for c in self.curves]
+        first = min((float(line[0]) for line in lines if len(line)), default=0.0)
+        return max(first, self.home_hz / 400)
 
     def limits(self, log: bool) -> Axis:
         """As far as a view may go."""

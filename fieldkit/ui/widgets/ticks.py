@@ -17,9 +17,19 @@ def tick_step(span: float, most: int) -> float:
     """Smallest step of 1, 2 or 5 times a power of ten that cuts ``span`` into at most ``most``."""
     if not (math.isfinite(span) and span > 0):
         return 1.0
-    least = span / max(1, most)
-    decade = 10.0 ** math.floor(math.log10(least))
-    return next((m * decade for m in (1, 2, 5) if m * decade >= least * (1 - 1e-9)), 10 * decade)
+    return round_up(span / max(1, most))
+
+
+def round_down(value: float) -> float:
+    """The largest of 1, 2 and 5 times a power of ten that is not above a positive value."""
+    decade = 10.0 ** math.floor(math.log10(value))
+    return max((m * decade for m in (1, 2, 5) if m * decade <= value * (1 + 1e-9)), default=decade)
+
+
+def round_up(value: float) -> float:
+    """The smallest of 1, 2 and 5 times a power of ten that is not below a positive value."""
+    decade = 10.0 ** math.floor(math.log10(value))
+    return min(m * decade for m in (1, 2, 5, 10) if m * decade >= value * (1 - 1e-9))
 
 
 def linear_ticks(low: float, high: float, most: int) -> Floats:
