@@ -38,6 +38,7 @@ MASS_SHARES = (0.05, 0.1, 0.2, 0.35, 0.5)
 """Of the mass of the pipe itself."""
 KEPT_MASS_SHARES = (0.0, 0.3, 0.6, 1.5)
 NEAR_SUPPORT_DIAMETERS = 2.0
+NEAR_M = 1e-3
 
 
 @dataclass(frozen=True)
@@ -135,9 +136,10 @@ def stiffened_supports(search: Search) -> Iterable[Candidate]:
 
 
 def moved_supports(search: Search) -> Iterable[Candidate]:
-    """Each support that is not an end of the pipe, at every other station."""
+    """Each support between the ends of the pipe, anywhere between its neighbours."""
     for index, support in enumerate(search.span.supports):
-        if support.kind in ("anchor", "nozzle", "free"):
+        low, high = _between_neighbours(search.span, index)
+        if support.kind in ("anchor", "nozzle", "free") or low is None or high is None:
             continue
         own = [i for i, s in enumerate(springs(search.span)) if s.support == index]
         if not own:
@@ -147,6 +149,8 @@ def moved_supports(search: Search) -> Iterable[Candidate]:
         axes = tuple(springs(search.span)[i].axis for i in own)
         value = [search.field.spring_value(i) for i in own]
         for station in search.attachable():
+            if not low < base.station_m[station] < high:
+                continue
             ports = _ports(base, axes, station)
             shape = _displaced(search, base, axes, station)
             stiffness = _per_port(base, axes, station, value)
@@ -183,7 +187,7 @@ def _stiffened(
     ports = tuple(int(p) for i in numbers for p in search.field.ports.of("spring", i))
     owner = [j for j, i in enumerate(numbers) for _ in search.field.ports.of("spring", i)]
     now = np.stack([search.field.spring_value(numbers[j]) for j in owner], axis=1)
-    shape = search.field.shape[:, list(ports)]
+    shape = search.field.motion(ports)
     receptance = count.receptance(shape, _residual(search.field, ports))
     levels = [k for k in search.stiffness_levels() if k > 1.5 * np.median(now)]
     for level in levels:
@@ -223,7 +227,7 @@ def _added_masses(search: Search) -> Iterable[Candidate]:
 def _reset_mass(search: Search, base: Field, index: int) -> Iterable[Candidate]:
     count = search.counter(base)
     ports = tuple(int(p) for p in base.ports.of("mass", index))
-    receptance = count.receptance(base.shape[:, list(ports)], _residual(base, ports))
+    receptance = count.receptance(base.motion(ports), _residual(base, ports))
     actual = search.field.mass_value(index)
     for share in KEPT_MASS_SHARES:
         kept = _round_mass(share * search.span.masses[index].mass_kg)
@@ -252,7 +256,15 @@ def _moved_mass(search: Search, base: Field, index: int) -> Iterable[Candidate]:
         yield Candidate(MoveMass(index, round(at_m, 3)), push, float(chance))
 
 
-_EVERY_WAY = ("vertical", "lateral", "axial")
+_EVERY_WAY = ("x", "y", "z")
+
+
+def _between_neighbours(span: Span, index: int) -> tuple[float | None, float | None]:
+    """Stations of the supports before and after one; None where it is the first or last."""
+    here = span.supports[index].at_m
+    before = [s.at_m for s in span.supports if s.at_m < here - NEAR_M]
+    after = [s.at_m for s in span.supports if s.at_m > here + NEAR_M]
+    return max(before, default=None), min(after, default=None)
 
 
 def _ports(base: Field, axes: tuple[str, ...], station: int) -> tuple[int, ...]:
@@ -269,11 +281,11 @@ def _displaced(search: Search, base: Field, axes: tuple[str, ...], station: int)
     """(members, p, r) shapes at a station, each member off by its own scatter of place."""
     last = len(base.station_m) - 1
     low, high = max(station - 1, 0), min(station + 1, last)
-    here = base.shape[:, list(_ports(base, axes, station))]
+    here = base.motion(_ports(base, axes, station))
     before, after = _ports(base, axes, low), _ports(base, axes, high)
     if len(before) != here.shape[1] or len(after) != here.shape[1]:
         return here
-    slope = (base.shape[:, list(after)] - base.shape[:, list(before)]) / (
+    slope = (base.motion(after) - base.motion(before)) / (
         base.station_m[high] - base.station_m[low]
     )
     return here + search.scatter.place_m[:, None, None] * slope

@@ -32,7 +32,7 @@ Array = NDArray[np.float64]
 
 GRID_STEPS = 64
 AXES = ("vertical", "lateral", "axial")
-"""Ports of the grid; axes that only a support of the span uses come on top."""
+"""What a mode's direction is told by; the grid has more ports: x, y, z and what supports use."""
 
 
 @dataclass(frozen=True)
@@ -78,10 +78,16 @@ class Field:
     central: int
     """The member nearest the middle of the ensemble."""
 
+    def motion(self, ports: Sequence[int]) -> Array:
+        """(members, p, r) motion of the modes at some ports."""
+        return np.swapaxes(self._motion_by_port[list(ports)], 0, 1)
+
     @cached_property
-    def shape(self) -> Array:
-        """(members, ports, r) motion of the modes at the ports."""
-        return self.ports.rows @ self.modes.vector
+    def _motion_by_port(self) -> Array:
+        """(ports, members, r), as one product."""
+        members, r, count = self.modes.vector.shape
+        columns = np.swapaxes(self.modes.vector, 0, 1).reshape(r, members * count)
+        return (self.ports.rows @ columns).reshape(-1, members, count)
 
     @property
     def members(self) -> int:
@@ -157,7 +163,7 @@ def _ports(span: Span, model: ReducedModel, stations: Array) -> Ports:
         blocks.append(rows)
         count += len(rows)
 
-    axes = dict.fromkeys((*AXES, *(spring.axis for spring in springs(span))))
+    axes = dict.fromkeys((*AXES, "x", "y", "z", *(spring.axis for spring in springs(span))))
     for axis in axes:
         for i, station in enumerate(stations):
             add(axis, i, float(station), structure.motion_rows(float(station), axis))

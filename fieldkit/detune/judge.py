@@ -65,7 +65,7 @@ def after(field: Field, push: Push, up_to_hz: float) -> Spectrum:
 
 
 def _pushed(base: Field, push: Push) -> Modes:
-    shape = push.moved_by if push.moved_by is not None else base.shape[:, list(push.ports)]
+    shape = push.moved_by if push.moved_by is not None else base.motion(push.ports)
     kept = min(KEPT_MODES, shape.shape[2])
     low, high = shape[:, :, :kept], shape[:, :, kept:]
     members, ports = shape.shape[:2]

@@ -27,12 +27,14 @@ from fieldkit.span.layout import Span, State
 Array = NDArray[np.float64]
 
 SHOWN = 10
-JUDGED = 14
+JUDGED = 12
 PER_FAMILY = 5
 CHANCE_STEP = 0.03
 """Chances closer than this count as equal when the smaller change is looked for."""
 ALIKE_SHARE = 0.07
 """Changes closer along the span than this share of its length are one idea."""
+WORTHWHILE = 0.02
+"""A change must raise the chance by more than this to be listed."""
 SEED = 20
 PRIOR_MEMBERS = 256
 SOFTENING = np.geomspace(1.0, 0.01, 25)
@@ -74,7 +76,8 @@ def detune(
     ensemble_field, known = _ensemble_field(span, tapped, running, match, goal, rng)
     now, _ = _checked(ensemble_field, span, running, None, goal)
     search = _search(span, ensemble_field, forbidden, goal, rng)
-    chosen = shortlist(generate(search, progress), span, goal)
+    chance_now = judge.chance_clear(now, forbidden, goal.up_to_hz)
+    chosen = shortlist(generate(search, progress), span, chance_now)
     judged = []
     for i, candidate in enumerate(chosen):
         progress.step("re-solving the best changes", i / max(1, len(chosen)))
@@ -90,16 +93,17 @@ def detune(
         margin=goal.margin,
         bands=forbidden,
         modes=modes,
-        chance_now=judge.chance_clear(now, forbidden, goal.up_to_hz),
+        chance_now=chance_now,
         nearest_now=judge.nearest(modes, forbidden),
         fixes=verdicts,
         warnings=_warnings(known, verdicts, judged, goal, forbidden),
     )
 
 
-def shortlist(candidates: Sequence[Candidate], span: Span, goal: Goal) -> list[Candidate]:
-    """The best candidates, unlike each other, a few of each family."""
-    ranked = sorted(candidates, key=lambda c: _order(c.chance, c, span))
+def shortlist(candidates: Sequence[Candidate], span: Span, chance_now: float) -> list[Candidate]:
+    """The best candidates that help at all, unlike each other, a few of each family."""
+    better = [c for c in candidates if c.chance > chance_now + WORTHWHILE]
+    ranked = sorted(better, key=lambda c: _order(c.chance, c, span))
     chosen: list[Candidate] = []
     for candidate in ranked:
         same = [c for c in chosen if c.change.kind == candidate.change.kind]
@@ -205,7 +209,7 @@ def least_share(search: Search, push: Push) -> float | None:
     count = counter(search.field, search.bands, search.goal.up_to_hz)
     shape = push.moved_by
     if shape is None:
-        shape = search.field.shape[:, list(push.ports)]
+        shape = search.field.motion(push.ports)
     residual = search.field.ports.residual[np.ix_(push.ports, push.ports)]
     receptance = count.receptance(shape, residual)
     levels = SOFTENING[:, None, None] * push.stiffness[None]
