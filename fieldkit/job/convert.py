@@ -7,7 +7,7 @@ from pathlib import Path
 
 from fieldkit.detune.excitation import Excitation, Goal
 from fieldkit.errors import InputError
-from fieldkit.job.document import Job
+from fieldkit.job.document import Job, unnamed_excitation
 from fieldkit.job.file_model import (
     ExcitationTable,
     GoalTable,
@@ -165,7 +165,7 @@ def _check_state(state: State, table: StateTable, span: Span, *, has_contents: b
 
 def _excitation(table: ExcitationTable, index: int) -> Excitation:
     where = f"excitation[{index}]"
-    name = table.name or f"excitation {index + 1}"
+    name = table.name or unnamed_excitation(index)
     if (table.speed is None) == (table.frequency is None):
         what = "it has both speed and frequency" if table.speed else "its speed is missing"
         remedy = 'write speed = "1480 rpm" with orders, or frequency = "100 Hz"'

@@ -51,3 +51,8 @@ class Job:
     def recordings_of(self, kind: str) -> tuple[RecordingEntry, ...]:
         """Its tap or its running recordings."""
         return tuple(entry for entry in self.recordings if entry.kind == kind)
+
+
+def unnamed_excitation(index: int) -> str:
+    """What an excitation is called that the file gives no name; ``index`` counts from 0."""
+    return f"excitation {index + 1}"
