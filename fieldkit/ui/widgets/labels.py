@@ -43,6 +43,8 @@ def arrange(labels: Sequence[Label], rows: int, columns: int) -> list[Placed]:
     The rest get their shortest; where even that finds no room the bare glyph stands in row 0, and
     two glyphs of one column become one.
     """
+    if rows <= 0:
+        return []
     placed = _placed(labels, 0, rows, columns)
     if len(placed) < len(labels):
         return [*placed, *_bare(labels, placed)]

@@ -11,9 +11,10 @@ from numpy.typing import NDArray
 from rich.cells import cell_len
 
 from fieldkit.ui.widgets.band_art import shade_bands, write_band_row
+from fieldkit.ui.widgets.dots import envelope
 from fieldkit.ui.widgets.frame import Frame
 from fieldkit.ui.widgets.labels import Label, write_labels, write_ticks
-from fieldkit.ui.widgets.raster import Canvas, envelope
+from fieldkit.ui.widgets.raster import Canvas
 from fieldkit.ui.widgets.spectrum_data import Mark, SpectrumData, highest_between
 from fieldkit.ui.widgets.ticks import (
     amount_text,
