@@ -50,7 +50,7 @@ def read_audio(path: Path) -> AudioSamples:
             return _read_open(audio, path)
     mended = _mended_wav(path)
     if mended is None:
-        raise InputError("the recording is empty (0 samples)", "record it again", Place(path))
+        raise _empty(path)
     with _opened(path, mended) as audio:
         read = _read_open(audio, path)
     note = "the recorder never wrote the length into the file's header; read to the end of the file"
@@ -74,8 +74,14 @@ def _read_open(audio: Any, path: Path) -> AudioSamples:
     samples, broke_off = _read_blocks(audio, path)
     rate_hz = float(audio.samplerate)
     notes = [*_ending_notes(audio, len(samples), broke_off, path), *_coding_notes(audio)]
+    if len(samples) == 0:
+        raise _empty(path)
     integer = bool(_EXACT_SUBTYPES.search(audio.subtype))
     return AudioSamples(samples, rate_hz, integer, tuple(notes))
+
+
+def _empty(path: Path) -> InputError:
+    return InputError("the recording is empty (0 samples)", "record it again", Place(path))
 
 
 def _read_blocks(audio: Any, path: Path) -> tuple[NDArray[np.float64], bool]:

@@ -12,6 +12,7 @@ from numpy.typing import NDArray
 from fieldkit.errors import InputError, Place
 from fieldkit.signal.audio_file import read_audio
 from fieldkit.signal.text_lines import looks_like_text
+from fieldkit.signal.text_numbers import LARGEST_VALUE
 from fieldkit.signal.text_recording import read_text
 
 QUANTITIES = ("acceleration", "velocity", "displacement", "pressure")
@@ -156,12 +157,13 @@ def _check_rate(rate_hz: float, path: Path) -> None:
 
 
 def _check_finite(recording: Recording, path: Path) -> None:
-    if np.isfinite(recording.samples.sum()) or np.isfinite(recording.samples).all():
+    samples = recording.samples
+    if samples.min() >= -LARGEST_VALUE and samples.max() <= LARGEST_VALUE:
         return
-    row, column = np.argwhere(~np.isfinite(recording.samples))[0]
+    row, column = np.argwhere(~(np.abs(samples) <= LARGEST_VALUE))[0]
     raise InputError(
-        f"channel {column + 1} is not a finite number at {row / recording.rate_hz:.6f} s "
-        f"(sample {row + 1})",
+        f"channel {column + 1} is {samples[row, column]:g}, not a measured value, at "
+        f"{row / recording.rate_hz:.6f} s (sample {row + 1})",
         "export or record it again",
         Place(path),
     )

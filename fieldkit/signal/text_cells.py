@@ -30,6 +30,15 @@ def is_data(line: str) -> bool:
     return bool(stripped) and not stripped.startswith(COMMENT_MARKS)
 
 
+def without_comment_mark(line: str) -> str:
+    """The text of a line, without the mark that makes it a comment."""
+    text = line.strip(" ")
+    for mark in COMMENT_MARKS:
+        while text.startswith(mark):
+            text = text.removeprefix(mark).strip(" ")
+    return text
+
+
 def split_cells(line: str, delimiter: str | None) -> list[str]:
     """The cells of a line, stripped, without empty ones at its end; None splits at any space."""
     if delimiter is None:

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from fieldkit.signal.column_labels import Label, read_label, unit_in
-from fieldkit.signal.text_cells import COMMENT_MARKS, DATE, number_in, split_cells
+from fieldkit.signal.text_cells import DATE, number_in, split_cells, without_comment_mark
 from fieldkit.signal.text_layout import Layout
 
 _LABEL_LINES = 3
@@ -66,20 +66,40 @@ def _labels(above: Sequence[str], layout: Layout) -> tuple[Label, ...]:
 
 def _label_cells(line: str, layout: Layout) -> list[str] | None:
     """A header line split into one cell for each column; None where it does not fit them."""
-    text = line.strip()
-    for mark in COMMENT_MARKS:
-        text = text.removeprefix(mark).strip() if text.startswith(mark) else text
+    text = without_comment_mark(line)
     columns = len(layout.kinds)
     if columns == 1:
         is_remark = text != line.strip() and ":" in text
         return None if is_remark or "=" in text else [text.strip('" ')]
     for delimiter in dict.fromkeys((layout.delimiter, "\t", ";", ",", None)):
-        cells = _LABEL_WORD.findall(text) if delimiter is None else split_cells(text, delimiter)
+        cells = _split_labels(text, delimiter, columns)
         if DATE in layout.kinds and len(cells) == columns - 1:
             cells.insert(layout.kinds.index(DATE), "")
         if len(cells) == columns:
             return cells
+        if layout.delimiter is not None and layout.delimiter in text:
+            return None
     return None
+
+
+def _split_labels(text: str, delimiter: str | None, columns: int) -> list[str]:
+    if delimiter is None:
+        words = _LABEL_WORD.findall(text)
+        return words if len(words) <= columns else _units_joined(words)
+    cells = split_cells(text, delimiter)
+    blank_at_end = text.count(delimiter) + 1 >= columns > len(cells) > 0
+    return cells + [""] * (columns - len(cells)) if blank_at_end else cells
+
+
+def _units_joined(words: Sequence[str]) -> list[str]:
+    """Words with each bare unit joined to the word before it: ``velocity mm/s`` is one label."""
+    labels: list[str] = []
+    for word in words:
+        if labels and unit_in(word) is not None:
+            labels[-1] += f" {word}"
+        else:
+            labels.append(word)
+    return labels
 
 
 def _is_line_of_units(cells: Sequence[str]) -> bool:

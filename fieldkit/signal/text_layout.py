@@ -10,7 +10,7 @@ from itertools import islice, pairwise
 from pathlib import Path
 
 from fieldkit.errors import InputError, Place
-from fieldkit.signal.text_cells import NUMBER, is_data, kind_of, split_cells
+from fieldkit.signal.text_cells import NUMBER, is_data, kind_of, split_cells, without_comment_mark
 
 _LINES_LOOKED_AT = 1000
 _WRITTEN_AS = (("\t", "."), ("\t", ","), (";", "."), (";", ","), (",", "."), (None, "."))
@@ -68,7 +68,8 @@ def find_layout(lines: Sequence[str], path: Path) -> Layout:
         )
     first = next(i for i, kinds in enumerate(best.kinds) if kinds and len(kinds) == columns)
     if best.delimiter == ",":
-        best = _settled(best, readings[-1], looked_at[first:], path)
+        labels = _line_above(lines, looked_at[first][0])
+        best = _settled(best, readings[-1], looked_at[first:], labels, path)
     kinds = best.kinds[first]
     assert kinds is not None
     return Layout(best.delimiter, best.decimal, kinds, looked_at[first][0])
@@ -89,14 +90,23 @@ def _kinds(text: str, delimiter: str | None, decimal: str) -> tuple[str, ...] | 
     return tuple(kind for kind in kinds if kind)
 
 
+def _line_above(lines: Sequence[str], first_row: int) -> str:
+    above = (line for line in reversed(lines[:first_row]) if line.strip())
+    return without_comment_mark(next(above, ""))
+
+
 def _settled(
-    commas: _Reading, one_column: _Reading, rows: Sequence[tuple[int, str]], path: Path
+    commas: _Reading,
+    one_column: _Reading,
+    rows: Sequence[tuple[int, str]],
+    labels: str,
+    path: Path,
 ) -> _Reading:
     """Whether ``12,345`` is two whole numbers or one with a decimal comma."""
     line, text = rows[0]
     cells = [split_cells(row, ",") for _, row in rows]
     whole = all(len(row) % 2 == 0 and _could_be_decimals(row) for row in cells)
-    if not whole or _counts_up(cells):
+    if not whole or _counts_up(cells) or len(split_cells(labels, ",")) == len(cells[0]):
         return commas
     padded = any(len(cell) > 1 and cell.startswith("0") for row in cells for cell in row[1::2])
     columns = {len(row) for row in cells}

@@ -21,6 +21,8 @@ from fieldkit.signal.text_cells import (
 )
 from fieldkit.signal.text_layout import Layout
 
+LARGEST_VALUE = 1e30
+"""Beyond it a value is no measurement, and its square may overflow."""
 _ROWS_AT_ONCE = 20_000
 _LONGEST_QUOTE = 30
 
@@ -61,14 +63,16 @@ def _read_fast(texts: list[str], layout: Layout) -> NDArray[np.float64] | None:
     if not joined.isascii() or '"' in joined or "_" in joined:
         return None
     spare = " \t\r" if layout.delimiter is None else layout.delimiter + " \t\r"
-    rows = (row.rstrip(spare) for row in joined.replace(layout.decimal, ".").split("\n"))
+    rows = [row.rstrip(spare) for row in joined.replace(layout.decimal, ".").split("\n")]
+    if "" in rows:
+        return None
     try:
         block = np.loadtxt(rows, delimiter=layout.delimiter, comments=None, ndmin=2)
     except ValueError:
         return None
-    if block.shape != (len(texts), len(layout.kinds)) or not np.isfinite(block).all():
+    if block.shape != (len(texts), len(layout.kinds)):
         return None
-    return block
+    return block if np.all(np.abs(block) <= LARGEST_VALUE) else None
 
 
 def _read_carefully(
@@ -107,11 +111,16 @@ def _value(cell: str, kind: str, column: int, decimal: str) -> float:
         return seconds
     text = with_point(cell, decimal)
     value = number_in(text)
-    if value is not None and np.isfinite(value):
+    if value is not None and abs(value) <= LARGEST_VALUE:
         return value
     if not cell:
         raise InputError(f"column {column} is empty", "fill in the value or remove the row")
-    if value is not None or is_not_finite(text):
+    if value is not None:
+        raise InputError(
+            f"{quoted(cell)} in column {column} is too large to be measured",
+            "remove the rows where the logger overflowed, or record again",
+        )
+    if is_not_finite(text):
         raise InputError(
             f"{quoted(cell)} in column {column} is no finite number",
             "remove the rows without a value, or record again",
