@@ -236,7 +236,7 @@ def read_or_refused(text: str, dimension: str) -> bool:
 
 
 @given(st.text(max_size=20), st.sampled_from(sorted(DIMENSIONS)))
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 def test_any_text_is_read_or_refused(text: str, dimension: str) -> None:
     """No text does anything else than give a finite number or an InputError."""
     assert read_or_refused(text, dimension)
@@ -247,7 +247,7 @@ def test_any_text_is_read_or_refused(text: str, dimension: str) -> None:
     unit=st.text("mMkgftinlbs/N()^23*- .\"'%C", max_size=8),
     dimension=st.sampled_from(sorted(DIMENSIONS)),
 )
-@settings(max_examples=200, deadline=None)
+@settings(max_examples=100, deadline=None)
 def test_near_misses_are_read_or_refused(number: str, unit: str, dimension: str) -> None:
     """Text that looks like a quantity never ends in anything but a number or an InputError."""
     assert read_or_refused(number + unit, dimension)
@@ -286,7 +286,7 @@ OFFSET_K = 273.15
     units=st.sampled_from(["SI", "US"]),
     digits=st.integers(3, 9),
 )
-@settings(max_examples=400, deadline=None)
+@settings(max_examples=100, deadline=None)
 def test_what_is_shown_reads_back(dimension: str, share: float, units: str, digits: int) -> None:
     """show then parse gives the value back within half a unit of the last digit shown."""
     low, high = RANGES[dimension]

@@ -103,7 +103,7 @@ trees = st.recursive(
 
 
 @given(st.dictionaries(st.text(max_size=4), trees, max_size=4))
-@settings(max_examples=80, deadline=None)
+@settings(max_examples=40, deadline=None)
 def test_spans_hold_the_values_of_any_document(table: dict[str, Any]) -> None:
     """Whatever keys and strings a file holds, the scanner reads it as the parser does."""
     assert_spans_hold_values(tomlkit.dumps(table))

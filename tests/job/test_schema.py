@@ -265,7 +265,7 @@ def jobs(draw: st.DrawFn) -> dict[str, object]:
 
 
 @given(jobs())
-@settings(max_examples=60, deadline=None)
+@settings(max_examples=30, deadline=None)
 def test_any_valid_job_is_read(table: dict[str, object]) -> None:
     """What fits the format is accepted, and says the same when written in another layout."""
     text = tomlkit.dumps(table)

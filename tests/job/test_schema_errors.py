@@ -306,7 +306,7 @@ odd = st.sampled_from(
 
 
 @given(st.sampled_from(KEYS), odd)
-@settings(max_examples=250, deadline=None)
+@settings(max_examples=120, deadline=None)
 def test_an_odd_value_anywhere_is_read_or_refused(key: str, value: Any) -> None:
     """No value of any key does anything else than make a job or a sentence with its place."""
     try:

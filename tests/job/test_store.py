@@ -338,7 +338,7 @@ def pruned(value: Any) -> Any:
 
 
 @given(edits, st.sampled_from([FULL, FULL.replace("\n", "\r\n"), FULL.rstrip("\n")]))
-@settings(max_examples=120, deadline=None)
+@settings(max_examples=60, deadline=None)
 def test_any_edit_does_what_a_toml_library_does(edit: list[tuple[str, object]], start: str) -> None:
     """After any edits the text is TOML, holds the values asked for, and every comment is there."""
     job = JobText(start)
