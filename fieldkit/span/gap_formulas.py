@@ -47,7 +47,8 @@ def between_holds(
         weight * math.sqrt(_held_hz(gap, pipe, *corner))
         for corner, weight in _corners(left_fixity, right_fixity)
     )
-    frequency = found**2
+    low, high = _held_hz(gap, pipe, 0, 0), _held_hz(gap, pipe, 1, 1)
+    frequency = min(max(found**2, low), high)
     eigenvalue = math.sqrt(frequency / unit_hz(gap.length_m, pipe))
     ends = _ends_in_words(left_fixity, right_fixity)
     if gap.masses:
@@ -57,8 +58,8 @@ def between_holds(
         source = THOMSON
     return HandbookEstimate(
         frequency,
-        _held_hz(gap, pipe, 0, 0),
-        _held_hz(gap, pipe, 1, 1),
+        low,
+        high,
         f"{formula}; {pipe_data(gap.length_m, pipe)}",
         source,
         "bracket: both ends pinned to both ends fixed, supports that do not give way",
@@ -76,7 +77,7 @@ def cantilever(
     overhang = gap if gap.left is not None else _mirrored(gap)
     fixed = _fixed_cantilever_hz(overhang, pipe)
     rocking = _rocking_hz(overhang, pipe, 1.0)
-    likely = _joined(fixed, rocking * math.sqrt(root_ratio))
+    likely = min(_joined(fixed, rocking * math.sqrt(root_ratio)), fixed)
     if math.isinf(low_root_ratio):
         low = LOOSEST_GRIP * fixed
         why = "low end: a root as soft as real clamps, 0.6 of fixed; a thin header is softer still"

@@ -47,6 +47,8 @@ HANDBOOK = (
 )
 CAPILLARY = PipeSection(0.0025, 0.00025)
 """Slender and yet stiff enough that a hundred times its own mass still sways above 0.1 Hz."""
+FIRM = 1e8
+"""N/m and N m/rad: a hundred million times the capillary's own, without strain on rounding."""
 COLUMN = {"tip": 0, "pinned": 3, "clamped": 5}
 
 
@@ -116,8 +118,8 @@ def test_span_model_meets_the_exact_columns(mu):
     length = 300 * CAPILLARY.outside_diameter_m
     mass = mu * 7850 * CAPILLARY.wall_area_m2 * length
     for ends, at, column in (("free", 1.0, 0), ("pinned", 0.5, 3), ("clamped", 0.5, 5)):
-        first = hold(0.0, "pinned" if ends == "pinned" else "clamped")
-        last = [] if ends == "free" else [hold(length, ends)]
+        first = hold(0.0, "pinned" if ends == "pinned" else "clamped", FIRM)
+        last = [] if ends == "free" else [hold(length, ends, FIRM)]
         span = level_span(length, [first, *last], (PointMass(at * length, mass),), CAPILLARY)
         unit = unit_hz(span, length)
         found = vertical_hz(span, 1, 40 * unit)[0] / unit

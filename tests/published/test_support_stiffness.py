@@ -11,6 +11,8 @@ import numpy as np
 import pytest
 
 from fieldkit.span import eigenvalues
+from fieldkit.span.layout import Support
+from tests.reference.spans import RIGID, SLENDER, hold, level_span, unit_hz, vertical_hz
 
 END_SPRINGS = {
     # K/(48 EI/L^3) of each end: f over that of the rigidly pinned span
@@ -26,6 +28,10 @@ ROTATIONAL_SPRINGS = {
     0.1: 10.0658, 0.5: 10.7819, 1: 11.5518, 2: 12.7937, 5: 15.1894, 10: 17.2695, 20: 19.1294,
     50: 20.8202, 100: 21.5418,
 }  # fmt: skip
+LENGTH = 9.0
+"""Of the slender pipe, L/D = 450: shear and rotary inertia take 3e-5 of a clamped first mode."""
+MESHED_FOR = 100.0
+"""lambda^2 the mesh is laid for, so that the first mode has no mesh error to speak of."""
 NODE = 995.9135  # K L^3/EI = 4 (2 pi)^3/tanh(pi)
 
 
@@ -55,6 +61,65 @@ def test_node_stiffness():
     assert pytest.approx(NODE, abs=1e-4) == eigenvalues.NODE_STIFFNESS_RATIO
     at_node = eigenvalues.pinned_with_centre_spring(eigenvalues.NODE_STIFFNESS_RATIO, 1)[0]
     assert at_node == pytest.approx(2 * math.pi, rel=1e-12)
+
+
+def model_lambda_squared(*supports):
+    """First vertical mode of the span model on the slender pipe, as lambda^2."""
+    span = level_span(LENGTH, list(supports))
+    unit = unit_hz(span, LENGTH)
+    return vertical_hz(span, 1, MESHED_FOR * unit)[0] / unit
+
+
+def own_stiffness(span_length_m):
+    """EI/L^3 of the slender pipe."""
+    return 2e11 * SLENDER.second_moment_m4 / span_length_m**3
+
+
+@pytest.mark.parametrize("stiffness", END_SPRINGS)
+def test_model_on_end_springs(stiffness):
+    """The span model meets the exact root within 0.01 % and the table to its four figures."""
+    k = 48 * stiffness * own_stiffness(LENGTH)
+    ends = [Support(at, "free", k, RIGID, RIGID, 0.0) for at in (0.0, LENGTH)]
+    found = model_lambda_squared(*ends)
+    assert found == pytest.approx(eigenvalues.on_end_springs(48 * stiffness, 1)[0] ** 2, rel=1e-4)
+    assert found / math.pi**2 == pytest.approx(END_SPRINGS[stiffness], abs=1e-4)
+
+
+@pytest.mark.parametrize("stiffness", CENTRE_SPRING)
+def test_model_with_centre_spring(stiffness):
+    """The same for a spring under the middle of a pinned span."""
+    k = 48 * stiffness * own_stiffness(LENGTH)
+    centre = Support(LENGTH / 2, "free", k, 0.0, 0.0, 0.0)
+    found = model_lambda_squared(hold(0.0), centre, hold(LENGTH))
+    exact = eigenvalues.pinned_with_centre_spring(48 * stiffness, 1)[0] ** 2
+    assert found == pytest.approx(exact, rel=1e-4)
+    assert found / (2 * math.pi) ** 2 == pytest.approx(CENTRE_SPRING[stiffness], abs=1e-4)
+
+
+@pytest.mark.parametrize("stiffness", ROTATIONAL_SPRINGS)
+def test_model_with_rotational_springs(stiffness):
+    """The same for rotational springs at pinned ends."""
+    k = stiffness * own_stiffness(LENGTH) * LENGTH**2
+    ends = [Support(at, "free", RIGID, RIGID, RIGID, k) for at in (0.0, LENGTH)]
+    found = model_lambda_squared(*ends)
+    exact = eigenvalues.pinned_with_rotational_springs(stiffness, 1)[0] ** 2
+    assert found == pytest.approx(exact, rel=1e-4)
+    assert found == pytest.approx(ROTATIONAL_SPRINGS[stiffness], rel=1e-4)
+
+
+def test_model_finds_the_node_threshold():
+    """Below 995.9 EI/L^3 a stiffer centre spring still helps, above it no longer does."""
+
+    def first(ratio):
+        k = ratio * own_stiffness(LENGTH)
+        return model_lambda_squared(
+            hold(0.0), Support(LENGTH / 2, "free", k, 0.0, 0.0, 0.0), hold(LENGTH)
+        )
+
+    rigid = first(1e6)
+    assert rigid == pytest.approx((2 * math.pi) ** 2, rel=1e-4)
+    assert first(NODE * 0.995) < rigid * (1 - 1e-3)
+    assert first(NODE * 1.005) == pytest.approx(rigid, rel=1e-7)
 
 
 @pytest.mark.parametrize(

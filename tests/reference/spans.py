@@ -16,15 +16,19 @@ STEEL = Material("test steel", 7850.0, 0.3, ((293.15, 2.0e11),), 0.0)
 SLENDER = PipeSection(0.020, 0.002)
 """So thin that 6 m of it knows no shear (L/D = 300)."""
 STATE = State("tapped", fill=(0.0, 0.0))
-RIGID = 1e9
-"""N/m and N m/rad: millions of times the slender pipe's own stiffness, and still no strain on
-rounding."""
-ROTATION = {"pinned": 0.0, "clamped": RIGID}
+RIGID = math.inf
 
 
-def hold(at_m: float, ends: str = "pinned") -> Support:
+def hold(at_m: float, ends: str = "pinned", stiffness: float = RIGID) -> Support:
     """A rigid hold against translation that is ``pinned`` or ``clamped``."""
-    return Support(at_m, "free", RIGID, RIGID, RIGID, ROTATION[ends])
+    rotation = stiffness if ends == "clamped" else 0.0
+    return Support(at_m, "free", stiffness, stiffness, stiffness, rotation)
+
+
+def anchored(at_m: float) -> Support:
+    """A hold as rigid as the model allows against every motion, twist included."""
+    stiff = math.inf
+    return Support(at_m, "free", stiff, stiff, stiff, stiff, torsion=stiff)
 
 
 def level_span(
@@ -38,8 +42,10 @@ def level_span(
     return Span(pipe, material, (Leg((1.0, 0.0, 0.0), length_m),), tuple(supports), masses)
 
 
-def square_legs(lengths: list[float], directions: list[str], radius_m: float) -> tuple[Leg, ...]:
-    """Legs along signed axes, such as ``+x``, with the same bend radius throughout."""
+def square_legs(
+    lengths: list[float], directions: list[str], radius_m: float | None
+) -> tuple[Leg, ...]:
+    """Legs along signed axes, such as ``+x``, with one bend radius; None for sharp corners."""
     legs = []
     for i, (length, name) in enumerate(zip(lengths, directions, strict=True)):
         axis = [0.0, 0.0, 0.0]
