@@ -51,6 +51,16 @@ def test_a_wide_character_takes_two_cells_and_is_never_cut():
     assert not canvas.free(0, 2, 3)
 
 
+@pytest.mark.parametrize(
+    ("column", "expected"), [(0, "x 字"), (1, " x字"), (2, "漢x "), (3, "漢 x")]
+)
+def test_text_over_half_a_wide_character_leaves_the_row_as_wide_as_it_was(column, expected):
+    canvas = Canvas(4, 1)
+    canvas.write(0, 0, "漢字", "ink")
+    canvas.write(0, column, "x", "ink")
+    assert canvas.lines() == [expected]
+
+
 @pytest.mark.parametrize("text", ["\x1b[31mred", "a\nb\tc\r", "a\u200b\u202eb", "a\x00b\uffff"])
 def test_no_character_that_moves_the_cursor_gets_through(text):
     canvas = Canvas(12, 1)

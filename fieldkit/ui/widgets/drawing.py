@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from rich.segment import Segment
 from rich.style import Style
+from textual.geometry import Region
 from textual.reactive import reactive
 from textual.strip import Strip
 from textual.widget import Widget
@@ -30,6 +31,8 @@ class Drawing(Widget):
         super().__init__(name=name, id=id, classes=classes)
         self._lines: list[Strip] | None = None
         self._drawn_size = (-1, -1)
+        self._base = Style()
+        self._looks: dict[tuple[str, str], Style] = {}
 
     def draw(self, canvas: Canvas) -> None:
         """Fill the canvas, which is as large as the content area."""
@@ -49,29 +52,43 @@ class Drawing(Widget):
         """Draw with the other set of glyphs."""
         self.redraw()
 
+    def render_lines(self, crop: Region) -> list[Strip]:
+        """The lines of a region; drawn anew where the ground underneath has changed colour."""
+        if self.rich_style != self._base:
+            self._lines = None
+        return super().render_lines(crop)
+
     def render_line(self, y: int) -> Strip:
         """One line of the picture."""
         size = (self.size.width, self.size.height)
         if self._lines is None or self._drawn_size != size:
-            canvas = Canvas(*size)
-            self.draw(canvas)
-            self._lines = [self._strip(runs) for runs in canvas.runs(plain=self.plain)]
+            self._lines = self._painted(Canvas(*size))
             self._drawn_size = size
-        return self._lines[y] if y < len(self._lines) else Strip.blank(size[0], self.rich_style)
+        return self._lines[y] if y < len(self._lines) else Strip.blank(size[0], self._base)
+
+    def _painted(self, canvas: Canvas) -> list[Strip]:
+        self._base = self.rich_style
+        self._looks = {("", ""): self._base}
+        self.draw(canvas)
+        return [self._strip(runs) for runs in canvas.runs(plain=self.plain)]
 
     def _strip(self, runs: list[Run]) -> Strip:
-        return Strip([Segment(run.text, self._look(run)) for run in runs], self.size.width)
+        segments = [Segment(run.text, self._look(run.ink, run.ground)) for run in runs]
+        return Strip(segments, self.size.width)
 
-    def _look(self, run: Run) -> Style:
-        ground = self._component(run.ground)
-        ink = self._component(run.ink)
-        if run.ground and ink.bgcolor == self.rich_style.bgcolor:
-            return ink + Style(bgcolor=ground.bgcolor)
-        return ink
+    def _look(self, ink: str, ground: str) -> Style:
+        """The style of an ink on a ground, looked up once per picture."""
+        look = self._looks.get((ink, ground))
+        if look is None:
+            look = self._component(ink)
+            if ground and look.bgcolor == self._base.bgcolor:
+                look += Style(bgcolor=self._component(ground).bgcolor)
+            self._looks[ink, ground] = look
+        return look
 
     def _component(self, name: str) -> Style:
         if not name:
-            return self.rich_style
+            return self._base
         return self.get_component_rich_style(f"{self.COMPONENT_PREFIX}--{name}")
 
 

@@ -98,14 +98,20 @@ class Canvas:
         count = max(0, min(len(top), self.dot_columns - first_dot_column))
         if count == 0 or self.rows == 0:
             return
-        rows = np.arange(self.dot_rows)[:, None]
+        rows = np.arange(self.dot_rows, dtype=np.int32)[:, None]
         with np.errstate(invalid="ignore"):
-            filled = (rows >= np.rint(top[:count])) & (rows <= np.rint(bottom[:count]))
+            drawn = bottom[:count] >= top[:count]
         if dash:
-            filled &= np.arange(count) // dash % 2 == 0
-        self.dots[:, first_dot_column : first_dot_column + count] |= filled
-        down, across = np.nonzero(filled)
-        self._dot_ink[down // 4, (across + first_dot_column) // 2] = self._style(ink)
+            drawn &= np.arange(count) // dash % 2 == 0
+        first = np.where(drawn, np.clip(top[:count], -1, self.dot_rows), 1)
+        last = np.where(drawn, np.clip(bottom[:count], -1, self.dot_rows), 0)
+        filled = np.zeros_like(self.dots)
+        filled[:, first_dot_column : first_dot_column + count] = (
+            rows >= np.rint(first).astype(np.int32)
+        ) & (rows <= np.rint(last).astype(np.int32))
+        self.dots |= filled
+        cells = filled.reshape(self.rows, 4, self.columns, 2).any(axis=(1, 3))
+        self._dot_ink[cells] = self._style(ink)
 
     def write(self, row: int, column: int, text: str, ink: str) -> int:
         """Write text over the picture, cut at its edges; returns the column after its last cell.
@@ -114,13 +120,28 @@ class Canvas:
         """
         style = self._style(ink)
         for character in text:
-            width = cell_len(character) if character.isprintable() else 0
+            width = _cells(character)
             if width and 0 <= row < self.rows and 0 <= column <= self.columns - width:
-                self._text[row, column] = ord(character)
-                self._text[row, column + 1 : column + width] = WIDE_TAIL
+                self._put(row, column, character, width)
                 self._text_ink[row, column : column + width] = style
             column += width
         return column
+
+    def _put(self, row: int, column: int, character: str, width: int) -> None:
+        """Set one character; half a wide one that it leaves beside itself becomes a space."""
+        cells = self._text[row]
+        end = column + width
+        if cells[column] == WIDE_TAIL:
+            cells[column - 1] = SPACE
+        if end < self.columns and cells[end] == WIDE_TAIL:
+            cells[end] = SPACE
+        cells[column] = ord(character)
+        cells[column + 1 : end] = WIDE_TAIL
+
+    def rule(self, rows: slice, columns: slice, glyph: str, ink: str) -> None:
+        """Write one glyph of normal width into every cell of a rectangle."""
+        self._text[rows, columns] = ord(glyph)
+        self._text_ink[rows, columns] = self._style(ink)
 
     def pattern(
         self, rows: slice, columns: slice, glyph: str, ink: str, ground: str | None = None
@@ -153,8 +174,13 @@ class Canvas:
             return [[] for _ in range(self.rows)]
         codes, ink = self._composed(plain)
         look = ink.astype(np.uint16) * 256 + self._ground
-        lines = np.ascontiguousarray(codes).view(f"<U{self.columns}")[:, 0]
-        return [self._runs_of(str(line), look[row]) for row, line in enumerate(lines)]
+        changes = np.ones(look.shape, dtype=bool)
+        changes[:, 1:] = np.diff(look, axis=1) != 0
+        lines = np.ascontiguousarray(codes).view(f"<U{self.columns}")[:, 0].tolist()
+        return [
+            self._runs_of(line, np.flatnonzero(change).tolist(), looks)
+            for line, change, looks in zip(lines, changes, look.tolist(), strict=True)
+        ]
 
     def lines(self, *, plain: bool = False) -> list[str]:
         """The picture as text alone."""
@@ -174,27 +200,26 @@ class Canvas:
             codes = _plain(codes)
         return codes, np.where((codes == SPACE) & ~written, 0, ink)
 
-    def _runs_of(self, line: str, look: NDArray[np.uint16]) -> list[Run]:
-        cuts = [0, *(np.flatnonzero(np.diff(look)) + 1).tolist(), len(line)]
+    def _runs_of(self, line: str, starts: list[int], look: list[int]) -> list[Run]:
+        names = self._styles
+        runs = [
+            Run(line[start:end], names[look[start] >> 8], names[look[start] & 255])
+            for start, end in pairwise([*starts, len(line)])
+        ]
         tail = chr(WIDE_TAIL)
-        wide = tail in line
-        found = []
-        for start, end in pairwise(cuts):
-            text = line[start:end]
-            ink, ground = divmod(int(look[start]), 256)
-            found.append(
-                Run(
-                    text.replace(tail, "") if wide else text,
-                    self._styles[ink],
-                    self._styles[ground],
-                )
-            )
-        return found
+        return [r._replace(text=r.text.replace(tail, "")) for r in runs] if tail in line else runs
 
     def _style(self, name: str) -> int:
         if name not in self._styles:
             self._styles.append(name)
         return self._styles.index(name)
+
+
+def _cells(character: str) -> int:
+    """Width on screen; 0 for what is not to be shown at all."""
+    if " " <= character <= "~":
+        return 1
+    return cell_len(character) if character.isprintable() else 0
 
 
 def _plain(codes: NDArray[np.uint32]) -> NDArray[np.uint32]:

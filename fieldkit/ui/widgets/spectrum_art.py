@@ -174,8 +174,7 @@ def _draw_axes(canvas: Canvas, data: SpectrumData, frame: Frame, amplitude: Axis
 
 def _draw_amplitude_axis(canvas: Canvas, data: SpectrumData, frame: Frame, amplitude: Axis) -> None:
     line = frame.left - 1
-    for row in range(frame.top, frame.bottom):
-        canvas.write(row, line, "│", "axis")
+    canvas.rule(frame.height, slice(line, line + 1), "│", "axis")
     ticks = amplitude.ticks(max(2, frame.rows // 2))
     taken: set[int] = set()
     for tick, text in zip(ticks, tick_labels(ticks), strict=True):
@@ -192,7 +191,7 @@ def _draw_amplitude_axis(canvas: Canvas, data: SpectrumData, frame: Frame, ampli
 def _draw_frequency_axis(canvas: Canvas, frame: Frame, *, line: bool) -> None:
     row = frame.bottom
     if line:
-        canvas.write(row, frame.left, "─" * frame.columns, "axis")
+        canvas.rule(slice(row, row + 1), slice(frame.left, frame.right), "─", "axis")
         canvas.write(row, frame.left - 1, "└", "axis")
     ticks = frame.axis.ticks(max(2, frame.columns // 9))
     places = []

@@ -152,7 +152,9 @@ def _draw_axes(canvas: Canvas, trace: Trace, frame: Frame) -> None:
     ticks = frame.axis.ticks(max(2, frame.columns // 10))
     places = []
     if below > 1:
-        canvas.write(frame.bottom, frame.left - 1, "└" + "─" * frame.columns, "axis")
+        canvas.write(frame.bottom, frame.left - 1, "└", "axis")
+        rule_row = slice(frame.bottom, frame.bottom + 1)
+        canvas.rule(rule_row, slice(frame.left, frame.right), "─", "axis")
     for tick, text in zip(ticks, tick_labels(ticks), strict=True):
         column = frame.column(float(tick))
         if column is not None:
@@ -165,8 +167,7 @@ def _draw_axes(canvas: Canvas, trace: Trace, frame: Frame) -> None:
 
 def _draw_amplitudes(canvas: Canvas, trace: Trace, frame: Frame) -> None:
     line = frame.left - 1
-    for row in range(frame.top, frame.bottom):
-        canvas.write(row, line, "│", "axis")
+    canvas.rule(frame.height, slice(line, line + 1), "│", "axis")
     numbers = {frame.bottom - 1: -trace.largest, frame.top: trace.largest}
     if frame.rows >= 5:
         numbers[(frame.top + frame.bottom - 1) // 2] = 0.0
