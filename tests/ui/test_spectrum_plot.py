@@ -155,6 +155,12 @@ def test_labels_never_touch_and_modes_come_first(rows):
         assert all(len(p.text) > 1 for p in placed)
 
 
+def test_two_labels_of_one_column_cost_the_others_no_words():
+    labels = [Label(column, "×", ("2 clipped", "2"), "refused") for column in (5, 40, 40, 70)]
+    texts = sorted(p.text for p in arrange(labels, 1, 80))
+    assert texts == ["×2 clipped", "×2 clipped", "×2 clipped"]
+
+
 class Host(App):
     """One plot, and every message it sends."""
 

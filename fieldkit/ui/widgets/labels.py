@@ -47,7 +47,7 @@ def arrange(labels: Sequence[Label], rows: int, columns: int) -> list[Placed]:
         return []
     placed = _placed(labels, 0, rows, columns)
     if len(placed) < len(labels):
-        return [*placed, *_bare(labels, placed)]
+        return _lengthened([*placed, *_bare(labels, placed)], rows, columns)
     fewest, most = 0, len(labels)
     while fewest < most:
         tried = (fewest + most + 1) // 2

@@ -31,7 +31,7 @@ KIND_GLYPHS = {
 BESIDE = {"rest": 1, "hanger": -1}
 """Kinds that stand below or hang above the pipe: rows from it, down counted positive."""
 MASS_GLYPH, MARK_GLYPH = "●", "◎"
-SHAPE_SHARE, LEAST_SHAPE_DOTS = 0.16, 3.0
+SHAPE_SHARE, LEAST_SHAPE_DOTS = 0.2, 3.0
 
 
 class Shape(Protocol):

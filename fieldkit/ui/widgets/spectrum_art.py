@@ -217,7 +217,7 @@ def readout(data: SpectrumData, view: View, frame: Frame) -> str:
         words = f"│ {reading[0]:.4g} Hz  {amount_text(reading[1], data.amplitude_unit)}"
     column = frame.column(cursor)
     under = [m for m in data.marks if frame.column(m.frequency_hz) == column is not None]
-    for mark in under[:1]:
+    for mark in sorted(under, key=lambda m: abs(m.frequency_hz - cursor))[:1]:
         number = frequency_text(mark.frequency_hz)
         words += f"  {GLYPHS[mark.kind]}{number} {mark.label or mark.kind}"
     inside = [band.label for band in data.bands if band.avoids(cursor)]
