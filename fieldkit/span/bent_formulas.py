@@ -8,7 +8,13 @@ import numpy as np
 
 from fieldkit.errors import Refusal
 from fieldkit.span.bend_factors import BendFactor, Shape, bend_factor
-from fieldkit.span.gap_formulas import LOOSEST_GRIP, HandbookEstimate, pipe_data, unit_hz
+from fieldkit.span.gap_formulas import (
+    LOOSEST_GRIP,
+    HandbookEstimate,
+    pipe_data,
+    stiff_enough,
+    unit_hz,
+)
 from fieldkit.span.gaps import Gap, UniformPipe
 
 LIGHT_MASS = 0.03
@@ -26,6 +32,7 @@ def bent(gap: Gap, pipe: UniformPipe, left_fixity: float, right_fixity: float) -
         raise _no_formula(f"its outer legs are {ratio:.1f} times its middle leg")
     if gap.mass_kg > LIGHT_MASS * pipe.mass_kg_per_m * gap.length_m:
         raise _no_formula(f"it has bends and carries {gap.mass_kg:.0f} kg besides the pipe")
+    _refuse_loose_ends(gap, pipe)
     grip = LOOSEST_GRIP + (1 - LOOSEST_GRIP) * (left_fixity + right_fixity) / 2
     fixed = factor.lowest * unit_hz(gap.length_m, pipe)
     share = "" if grip == 1 else f" x {grip:.2f} for how the ends grip"
@@ -40,6 +47,16 @@ def bent(gap: Gap, pipe: UniformPipe, left_fixity: float, right_fixity: float) -
         factor.source,
         f"{note}; {unequal}" if unequal else note,
     )
+
+
+def _refuse_loose_ends(gap: Gap, pipe: UniformPipe) -> None:
+    """The factors are those of ends held in all three directions."""
+    wanted = stiff_enough(gap, pipe)
+    for hold in (gap.left, gap.right):
+        if hold is not None and hold.along_n_per_m < wanted:
+            raise _no_formula(f"the {hold.place} lets the pipe of a bent span slide along itself")
+        if hold is not None and hold.sideways_n_per_m < wanted:
+            raise _no_formula(f"the {hold.place} lets the pipe of a bent span move sideways")
 
 
 def _branch(shape: Shape, factor: BendFactor) -> str:

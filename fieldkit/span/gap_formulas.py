@@ -20,6 +20,8 @@ EXACT_MASS = "exact beam equation; Rayleigh's short form agrees (Thomson; Rao; f
 TIP_MASS = "exact beam equation; values as in Mathematical Problems in Engineering 2017, 1568019"
 ROCKING = "Southwell-Dunkerley sum of a fixed cantilever and a rigid one on its root (from memory)"
 LOOSEST_GRIP = 0.6
+STIFF_ENOUGH = 2.0
+"""Support stiffness over that of the span: Wachel, Morton & Atkins 1990 (from memory)."""
 
 _ENDS = {(0, 0): "pinned-pinned", (1, 0): "clamped-pinned", (0, 1): "pinned-clamped"}
 
@@ -99,6 +101,12 @@ def cantilever(
         source,
         why,
     )
+
+
+def stiff_enough(gap: Gap, pipe: UniformPipe) -> float:
+    """Stiffness in N/m from which a support is all but rigid: twice 48 EI/L^3, 3 on an overhang."""
+    own = 48 if gap.left is not None and gap.right is not None else 3
+    return STIFF_ENOUGH * own * pipe.bending_n_m2 / gap.length_m**3
 
 
 def pinned_hz(gap: Gap, pipe: UniformPipe) -> float:

@@ -45,7 +45,15 @@ class Hold:
     """None where a rotational stiffness is stated."""
     rotation_n_m_per_rad: float
     across_n_per_m: float
-    """Least stiffness across the pipe."""
+    """Least stiffness in the directions that make it a hold."""
+    sideways_n_per_m: float
+    """Least stiffness across the pipe in any direction."""
+    along_n_per_m: float
+
+    @property
+    def place(self) -> str:
+        """Kind and station in words."""
+        return f"{self.kinds} at {self.at_m:.2f} m"
 
     def rotation_ratio(self, length_m: float, bending_n_m2: float) -> float:
         """k_r L/EI against turning across the pipe."""
@@ -167,9 +175,13 @@ def _friction(span: Span, spring: Spring) -> bool:
 
 
 def _hold(span: Span, at_m: float, indices: list[int], here: list[Spring]) -> Hold | None:
-    across = _across_stiffness(span, at_m, here)
+    stiffness = _translational(span, at_m, here)
+    tangent = span.centre_line.at(at_m)[1]
+    upright = "lateral" if is_vertical(tangent) else "vertical"
+    across, sideways = (_least(stiffness, tangent, axis) for axis in (upright, "rotation"))
     if across <= 0:
         return None
+    translation = (across, sideways, float(tangent @ stiffness @ tangent))
     supports = [span.supports[i] for i in indices]
     stated = [s.rotation for s in supports if isinstance(s.rotation, int | float)]
     implied = [KIND_FIXITY.get(s.kind, 0.0) for s in supports if isinstance(s.rotation, str)]
@@ -177,18 +189,22 @@ def _hold(span: Span, at_m: float, indices: list[int], here: list[Spring]) -> Ho
     kinds = " and ".join(s.kind if s.kind != "free" else "support" for s in supports)
     by_kind = max(implied, default=None)
     if math.isinf(rotation) or by_kind == 1:
-        return Hold(at_m, kinds, 1.0, math.inf, across)
+        return Hold(at_m, kinds, 1.0, math.inf, *translation)
     known = None if rotation > 0 else (by_kind or 0.0)
-    return Hold(at_m, kinds, known, rotation, across)
+    return Hold(at_m, kinds, known, rotation, *translation)
 
 
-def _across_stiffness(span: Span, at_m: float, here: list[Spring]) -> float:
-    """Least stiffness in the directions that must be held: vertical, or both ways on a riser."""
+def _translational(span: Span, at_m: float, here: list[Spring]) -> NDArray[np.float64]:
+    """Stiffness (3, 3) against moving, global axes."""
     tangent = span.centre_line.at(at_m)[1]
-    wanted = axis_vectors(tangent, "lateral" if is_vertical(tangent) else "vertical")
     stiffness = np.zeros((3, 3))
     for spring in here:
         if spring.axis not in ("rotation", "torsion"):
             rows = axis_vectors(tangent, spring.axis)
             stiffness += spring.stiffness * rows.T @ rows
-    return float(min(row @ stiffness @ row for row in wanted))
+    return stiffness
+
+
+def _least(stiffness: NDArray[np.float64], tangent: NDArray[np.float64], axis: str) -> float:
+    """Least stiffness along the vectors an axis means; ``rotation`` names both across the pipe."""
+    return float(min(row @ stiffness @ row for row in axis_vectors(tangent, axis)))

@@ -15,6 +15,7 @@ from dataclasses import replace
 
 from fieldkit.errors import Refusal
 from fieldkit.span import eigenvalues
+from fieldkit.span.axial import BUILT_AT_K
 from fieldkit.span.bent_formulas import bent
 from fieldkit.span.elements import cowper_shear_coefficient
 from fieldkit.span.gap_formulas import (
@@ -23,6 +24,7 @@ from fieldkit.span.gap_formulas import (
     cantilever,
     pinned_hz,
     pipe_data,
+    stiff_enough,
     unit_hz,
 )
 from fieldkit.span.gaps import Gap, Hold, UniformPipe, fixity, gaps, uniform_pipe
@@ -35,11 +37,9 @@ THREE_MOMENT = (
     "three-moment equation; Blevins, Formulas for Natural Frequency and Mode Shape, 1979, "
     "chapter 8 (from memory)"
 )
-STIFF_ENOUGH = 2.0
-"""Support stiffness over 48 EI/L^3: Wachel, Morton & Atkins 1990 (from memory)."""
 OFFSET_WORTH_A_NOTE_M = 0.05
 HEAT_WORTH_A_NOTE_K = 10.0
-BUILT_AT_K = 293.15
+MOST_LISTED = 3
 
 
 def estimate(span: Span, state: State) -> HandbookEstimate:
@@ -133,7 +133,7 @@ def _overhang(parts: tuple[Gap, ...], index: int, side: int, pipe: UniformPipe) 
     if behind is None:
         if own == 0:
             raise Refusal(
-                f"the pipe is held only by the {hold.kinds} at {hold.at_m:.2f} m, free to turn "
+                f"the pipe is held only by the {hold.place}, free to turn "
                 "there, so it swings and no handbook formula applies",
                 "enter the other supports, or how stiff this one is against turning (rotation)",
             )
@@ -202,11 +202,12 @@ def _shear_reduction(span: Span, length_m: float) -> float:
 def _remarks(
     span: Span, state: State, parts: tuple[Gap, ...], pipe: UniformPipe, left_by_shear: float
 ) -> list[str]:
-    found = [
-        f"the {hold.kinds} at {hold.at_m:.2f} m is softer than twice the span (48 EI/L^3), so the "
-        "true frequency is lower"
-        for hold in _soft_holds(parts, pipe)
-    ]
+    found = []
+    soft, loose = _soft_holds(parts, pipe)
+    if soft:
+        found.append(f"less than twice as stiff as the span, so lower in truth: {soft}")
+    if loose:
+        found.append(f"sideways modes may be lower, little holds the pipe that way: {loose}")
     if left_by_shear < 0.99:
         found.append(f"short for its diameter: shear lowers it by about {1 - left_by_shear:.0%}")
     if any(math.hypot(*mass.offset_m) > OFFSET_WORTH_A_NOTE_M for mass in span.masses):
@@ -216,11 +217,21 @@ def _remarks(
     return found
 
 
-def _soft_holds(parts: tuple[Gap, ...], pipe: UniformPipe) -> list[Hold]:
-    soft: dict[float, Hold] = {}
+def _soft_holds(parts: tuple[Gap, ...], pipe: UniformPipe) -> tuple[str, str]:
+    """Holds too soft for a rigid support: in the direction that counts, and only sideways."""
+    soft: dict[str, None] = {}
+    loose: dict[str, None] = {}
     for part in parts:
-        wanted = STIFF_ENOUGH * 48 * pipe.bending_n_m2 / part.length_m**3
+        wanted = stiff_enough(part, pipe)
         for hold in (part.left, part.right):
             if hold is not None and hold.across_n_per_m < wanted:
-                soft[hold.at_m] = hold
-    return list(soft.values())
+                soft[hold.place] = None
+            elif hold is not None and hold.sideways_n_per_m < wanted:
+                loose[hold.place] = None
+    return _listed(list(soft)), _listed(list(loose))
+
+
+def _listed(places: list[str]) -> str:
+    shown = places[:MOST_LISTED]
+    more = len(places) - len(shown)
+    return ", ".join(shown) + (f" and {more} more" if more else "")

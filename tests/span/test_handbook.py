@@ -254,10 +254,10 @@ def test_bent_spans_of_other_legs(legs):
     assert found.low_hz < lowest < 1.1 * found.high_hz
 
 
-def test_riser_between_guides_and_level_run():
+def test_riser_between_clamps_and_level_run():
     """A gap with one bend beside straight ones: each by its own formula, the lowest governs."""
     legs = square_legs([4.0, 5.0], ["+x", "+z"], 0.152)
-    supports = [(0.0, "anchor"), (2.0, "clamp"), (6.0, "guide"), (9.0, "anchor")]
+    supports = [(0.0, "anchor"), (2.0, "clamp"), (6.0, "clamp"), (9.0, "anchor")]
     span = Span(NPS4, STEEL, legs, tuple(Support(at, kind) for at, kind in supports))
     found = estimate(span, STATE)
     assert "L span" in found.formula
@@ -280,6 +280,25 @@ def test_bent_spans_without_formula(directions, lengths, masses, reason):
     ends = (Support(0.0, "anchor"), Support(sum(lengths), "anchor"))
     with pytest.raises(Refusal, match=reason):
         estimate(Span(NPS4, STEEL, legs, ends, masses), STATE)
+
+
+@pytest.mark.parametrize(
+    ("kind", "at", "reason"),
+    [("guide", 6.0, "slide along itself"), ("hanger", 2.0, "slide|sideways")],
+)
+def test_bent_gap_needs_ends_held_all_round(kind, at, reason):
+    """A guide on the riser lets the pipe slide: the factors of fixed ends would be too high."""
+    legs = square_legs([4.0, 5.0], ["+x", "+z"], 0.152)
+    supports = (Support(0.0, "anchor"), Support(at, kind), Support(9.0, "anchor"))
+    with pytest.raises(Refusal, match=reason):
+        estimate(Span(NPS4, STEEL, legs, supports), STATE)
+
+
+def test_rests_hold_little_sideways():
+    """The estimate is for up and down, and says that sideways may be lower."""
+    note = estimate(kinds((0, "rest"), (3, "rest"), (6, "rest"), pipe=NPS4), STATE).note
+    assert "sideways modes may be lower" in note
+    assert "rest at 3.00 m" in note
 
 
 def test_odd_angle_has_no_formula():
@@ -332,7 +351,7 @@ def test_soft_support_short_span_and_offset_are_said():
     mass = PointMass(1.0, 10.0, offset_m=(0.0, 0.0, 0.3))
     span = level_span(2.0, [Support(0.0, "anchor"), soft], (mass,), NPS4)
     note = estimate(span, STATE).note
-    assert "the support at 2.00 m is softer than twice the span" in note
+    assert "less than twice as stiff as the span, so lower in truth: support at 2.00 m" in note
     assert "shear lowers it" in note
     assert "offset" in note
 
