@@ -9,6 +9,7 @@ import math
 
 import numpy as np
 import pytest
+from scipy.optimize import brentq
 
 from fieldkit.span import eigenvalues
 from fieldkit.span.layout import Support
@@ -105,6 +106,20 @@ def test_model_with_rotational_springs(stiffness):
     exact = eigenvalues.pinned_with_rotational_springs(stiffness, 1)[0] ** 2
     assert found == pytest.approx(exact, rel=1e-4)
     assert found == pytest.approx(ROTATIONAL_SPRINGS[stiffness], rel=1e-4)
+
+
+@pytest.mark.parametrize("stiffness", [0.5, 2.0, 8.0])
+def test_stiffness_is_recovered_from_a_frequency(stiffness):
+    """A frequency synthesised by the exact root gives back its K through the model, within 1 %."""
+    measured = eigenvalues.on_end_springs(48 * stiffness, 1)[0] ** 2
+
+    def misfit(log_share):
+        k = 48 * math.exp(log_share) * own_stiffness(LENGTH)
+        ends = [Support(at, "free", k, RIGID, RIGID, 0.0) for at in (0.0, LENGTH)]
+        return model_lambda_squared(*ends) - measured
+
+    found = math.exp(brentq(misfit, math.log(stiffness / 5), math.log(stiffness * 5), xtol=1e-4))
+    assert found == pytest.approx(stiffness, rel=0.01)
 
 
 def test_model_finds_the_node_threshold():

@@ -58,6 +58,17 @@ def test_field_arithmetic():
     assert estimate(span, STATE).frequency_hz == pytest.approx(19.142, rel=1e-4)
 
 
+def test_field_arithmetic_of_a_stub():
+    """NPS 2 Sch 80 stub of 0.5 m, water filled, by hand: 197.77 Hz fixed."""
+    pipe = PipeSection(0.0603, 0.00554)
+    span = replace(
+        kinds((0, "nozzle"), length=0.5, pipe=pipe),
+        material=FIELD_STEEL,
+        contents_density_kg_per_m3=1000.0,
+    )
+    assert estimate(span, FULL).frequency_hz == pytest.approx(197.77, rel=1e-4)
+
+
 @pytest.mark.parametrize(
     ("left", "right", "squared"),
     [
