@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import numpy as np
+from numpy.typing import NDArray
 
 from fieldkit.detune.effort import pipe_mass_kg
 from fieldkit.detune.excitation import Goal
@@ -17,8 +18,11 @@ from fieldkit.detune.fixes import (
 )
 from fieldkit.errors import Refusal
 from fieldkit.quantity import show
-from fieldkit.span.layout import Span, State
+from fieldkit.span.layout import Span, State, axis_vectors
 from fieldkit.span.static import thermal_movement, weight_answer
+from fieldkit.span.supports import springs
+
+Array = NDArray[np.float64]
 
 ALWAYS = (
     "to be confirmed by the responsible piping engineer under the local code before any work; "
@@ -27,6 +31,8 @@ ALWAYS = (
 HEAVY_SHARE = 0.2
 """An added mass above this share of the pipe's own deserves a word."""
 NOTABLE_MOVEMENT_M = 0.5e-3
+NOTABLE_LOAD_N = 20.0
+_DIRECTIONS = ("vertical", "lateral", "axial")
 
 
 def cautions(
@@ -49,10 +55,7 @@ def cautions(
 
 
 def _stiffness_needed(change: Change, least_share: float, goal: Goal, units: str) -> str:
-    drawn = max(
-        (getattr(change, f"{axis}_n_per_m", None) or 0.0)
-        for axis in ("vertical", "lateral", "axial")
-    )
+    drawn = max((getattr(change, f"{axis}_n_per_m", None) or 0.0) for axis in _DIRECTIONS)
     if not drawn:
         return ""
     least = show(least_share * drawn, "stiffness", units, 2)
@@ -72,12 +75,12 @@ def _weight(change: Change, span: Span, running: State, units: str) -> list[str]
     found = []
     if abs(after.sag_m - before.sag_m) > max(0.05e-3, 0.1 * before.sag_m):
         found.append(
-            f"sag under weight goes from {show(before.sag_m, 'length', units, 2)} to "
-            f"{show(after.sag_m, 'length', units, 2)}"
+            f"sag under weight goes from {_small(before.sag_m, units)} to "
+            f"{_small(after.sag_m, units)}"
         )
     loads = [float(np.linalg.norm(load)) for _, load in after.support_loads]
     held = _support_number(change, span)
-    if held is not None and held < len(loads):
+    if held is not None and loads[held] >= NOTABLE_LOAD_N:
         found.append(
             f"this support carries about {loads[held] / 1e3:.2g} kN of weight if it is set with "
             "the line empty of strain; shim it so that it neither lifts nor hangs"
@@ -100,17 +103,37 @@ def _heat(change: Change, span: Span, tapped: State, running: State, units: str)
         movement = thermal_movement(span, tapped, running, station)
     except Refusal as refusal:
         return [f"thermal movement could not be computed: {refusal}"]
+    held = float(np.linalg.norm(_held_directions(change, span, station) @ movement))
     size = float(np.linalg.norm(movement))
-    if size < NOTABLE_MOVEMENT_M:
-        return []
-    parts = ", ".join(
-        f"{axis} {1e3 * value:+.1f} mm" for axis, value in zip("xyz", movement, strict=True)
-    )
-    return [
-        f"between tapped and running the pipe wants to move {show(size, 'length', units, 2)} here "
-        f"({parts}): a support that holds this back loads pipe and nozzles; use a guide with a "
-        "gap, or have the flexibility checked"
-    ]
+    if held >= NOTABLE_MOVEMENT_M:
+        return [
+            f"between {tapped.name} and {running.name} the pipe wants to move "
+            f"{_small(held, units)} in a direction this holds: it loads pipe and nozzles; use a "
+            "guide with a gap or a spring, or have the flexibility checked"
+        ]
+    if size >= NOTABLE_MOVEMENT_M:
+        return [
+            f"between {tapped.name} and {running.name} the pipe moves {_small(size, units)} here "
+            "across what this holds: leave it free to slide"
+        ]
+    return []
+
+
+def _held_directions(change: Change, span: Span, station_m: float) -> Array:
+    """Unit vectors (k, 3) that a support change restrains; a moved support holds every way."""
+    tangent = span.centre_line.at(station_m)[1]
+    axes = [a for a in _DIRECTIONS if getattr(change, f"{a}_n_per_m", None)]
+    if isinstance(change, MoveSupport):
+        own = {s.axis for s in springs(span) if s.support == change.index}
+        axes = [a for a in _DIRECTIONS if a in own]
+    if not axes:
+        return np.zeros((1, 3))
+    return np.concatenate([axis_vectors(tangent, axis) for axis in axes])
+
+
+def _small(length_m: float, units: str) -> str:
+    """A small movement: millimetres, or inches."""
+    return show(length_m, "length", units, 2) if units == "US" else f"{1e3 * length_m:.1f} mm"
 
 
 def _restrained_at(change: Change, span: Span) -> float | None:
