@@ -2,10 +2,19 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 from numpy.typing import NDArray
+
+from fieldkit.errors import Refusal
+from fieldkit.signal.polish import polished
+from fieldkit.signal.preparation import Prepared, prepare
+from fieldkit.signal.search import Found, pruned, search
+from fieldkit.signal.tones import tone_components
+from fieldkit.signal.traces import Component
+from fieldkit.signal.verdicts import Judged, judged
 
 
 @dataclass(frozen=True)
@@ -45,7 +54,7 @@ class Tone:
 
     frequency_hz: float
     strength: float
-    """Amplitude as a share of the strongest mode's (of the strongest tone's where there is none)."""
+    """Amplitude as a share of the strongest mode's, or of the strongest tone's without modes."""
 
 
 @dataclass(frozen=True)
@@ -64,3 +73,113 @@ class ModeEstimate:
     tones: tuple[Tone, ...]
     refused: tuple[RefusedMode, ...] = ()
     warnings: tuple[str, ...] = ()
+
+
+def estimate_modes(
+    records: Sequence[TapRecord], *, low_hz: float = 2.0, high_hz: float = 200.0
+) -> ModeEstimate:
+    """Modes between low and high from all taps of one direction together.
+
+    Poles are shared by the taps, amplitudes are free per tap; maximum likelihood on transform bins
+    weighted by the background. Frequencies are undamped natural frequencies. Raises Refusal where
+    there is no record.
+    """
+    if not records:
+        raise Refusal(
+            "no usable tap in these recordings",
+            "record at least three taps with a quiet second before the first and let each ring out",
+        )
+    ready = prepare(records, high_hz)
+    found = resolved(ready)
+    if not ready.has_background:
+        ready = ready.with_noise_from(found.parts)
+        found = resolved(ready, found)
+    found, fitted = polished(ready.traces, found, ready.region)
+    verdicts = judged(fitted, ready.traces, ready.lines)
+    return told(verdicts, found.parts, ready, low_hz, high_hz)
+
+
+def resolved(ready: Prepared, known: Found | None = None) -> Found:
+    """Search, then backward elimination."""
+    start = known.parts if known else tone_components(ready.lines, ready.traces)
+    return pruned(ready.traces, search(ready.traces, start, ready.region), ready.region)
+
+
+def told(
+    verdicts: Sequence[Judged],
+    parts: Sequence[Component],
+    ready: Prepared,
+    low_hz: float,
+    high_hz: float,
+) -> ModeEstimate:
+    """The estimate as the user gets it."""
+    inside = [v for v in verdicts if low_hz <= v.estimate.frequency_hz.value <= high_hz]
+    accepted = [v for v in inside if not v.reason]
+    strongest = max((float(v.energy.sum()) for v in accepted), default=0.0)
+    modes = [measured(v, strongest) for v in accepted]
+    steady = [p for p in parts if p.steady] + [v.part for v in inside if v.steady]
+    refused = [RefusedMode(v.estimate.frequency_hz.value, v.reason) for v in inside if v.reason]
+    return ModeEstimate(
+        tuple(sorted(modes, key=lambda m: m.frequency_hz)),
+        told_tones(steady, [v.part for v in accepted], low_hz, high_hz),
+        tuple(sorted(refused, key=lambda r: r.frequency_hz)),
+        tuple(warnings(accepted, ready)),
+    )
+
+
+def measured(verdict: Judged, strongest: float) -> MeasuredMode:
+    """One accepted component as a measured mode."""
+    estimate = verdict.estimate
+    return MeasuredMode(
+        estimate.frequency_hz.value,
+        estimate.frequency_hz.sd,
+        estimate.damping_ratio.value,
+        estimate.damping_ratio.sd,
+        taps=verdict.taps,
+        strength=float(verdict.energy.sum()) / strongest,
+    )
+
+
+def told_tones(
+    steady: Sequence[Component], modes: Sequence[Component], low_hz: float, high_hz: float
+) -> tuple[Tone, ...]:
+    """Tones between low and high, their amplitude as a share of the strongest mode's."""
+    inside = [p for p in steady if low_hz <= p.frequency_hz <= high_hz]
+    reference = [typical_amplitude(p) for p in (modes or inside)]
+    tones = [Tone(p.frequency_hz, typical_amplitude(p) / max(reference)) for p in inside]
+    return tuple(sorted(tones, key=lambda t: t.frequency_hz))
+
+
+def typical_amplitude(part: Component) -> float:
+    """Median over the taps."""
+    return float(np.median(np.abs(part.amplitudes)))
+
+
+def warnings(modes: Sequence[Judged], ready: Prepared) -> list[str]:
+    """What the user should know about how far these modes can be trusted."""
+    out = []
+    if len(ready.traces) == 1:
+        out.append("only one tap: nothing shows whether another blow gives the same modes")
+    if not ready.has_background:
+        out.append(
+            "no quiet time before the blow: steady tones cannot be told from modes for sure; "
+            "leave two quiet seconds before the first tap"
+        )
+    return out + [drift(v) for v in modes if v.estimate.scattered]
+
+
+def drift(verdict: Judged) -> str:
+    """How the taps disagree about one mode."""
+    frequency_hz, peaks = verdict.estimate.tap_frequencies_hz, verdict.estimate.tap_peaks
+    where = f"the taps disagree about the mode at {verdict.estimate.frequency_hz.value:.4g} Hz"
+    span = f"{frequency_hz.min():.4g} to {frequency_hz.max():.4g} Hz"
+    if len(peaks) < 3 or np.ptp(peaks) < 0.2 * peaks.max():
+        return f"{where} ({span}): its uncertainty is widened"
+    rank = float(np.corrcoef(peaks, frequency_hz)[0, 1])
+    if abs(rank) < 0.8:
+        return f"{where} ({span}): its uncertainty is widened"
+    way = "falls" if rank < 0 else "rises"
+    return (
+        f"{where} ({span}): the frequency {way} with the strength of the blow, as where a support "
+        "has play; tap softly, near the running amplitude"
+    )

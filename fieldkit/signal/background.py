@@ -1,0 +1,87 @@
+"""Noise density of what is there without a blow, steady lines left out."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Real = NDArray[np.float64]
+
+_SMOOTHING = 0.12
+_LEAST_HALF_WIDTH = 6
+MEDIAN_OF_MEAN = float(np.log(2))
+"""Median over mean of a periodogram value, which is exponentially distributed."""
+
+
+@dataclass(frozen=True)
+class NoiseDensity:
+    """One-sided power density against frequency, smooth."""
+
+    frequency_hz: Real
+    """(m,) rising, first one above 0."""
+    density: Real
+    """(m,) unit squared per hertz, all above 0."""
+
+    def at(self, frequency_hz: Real) -> Real:
+        """Density at the given frequencies, interpolated on a log scale; flat beyond the ends."""
+        log = np.interp(np.abs(frequency_hz), self.frequency_hz, np.log(self.density))
+        return np.asarray(np.exp(log))
+
+
+def noise_density(
+    segments: Sequence[Real], rate_hz: float, *, longest_s: float = 2.0
+) -> NoiseDensity | None:
+    """Density from quiet stretches by Welch's method, medians over time and over frequency.
+
+    The median over a window of frequencies passes over lines, which are modelled on their own. None
+    when all stretches together are too short to say anything.
+    """
+    length = min(max((len(s) for s in segments), default=0), int(longest_s * rate_hz))
+    if length < 32:
+        return None
+    spectra = [p for s in segments for p in periodograms(s, length, rate_hz)]
+    typical = np.median(np.array(spectra), axis=0)
+    frequency_hz = np.arange(1, len(typical)) * rate_hz / length
+    return NoiseDensity(frequency_hz, floor_over_frequency(typical[1:]))
+
+
+def periodograms(samples: Real, length: int, rate_hz: float) -> list[Real]:
+    """One-sided Hann periodograms of stretches of ``length`` samples that overlap by half."""
+    window = np.hanning(length + 1)[:-1]
+    scale = 2 / (rate_hz * np.sum(window**2))
+    starts = range(0, len(samples) - length + 1, max(length // 2, 1))
+    return [
+        scale * np.abs(np.fft.rfft(window * detrended(samples[i : i + length]))) ** 2
+        for i in starts
+    ]
+
+
+def detrended(samples: Real) -> Real:
+    """Samples less their straight line of least squares."""
+    ramp = np.linspace(-1, 1, len(samples))
+    slope = samples @ ramp / (ramp @ ramp)
+    return np.asarray(samples - samples.mean() - slope * ramp)
+
+
+def floor_over_frequency(density: Real) -> Real:
+    """Running median over a window that widens with frequency, corrected to the mean, never 0."""
+    at = floor_centres(len(density))
+    half = np.minimum(np.maximum(_LEAST_HALF_WIDTH, (_SMOOTHING * at).astype(int)), at + 2)
+    levels = np.array(
+        [np.median(density[max(i - h, 0) : i + h + 1]) for i, h in zip(at, half, strict=True)]
+    )
+    mean = levels / MEDIAN_OF_MEAN
+    least = max(float(mean.max()) * 1e-14, np.finfo(float).tiny * 1e20)
+    bins = np.arange(len(density))
+    return np.asarray(np.exp(np.interp(bins, at, np.log(np.maximum(mean, least)))))
+
+
+def floor_centres(count: int) -> NDArray[np.int64]:
+    """Bins at which the floor is evaluated: close together where windows are narrow."""
+    at = [0]
+    while at[-1] < count - 1:
+        at.append(min(count - 1, at[-1] + max(2, int(_SMOOTHING * at[-1] / 2))))
+    return np.array(at)

@@ -1,0 +1,91 @@
+"""Which poles are fitted together, over which bins and how long."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+
+from fieldkit.signal.bands import Band, band, subtract
+from fieldkit.signal.likelihood import Fit, fit
+from fieldkit.signal.traces import Component, Trace
+
+DECAYS_USED = 8.0
+_BANDWIDTHS = 16.0
+_LEAST_BINS = 16.0
+_TOGETHER = 4.0
+_MOST_TOGETHER = 5
+_MOST_BINS = 600.0
+_TONE_SHARE = 0.4
+"""A tone's amplitude is fitted anew only over this share of the longest record, else kept."""
+
+
+def span_s(parts: Sequence[Component], traces: Sequence[Trace]) -> float:
+    """How much of the record serves these poles: eight decays of the slowest."""
+    longest = max(t.duration_s for t in traces)
+    slowest = min((p.decay_per_s for p in parts if not p.steady), default=0.0)
+    return longest if slowest * longest <= DECAYS_USED else DECAYS_USED / slowest
+
+
+def limits_hz(parts: Sequence[Component], duration_s: float, top_hz: float) -> tuple[float, float]:
+    """Lowest and highest bin used for these poles together."""
+    reach = [
+        min(max(_BANDWIDTHS * p.half_power_hz, _LEAST_BINS / duration_s), _MOST_BINS / duration_s)
+        for p in parts
+    ]
+    low = min(p.frequency_hz - r for p, r in zip(parts, reach, strict=True))
+    high = max(p.frequency_hz + r for p, r in zip(parts, reach, strict=True))
+    return max(low, 0.0), min(high, top_hz)
+
+
+def overlapping(part: Component, others: Sequence[Component], duration_s: float) -> list[Component]:
+    """Modes so near that their poles cannot be fitted one without the other, nearest first."""
+
+    def closeness(other: Component) -> float:
+        width = part.half_power_hz + other.half_power_hz + 1 / duration_s
+        return abs(other.frequency_hz - part.frequency_hz) / width
+
+    near = [o for o in others if o is not part and not o.steady and closeness(o) < _TOGETHER]
+    return sorted(near, key=closeness)[: _MOST_TOGETHER - 1]
+
+
+def fit_together(
+    traces: Sequence[Trace],
+    active: Sequence[Component],
+    others: Sequence[Component],
+    top_hz: float,
+    *,
+    leftover_terms: int = 2,
+    over: Sequence[Component] | None = None,
+    steps: int = 25,
+) -> Fit:
+    """Fit active poles; others inside the band get new amplitudes, those outside are taken out.
+
+    ``over`` sets the bins from other components than the active ones, so that costs compare.
+    """
+    bins, passive = prepared(traces, over or active, others, top_hz)
+    terms = leftover_terms if bins.rows > 24 * len(traces) else min(leftover_terms, 1)
+    return fit(bins, active, passive, leftover_terms=terms, steps=steps)
+
+
+def prepared(
+    traces: Sequence[Trace],
+    around: Sequence[Component],
+    others: Sequence[Component],
+    top_hz: float,
+) -> tuple[Band, list[Component]]:
+    """The band around some poles, free of what stands outside, and what else stands inside."""
+    duration_s = span_s(around, traces)
+    low, high = limits_hz(around, duration_s, top_hz)
+    longest = max(t.duration_s for t in traces)
+    free = [o for o in others if not o.steady or duration_s > _TONE_SHARE * longest]
+    inside = [o for o in free if low <= o.frequency_hz <= high]
+    kept = {id(o) for o in inside}
+    outside = [o for o in others if id(o) not in kept]
+    bins = band(traces, low, high, duration_s)
+    return subtract(bins, outside), inside
+
+
+def needed_gain(rows: int, taps: int, threshold: float) -> float:
+    """Gain a further mode must bring: Bayesian information criterion, and never by chance."""
+    return max(threshold, (2 + 2 * taps) * float(np.log(max(rows, 2))))

@@ -1,0 +1,183 @@
+"""What happens within a blow: when the contact ends, and whether a second blow follows.
+
+A short linear predictor fitted to the ringing after the blow foresees free decay down to the noise.
+Run backwards it fails up to the end of the contact and not after it; run forwards it fails from the
+moment of a second blow on.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.signal.innovation import Level
+
+Real = NDArray[np.float64]
+
+SHARP = 8.0
+"""Error over its typical size: above it at a blow, below 7 where there is none."""
+SHORTEST_GAP_S = 0.0075
+LONGEST_GAP_S = 0.31
+_ORDERS = (24, 16, 12, 12, 12)
+_BEFORE_S = 0.03
+_LOOK_S = 0.42
+_TRIMS = 4
+_KEEP = 0.9
+_OVER_TYPICAL = 6.5
+_OVER_FORCE = 0.03
+_FOOT = 0.1
+_SAME_S = 0.015
+_OVER_PRECEDING = 2.5
+_LEAST_SHARE = 0.12
+_LONGEST_CONTACT_S = 0.015
+_SMEARED = 6
+"""Samples over which lowering the rate spreads a contact."""
+
+
+@dataclass(frozen=True)
+class Place:
+    """A sudden failure of prediction."""
+
+    at_s: float
+    sharpness: float
+    """Error over its typical size nearby."""
+
+
+@dataclass(frozen=True)
+class Later:
+    """A blow that follows while the first still rings."""
+
+    after_s: float
+    """Time after the first."""
+    share: float
+    """Of the first one's strength, roughly."""
+
+
+@dataclass(frozen=True)
+class Errors:
+    """Prediction error around a blow over its typical size, forwards or backwards."""
+
+    time_s: Real
+    """(n,) from the blow."""
+    size: Real
+    """(n,)"""
+    rate_hz: float
+
+
+def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place | None:
+    """Where, within a slack of a supposed blow, prediction fails most; None where nowhere.
+
+    All of the five finest levels are asked: the finest shows hard blows in quiet, the others soft
+    ones and those in noise. The time is that of the finest level that shows it.
+    """
+    best: Place | None = None
+    for level, order in zip(levels, _ORDERS, strict=False):
+        errors = prediction_errors(level, about_s, np.inf, order, backwards=False, slack_s=slack_s)
+        place = first_failure(errors, about_s, slack_s) if errors is not None else None
+        if place is not None and (best is None or place.sharpness > best.sharpness):
+            at_s = best.at_s if best is not None else place.at_s
+            best = Place(at_s, place.sharpness)
+    return best
+
+
+def first_failure(errors: Errors, about_s: float, slack_s: float) -> Place | None:
+    """Where the error first nears its peak, within a slack of the time asked about."""
+    slack_s += 4 / errors.rate_hz
+    near = (errors.time_s > -slack_s) & (errors.time_s < slack_s + SHORTEST_GAP_S)
+    size = np.where(near, errors.size, 0.0)
+    peak = float(size.max(initial=0.0))
+    if peak < SHARP:
+        return None
+    first = int(np.argmax(size > max(_OVER_TYPICAL, _FOOT * peak)))
+    return Place(about_s + float(errors.time_s[first]), peak)
+
+
+def contact_end_s(level: Level, onset_s: float, until_s: float) -> float:
+    """How long after the onset the force acts, by the finest level."""
+    errors = prediction_errors(level, onset_s, until_s, _ORDERS[0], backwards=True)
+    if errors is None:
+        return 2 / level.rate_hz
+    within = (errors.time_s > -0.002) & (errors.time_s < _LONGEST_CONTACT_S)
+    size = np.where(within, errors.size, 0.0)
+    acting = np.flatnonzero(size > max(_OVER_TYPICAL, _OVER_FORCE * float(size.max(initial=0.0))))
+    last_s = float(errors.time_s[acting[-1]]) if len(acting) else 0.0
+    return max(last_s, 0.0) + 2 / level.rate_hz
+
+
+def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list[Later]:
+    """Second blows at any of the five finest levels, in order of time."""
+    found: list[Later] = []
+    for level, order in zip(levels, _ORDERS, strict=False):
+        errors = prediction_errors(level, onset_s, until_s, order, backwards=False)
+        fresh = jumps(errors, order) if errors is not None else []
+        for one in fresh:
+            same = [k for k in found if abs(one.after_s - k.after_s) < _SAME_S]
+            found = [k for k in found if k not in same]
+            found.append(max([one, *same], key=lambda k: k.share))
+    return sorted(found, key=lambda f: f.after_s)
+
+
+def prediction_errors(
+    level: Level,
+    onset_s: float,
+    until_s: float,
+    order: int,
+    *,
+    backwards: bool,
+    slack_s: float = 0.0,
+) -> Errors | None:
+    """Errors from a little before the blow on; None where the stretch is too short to tell."""
+    rate = level.rate_hz
+    first = max(int((onset_s - _BEFORE_S - slack_s) * rate) - order, 0)
+    last = min(int(min(onset_s + _LOOK_S + slack_s, until_s) * rate), len(level.samples))
+    order = min(order, (last - first) // 8)
+    if order < 2:
+        return None
+    stretch = level.samples[first:last]
+    size = robust_errors(stretch[::-1], order)[::-1] if backwards else robust_errors(stretch, order)
+    return Errors((first + np.arange(len(size))) / rate - onset_s, size, rate)
+
+
+def robust_errors(stretch: Real, order: int) -> Real:
+    """(n,) error of the least-squares predictor fitted where it works; over its median there.
+
+    Trimmed least squares: the samples it predicts worst, which hold the blows, are left out. The
+    first ``order`` samples have no past and get 0.
+    """
+    rows = np.lib.stride_tricks.sliding_window_view(stretch, order + 1)
+    past, now = rows[:, :-1], rows[:, -1]
+    ridge = (1e-10 * float(np.sum(stretch**2)) + 1e-280) * np.eye(order)
+    kept = np.ones(len(now), bool)
+    error = now
+    for _ in range(_TRIMS):
+        a = past[kept]
+        weights = np.linalg.solve(a.T @ a + ridge, a.T @ now[kept])
+        error = np.abs(now - past @ weights)
+        kept = error <= np.quantile(error, _KEEP)
+    typical = max(float(np.median(error)), float(np.abs(stretch).max()) * 1e-7, 1e-280)
+    return np.concatenate([np.zeros(order), error / typical])
+
+
+def jumps(errors: Errors, order: int) -> list[Later]:
+    """Sudden rises of the forward error after the first blow, each against the first."""
+    smeared_s = max(SHORTEST_GAP_S, (order + _SMEARED) / errors.rate_hz)
+    at_first = (errors.time_s > -smeared_s) & (errors.time_s < smeared_s)
+    first = float(errors.size[at_first].max(initial=0.0))
+    near = max(int(0.0015 * errors.rate_hz), 1)
+    wide = max(int(0.006 * errors.rate_hz), 3)
+    loud = errors.size > max(_OVER_TYPICAL, _LEAST_SHARE * first)
+    inside = (errors.time_s > smeared_s) & (errors.time_s < LONGEST_GAP_S)
+    ahead = np.lib.stride_tricks.sliding_window_view(np.pad(errors.size, (0, wide)), wide + 1)
+    peak = ahead.max(axis=1)
+    found: list[Later] = []
+    for i in np.flatnonzero(loud & inside):
+        preceding = float(errors.size[max(i - near - wide, 0) : max(i - near + 1, 1)].max())
+        after_s = float(errors.time_s[i])
+        if peak[i] > _OVER_PRECEDING * preceding and not (
+            found and after_s - found[-1].after_s < 0.01
+        ):
+            found.append(Later(after_s, float(peak[i]) / max(first, 1e-300)))
+    return found

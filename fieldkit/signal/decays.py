@@ -1,0 +1,46 @@
+"""Damped exponentials, sampled, and their exact discrete Fourier transforms.
+
+With z = exp(p / fs) and w the angle of a bin per sample, exp(p t) over N samples transforms to
+(1 - q^N) / (1 - q) with q = z exp(-iw): no approximation, no filter, no window.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+Complex = NDArray[np.complex128]
+Real = NDArray[np.float64]
+
+_BLOCK = 128
+_NEAR_ONE = 1e-4
+"""Of N |1 - q|: below it the geometric sums are taken from their series."""
+
+
+def geometric(ratio: Complex, last: Complex, count: Real) -> tuple[Complex, Complex]:
+    """Sums of q^n and of n q^n over n = 0 .. N - 1, elementwise.
+
+    ``ratio`` is q, ``last`` q^N and ``count`` N, all of shapes that broadcast to that of q.
+    """
+    gap = 1 - ratio
+    near = np.abs(gap) * count < _NEAR_ONE
+    safe = np.where(near, 1.0, gap)
+    plain = (1 - last) / safe
+    ramp = (ratio * plain - count * last) / safe
+    if not near.any():
+        return plain, ramp
+    plain_near = count * (1 - gap * (count - 1) / 2)
+    ramp_near = count * (count - 1) / 2 * (1 - gap * (2 * count - 1) / 3)
+    return np.where(near, plain_near, plain), np.where(near, ramp_near, ramp)
+
+
+def damped(exponent: complex, count: int) -> Complex:
+    """(count,) samples exp(exponent * n), by blocks: one multiplication a sample."""
+    fine = np.exp(exponent * np.arange(_BLOCK))
+    coarse = np.exp(exponent * _BLOCK * np.arange(-(-count // _BLOCK)))
+    return np.outer(coarse, fine).ravel()[:count]
+
+
+def damping_without_window(zeta_measured: float, tau_s: float, frequency_hz: float) -> float:
+    """Damping ratio with the share of an exponential window exp(-t / tau_s) taken out."""
+    return zeta_measured - 1 / (tau_s * 2 * np.pi * frequency_hz)

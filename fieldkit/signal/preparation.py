@@ -1,0 +1,124 @@
+"""From tap records to traces: one analysis rate, the background's noise and its steady lines."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+from typing import Protocol
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.signal.background import NoiseDensity, noise_density
+from fieldkit.signal.decimation import decimate
+from fieldkit.signal.scan import Region
+from fieldkit.signal.tones import Line, background_lines
+from fieldkit.signal.traces import Component, Trace, residual
+
+Real = NDArray[np.float64]
+
+_RATE_OVER_REPORTED = 24.0
+_ANALYSED_OVER_REPORTED = 3.0
+_USABLE_OF_RATE = 0.45
+_LEAST_BACKGROUND_S = 0.5
+_LONGEST_BACKGROUND_S = 30.0
+_RANGE_DB = 100.0
+"""Noise is never taken as lower than this below the peak of the trace."""
+
+
+class Record(Protocol):
+    """What is needed of a tap record."""
+
+    @property
+    def samples(self) -> Real:
+        """(n,) free decay."""
+
+    @property
+    def rate_hz(self) -> float:
+        """Samples a second."""
+
+    @property
+    def background(self) -> Real:
+        """(m,) samples without a blow."""
+
+
+@dataclass(frozen=True)
+class Prepared:
+    """Everything the search starts from."""
+
+    traces: tuple[Trace, ...]
+    lines: tuple[Line, ...]
+    region: Region
+    has_background: bool
+
+    def with_noise_from(self, parts: Sequence[Component]) -> Prepared:
+        """Noise density read anew from what the components leave."""
+        traces = []
+        for tap, trace in enumerate(self.traces):
+            left = residual(trace, tap, parts)
+            fresh = floored(noise_density([left], trace.rate_hz), trace.samples, trace.rate_hz)
+            traces.append(replace(trace, noise=fresh))
+        return replace(self, traces=tuple(traces))
+
+
+def prepare(records: Sequence[Record], high_hz: float) -> Prepared:
+    """Traces at the analysis rate; the region reaches to three times the reported range.
+
+    A strong mode just above the range would spoil the fit of those inside it.
+    """
+    top_hz = min(
+        _ANALYSED_OVER_REPORTED * high_hz, min(_USABLE_OF_RATE * r.rate_hz for r in records)
+    )
+    lowered = [lower(r.samples, r.rate_hz, high_hz, top_hz) for r in records]
+    quiet = {id(r.background): quiet_stretch(r, high_hz, top_hz) for r in records}
+    noises = {key: noise_density([s], rate_hz) for key, (s, rate_hz) in quiet.items()}
+    has_background = all(n is not None for n in noises.values())
+    traces = tuple(
+        Trace(samples, rate_hz, trace_noise(noises[id(r.background)], samples, rate_hz))
+        for r, (samples, rate_hz) in zip(records, lowered, strict=True)
+    )
+    longest = max(t.duration_s for t in traces)
+    region = Region(1 / longest, top_hz, 1 / longest)
+    lines = lines_of(quiet[id(records[0].background)], noises[id(records[0].background)], top_hz)
+    return Prepared(traces, lines, region, has_background)
+
+
+def lower(samples: Real, rate_hz: float, high_hz: float, top_hz: float) -> tuple[Real, float]:
+    """Samples at the analysis rate."""
+    return decimate(
+        np.asarray(samples, float),
+        rate_hz,
+        keep_hz=top_hz,
+        wanted_rate_hz=_RATE_OVER_REPORTED * high_hz,
+    )
+
+
+def quiet_stretch(record: Record, high_hz: float, top_hz: float) -> tuple[Real, float]:
+    """The background at the analysis rate: its last part, empty where it is too short to use."""
+    samples = record.background[-int(_LONGEST_BACKGROUND_S * record.rate_hz) :]
+    if len(samples) < _LEAST_BACKGROUND_S * record.rate_hz:
+        return np.zeros(0), record.rate_hz
+    return lower(samples, record.rate_hz, high_hz, top_hz)
+
+
+def trace_noise(known: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:
+    """The background's density, else that of the last third of the trace itself."""
+    tail = samples[2 * len(samples) // 3 :]
+    return floored(known or noise_density([tail], rate_hz), samples, rate_hz)
+
+
+def floored(noise: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:
+    """A density that is nowhere below the range of any sensor."""
+    least_rms = float(np.abs(samples).max(initial=0.0)) * 10 ** (-_RANGE_DB / 20)
+    least = max(least_rms**2 / (rate_hz / 2), 1e-280)
+    if noise is None:
+        return NoiseDensity(np.array([1.0, rate_hz / 2]), np.full(2, least))
+    return replace(noise, density=np.maximum(noise.density, least))
+
+
+def lines_of(
+    quiet: tuple[Real, float], noise: NoiseDensity | None, top_hz: float
+) -> tuple[Line, ...]:
+    """Steady lines of a background, none where there is no background."""
+    samples, rate_hz = quiet
+    return background_lines(samples, rate_hz, noise, top_hz) if noise is not None else ()

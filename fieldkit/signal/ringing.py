@@ -1,0 +1,93 @@
+"""How long a blow rings over the background, by short-time spectra."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.signal.innovation import Level
+
+Real = NDArray[np.float64]
+
+_FRAME_S = 0.25
+_LEAST_FRAMES = 4
+_LOW_SHARE = 0.2
+RINGS = 20.0
+"""Power over the background's, in any one bin, that noise alone hardly reaches."""
+
+
+@dataclass(frozen=True)
+class Ringing:
+    """Short-time power against the background's."""
+
+    time_s: Real
+    """(f,) centres of the frames."""
+    over: Real
+    """(f,) largest ratio of power to background over all bins."""
+    excess: Real
+    """(f,) power above the background, all bins together."""
+
+    def between(self, first_s: float, last_s: float) -> NDArray[np.intp]:
+        """Frames whose whole stretch lies between two times."""
+        half = _FRAME_S / 2
+        return np.flatnonzero((self.time_s - half >= first_s) & (self.time_s + half <= last_s))
+
+    def end_s(self, start_s: float, limit_s: float) -> float:
+        """When the ringing that begins at start has sunk into the background."""
+        frames = self.between(start_s, limit_s)
+        quiet = self.over[frames] < RINGS
+        settled = np.flatnonzero(quiet[:-2] & quiet[1:-1] & quiet[2:])
+        if not len(settled):
+            return limit_s
+        return float(min(self.time_s[frames[settled[0]]] + _FRAME_S, limit_s))
+
+    def strongest(self, start_s: float, limit_s: float) -> float:
+        """Largest ratio to the background in a stretch; infinite where no frame fits in."""
+        frames = self.between(start_s, limit_s)
+        return float(self.over[frames].max()) if len(frames) else np.inf
+
+    def last(self, start_s: float, limit_s: float) -> float:
+        """Ratio to the background just before a limit; infinite where no frame fits in."""
+        frames = self.between(start_s, limit_s)
+        return float(np.median(self.over[frames[-3:]])) if len(frames) else np.inf
+
+    def drop_db(self, start_s: float, limit_s: float) -> float:
+        """How far the ringing falls from its start to the limit; 0 where no two frames fit in."""
+        frames = self.between(start_s, limit_s)
+        if len(frames) < 2:
+            return 0.0
+        first, last = self.excess[frames[0]], self.excess[frames[-1]]
+        return float(10 * np.log10(max(first, 1e-300) / max(last, 1e-300)))
+
+
+def ringing(level: Level, background_s: tuple[float, float]) -> Ringing:
+    """Short-time picture of a recording; without background its quietest frames stand for it."""
+    length = max(int(_FRAME_S * level.rate_hz), 8)
+    hop = max(length // 4, 1)
+    if len(level.samples) < length:
+        return Ringing(np.zeros(0), np.zeros(0), np.zeros(0))
+    frames = np.lib.stride_tricks.sliding_window_view(level.samples, length)[::hop]
+    window = np.hanning(length + 1)[:-1]
+    spectra: NDArray[np.complex128] = np.fft.rfft(frames * window, axis=1)[:, 1:]
+    power: Real = np.asarray(spectra.real**2 + spectra.imag**2, dtype=np.float64)
+    time_s = (np.arange(len(frames)) * hop + length / 2) / level.rate_hz
+    quiet = background_power(power, time_s, background_s)
+    ratio = power / quiet
+    excess = np.maximum(power - 3 * quiet, 0).sum(axis=1)
+    return Ringing(time_s, ratio.max(axis=1), excess)
+
+
+def background_power(power: Real, time_s: Real, background_s: tuple[float, float]) -> Real:
+    """(bins,) mean power of the background, smoothed upwards over neighbouring bins."""
+    half = _FRAME_S / 2
+    inside = (time_s - half >= background_s[0]) & (time_s + half <= background_s[1])
+    if np.count_nonzero(inside) >= _LEAST_FRAMES:
+        mean = power[inside].mean(axis=0)
+    else:
+        mean = np.quantile(power, _LOW_SHARE, axis=0) / -np.log1p(-_LOW_SHARE)
+    edged = np.pad(mean, 1, mode="edge")
+    smooth = np.maximum(mean, (edged[:-2] + edged[1:-1] + edged[2:]) / 3)
+    least = max(float(power.max()) * 1e-12, 1e-300)
+    return np.asarray(np.maximum(smooth, least))

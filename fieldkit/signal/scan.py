@@ -1,0 +1,145 @@
+"""Where a further damped exponential would explain most: likelihood ratios over pole places.
+
+For each decay of a geometric series the residual is multiplied by exp(-decay t) and transformed:
+the matched filter of a damped exponential. Its power over the power noise would give, summed over
+taps, is the gain in twice the log-likelihood: chi-squared with 2 K degrees of freedom in noise.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.signal.traces import Trace
+
+Real = NDArray[np.float64]
+
+FALSE_PER_SCAN = 1e-3
+GREATEST_DAMPING = 0.25
+_SETTLE_S = 0.003
+_LEVEL_BLOCK = 48
+
+
+@dataclass(frozen=True)
+class Candidate:
+    """A place where a mode may be."""
+
+    pole: complex
+    gain: float
+    """Gain in twice the log-likelihood, all taps."""
+
+
+@dataclass(frozen=True)
+class Region:
+    """What is searched."""
+
+    low_hz: float
+    high_hz: float
+    slowest_per_s: float
+    """Smallest decay in the bank."""
+
+
+def scan(leftovers: Sequence[Trace], region: Region, most: int = 8) -> list[Candidate]:
+    """Candidates above the threshold, strongest first, none in the skirt of a stronger one.
+
+    ``leftovers`` are the taps with what is known already taken out.
+    """
+    found: list[Candidate] = []
+    cells = 0
+    decay = region.slowest_per_s
+    while decay <= GREATEST_DAMPING * 2 * np.pi * region.high_hz:
+        frequency_hz, gain = gain_over_frequency(leftovers, decay)
+        lowest = max(region.low_hz, decay / (2 * np.pi * GREATEST_DAMPING))
+        keep = (frequency_hz >= lowest) & (frequency_hz <= region.high_hz)
+        cells += int(np.count_nonzero(keep))
+        found += peaks(frequency_hz[keep], gain[keep], decay)
+        decay *= 2
+    least = threshold(len(leftovers), cells)
+    return apart([c for c in found if c.gain > least], most)
+
+
+def threshold(taps: int, cells: int) -> float:
+    """Gain that noise passes with chance FALSE_PER_SCAN in a scan of so many cells."""
+    from scipy.special import chdtri
+
+    return float(chdtri(2 * taps, FALSE_PER_SCAN / max(cells, 1)))
+
+
+def gain_over_frequency(traces: Sequence[Trace], decay: float) -> tuple[Real, Real]:
+    """(m,) frequencies and gains for one decay."""
+    longest = max(t.duration_s for t in traces)
+    span_s = fast_span_s(8 / decay if 8 / decay < longest else 2 * longest, traces[0].rate_hz)
+    gains = [tap_gain(t, decay, span_s) for t in traces]
+    count = min(len(g) for g in gains)
+    total = np.sum([g[:count] for g in gains], axis=0)
+    return np.arange(count) / span_s, total / excess(total, 2.0 * len(traces))
+
+
+def fast_span_s(span_s: float, rate_hz: float) -> float:
+    """The next longer span whose number of samples has a fast transform."""
+    from scipy.fft import next_fast_len
+
+    return next_fast_len(max(int(np.ceil(span_s * rate_hz)), 8), real=True) / rate_hz
+
+
+def tap_gain(trace: Trace, decay: float, span_s: float) -> Real:
+    """(m,) gain of one tap on frequencies 1 / span_s apart."""
+    points = round(span_s * trace.rate_hz)
+    time_s = np.arange(min(points, len(trace.samples))) / trace.rate_hz
+    window = np.exp(-decay * time_s) * settling(time_s, decay)
+    power = np.abs(np.fft.rfft(window * trace.samples[: len(time_s)], points)) ** 2
+    density = trace.noise.at(np.arange(len(power)) / span_s)
+    return np.asarray(4 * power / (trace.rate_hz * density * np.sum(window**2)))
+
+
+def settling(time_s: Real, decay: float) -> Real:
+    """Half-cosine rise over the first moments, where leftovers of the contact may stand."""
+    rise_s = min(_SETTLE_S, 0.1 / decay)
+    return np.asarray(0.5 - 0.5 * np.cos(np.pi * np.minimum(time_s / rise_s, 1.0)))
+
+
+def excess(gain: Real, expected_mean: float) -> Real:
+    """How far the surroundings of each bin stand above what noise gives; at least 1."""
+    from scipy.special import chdtri
+
+    blocks = len(gain) // _LEVEL_BLOCK
+    if blocks < 1:
+        return np.maximum(np.full_like(gain, np.median(gain)) / chdtri(expected_mean, 0.5), 1.0)
+    used = gain[: blocks * _LEVEL_BLOCK].reshape(blocks, _LEVEL_BLOCK)
+    medians = np.median(used, axis=1)
+    edged = np.pad(medians, 1, mode="edge")
+    medians = np.minimum(medians, np.maximum(edged[:-2], edged[2:]))
+    centres = (np.arange(blocks) + 0.5) * _LEVEL_BLOCK
+    level = np.interp(np.arange(len(gain)), centres, medians)
+    return np.maximum(level / float(chdtri(expected_mean, 0.5)), 1.0)
+
+
+def peaks(frequency_hz: Real, gain: Real, decay: float) -> list[Candidate]:
+    """Local maxima of one row of the bank."""
+    if len(gain) < 3:
+        return []
+    inner = gain[1:-1]
+    at = np.flatnonzero((inner > gain[:-2]) & (inner >= gain[2:])) + 1
+    at = at[np.argsort(gain[at])[::-1][:60]]
+    return [Candidate(complex(-decay, 2 * np.pi * frequency_hz[i]), float(gain[i])) for i in at]
+
+
+def apart(candidates: list[Candidate], most: int) -> list[Candidate]:
+    """The strongest ones that are not the skirt of a stronger one."""
+    chosen: list[Candidate] = []
+    for one in sorted(candidates, key=lambda c: -c.gain):
+        if len(chosen) == most:
+            break
+        if all(one.gain > 6 * skirt(other, one) for other in chosen):
+            chosen.append(one)
+    return chosen
+
+
+def skirt(strong: Candidate, weak: Candidate) -> float:
+    """Gain a strong pole leaks into the matched filter of a weaker one's place."""
+    width = (strong.pole.real + weak.pole.real) ** 2
+    distance = (strong.pole.imag - weak.pole.imag) ** 2
+    return strong.gain * width / (width + distance) * 4

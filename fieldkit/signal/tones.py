@@ -1,0 +1,92 @@
+"""Steady lines in the background: mains and its multiples, a machine that still runs."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.signal.background import NoiseDensity, detrended
+from fieldkit.signal.bands import band, subtract
+from fieldkit.signal.likelihood import fit
+from fieldkit.signal.traces import Component, Trace, component
+
+Real = NDArray[np.float64]
+
+FALSE_PER_BACKGROUND = 1e-3
+_PADDING = 4
+_MOST_TONES = 40
+
+
+@dataclass(frozen=True)
+class Line:
+    """A steady line of the background."""
+
+    frequency_hz: float
+    amplitude: float
+    resolution_hz: float
+    """One over the length of background it was read from."""
+
+
+def background_lines(
+    samples: Real, rate_hz: float, noise: NoiseDensity, high_hz: float
+) -> tuple[Line, ...]:
+    """Lines of a quiet stretch that stand clear of its noise, strongest first."""
+    from scipy.special import chdtri
+
+    count = len(samples)
+    window = np.blackman(count + 1)[:-1]
+    spectrum = np.fft.rfft(window * detrended(samples), _PADDING * count)
+    frequency_hz = np.arange(len(spectrum)) * rate_hz / (_PADDING * count)
+    expected = noise.at(np.maximum(frequency_hz, 1e-6)) * rate_hz * np.sum(window**2) / 4
+    score = np.abs(spectrum) ** 2 / expected
+    least = float(chdtri(2, FALSE_PER_BACKGROUND / max(count * high_hz * 2 / rate_hz, 1)))
+    inner = score[1:-1]
+    tops = (inner > score[:-2]) & (inner >= score[2:]) & (inner > 1.5 * least)
+    at = np.flatnonzero(tops & (frequency_hz[1:-1] < high_hz)) + 1
+    resolution_hz = rate_hz / count
+    lines: list[Line] = []
+    for i in at[np.argsort(score[at])[::-1]]:
+        line = interpolated(spectrum, int(i), rate_hz / (_PADDING * count), window, resolution_hz)
+        if clear_of(line, lines) and len(lines) < _MOST_TONES:
+            lines.append(line)
+    return tuple(lines)
+
+
+def interpolated(
+    spectrum: NDArray[np.complex128], at: int, spacing_hz: float, window: Real, resolution_hz: float
+) -> Line:
+    """The top of a peak by a parabola through three log magnitudes."""
+    low, top, high = np.log(np.abs(spectrum[at - 1 : at + 2]) + 1e-300)
+    shift = 0.5 * (low - high) / min(low - 2 * top + high, -1e-12)
+    amplitude = 2 * np.exp(top - 0.25 * (low - high) * shift) / window.sum()
+    return Line(float((at + shift) * spacing_hz), float(amplitude), resolution_hz)
+
+
+def clear_of(line: Line, stronger: Sequence[Line]) -> bool:
+    """False within the window's main lobe or first side lobes of a much stronger line."""
+    return all(
+        abs(line.frequency_hz - s.frequency_hz) > 4 * line.resolution_hz
+        and line.amplitude > 2e-3 * s.amplitude
+        for s in stronger
+        if abs(line.frequency_hz - s.frequency_hz) < 12 * line.resolution_hz
+    )
+
+
+def tone_components(lines: Sequence[Line], traces: Sequence[Trace]) -> list[Component]:
+    """The lines as steady components, their amplitudes fitted to each tap."""
+    parts = [component(2j * np.pi * line.frequency_hz, len(traces), steady=True) for line in lines]
+    for _ in range(2):
+        parts = [refitted(p, [o for o in parts if o is not p], traces) for p in parts]
+    return parts
+
+
+def refitted(tone: Component, others: Sequence[Component], traces: Sequence[Trace]) -> Component:
+    """A tone with its amplitude and slow wander fitted anew beside the present others."""
+    duration_s = max(t.duration_s for t in traces)
+    reach = 16 / duration_s
+    bins = band(traces, max(tone.frequency_hz - reach, 0), tone.frequency_hz + reach, duration_s)
+    result = fit(subtract(bins, others), [], [tone], leftover_terms=2)
+    return result.passive[0]

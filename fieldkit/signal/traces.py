@@ -1,0 +1,116 @@
+"""Free decays made ready for fitting, and what has been found in them so far."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.signal.background import NoiseDensity
+from fieldkit.signal.decays import damped
+
+Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+
+
+@dataclass(frozen=True)
+class Trace:
+    """One tap's free decay at the analysis rate."""
+
+    samples: Real
+    """(n,)"""
+    rate_hz: float
+    noise: NoiseDensity
+    spectra: dict[int, Complex] = field(default_factory=dict, compare=False, repr=False)
+    """Transforms of the first so many samples, kept because each is used often."""
+
+    @property
+    def duration_s(self) -> float:
+        """Length in time."""
+        return len(self.samples) / self.rate_hz
+
+    def spectrum(self, count: int) -> Complex:
+        """(count // 2 + 1,) transform of the first ``count`` samples."""
+        if count not in self.spectra:
+            self.spectra[count] = np.fft.rfft(self.samples[:count])
+        return self.spectra[count]
+
+
+@dataclass(frozen=True)
+class Component:
+    """A damped exponential or steady tone in K taps: Re[(a + b t) exp(p t)] with p = poles."""
+
+    poles: Complex
+    """(K,) 1/s; equal for all taps unless the taps were seen to disagree."""
+    amplitudes: Complex
+    """(K,) unit of the samples, at the start of each tap."""
+    slopes: Complex
+    """(K,) unit per second; 0 except for tones that wander."""
+    steady: bool = False
+    """True for a tone: no decay, in the fit at a fixed frequency."""
+
+    @property
+    def pole(self) -> complex:
+        """The pole shared by the taps."""
+        return complex(np.mean(self.poles))
+
+    @property
+    def frequency_hz(self) -> float:
+        """Damped natural frequency: where its line stands in a spectrum."""
+        return float(self.pole.imag / (2 * np.pi))
+
+    @property
+    def natural_hz(self) -> float:
+        """Undamped natural frequency."""
+        return float(abs(self.pole) / (2 * np.pi))
+
+    @property
+    def decay_per_s(self) -> float:
+        """Decay rate."""
+        return float(-self.pole.real)
+
+    @property
+    def damping_ratio(self) -> float:
+        """Decay rate over undamped angular frequency."""
+        return self.decay_per_s / abs(self.pole)
+
+    @property
+    def half_power_hz(self) -> float:
+        """Half-power bandwidth."""
+        return self.decay_per_s / np.pi
+
+    def with_pole(self, pole: complex) -> Component:
+        """The same with one pole for all taps."""
+        return replace(self, poles=np.full_like(self.poles, pole))
+
+
+def component(pole: complex, taps: int, *, steady: bool = False) -> Component:
+    """A component of no amplitude yet."""
+    nothing = np.zeros(taps, complex)
+    return Component(np.full(taps, pole), nothing, nothing, steady)
+
+
+def residual(trace: Trace, tap: int, components: Sequence[Component]) -> Real:
+    """(n,) what the components leave of tap number ``tap``."""
+    left = trace.samples.copy()
+    for part in components:
+        left -= sampled(part, tap, len(left), trace.rate_hz)
+    return left
+
+
+def sampled(part: Component, tap: int, count: int, rate_hz: float) -> Real:
+    """(count,) samples of a component in one tap."""
+    wave = damped(part.poles[tap] / rate_hz, count)
+    if part.slopes[tap] == 0:
+        return np.asarray((part.amplitudes[tap] * wave).real)
+    time_s = np.arange(count) / rate_hz
+    return np.asarray(((part.amplitudes[tap] + part.slopes[tap] * time_s) * wave).real)
+
+
+def decay_energy(part: Component, traces: Sequence[Trace]) -> Real:
+    """(K,) integral of the squared decay over each trace, unit squared seconds."""
+    rate = 2 * np.maximum(-part.poles.real, 1e-9)
+    durations = np.array([t.duration_s for t in traces])
+    return np.asarray(np.abs(part.amplitudes) ** 2 / 2 * -np.expm1(-rate * durations) / rate)

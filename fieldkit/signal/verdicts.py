@@ -1,0 +1,129 @@
+"""Is a fitted component a mode? If not, why, in words for the user."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.signal.covariance import PoleEstimate, pole_estimate
+from fieldkit.signal.polish import Fitted
+from fieldkit.signal.tones import Line
+from fieldkit.signal.traces import Component, Trace, decay_energy
+
+Real = NDArray[np.float64]
+
+LARGEST_DAMPING = 0.2
+LARGEST_RELATIVE_SD = 0.28
+_SEEN = 15.0
+_WELL_EXPECTED = 60.0
+_OVER_LINE = 3.0
+_LINE_WANDER = 2e-3
+_MAINS_HZ = (50.0, 60.0)
+_HARDLY_DECAYS = 0.5
+
+
+@dataclass(frozen=True)
+class Judged:
+    """A fitted component with its values and what speaks against it."""
+
+    part: Component
+    estimate: PoleEstimate
+    energy: Real
+    """(K,) decay energy in each tap."""
+    gain: Real
+    """(K,) gain in twice the log-likelihood each tap alone gives it."""
+    reason: str
+    """Empty for a mode."""
+    steady: bool = False
+    """Refused because it is a steady tone."""
+
+    @property
+    def taps(self) -> int:
+        """Number of taps in which it is seen."""
+        return max(int(np.count_nonzero(self.gain > _SEEN)), 1)
+
+
+def judged(
+    fitted: Sequence[Fitted], traces: Sequence[Trace], lines: Sequence[Line]
+) -> list[Judged]:
+    """Every fitted component, judged."""
+    gains = [tap_gains(f, traces) for f in fitted]
+    strength = np.sum([decay_energy(f.part, traces) for f in fitted], axis=0)
+    out = []
+    for one, gain in zip(fitted, gains, strict=True):
+        estimate = pole_estimate(one, (gain > _SEEN).astype(float))
+        steady = steadiness(one.part, estimate, traces, lines)
+        energy = decay_energy(one.part, traces)
+        reason = steady or objection(estimate) or lonely(gain, strength - energy)
+        out.append(Judged(one.part, estimate, energy, gain, reason, bool(steady)))
+    return out
+
+
+def tap_gains(fitted: Fitted, traces: Sequence[Trace]) -> Real:
+    """(K,) gain of each tap: twice the decay energy over half the one-sided noise density."""
+    part = fitted.part
+    at = np.array([part.frequency_hz])
+    density = np.array([float(t.noise.at(at)[0]) for t in traces])
+    return np.asarray(2 * decay_energy(part, traces) / (density * max(fitted.fit.variance, 0.5)))
+
+
+def steadiness(
+    part: Component, estimate: PoleEstimate, traces: Sequence[Trace], lines: Sequence[Line]
+) -> str:
+    """Why it is a steady line; empty where it is not."""
+    duration_s = max(t.duration_s for t in traces)
+    decays = part.decay_per_s * duration_s
+    peak = float(np.abs(part.amplitudes).max())
+    for line in lines:
+        reach = max(1 / duration_s, line.resolution_hz / 2, _LINE_WANDER * line.frequency_hz)
+        near = abs(line.frequency_hz - part.frequency_hz) < reach
+        if near and peak < _OVER_LINE * line.amplitude:
+            return f"a steady line at {line.frequency_hz:.2f} Hz is there before the blow"
+    if decays < _HARDLY_DECAYS and near_mains(part.frequency_hz):
+        return "does not decay over the record and stands at a multiple of the mains frequency"
+    if decays < _HARDLY_DECAYS and estimate.damping_ratio.sd * 3 > estimate.damping_ratio.value:
+        return "its damping cannot be told from none over this record: a steady line"
+    return ""
+
+
+def near_mains(frequency_hz: float) -> bool:
+    """True at a multiple of a mains frequency."""
+    return any(
+        abs(frequency_hz / m - round(frequency_hz / m)) < _LINE_WANDER
+        for m in _MAINS_HZ
+        if frequency_hz > 0.9 * m
+    )
+
+
+def objection(estimate: PoleEstimate) -> str:
+    """What the values themselves say against a mode."""
+    zeta = estimate.damping_ratio
+    if zeta.value > LARGEST_DAMPING:
+        return (
+            f"damping ratio {zeta.value:.2f} is above {LARGEST_DAMPING}: what the contact or the "
+            "background leaves, no vibration that rings"
+        )
+    if zeta.sd > LARGEST_RELATIVE_SD * zeta.value:
+        return (
+            f"damping uncertain by {100 * zeta.sd / zeta.value:.0f} %: too little energy over the "
+            "background; tap harder, or record more taps"
+        )
+    return ""
+
+
+def lonely(gain: Real, strength: Real) -> str:
+    """Why a component seen in one of several taps is not believed; empty where it is.
+
+    ``strength`` (K,) is the energy of everything else in each tap: what a tap can be asked to show.
+    """
+    if len(gain) < 3 or np.count_nonzero(gain > _SEEN) != 1:
+        return ""
+    top = int(np.argmax(gain))
+    expected = gain[top] * strength / max(float(strength[top]), 1e-300)
+    missing = (expected > _WELL_EXPECTED) & (gain < _SEEN)
+    if np.count_nonzero(missing) < 2:
+        return ""
+    return f"seen in one of {len(gain)} taps only"
