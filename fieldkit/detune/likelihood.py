@@ -19,7 +19,9 @@ Array = NDArray[np.float64]
 MODEL_ERROR = 0.008
 """Relative error of a computed frequency that no parameter accounts for (common practice)."""
 FALSE_PEAK_RATE = 0.06
-"""Expected false peaks per alignment."""
+"""How often a clear peak belongs to no mode of the span."""
+DOUBTFUL_PEAK_RATE = 0.5
+"""The same for a faint or heavily damped one: leftovers of hum and contact look like that."""
 LEAST_DETECTION = 0.06
 """A mode of the other plane still shows this often: no sensor is perfectly aligned."""
 MOST_DETECTION = 0.95
@@ -37,6 +39,8 @@ class Peaks:
     state: str
     highest_hz: float
     """Modes above were not looked for."""
+    false_rate: Array
+    """(peaks,) how often such a peak belongs to no mode."""
 
 
 @dataclass(frozen=True)
@@ -70,9 +74,9 @@ def align(
     """
     match = _log_match(peaks, frequency_hz, detected, widening)
     missed = np.log1p(-detected)
-    false = np.log(FALSE_PEAK_RATE / peaks.highest_hz)
+    false = np.log(peaks.false_rate / peaks.highest_hz)
     forward = _forward(match, missed, false)
-    backward = _forward(match[:, ::-1, ::-1], missed[:, ::-1], false)[:, ::-1, ::-1]
+    backward = _forward(match[:, ::-1, ::-1], missed[:, ::-1], false[::-1])[:, ::-1, ::-1]
     total = forward[:, -1, -1]
     through = forward[:, :-1, :-1] + match + backward[:, 1:, 1:] - total[:, None, None]
     return Alignment(total, np.exp(np.minimum(through, 0.0)))
@@ -85,7 +89,7 @@ def _log_match(peaks: Peaks, frequency_hz: Array, detected: Array, widening: flo
     return np.asarray(density + np.log(detected)[:, None, :])
 
 
-def _forward(match: Array, missed: Array, false: float) -> Array:
+def _forward(match: Array, missed: Array, false: Array) -> Array:
     """(members, peaks + 1, modes + 1) log-sum over alignments of the first peaks and modes.
 
     Between two matches the false peaks are taken before the missed modes, so that each alignment
@@ -101,7 +105,7 @@ def _forward(match: Array, missed: Array, false: float) -> Array:
             if n > 0:
                 skipped[:, i, n] = both[:, i, n - 1] + missed[:, n - 1]
             if i > 0:
-                settled[:, i, n] = settled[:, i - 1, n] + false
+                settled[:, i, n] = settled[:, i - 1, n] + false[i - 1]
             if i > 0 and n > 0:
                 taken = both[:, i - 1, n - 1] + match[:, i - 1, n - 1]
                 settled[:, i, n] = np.logaddexp(settled[:, i, n], taken)

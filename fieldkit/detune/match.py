@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 from fieldkit.detune import posterior
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.field import Field, field
-from fieldkit.detune.likelihood import Peaks
+from fieldkit.detune.likelihood import DOUBTFUL_PEAK_RATE, FALSE_PEAK_RATE, Peaks
 from fieldkit.detune.posterior import Population, Problem, Seen
 from fieldkit.detune.reduced import ReducedModel, build
 from fieldkit.detune.tracking import follow, followed
@@ -29,6 +29,8 @@ INFORMED_SD = 0.75
 BELONGS = 0.5
 """A peak is paired when it belongs to some mode with at least this probability."""
 FREE_HZ = 0.2
+FAINT = 0.02
+HEAVY_DAMPING = 0.06
 MARGIN_ABOVE_TYPED = 1.08
 """Typed-in peaks: nobody looked for modes higher than this times the highest one."""
 
@@ -170,9 +172,15 @@ def grouped(modes: Sequence[MeasuredMode], up_to_hz: float) -> tuple[Group, ...]
             key[1],
             key[0],
             max(highest, 1.02 * float(frequency.max())),
+            np.array([DOUBTFUL_PEAK_RATE if _doubtful(m) else FALSE_PEAK_RATE for m in own]),
         )
         groups.append(Group(tuple(own), peaks))
     return tuple(groups)
+
+
+def _doubtful(mode: MeasuredMode) -> bool:
+    """Whether a peak is faint, or damped more than pipework at these amplitudes usually is."""
+    return mode.strength < FAINT or (mode.damping_ratio or 0.0) > HEAVY_DAMPING
 
 
 def _seen(

@@ -49,7 +49,7 @@ def _set_mass(change: SetMass, span: Span, units: str) -> str:
 
 
 def _length(at_m: float, units: str) -> str:
-    return show(at_m, "length", units, 3)
+    return show(at_m, "length", units, 3) if units == "US" else f"{at_m:.2f} m"
 
 
 def _support(span: Span, index: int, units: str) -> str:

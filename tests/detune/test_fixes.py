@@ -25,14 +25,14 @@ CASES = [
     (
         MoveSupport(1, 5.0),
         {"move_support": {"index": 1, "to_m": 5.0}},
-        "move the clamp at 4.1 m to 5.0 m",
+        "move the clamp at 4.10 m to 5.00 m",
     ),
     (
         StiffenSupport(1, lateral_n_per_m=3e7),
         {"stiffen_support": {"index": 1, "lateral_n_per_m": 3e7}},
-        "stiffen the clamp at 4.1 m to 30 MN/m lateral in all",
+        "stiffen the clamp at 4.10 m to 30 MN/m lateral in all",
     ),
-    (AddMass(3.0, 12.0), {"add_mass": {"at_m": 3.0, "mass_kg": 12.0}}, "clamp 12 kg on at 3.0 m"),
+    (AddMass(3.0, 12.0), {"add_mass": {"at_m": 3.0, "mass_kg": 12.0}}, "clamp 12 kg on at 3.00 m"),
     (
         SetMass(0, 0.0),
         {"set_mass": {"index": 0, "mass_kg": 0.0}},
@@ -41,7 +41,7 @@ CASES = [
     (
         MoveMass(0, 1.0),
         {"move_mass": {"index": 0, "to_m": 1.0}},
-        "move the check valve from 2.6 m to 1.0 m",
+        "move the check valve from 2.60 m to 1.00 m",
     ),
 ]
 

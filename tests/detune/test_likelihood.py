@@ -7,18 +7,20 @@ from itertools import combinations
 import numpy as np
 import pytest
 
-from fieldkit.detune.likelihood import FALSE_PEAK_RATE, MODEL_ERROR, Peaks, align, detection
+from fieldkit.detune.likelihood import MODEL_ERROR, Peaks, align, detection
+
+RATES = np.array([0.06, 0.5, 0.06, 0.2])
 
 
 def enumerated(peaks, frequency, detected):
     """Every order-preserving matching of peaks to modes, one by one."""
     total = 0.0
     shares = np.zeros((len(peaks.frequency_hz), len(frequency)))
-    false = FALSE_PEAK_RATE / peaks.highest_hz
     for size in range(min(len(peaks.frequency_hz), len(frequency)) + 1):
         for chosen in combinations(range(len(peaks.frequency_hz)), size):
             for taken in combinations(range(len(frequency)), size):
-                weight = false ** (len(peaks.frequency_hz) - size)
+                left = [i for i in range(len(peaks.frequency_hz)) if i not in chosen]
+                weight = np.prod(peaks.false_rate[left] / peaks.highest_hz)
                 weight *= np.prod(
                     [1 - detected[n] for n in range(len(frequency)) if n not in taken]
                 )
@@ -38,7 +40,7 @@ def test_the_recursion_equals_enumeration(seed):
     rng = np.random.default_rng(seed)
     frequency = np.sort(rng.uniform(8, 60, 5))
     measured = np.sort(np.concatenate([frequency[[0, 2, 3]] * 1.004, rng.uniform(8, 60, 1)]))
-    peaks = Peaks(measured, np.full(4, 0.05), "vertical", "tapped", 80.0)
+    peaks = Peaks(measured, np.full(4, 0.05), "vertical", "tapped", 80.0, RATES)
     detected = rng.uniform(0.05, 0.9, 5)
     found = align(peaks, frequency[None], detected[None])
     log_total, shares = enumerated(peaks, frequency, detected)
@@ -47,7 +49,7 @@ def test_the_recursion_equals_enumeration(seed):
 
 
 def test_a_false_peak_belongs_to_nothing():
-    peaks = Peaks(np.array([20.0, 33.0]), np.full(2, 0.02), "vertical", "tapped", 80.0)
+    peaks = Peaks(np.array([20.0, 33.0]), np.full(2, 0.02), "vertical", "tapped", 80.0, RATES[:2])
     found = align(peaks, np.array([[20.05, 55.0]]), np.full((1, 2), 0.8))
     assert found.responsibility[0, 0, 0] > 0.99
     assert found.responsibility[0, 1].sum() < 1e-3
