@@ -122,9 +122,11 @@ def motion_inside(elements: ElementSet, index: int, xi: float) -> tuple[Array, A
     for (dofs, sign), across, about in zip(_PLANES, (1, 2), (2, 1), strict=True):
         translation[across, dofs] = deflection * sign
         rotation[about, dofs] = turn * sign * sign[1]
-    to_local = np.kron(np.eye(4), elements.axes[index])
-    to_global = elements.axes[index].T
-    return to_global @ translation @ to_local, to_global @ rotation @ to_local
+    axes = elements.axes[index]
+    to_local = np.zeros((12, 12))
+    for block in range(0, 12, 3):
+        to_local[block : block + 3, block : block + 3] = axes
+    return axes.T @ translation @ to_local, axes.T @ rotation @ to_local
 
 
 def axial_strain_load(elements: ElementSet, strain: Array) -> Array:

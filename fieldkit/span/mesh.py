@@ -22,8 +22,11 @@ Array = NDArray[np.float64]
 
 MESH_ERROR = 5e-4
 LEAST_PER_STRETCH = 4
-LEAST_PER_BEND = 4
-LARGEST_CHORD_RAD = math.radians(25)
+LEAST_PER_BEND = 3
+LARGEST_CHORD_RAD = math.radians(7.0)
+"""Coarser chords err by more than MESH_ERROR: three to a right angle by up to 0.5 %."""
+APART_M = 2e-4
+"""Closer stations share a node; no tape tells them apart."""
 MOST_NODES = 2000
 
 
@@ -107,20 +110,19 @@ def _travelled(pieces: tuple[Piece, ...], station_m: float) -> float:
 def _stations(
     span: Span, line: Line, up_to_hz: float, extra_m: tuple[float, ...], flexibility: Array
 ) -> Array:
-    apart = max(0.05 * line.outside_diameter_m, 1e-3)
     wanted = [s.at_m for s in span.supports] + [m.at_m for m in span.masses] + list(extra_m)
     found: list[float] = [0.0]
     for piece, factor in zip(span.centre_line.pieces, flexibility, strict=True):
         longest = longest_element_m(line, up_to_hz, float(factor))
-        within = sorted(s for s in wanted if piece.start_m + apart < s < piece.end_m - apart)
-        stops = [*_spaced([piece.start_m, *within], apart), piece.end_m]
+        within = sorted(s for s in wanted if piece.start_m + APART_M < s < piece.end_m - APART_M)
+        stops = [*_spaced([piece.start_m, *within]), piece.end_m]
         for a, b in pairwise(stops):
             count = _count(piece, a, b, longest, line.outside_diameter_m)
             if len(found) + count > MOST_NODES:
                 raise _too_many(up_to_hz)
             found += list(np.linspace(a, b, count + 1)[1:])
-    spaced = _spaced(found[:-1], apart)
-    if len(spaced) > 1 and span.length_m - spaced[-1] < apart:
+    spaced = _spaced(found[:-1])
+    if len(spaced) > 1 and span.length_m - spaced[-1] < APART_M:
         spaced.pop()
     return np.array([*spaced, span.length_m])
 
@@ -136,11 +138,11 @@ def _count(piece: Piece, a: float, b: float, longest: float, diameter: float) ->
     return max(by_length, min(LEAST_PER_STRETCH, stubby))
 
 
-def _spaced(stations: list[float], apart: float) -> list[float]:
-    """Without those that follow closer than ``apart``: a shape is read between nodes as well."""
+def _spaced(stations: list[float]) -> list[float]:
+    """Without those that follow closer than APART_M: motion is read between nodes as well."""
     kept = stations[:1]
     for station in stations[1:]:
-        if station - kept[-1] >= apart:
+        if station - kept[-1] >= APART_M:
             kept.append(station)
     return kept
 

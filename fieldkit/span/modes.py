@@ -97,7 +97,7 @@ def solve(
     if size <= DENSE_UP_TO or 3 * wanted > size:
         eigenvalue, vectors = _dense(steadied.toarray(), mass.toarray())
     else:
-        eigenvalue, vectors = _subspace(factor, steadied, mass, wanted)
+        eigenvalue, vectors = _subspace(factor, steadied, mass, wanted, floor)
     frequency = np.sqrt(np.clip(eigenvalue - floor, 0.0, None)) / (2 * np.pi)
     keep = frequency > _lowest_hz(floor)
     if up_to_hz is not None:
@@ -154,9 +154,12 @@ def _dense(stiffness: Array, mass: Array) -> tuple[Array, Array]:
 
 
 def _subspace(
-    factor: Factor, stiffness: csc_array, mass: csc_array, wanted: int
+    factor: Factor, stiffness: csc_array, mass: csc_array, wanted: int, floor: float
 ) -> tuple[Array, Array]:
-    """The lowest ``wanted`` modes by subspace iteration, safe with repeated frequencies."""
+    """The lowest ``wanted`` modes by subspace iteration, safe with repeated frequencies.
+
+    Ends when no eigenvalue still moves by more than 1e-8 of itself, or by rounding near ``floor``.
+    """
     size = stiffness.shape[0]
     block = min(size, max(2 * wanted, wanted + 8))
     basis = np.random.default_rng(1).standard_normal((size, block))
@@ -167,7 +170,8 @@ def _subspace(
         inner_mass = basis.T @ (mass @ basis)
         eigenvalue, turn = _dense(inner_stiffness, inner_mass)
         basis = basis @ turn
-        if np.all(np.abs(eigenvalue[:wanted] - previous) <= 1e-10 * eigenvalue[:wanted]):
+        change = np.abs(eigenvalue[:wanted] - previous)
+        if np.all(change <= 1e-8 * eigenvalue[:wanted] + 1e-6 * floor):
             return eigenvalue[:wanted], basis[:, :wanted]
         previous = eigenvalue[:wanted]
     return _dense(stiffness.toarray(), mass.toarray())
@@ -178,18 +182,19 @@ def _motions(
 ) -> tuple[Array, Array, Array]:
     """Mass-weighted vertical, lateral and axial motion of nodes and point masses, (.., k) each."""
     nodal = vectors.reshape(len(structure.station_m), 6, -1)[:, :3]
-    weight = np.sqrt(_node_mass(structure))
-    found: list[list[Array]] = [[], [], []]
-    moved = [(t, w * u) for t, w, u in zip(structure.tangent, weight, nodal, strict=True)]
+    weighted = np.sqrt(_node_mass(structure))[:, None, None] * nodal
+    lines, line_of = np.unique(structure.tangent.round(9), axis=0, return_inverse=True)
+    moved = [(line, weighted[line_of == i]) for i, line in enumerate(lines)]
     for item in masses:
-        tangent = structure.span.centre_line.at(item.at_m)[1]
+        line = structure.span.centre_line.at(item.at_m)[1]
         rows = structure.point_rows(item.at_m, item.offset_m)
-        moved.append((tangent, np.sqrt(item.mass_kg) * (rows @ vectors)))
-    for tangent, motion in moved:
-        for place, axes in enumerate(_axes(tangent)):
-            found[place].append(axes @ motion)
-    vertical, lateral, axial_motion = (np.concatenate(rows) for rows in found)
-    return vertical, lateral, axial_motion
+        moved.append((line, (np.sqrt(item.mass_kg) * (rows @ vectors))[None]))
+    split = [[axes @ motion for axes in _axes(line)] for line, motion in moved]
+    vertical, lateral, along = (
+        np.concatenate([part.reshape(-1, vectors.shape[1]) for part in parts])
+        for parts in zip(*split, strict=True)
+    )
+    return vertical, lateral, along
 
 
 def _axes(tangent: Array) -> tuple[Array, Array, Array]:

@@ -10,6 +10,7 @@ import math
 import re
 from dataclasses import dataclass
 from fractions import Fraction
+from typing import cast
 
 from fieldkit.errors import InputError, Place
 
@@ -142,7 +143,8 @@ def _looked_up(nps: str, schedule: str) -> tuple[float, float] | None:
     if inches is None:
         return None
     try:
-        _nps, _bore, outside_diameter, wall = nearest_pipe(NPS=float(inches), schedule=schedule)
+        found = nearest_pipe(NPS=cast(int, float(inches)), schedule=schedule)
     except ValueError:
         return None
-    return float(outside_diameter), float(wall)
+    _nps, _bore, outside_diameter, wall = (round(value, 7) for value in found)
+    return outside_diameter, wall
