@@ -58,9 +58,11 @@ class Ports:
         """Port numbers of a group."""
         return self.groups[(name, number)]
 
-    def along(self, axis: str) -> NDArray[np.intp]:
-        """Numbers of all grid ports of an axis."""
-        return np.array([i for i, (name, _) in enumerate(self.keys) if name == axis])
+    @cached_property
+    def motion_gram(self) -> tuple[Array, ...]:
+        """(r, r) for each of AXES: phi^T G phi sums the squared motion along it over the grid."""
+        along = [[i for i, (name, _) in enumerate(self.keys) if name == axis] for axis in AXES]
+        return tuple(self.rows[own].T @ self.rows[own] for own in along)
 
 
 @dataclass(frozen=True)
@@ -113,15 +115,12 @@ class Field:
         """(members,) kilograms of a mass of the span."""
         return self._value("mass", i, self.span.masses[i].mass_kg)
 
-    def directions(self, member: int) -> tuple[str, ...]:
-        """The axis that holds most of the motion of each mode of a member."""
-        return self.directions_of(self.modes.vector[member])
-
-    def directions_of(self, vector: Array) -> tuple[str, ...]:
-        """The same for any vectors (r, count) in the coordinates of the basis."""
-        motion = (self.ports.rows @ vector) ** 2
-        energy = np.stack([motion[self.ports.along(axis)].sum(axis=0) for axis in AXES])
-        return tuple(AXES[i] for i in np.argmax(energy, axis=0))
+    def direction_share(self, vector: Array) -> Array:
+        """(members, count, 3) share of the motion of vectors (members, r, count) along AXES."""
+        energy = np.stack(
+            [np.sum(vector * (gram @ vector), axis=1) for gram in self.ports.motion_gram], axis=2
+        )
+        return np.asarray(energy / np.maximum(energy.sum(axis=2, keepdims=True), 1e-300))
 
     def largest_at(self, member: int, mode: int) -> float:
         """Station where a mode of a member moves most."""

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from fieldkit.detune.candidates import Push
 from fieldkit.detune.excitation import Band, clear_of_all
-from fieldkit.detune.field import Field
+from fieldkit.detune.field import AXES, Field
 from fieldkit.detune.fixes import (
     AddMass,
     AddSupport,
@@ -88,8 +88,9 @@ def _spectrum(field: Field, frequency_hz: Array, vector: Array, up_to_hz: float)
     wanted = np.flatnonzero(frequency_hz[central] > RIGID_HZ)
     count = max(1, int(np.sum(frequency_hz[central, wanted] < 1.3 * up_to_hz)))
     wanted = wanted[: count + 1]
-    chosen = follow(vector, vector[central][:, wanted])
-    directions = field.directions_of(vector[central][:, wanted])
+    share = field.direction_share(vector)
+    chosen = follow(frequency_hz, share, frequency_hz[central, wanted], share[central, wanted])
+    directions = tuple(AXES[i] for i in np.argmax(share[central, wanted], axis=1))
     alive = np.where(frequency_hz > RIGID_HZ, frequency_hz, np.nan)
     return Spectrum(followed(frequency_hz, chosen), directions, alive)
 

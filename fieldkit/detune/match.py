@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from fieldkit.detune import posterior
 from fieldkit.detune.evidence import Evidence
-from fieldkit.detune.field import Field, field
+from fieldkit.detune.field import AXES, Field, field
 from fieldkit.detune.likelihood import DOUBTFUL_PEAK_RATE, FALSE_PEAK_RATE, Peaks
 from fieldkit.detune.posterior import Population, Problem, Seen
 from fieldkit.detune.reduced import ReducedModel, build
@@ -29,6 +29,7 @@ INFORMED_SD = 0.75
 BELONGS = 0.5
 """A peak is paired when it belongs to some mode with at least this probability."""
 FREE_HZ = 0.2
+MOST_MODES = 12
 FAINT = 0.02
 HEAVY_DAMPING = 0.06
 MARGIN_ABOVE_TYPED = 1.08
@@ -315,16 +316,17 @@ class _Followed:
 
     @classmethod
     def of(cls, seen: Field, count: int) -> _Followed:
-        vector, frequency = seen.modes.vector, seen.modes.frequency_hz
-        reference = vector[seen.central][:, :count]
-        chosen = follow(vector, reference)
+        frequency, share = seen.modes.frequency_hz, seen.direction_share(seen.modes.vector)
+        reference = frequency[seen.central, :count], share[seen.central, :count]
+        chosen = follow(frequency, share, *reference)
         prior = seen.model.modes(np.zeros((1, seen.z.shape[1])))
-        prior_chosen = follow(prior.vector, reference)
+        prior_share = seen.direction_share(prior.vector)
+        prior_chosen = follow(prior.frequency_hz, prior_share, *reference)
         return cls(
             followed(frequency, chosen),
             chosen,
             followed(prior.frequency_hz, prior_chosen)[0],
-            seen.directions(seen.central)[:count],
+            tuple(AXES[i] for i in np.argmax(reference[1], axis=1)),
         )
 
     def probability(self, belonging: Array) -> Array:
@@ -352,17 +354,17 @@ class _Followed:
 
 def model_modes(seen: Field) -> tuple[ModelMode, ...]:
     """Modes of the ensemble with their intervals, direction and where they move most."""
-    vector, frequency = seen.modes.vector, seen.modes.frequency_hz
-    count = min(vector.shape[2], 12)
-    reference = vector[seen.central][:, :count]
-    tracked = followed(frequency, follow(vector, reference))
-    directions = seen.directions(seen.central)
+    frequency, share = seen.modes.frequency_hz, seen.direction_share(seen.modes.vector)
+    count = min(frequency.shape[1], MOST_MODES)
+    reference = frequency[seen.central, :count], share[seen.central, :count]
+    tracked = followed(frequency, follow(frequency, share, *reference))
     found = []
     for j in range(count):
         low, median, high = np.quantile(tracked[:, j], (0.05, 0.5, 0.95))
         if median > FREE_HZ:
             where = seen.largest_at(seen.central, j)
-            found.append(ModelMode(float(median), float(low), float(high), directions[j], where))
+            direction = AXES[int(np.argmax(reference[1][j]))]
+            found.append(ModelMode(float(median), float(low), float(high), direction, where))
     return tuple(sorted(found, key=lambda mode: mode.median_hz))
 
 

@@ -8,26 +8,28 @@ from numpy.typing import NDArray
 Array = NDArray[np.float64]
 Index = NDArray[np.intp]
 
-RANK_WEIGHT = 1e-3
-"""Breaks ties between members' modes of equal likeness in favour of the same rank."""
+FREQUENCY_WEIGHT = 6.0
+"""What a factor e in frequency counts for against a turn from one direction into another."""
+LEAST_HZ = 0.05
 
 
-def follow(vector: Array, reference: Array) -> Index:
-    """(members, count) which mode of each member is most like each reference mode.
+def follow(frequency_hz: Array, share: Array, reference_hz: Array, reference_share: Array) -> Index:
+    """(members, count) which mode of each member continues each reference mode.
 
-    ``vector`` is (members, r, m) mass-normalised in a basis that is mass-orthonormal at the
-    reference; ``reference`` is (r, count). Likeness is the squared inner product (modal assurance,
-    Allemang and Brown 1982, from memory); each mode is given away once.
+    ``frequency_hz`` is (members, m), ``share`` (members, m, directions) the share of each mode's
+    motion in each direction; the references are (count,) and (count, directions). Shapes within a
+    plane are left out on purpose: where two spans trade places shape jumps and frequency does not.
+    Each mode is given away once (assignment problem: Kuhn 1955, Naval Research Logistics 2, 83).
     """
     from scipy.optimize import linear_sum_assignment
 
-    likeness = (np.swapaxes(vector, 1, 2) @ reference) ** 2
-    members, modes, count = likeness.shape
-    rank = np.abs(np.arange(modes)[:, None] - np.arange(count)[None, :])
-    cost = -likeness + RANK_WEIGHT * rank
-    chosen = np.empty((members, count), dtype=np.intp)
-    for s in range(members):
-        rows, columns = linear_sum_assignment(cost[s])
+    turned = 1 - np.sum(np.minimum(share[:, :, None, :], reference_share[None, None, :, :]), axis=3)
+    log_hz = np.log(np.maximum(frequency_hz, LEAST_HZ))
+    log_reference = np.log(np.maximum(reference_hz, LEAST_HZ))
+    cost = turned + FREQUENCY_WEIGHT * np.abs(log_hz[:, :, None] - log_reference[None, None, :])
+    chosen = np.empty((len(cost), len(reference_hz)), dtype=np.intp)
+    for s, member in enumerate(cost):
+        rows, columns = linear_sum_assignment(member)
         chosen[s, columns] = rows
     return chosen
 
