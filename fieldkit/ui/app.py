@@ -1,0 +1,166 @@
+"""The app: global keys, the six views, the strip above and the ruler below."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from pathlib import Path
+from typing import ClassVar
+
+from textual.app import ComposeResult, SystemCommand
+from textual.binding import Binding, BindingType
+from textual.screen import Screen
+from textual.widgets import ContentSwitcher, Footer, Static
+
+from fieldkit.ui.commands import COMMANDS, help_text
+from fieldkit.ui.desk import STEPS
+from fieldkit.ui.dialogs import TextScreen
+from fieldkit.ui.editing import Editing
+from fieldkit.ui.files import CopySamples
+from fieldkit.ui.plots import shaded
+from fieldkit.ui.readings import reading
+from fieldkit.ui.strip import Step, Strip
+from fieldkit.ui.views import VIEWS
+from fieldkit.ui.views.base import View, plain
+from fieldkit.ui.widgets import FrequencyRuler, RulerData
+from fieldkit.ui.words import safe
+
+
+def _view_keys() -> list[BindingType]:
+    return [
+        Binding(str(number), f"view('{step}')", step.capitalize(), show=False, id=f"view.{step}",
+                tooltip=f"Go to {step.capitalize()}")
+        for number, step in enumerate(STEPS, start=1)
+    ]  # fmt: skip
+
+
+class FieldkitApp(Editing):
+    """Six views in the order of the work, over one job."""
+
+    TITLE = "fieldkit"
+    CSS_PATH = Path(__file__).with_name("app.tcss")
+    HORIZONTAL_BREAKPOINTS: ClassVar[list[tuple[int, str]] | None] = [
+        (0, "-narrow"),
+        (100, "-wide"),
+    ]
+    VERTICAL_BREAKPOINTS: ClassVar[list[tuple[int, str]] | None] = [(0, "-short"), (34, "-tall")]
+    BINDINGS: ClassVar[list[BindingType]] = [
+        *_view_keys(),
+        Binding("ctrl+s", "save", "Save", id="file.save", tooltip="Write the job file"),
+        Binding("S", "save_as", "Save as", show=False, id="file.save-as",
+                tooltip="Write the job under another name"),
+        Binding("o", "open", "Open", show=False, id="file.open", tooltip="Open a job file"),
+        Binding("n", "new", "New", show=False, id="file.new", tooltip="Start a new job"),
+        Binding("s", "sample", "Sample", show=False, id="file.sample",
+                tooltip="Copy the sample jobs out and open one"),
+        Binding("u", "undo", "Undo", show=False, id="edit.undo",
+                tooltip="Take the last change of the job back"),
+        Binding("r", "rerun", "Rework", show=False, id="work.again",
+                tooltip="Work the whole job out again"),
+        Binding("escape", "stop", "Stop", show=False, id="work.stop",
+                tooltip="Stop what is being worked out"),
+        Binding("t", "toggle_light", "Light/dark", show=False, id="look.light",
+                tooltip="Light or dark"),
+        Binding("question_mark", "help", "Keys", key_display="?", id="help.keys",
+                tooltip="List every key"),
+        Binding("q,ctrl+q", "quit", "Quit", key_display="q", id="app.quit",
+                tooltip="Leave; asks first when something is unsaved"),
+    ]  # fmt: skip
+
+    def __init__(
+        self, job_path: Path | None = None, copy_samples: CopySamples | None = None
+    ) -> None:
+        """``copy_samples`` puts the sample jobs below a folder and names their job files."""
+        super().__init__()
+        self.job_path = job_path
+        self.copy_samples = copy_samples
+        self.here = STEPS[0]
+
+    def compose(self) -> ComposeResult:
+        """Strip, views, ruler, reading, keys."""
+        yield Strip()
+        with ContentSwitcher(initial=self.here, id="views"):
+            yield from (view() for view in VIEWS)
+        yield FrequencyRuler(id="ruler")
+        yield plain("reading")
+        yield Footer(compact=True, show_command_palette=False)
+
+    def on_mount(self) -> None:
+        """First paint, then the job: nothing slow may come before."""
+        self.refresh_desk()
+        self.call_after_refresh(self.go_on)
+
+    def go_on(self) -> None:
+        """Open what was asked for, or ask."""
+        self.view(self.here).focus_home()
+        if self.job_path is not None:
+            self.say_progress("opening")
+            self.read_job(self.job_path)
+            return
+        self.warm_libraries()
+        self.welcome()
+
+    def view(self, name: str) -> View:
+        """One of the six."""
+        return self.screen_stack[0].query_one(f"#{name}", View)
+
+    def refresh_desk(self) -> None:
+        """Hand the desk to the strip, the view on screen, the ruler and the reading."""
+        base = self.screen_stack[0]
+        unsaved = self.open_job is not None and self.open_job.unsaved
+        base.query_one(Strip).show(self.desk, self.here, unsaved)
+        self.view(self.here).show(self.desk)
+        desk = self.desk
+        base.query_one(FrequencyRuler).show(
+            RulerData(desk.up_to_hz, shaded(desk), desk.measured_hz, desk.now, desk.after)
+        )
+        line = reading(self.here, desk).fitted(2 * (self.size.width - 2) - 8)
+        base.query_one("#reading", Static).update(safe(line))
+
+    def on_resize(self) -> None:
+        """The reading is cut to the width."""
+        if self.is_mounted and self.query("#reading"):
+            self.refresh_desk()
+
+    def say_progress(self, doing: str, fraction: float | None = None) -> None:
+        """Activity at the right end of the title line."""
+        self.screen_stack[0].query_one(Strip).say(doing, fraction)
+
+    def on_step_picked(self, message: Step.Picked) -> None:
+        """A click on the strip."""
+        self.action_view(message.step)
+
+    def action_view(self, name: str) -> None:
+        """Go to a view."""
+        self.here = name
+        self.screen_stack[0].query_one("#views", ContentSwitcher).current = name
+        self.refresh_desk()
+        self.view(name).focus_home()
+
+    def action_stop(self) -> None:
+        """Stop the work under way."""
+        self.stop_work()
+
+    def action_rerun(self) -> None:
+        """Work the job out again: a recording may have changed on the disk."""
+        self.start_work()
+
+    def action_toggle_light(self) -> None:
+        """Light or dark."""
+        self.theme = "textual-dark" if self.theme == "textual-light" else "textual-light"
+
+    def action_help(self) -> None:
+        """List every key."""
+        sections = [("Everywhere", self.BINDINGS)]
+        sections += [(f"In {view.NAME.capitalize()}", view.BINDINGS) for view in VIEWS]
+        self.push_screen(TextScreen("Keys", help_text(sections)))
+
+    def get_system_commands(self, screen: Screen[object]) -> Iterable[SystemCommand]:
+        """What the palette offers."""
+        for command in COMMANDS:
+            yield SystemCommand(command.name, command.help, self._runner(command.action))
+
+    def _runner(self, action: str):  # type: ignore[no-untyped-def]
+        async def run() -> None:
+            await self.run_action(action)
+
+        return run

@@ -1,0 +1,58 @@
+"""What the command palette offers and what the help window lists."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from typing import NamedTuple
+
+from textual.binding import Binding
+
+
+class Command(NamedTuple):
+    """One thing the app can do."""
+
+    name: str
+    action: str
+    help: str
+
+
+COMMANDS = (
+    Command("Tap", "view('tap')", "Recordings, taps and measured modes"),
+    Command("Running", "view('running')", "What it does while the machine runs"),
+    Command("Span", "view('span')", "Describe the pipe; computed modes and shapes"),
+    Command("Match", "view('match')", "Measured against computed"),
+    Command("Detune", "view('detune')", "Ranked changes"),
+    Command("Sheet", "view('sheet')", "The advice as text"),
+    Command("Open a job", "open", "Pick a job file"),
+    Command("New job", "new", "Start from an empty description"),
+    Command("Sample job", "sample", "Copy the sample jobs out and open one"),
+    Command("Save", "save", "Write the job file"),
+    Command("Save as", "save_as", "Write the job under another name"),
+    Command("Undo", "undo", "Take the last change of the job back"),
+    Command("Work out again", "rerun", "Run the whole chain again"),
+    Command("Stop", "stop", "Stop what is being worked out"),
+    Command("Light or dark", "toggle_light", "Change the colours"),
+    Command("Keys", "help", "List every key"),
+    Command("Quit", "quit", "Leave, asking first when something is unsaved"),
+)
+
+
+def help_text(sections: Iterable[tuple[str, Iterable[object]]]) -> str:
+    """Keys and what they do, by section: (title, bindings)."""
+    blocks = [f"{title}\n{_lines(bindings)}" for title, bindings in sections]
+    return "\n\n".join(blocks)
+
+
+def _lines(bindings: Iterable[object]) -> str:
+    known = [
+        binding for binding in bindings if isinstance(binding, Binding) and binding.description
+    ]
+    return "\n".join(
+        f"  {_keys(binding):<12} {binding.tooltip or binding.description}" for binding in known
+    )
+
+
+def _keys(binding: Binding) -> str:
+    names = {"question_mark": "?", "delete": "del", "left_square_bracket": "["}
+    keys = binding.key_display or binding.key
+    return " ".join(names.get(key, key) for key in keys.split(","))

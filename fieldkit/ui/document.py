@@ -1,0 +1,46 @@
+"""The job that is open: its text now, as it was saved, and the way back."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+if TYPE_CHECKING:
+    from fieldkit.job.store import JobText
+
+STEPS_BACK = 100
+
+
+@dataclass(frozen=True)
+class OpenJob:
+    """A job text under edit; every change gives a new one."""
+
+    text: JobText
+    saved: JobText | None
+    """The text as it stands on the disk; None for one never saved."""
+    past: tuple[JobText, ...] = ()
+
+    @property
+    def unsaved(self) -> bool:
+        """Whether the disk does not hold what the screen shows."""
+        return self.saved is None or self.saved.text != self.text.text
+
+    def edited(self, text: JobText) -> OpenJob:
+        """With a new text; the old one can be had back."""
+        return replace(self, text=text, past=(*self.past, self.text)[-STEPS_BACK:])
+
+    def undone(self) -> OpenJob:
+        """As before the last edit; itself where there was none."""
+        if not self.past:
+            return self
+        return replace(self, text=self.past[-1], past=self.past[:-1])
+
+    @property
+    def path(self) -> Path | None:
+        """Where it is saved."""
+        return self.text.path
+
+    def as_saved(self, text: JobText) -> OpenJob:
+        """After its text went to the disk."""
+        return replace(self, text=text, saved=text)

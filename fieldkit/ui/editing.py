@@ -1,0 +1,134 @@
+"""Changing the job: forms, new and removed rows, adopted fixes, and the way back."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from textual import work
+
+from fieldkit.errors import FieldkitError
+from fieldkit.ui import messages as say
+from fieldkit.ui.dialogs import AskScreen, PickScreen
+from fieldkit.ui.document import OpenJob
+from fieldkit.ui.files import Files
+from fieldkit.ui.forms.rows import row_label, texts_of, with_values
+from fieldkit.ui.forms.tables import FORMS, Form
+from fieldkit.ui.forms.window import FormWindow, Values
+
+if TYPE_CHECKING:
+    pass
+
+ADDABLE = (
+    ("support", "Support"),
+    ("mass", "Mass: valve, flange, actuator"),
+    ("leg", "Leg: a straight run after a bend"),
+    ("excitation", "Excitation: a machine or a frequency"),
+    ("measured", "Peak read elsewhere"),
+    ("recording", "Recording"),
+)
+REMOVE = (("remove", "Remove"), ("back", "Back"))
+ADOPT = (("adopt", "Adopt"), ("back", "Back"))
+
+
+class Editing(Files):
+    """The app's dealings with the text of the job."""
+
+    async def on_edit_wanted(self, message: say.EditWanted) -> None:
+        """One row in a form."""
+        self.edit_row(FORMS[message.table], message.index)
+
+    async def on_add_wanted(self, message: say.AddWanted) -> None:
+        """A new row in a form."""
+        self.add_row(message.table, message.preset)
+
+    async def on_remove_wanted(self, message: say.RemoveWanted) -> None:
+        """One row out."""
+        self.remove_row(message.table, message.index)
+
+    async def on_adopt_wanted(self, message: say.AdoptWanted) -> None:
+        """A fix into the job."""
+        self.adopt(message)
+
+    @work
+    async def edit_row(self, form: Form, index: int | None) -> None:
+        """Change one row."""
+        text = self.desk.text
+        if text is None:
+            return
+        title = row_label(form, index)
+        values = await self._ask(form, title, texts_of(text, form, index), index)
+        if values:
+            self.text_changed(with_values(text, form, index, values))
+
+    @work
+    async def add_row(self, table: str, preset: dict[str, str]) -> None:
+        """Add one row, asking of what kind where that is not said."""
+        if self.desk.text is None:
+            return
+        if not table:
+            table = await self.push_screen_wait(PickScreen("Add what?", ADDABLE)) or ""
+        if not table:
+            return
+        form = FORMS[table]
+        values = await self._ask(form, f"New {form.title.lower()}", preset, -1)
+        if values:
+            self.text_changed(with_values(self.desk.text, form, -1, values))
+
+    async def _ask(
+        self, form: Form, title: str, texts: dict[str, str], index: int | None
+    ) -> Values | None:
+        text = self.desk.text
+        assert text is not None
+
+        def objection(values: Values) -> str:
+            try:
+                with_values(text, form, index, values).job()
+            except FieldkitError as error:
+                return str(error)
+            return ""
+
+        return await self.push_screen_wait(
+            FormWindow(form, title, texts, self.desk.units, objection)
+        )
+
+    @work
+    async def remove_row(self, table: str, index: int) -> None:
+        """Take one row out, after asking."""
+        text = self.desk.text
+        if text is None:
+            return
+        question = f"Remove {row_label(FORMS[table], index).lower()}? (u takes it back)"
+        if await self.push_screen_wait(AskScreen(question, REMOVE)) == "remove":
+            self.text_changed(text.without(table, index))
+
+    @work
+    async def adopt(self, message: say.AdoptWanted) -> None:
+        """Write a fix into the job, after asking."""
+        text, verdict = self.desk.text, message.verdict
+        if text is None:
+            return
+        question = (
+            f"Adopt change {verdict.rank} into the job?\n\n{verdict.summary}\n\n"
+            "The description then shows the pipe as it will be; taps of the pipe as it was "
+            "no longer fit it. Save under another name (S) to keep both. (u takes it back)"
+        )
+        if await self.push_screen_wait(AskScreen(question, ADOPT)) == "adopt":
+            self.text_changed(text.with_change(verdict.change))
+
+    def action_undo(self) -> None:
+        """Take the last change back."""
+        if self.open_job is None or not self.open_job.past:
+            self.tell("There is nothing to take back.")
+            return
+        before = self.open_job.undone()
+        self.take(before, before.text.job())
+
+    @work
+    async def action_new(self) -> None:
+        """Start from an empty description."""
+        from fieldkit.job.store import new_job_text
+
+        if await self.may_go_on():
+            text = new_job_text()
+            self.begin(OpenJob(text, None), text.job())
+            self.action_view("span")

@@ -1,0 +1,142 @@
+"""Opening, saving and leaving: everything that touches the disk, with its questions."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from textual import work
+
+from fieldkit.errors import FieldkitError
+from fieldkit.ui.dialogs import AskScreen, PathScreen, PickScreen
+from fieldkit.ui.job_app import JobApp
+from fieldkit.ui.views.sheet import sheet_text
+
+CopySamples = Callable[[Path], tuple[Path, ...]]
+SAVE_QUESTION = (("save", "Save"), ("discard", "Leave unsaved"), ("back", "Back"))
+WELCOME = (
+    ("sample", "Sample   copy the sample jobs out and open one"),
+    ("open", "Open     a job file"),
+    ("new", "New      an empty description to fill in"),
+)
+
+
+class Files(JobApp):
+    """The app's dealings with files."""
+
+    copy_samples: CopySamples | None = None
+
+    @work
+    async def welcome(self) -> None:
+        """What to start with."""
+        offered = [o for o in WELCOME if o[0] != "sample" or self.copy_samples is not None]
+        choice = await self.push_screen_wait(PickScreen("fieldkit: where to start?", offered))
+        if choice is not None:
+            await self.run_action(choice)
+
+    async def may_go_on(self) -> bool:
+        """Ask what to do with unsaved changes; False to stay."""
+        if self.open_job is None or not self.open_job.unsaved:
+            return True
+        question = f"“{self.desk.job.title if self.desk.job else 'The job'}” has unsaved changes."
+        answer = await self.push_screen_wait(AskScreen(question, SAVE_QUESTION))
+        if answer == "save":
+            return await self.save_somewhere(self.open_job.path)
+        return answer == "discard"
+
+    async def save_somewhere(self, path: Path | None) -> bool:
+        """Write the job to a path, asking for one where there is none; False when it was not."""
+        if self.open_job is None:
+            self.tell("There is no job to save.")
+            return False
+        if path is None:
+            start = str(self.open_job.path or Path.cwd() / "job.toml")
+            path = await self.push_screen_wait(
+                PathScreen("Save the job as", start, must_exist=False)
+            )
+        if path is None:
+            return False
+        return self._written(path)
+
+    def _written(self, path: Path) -> bool:
+        if self.open_job is None:
+            return False
+        elsewhere = self.open_job.path != path
+        try:
+            self.open_job = self.open_job.as_saved(self.open_job.text.save(path))
+        except FieldkitError as error:
+            self.tell(str(error), wrong=True)
+            return False
+        self.tell(f"Saved {path}")
+        if elsewhere:
+            self.take(self.open_job, self.open_job.text.job())
+        self.refresh_desk()
+        return True
+
+    @work
+    async def action_save(self) -> None:
+        """Write the job file."""
+        await self.save_somewhere(self.open_job.path if self.open_job else None)
+
+    @work
+    async def action_save_as(self) -> None:
+        """Write the job under another name."""
+        await self.save_somewhere(None)
+
+    @work
+    async def action_open(self) -> None:
+        """Open a job file."""
+        if not await self.may_go_on():
+            return
+        start = f"{self.open_job.path.parent}/" if self.open_job and self.open_job.path else ""
+        path = await self.push_screen_wait(PathScreen("Open a job file", start, must_exist=True))
+        if path is not None:
+            self.say_progress("opening")
+            self.read_job(path)
+
+    @work
+    async def action_sample(self) -> None:
+        """Copy the sample jobs out and open one of them."""
+        if self.copy_samples is None or not await self.may_go_on():
+            return
+        start = str(Path.cwd() / "fieldkit-samples")
+        asked = PathScreen("Copy the sample jobs into which folder?", start, must_exist=False)
+        folder = await self.push_screen_wait(asked)
+        if folder is None:
+            return
+        try:
+            jobs = self.copy_samples(folder)
+        except FieldkitError as error:
+            self.tell(str(error), wrong=True)
+            return
+        offered = [(str(number), job.parent.name) for number, job in enumerate(jobs)]
+        picked = await self.push_screen_wait(PickScreen("Open which sample?", offered))
+        if picked is not None:
+            self.say_progress("opening")
+            self.read_job(jobs[int(picked)])
+
+    @work
+    async def action_write_sheet(self) -> None:
+        """Save the sheet as a text file."""
+        text = sheet_text(self.desk)
+        if not text:
+            self.tell("There is no result to write down yet.")
+            return
+        place = self.open_job.path.parent if self.open_job and self.open_job.path else Path.cwd()
+        start = str(place / "advice.txt")
+        path = await self.push_screen_wait(PathScreen("Save the sheet as", start, must_exist=False))
+        if path is None:
+            return
+        try:
+            path.write_text(text + "\n", encoding="utf-8")
+        except OSError as error:
+            self.tell(f"{path} could not be written: {error}", wrong=True)
+            return
+        self.tell(f"Saved {path}")
+
+    @work
+    async def action_quit(self) -> None:  # type: ignore[override]
+        """Leave; asks first when something is unsaved."""
+        if await self.may_go_on():
+            self.stop_work()
+            self.exit()

@@ -1,0 +1,215 @@
+"""The tables of a job file as forms: keys, labels and how each is typed."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from fieldkit.ui.forms.codecs import (
+    Choice,
+    Codec,
+    Direction,
+    Number,
+    Quantity,
+    Range,
+    Several,
+    Words,
+)
+
+LENGTH = Quantity("length")
+SPEED = Quantity("speed")
+FREQUENCY = Quantity("frequency")
+SENSITIVITY = Quantity("sensitivity")
+VOLTAGE = Quantity("voltage")
+STIFFNESS = Quantity("stiffness", ("rigid", "free", "unknown"))
+TURNING = Quantity("rotational_stiffness", ("rigid", "free", "unknown"))
+SHARE = Number(0.0, 1.0)
+STATE = Choice(("tapped", "running"))
+DIRECTION_OF_MOTION = Choice(("vertical", "lateral", "axial", "x", "y", "z"))
+SUPPORT_KINDS = ("anchor", "nozzle", "clamp", "u-bolt", "guide", "rest", "hanger", "free")
+
+
+@dataclass(frozen=True)
+class Field:
+    """One key of a table."""
+
+    key: str
+    """Dotted where the file nests it: ``insulation.thickness``."""
+    label: str
+    codec: Codec
+    needed: bool = False
+    when_empty: str = ""
+    """What leaving it out means."""
+    said: str | None = None
+    """Word before the value in a list; None takes the label, empty is for what needs none."""
+
+
+@dataclass(frozen=True)
+class Form:
+    """One table of the job file."""
+
+    table: str
+    """``leg``, ``state.running``; empty for the top of the file."""
+    title: str
+    fields: tuple[Field, ...]
+    repeated: bool = False
+
+    def place(self, key: str) -> tuple[str, ...]:
+        """Key path of a field, without the number of the row."""
+        return tuple(part for part in f"{self.table}.{key}".split(".") if part)
+
+    def field(self, key: str) -> Field:
+        """The field of a key."""
+        return next(field for field in self.fields if field.key == key)
+
+
+def _state(name: str, left_out: str) -> Form:
+    return Form(
+        f"state.{name}",
+        name.capitalize(),
+        (
+            Field("fill", "fill", Range(SHARE), when_empty=left_out),
+            Field("temperature", "temperature", Quantity("temperature"), when_empty=left_out),
+            Field("pressure", "pressure", Quantity("pressure"), when_empty=left_out),
+        ),
+    )
+
+
+FORMS: dict[str, Form] = {
+    form.table: form
+    for form in (
+        Form(
+            "",
+            "Job",
+            (
+                Field("title", "title", Words(), needed=True, said=""),
+                Field("units", "units shown", Choice(("SI", "US")), when_empty="SI"),
+            ),
+        ),
+        Form(
+            "pipe",
+            "Pipe",
+            (
+                Field("size", "size", Words("NPS 3 or DN 80"), when_empty="by diameter", said=""),
+                Field("schedule", "schedule", Words("40, 80, STD, XS, 10S"), when_empty="by wall"),
+                Field("outside_diameter", "outside diam.", LENGTH, when_empty="by size"),
+                Field("wall", "wall", LENGTH, when_empty="by schedule"),
+                Field("material", "material", Words("carbon steel"), needed=True, said=""),
+                Field("insulation.thickness", "insulation", LENGTH, when_empty="bare pipe"),
+                Field("insulation.density", "its density", Quantity("density")),
+            ),
+        ),
+        Form(
+            "contents",
+            "Contents",
+            (
+                Field("name", "name", Words("water"), when_empty="by density", said=""),
+                Field("density", "density", Quantity("density"), when_empty="by name"),
+            ),
+        ),
+        _state("tapped", "full, 20 degC, no pressure"),
+        _state("running", "as tapped"),
+        Form(
+            "leg",
+            "Leg",
+            (
+                Field("direction", "direction", Direction(), needed=True, said=""),
+                Field("length", "length", LENGTH, needed=True, said=""),
+                Field("bend_radius", "bend radius", LENGTH, when_empty="long radius, 1.5 x size"),
+            ),
+            repeated=True,
+        ),
+        Form(
+            "support",
+            "Support",
+            (
+                Field("at", "station", LENGTH, needed=True, said="at"),
+                Field("kind", "kind", Choice(SUPPORT_KINDS), needed=True, said=""),
+                Field("vertical", "vertical", STIFFNESS, when_empty="what the kind implies"),
+                Field("lateral", "lateral", STIFFNESS, when_empty="what the kind implies"),
+                Field("axial", "axial", STIFFNESS, when_empty="what the kind implies"),
+                Field("rotation", "rotation", TURNING, when_empty="what the kind implies"),
+            ),
+            repeated=True,
+        ),
+        Form(
+            "mass",
+            "Mass",
+            (
+                Field("name", "name", Words("check valve"), when_empty="mass", said=""),
+                Field("at", "station", LENGTH, needed=True, said="at"),
+                Field("mass", "mass", Quantity("mass"), needed=True, said=""),
+                Field("tolerance", "tolerance", SHARE, when_empty="10 %, one standard deviation"),
+                Field(
+                    "offset",
+                    "offset x, y, z",
+                    Several(Quantity("offset"), exactly=3),
+                    when_empty="on the centre line",
+                ),
+            ),
+            repeated=True,
+        ),
+        Form(
+            "excitation",
+            "Excitation",
+            (
+                Field("name", "name", Words("pump"), needed=True, said=""),
+                Field("speed", "speed", Range(SPEED), when_empty="by frequency", said=""),
+                Field("orders", "orders", Several(Number(0.01, 1000.0)), when_empty="1"),
+                Field("frequency", "frequency", Range(FREQUENCY), when_empty="by speed", said=""),
+            ),
+            repeated=True,
+        ),
+        Form(
+            "recording",
+            "Recording",
+            (
+                Field("file", "file", Words("tap-1.flac, beside the job file"), needed=True),
+                Field("kind", "kind", Choice(("tap", "running")), needed=True),
+                Field("state", "state", STATE, when_empty="as its kind says"),
+                Field("channel", "channel", Number(1, 256, whole=True), when_empty="1"),
+                Field("quantity", "quantity",
+                      Choice(("acceleration", "velocity", "displacement", "pressure")),
+                      when_empty="acceleration"),
+                Field("sensitivity", "sensitivity", SENSITIVITY, when_empty="uncalibrated"),
+                Field("full_scale", "full scale", VOLTAGE, when_empty="of the recorder"),
+                Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said"),
+                Field("at", "station", LENGTH, when_empty="nobody said"),
+                Field("rate", "rate", FREQUENCY, when_empty="as the file says"),
+            ),
+            repeated=True,
+        ),
+        Form(
+            "measured",
+            "Peak read elsewhere",
+            (
+                Field("frequency", "frequency", FREQUENCY, needed=True),
+                Field("sd", "its sd", FREQUENCY),
+                Field("damping", "damping ratio", Number(0.0, 1.0)),
+                Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said"),
+                Field("state", "state", STATE, when_empty="tapped"),
+            ),
+            repeated=True,
+        ),
+        Form(
+            "goal",
+            "Goal",
+            (
+                Field("margin", "margin", Number(0.0, 0.9), when_empty="0.2"),
+                Field("margin_measured", "margin measured", Number(0.0, 0.9), when_empty="0.1"),
+                Field("chance", "chance wanted", SHARE, when_empty="0.9"),
+                Field("up_to", "up to", FREQUENCY, when_empty="200 Hz"),
+                Field("allow", "allow",
+                      Several(Choice(("support", "move", "stiffen", "mass"))),
+                      when_empty="support, move, stiffen, mass"),
+                Field("keep_out", "keep out", Several(Range(LENGTH), joint="; "),
+                      when_empty="nowhere"),
+            ),
+        ),
+    )
+}  # fmt: skip
+
+ORDER_OF_ROWS = (
+    "", "pipe", "contents", "state.tapped", "state.running",
+    "leg", "support", "mass", "excitation", "goal",
+)  # fmt: skip
+"""The tables that the Span view lists."""

@@ -1,0 +1,216 @@
+"""One reading per view in plain words: what it says, how sure that is, what to do next."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from itertools import chain
+from typing import TYPE_CHECKING
+
+from fieldkit.ui.desk import Desk
+from fieldkit.ui.words import count, hertz, percent, plus_minus, ratio_percent, sentence
+
+if TYPE_CHECKING:
+    from fieldkit.detune.excitation import Band
+    from fieldkit.signal.modes import MeasuredMode
+    from fieldkit.signal.running import RunningLine
+
+
+@dataclass(frozen=True)
+class Reading:
+    """A line for the foot of a view."""
+
+    says: str
+    sure: str = ""
+    next: str = ""
+
+    def __str__(self) -> str:
+        following = f"→ {sentence(self.next)}" if self.next else ""
+        parts = (sentence(self.says), sentence(self.sure), following)
+        return " ".join(part for part in parts if part)
+
+    def fitted(self, cells: int) -> str:
+        """As much as fits: first the middle part goes, then the end."""
+        whole, short = str(self), str(replace(self, sure=""))
+        if len(whole) <= cells:
+            return whole
+        return short if len(short) <= cells else f"{short[: cells - 1]}…"
+
+
+NO_JOB = Reading("No job is open", next="press o to open one, n for a new one, s for a sample")
+
+
+def reading(view: str, desk: Desk) -> Reading:
+    """The reading of a view; asks for a job where there is none."""
+    if desk.job is None:
+        return NO_JOB
+    return READERS[view](desk)
+
+
+def waiting(desk: Desk, what: str, next_step: str) -> Reading:
+    """While there is no result: being worked on, stopped, failed or never asked."""
+    if desk.working:
+        return Reading(f"{what} is being worked out")
+    if desk.stopped:
+        return Reading("Stopped", next="press r to work the job out again")
+    return Reading(desk.failed or next_step)
+
+
+def _tap(desk: Desk) -> Reading:
+    if not desk.has("tap"):
+        return Reading(
+            "Nothing tapped yet: frequencies below come from the description alone",
+            next="record four or more soft taps, then name the file with a",
+        )
+    if desk.workup is None:
+        return waiting(desk, "The tap", "The tap has not been read")
+    modes = desk.workup.evidence.modes
+    if not modes:
+        return Reading(
+            "No mode could be read from these taps",
+            next="tap harder or closer, sensor and hammer at mid-span; reasons under x",
+        )
+    lowest = modes[0]
+    return Reading(
+        f"{count(len(modes), 'mode')}, lowest {measured(lowest)} Hz",
+        _seen_in(desk, lowest),
+        "tap the other direction too" if _one_direction(modes) else "go to Span (3)",
+    )
+
+
+def measured(mode: MeasuredMode) -> str:
+    """Its frequency with its doubt."""
+    return plus_minus(mode.frequency_hz, mode.frequency_sd_hz)
+
+
+def _seen_in(desk: Desk, mode: MeasuredMode) -> str:
+    if not mode.taps:
+        return "typed in by hand"
+    usable = sum(len(reading.records) for reading in desk.workup.taps) if desk.workup else 0
+    few = ", too few to trust its damping" if mode.taps < 3 else ""
+    return f"seen in {mode.taps} of {usable} usable taps{few}"
+
+
+def _one_direction(modes: tuple[MeasuredMode, ...]) -> bool:
+    return len({mode.direction for mode in modes}) == 1
+
+
+def _running(desk: Desk) -> Reading:
+    if not desk.has("running"):
+        return Reading(
+            "No running recording: which line shakes the pipe is not known",
+            next="record half a minute with the machine running, then name the file with a",
+        )
+    if desk.workup is None:
+        return waiting(desk, "The running recording", "The running recording has not been read")
+    lines = tuple(chain.from_iterable(r.picture.lines for r in desk.workup.running))
+    if not lines:
+        return Reading(
+            "No line stands clear of the noise", next="record longer, or closer to mid-span"
+        )
+    return _strongest_line(desk, max(lines, key=lambda line: line.rms))
+
+
+def _strongest_line(desk: Desk, line: RunningLine) -> Reading:
+    order = order_of(line.frequency_hz, desk.bands)
+    name = f"on {order.name}" if order else "on no known order"
+    says = f"The strongest line, {hertz(line.frequency_hz)} Hz, sits {name}"
+    mode_hz = nearest(line.frequency_hz, desk.mode_hz)
+    if mode_hz is None:
+        return Reading(says, next="tap the pipe to learn whether a mode lies there")
+    apart = abs(mode_hz / line.frequency_hz - 1)
+    if apart < 0.1:
+        return Reading(
+            says,
+            f"a mode lies {ratio_percent(apart)} away: resonance is likely",
+            "go to Detune (5)",
+        )
+    return Reading(
+        says,
+        f"the nearest mode is {ratio_percent(apart)} away: forced, more than resonant",
+        "look at the source as well as at the pipe",
+    )
+
+
+def order_of(frequency_hz: float, forbidden: tuple[Band, ...], within: float = 0.02) -> Band | None:
+    """The excitation a line belongs to: inside its range, or within 2 % of it."""
+    close = [band for band in forbidden if band.separation(frequency_hz) <= within]
+    return min(close, key=lambda band: band.separation(frequency_hz), default=None)
+
+
+def nearest(frequency_hz: float, among_hz: tuple[float, ...]) -> float | None:
+    """The frequency closest in ratio; None where there is none."""
+    return min(among_hz, key=lambda other: abs(other / frequency_hz - 1), default=None)
+
+
+def _span(desk: Desk) -> Reading:
+    if desk.span_refused:
+        return Reading(desk.span_refused)
+    modes = desk.modes_of("running")
+    if not modes:
+        return waiting(desk, "The span", "This span has no mode below the limit")
+    says = f"As described the first mode runs at {hertz(modes[0].frequency_hz)} Hz"
+    if not desk.measured_hz:
+        return Reading(
+            says,
+            "support stiffness is a guess until a tap says otherwise",
+            "tap it, or see Detune (5)",
+        )
+    return Reading(says, "the tap corrects it in Match", "edit with enter, then go to Match (4)")
+
+
+def _match(desk: Desk) -> Reading:
+    found = desk.workup.match if desk.workup else None
+    if found is None and not desk.has("tap"):
+        return Reading(
+            "Nothing to match: no tap has been read",
+            next="add a tap recording in Tap (1); Detune (5) works meanwhile, with wide doubt",
+        )
+    if found is None:
+        return waiting(
+            desk, "The match", "The tap and the description do not agree on any plausible pipe"
+        )
+    informed = [p.name for p in found.parameters if p.informed]
+    says = f"{len(found.pairs)} of {count(len(found.measured), 'measured mode')} explained"
+    told = f"the tap told {' and '.join(informed[:2])}" if informed else "the tap told nothing new"
+    return Reading(says, told, found.next_measurement or "go to Detune (5)")
+
+
+def _detune(desk: Desk) -> Reading:
+    found = desk.workup.detuning if desk.workup else None
+    if found is None or desk.job is None:
+        return waiting(desk, "The cure", "There is nothing to detune from yet")
+    wanted = desk.job.goal.chance
+    says = f"As it is, {percent(found.chance_now)} chance of being clear"
+    if found.chance_now >= wanted:
+        return Reading(says, f"the {percent(wanted)} wanted is met", "leave the pipe as it is")
+    best = found.fixes[0] if found.fixes else None
+    if best is None or best.chance < wanted:
+        reach = f"the best change reaches {percent(best.chance)}" if best else "no change was found"
+        return Reading(
+            says,
+            f"{reach}, short of the {percent(wanted)} wanted",
+            "try another speed, damping or an absorber, or a better tap",
+        )
+    return Reading(
+        says, f"change 1 reaches {percent(best.chance)}", "adopt with a, then re-tap to prove it"
+    )
+
+
+def _sheet(desk: Desk) -> Reading:
+    if desk.workup is None:
+        return waiting(desk, "The sheet", "There is no result to write down yet")
+    return Reading(
+        "What another engineer needs to check this by hand",
+        next="save it with w; have it checked before anything is cut, welded or clamped",
+    )
+
+
+READERS: dict[str, Callable[[Desk], Reading]] = {
+    "tap": _tap,
+    "running": _running,
+    "span": _span,
+    "match": _match,
+    "detune": _detune,
+    "sheet": _sheet,
+}

@@ -1,0 +1,71 @@
+"""The strip at the top: the job, what is being done, and how far each step has come."""
+
+from __future__ import annotations
+
+from textual.app import ComposeResult
+from textual.containers import Horizontal, Vertical
+from textual.content import Content
+from textual.events import Click
+from textual.message import Message
+from textual.widgets import Static
+
+from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
+from fieldkit.ui.words import safe
+
+
+class Step(Static):
+    """One step: its key and name above, its state below."""
+
+    class Picked(Message):
+        """The user clicked a step."""
+
+        def __init__(self, step: str) -> None:
+            self.step = step
+            super().__init__()
+
+    def __init__(self, number: int, step: str) -> None:
+        super().__init__(id=f"step-{step}")
+        self.step = step
+        self.number = number
+        self.state = StepState.TO_DO
+
+    def show(self, state: StepState, here: bool) -> None:
+        """State of the step, and whether its view is the one on screen."""
+        self.state = state
+        self.set_class(here, "-here")
+        for other in StepState:
+            self.set_class(other is state, f"-{other.name.lower().replace('_', '-')}")
+        marker = "▌" if here else " "
+        name = Content.styled(f"{self.number} {self.step.capitalize()}", "bold" if here else "")
+        self.update(Content(f"{marker}") + name + Content(f"\n{marker}{state.glyph} {state.word}"))
+
+    def on_click(self, _event: Click) -> None:
+        """A click does what the number key does."""
+        self.post_message(self.Picked(self.step))
+
+
+class Strip(Vertical):
+    """Title line and the six steps."""
+
+    def compose(self) -> ComposeResult:
+        """Title and activity on one line, the steps below."""
+        with Horizontal(id="title-line"):
+            yield Static(id="job-title", markup=False)
+            yield Static(id="activity", markup=False)
+        with Horizontal(id="steps"):
+            for number, step in enumerate(STEPS, start=1):
+                yield Step(number, step)
+
+    def show(self, desk: Desk, here: str, unsaved: bool) -> None:
+        """Everything at once."""
+        title = desk.job.title if desk.job else "no job open"
+        mark = "  * unsaved" if unsaved else ""
+        self.query_one("#job-title", Static).update(Content(safe(f" fieldkit  {title}{mark}")))
+        for step, state in step_states(desk).items():
+            self.query_one(f"#step-{step}", Step).show(state, step == here)
+
+    def say(self, doing: str, fraction: float | None) -> None:
+        """What is being done now; an empty text clears it."""
+        share = f" {fraction:4.0%}" if fraction is not None else ""
+        text = f"▸ {doing}{share}  esc stops " if doing else ""
+        self.query_one("#activity", Static).update(Content(safe(text)))

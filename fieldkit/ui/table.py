@@ -1,0 +1,67 @@
+"""A table whose cells are plain text, never markup, and which keeps its cursor when refilled."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+
+from rich.text import Text
+from textual.coordinate import Coordinate
+from textual.widgets import DataTable
+
+from fieldkit.ui.words import safe
+
+Cell = str | Text
+Row = tuple[str, Sequence[Cell]]
+"""(key, cells)."""
+
+
+class Table(DataTable[Text]):
+    """Rows chosen by the up and down keys."""
+
+    def __init__(self, *columns: str, id: str | None = None, classes: str | None = None) -> None:
+        super().__init__(
+            cursor_type="row",
+            id=id,
+            classes=classes,
+            cell_padding=1,
+            cursor_foreground_priority="css",
+        )
+        self._titles = columns
+        self._rows: list[Row] = []
+
+    def on_mount(self) -> None:
+        """Columns stand before the first row comes."""
+        for title in self._titles:
+            self.add_column(Text(title), key=title)
+
+    def fill(self, rows: Iterable[Row]) -> None:
+        """Replace all rows; the cursor stays on the row of the same key, or at the same height."""
+        fresh = list(rows)
+        if fresh == self._rows:
+            return
+        chosen, height = self.chosen, self.cursor_row
+        self._rows = fresh
+        self.clear()
+        for key, cells in fresh:
+            self.add_row(*(_plain(cell) for cell in cells), key=key)
+        keys = [key for key, _ in fresh]
+        row = keys.index(chosen) if chosen in keys else min(height, len(keys) - 1)
+        if row > 0:
+            self.cursor_coordinate = Coordinate(row, 0)
+
+    @property
+    def chosen(self) -> str | None:
+        """Key of the row under the cursor."""
+        if not 0 <= self.cursor_row < len(self._rows):
+            return None
+        return self._rows[self.cursor_row][0]
+
+    def choose(self, key: str) -> None:
+        """Put the cursor on a row."""
+        keys = [row_key for row_key, _ in self._rows]
+        if key in keys:
+            self.move_cursor(row=keys.index(key))
+
+
+def _plain(cell: Cell) -> Text:
+    return cell if isinstance(cell, Text) else Text(safe(cell))

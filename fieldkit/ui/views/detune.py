@@ -1,0 +1,146 @@
+"""Detune: the bands, the chance as it is, the ranked changes, and the one under the cursor."""
+
+from __future__ import annotations
+
+from typing import ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import Binding, BindingType
+from textual.containers import Horizontal, Vertical, VerticalScroll
+from textual.widgets import DataTable
+
+from fieldkit.detune.effort import effort
+from fieldkit.detune.verdict import Detuning, Nearest, Verdict
+from fieldkit.ui.messages import AdoptWanted, FixChosen
+from fieldkit.ui.table import Row, Table
+from fieldkit.ui.views.base import View, plain
+from fieldkit.ui.views.fixed_span import draw_fixed
+from fieldkit.ui.widgets import SpanDrawing
+from fieldkit.ui.words import DASH, hertz, percent, ratio_percent, sentence, span_of
+
+
+class DetuneView(View):
+    """Question above, answers in the middle, the chosen answer below."""
+
+    NAME = "detune"
+    HOME = "#fixes"
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("a", "adopt", "Adopt", id="detune.adopt",
+                tooltip="Write the chosen change into the job, after asking"),
+    ]  # fmt: skip
+
+    def compose(self) -> ComposeResult:
+        """Text, table, and table beside text."""
+        yield plain("question")
+        yield Table("#", "chance", "effort", "apart", "nearest band", "change", id="fixes")
+        with Horizontal(classes="lower"):
+            yield Table("#", "now Hz", "after 90 %", "direction", "clear", id="after")
+            with Vertical(id="fix-side"):
+                with VerticalScroll(id="fix-words", can_focus=True):
+                    yield plain("fix-text")
+                yield SpanDrawing(id="fix-drawing")
+
+    def draw(self) -> None:
+        """Everything but the cursor, which stays where it was."""
+        found = self._found
+        self.write("#question", self._question(found))
+        self.table("#fixes").fill(self._fix_rows(found) if found else [])
+        self._draw_chosen()
+
+    @property
+    def _found(self) -> Detuning | None:
+        return self.desk.workup.detuning if self.desk.workup else None
+
+    @property
+    def chosen(self) -> Verdict | None:
+        """The fix under the cursor."""
+        found, key = self._found, self.table("#fixes").chosen
+        if found is None:
+            return None
+        return next((fix for fix in found.fixes if str(fix.rank) == key), None)
+
+    def on_data_table_row_highlighted(self, event: DataTable.RowHighlighted) -> None:
+        """A fix under the cursor is the chosen one."""
+        if event.data_table.id != "fixes":
+            return
+        self._draw_chosen()
+        if self.chosen is not None:
+            self.post_message(FixChosen(self.chosen))
+
+    def action_adopt(self) -> None:
+        """Ask for the chosen fix to be written into the job."""
+        if self.chosen is None:
+            self.notify("No change is chosen.", severity="warning")
+            return
+        self.post_message(AdoptWanted(self.chosen))
+
+    def _fix_rows(self, found: Detuning) -> list[Row]:
+        return [(str(fix.rank), self._fix_cells(fix)) for fix in found.fixes]
+
+    def _fix_cells(self, fix: Verdict) -> tuple[str, ...]:
+        size = effort(fix.change, self.desk.job.span) if self.desk.job else 0.0
+        return (
+            str(fix.rank),
+            percent(fix.chance),
+            f"{size:.1f}",
+            ratio_percent(fix.nearest.separation),
+            fix.nearest.band,
+            fix.summary,
+        )
+
+    def _question(self, found: Detuning | None) -> str:
+        listed = ", ".join(f"{b.name} {span_of(b.low_hz, b.high_hz)}" for b in self.desk.bands)
+        if not listed:
+            return "No excitation is described yet: add one in Span (3), a"
+        margin = ratio_percent(self.desk.job.goal.margin) if self.desk.job else ""
+        bands = f"Keep {margin} clear of {listed} Hz"
+        if found is None:
+            return bands
+        nearest = f", nearest {_nearest(found.nearest_now)}" if found.nearest_now else ""
+        return f"Now: {percent(found.chance_now)} chance of being clear{nearest}\n{bands}"
+
+    def _draw_chosen(self) -> None:
+        found, fix = self._found, self.chosen
+        self.table("#after").fill(_mode_rows(found, fix) if found else [])
+        self.write("#fix-text", "\n".join(self._words(found, fix)))
+        draw_fixed(self.query_one(SpanDrawing), self.desk)
+
+    def _words(self, found: Detuning | None, fix: Verdict | None) -> list[str]:
+        if found is None:
+            return [sentence(text) for text in self.desk.refusals("detune")]
+        return [*self._shortfall(found), *(_fix_words(fix) if fix else []), *found.warnings]
+
+    def _shortfall(self, found: Detuning) -> list[str]:
+        """Said plainly when nothing reaches what was wanted."""
+        wanted = self.desk.job.goal.chance if self.desk.job else 0.9
+        best = max((fix.chance for fix in found.fixes), default=0.0)
+        if found.chance_now >= wanted:
+            return [f"No change is needed: {percent(wanted)} was wanted."]
+        if best >= wanted:
+            return []
+        return [
+            f"No change reaches the {percent(wanted)} wanted; the best reaches {percent(best)}. "
+            "Another speed, added damping or an absorber may; a better tap narrows the doubt."
+        ]
+
+
+def _nearest(nearest: Nearest) -> str:
+    return f"{nearest.band}, {ratio_percent(nearest.separation)} apart"
+
+
+def _mode_rows(found: Detuning, fix: Verdict | None) -> list[Row]:
+    after = fix.modes_after if fix else ()
+    rows: list[Row] = []
+    for i in range(max(len(found.modes), len(after))):
+        now = hertz(found.modes[i].median_hz) if i < len(found.modes) else DASH
+        mode = after[i] if i < len(after) else found.modes[i]
+        then = span_of(mode.low_hz, mode.high_hz) if i < len(after) else DASH
+        rows.append(
+            (str(i + 1), (str(i + 1), now, then, mode.direction, percent(mode.chance_clear)))
+        )
+    return rows
+
+
+def _fix_words(fix: Verdict) -> list[str]:
+    cautions = [f"! {sentence(caution)}" for caution in fix.cautions]
+    return [sentence(fix.summary), *cautions]

@@ -1,0 +1,125 @@
+"""Running: which lines shake the pipe, on which order of which machine, and which mode is near."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING, ClassVar
+
+from textual.app import ComposeResult
+from textual.binding import Binding, BindingType
+from textual.widgets import DataTable
+
+from fieldkit.ui.messages import AddWanted, EditWanted
+from fieldkit.ui.plots import running_marks, shaded, spectrum_curve, unit_of
+from fieldkit.ui.readings import nearest, order_of
+from fieldkit.ui.table import Row, Table
+from fieldkit.ui.units import level
+from fieldkit.ui.views.base import View, plain
+from fieldkit.ui.widgets import SpectrumPlot
+from fieldkit.ui.words import DASH, hertz, ratio_percent, seconds, sentence
+
+if TYPE_CHECKING:
+    from fieldkit.workup import RunningReading
+
+
+class RunningView(View):
+    """Spectrum above, its lines below, levels beside."""
+
+    NAME = "running"
+    HOME = "#lines"
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("a", "add", "Add recording", id="running.add", tooltip="Name a running recording"),
+        Binding("e", "edit", "Edit", id="running.edit", tooltip="Change the recording on screen"),
+        Binding("v", "next", "Next recording", show=False, id="running.next",
+                tooltip="Show the next running recording"),
+    ]  # fmt: skip
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.number = 0
+        """Which of the running recordings is on screen."""
+
+    def compose(self) -> ComposeResult:
+        """Plot, text, table."""
+        yield SpectrumPlot(
+            id="running-spectrum",
+            classes="plot",
+            empty="No running recording yet: press a to name one",
+        )
+        yield plain("running-text")
+        yield Table("Hz", "RMS", "order", "nearest mode", "apart", id="lines")
+
+    @property
+    def reading(self) -> RunningReading | None:
+        """The recording on screen."""
+        found = self.desk.workup.running if self.desk.workup else ()
+        return found[self.number % len(found)] if found else None
+
+    def draw(self) -> None:
+        """Plot, lines and levels of the recording on screen."""
+        found = self.reading
+        spectrum = found.picture.spectrum if found else None
+        self.query_one(SpectrumPlot).show(
+            (spectrum_curve(spectrum, found.file),) if found and spectrum else (),
+            running_marks(found.picture.lines, self.desk) if found else (),
+            shaded(self.desk),
+            amplitude_unit=unit_of(spectrum),
+            up_to_hz=self.desk.up_to_hz,
+        )
+        self.table("#lines").fill(self._rows(found) if found else [])
+        self.write("#running-text", "\n".join(self._words(found)))
+
+    def _rows(self, found: RunningReading) -> list[Row]:
+        unit = found.picture.spectrum.unit
+        modes_hz = self.desk.mode_hz
+        rows = []
+        for line in found.picture.lines:
+            order = order_of(line.frequency_hz, self.desk.bands)
+            mode_hz = nearest(line.frequency_hz, modes_hz)
+            apart = DASH if mode_hz is None else ratio_percent(abs(mode_hz / line.frequency_hz - 1))
+            cells = (
+                f"{line.frequency_hz:.2f}",
+                level(line.rms, unit),
+                order.name if order else "no known order",
+                DASH if mode_hz is None else f"{hertz(mode_hz)} Hz",
+                apart,
+            )
+            rows.append((f"{line.frequency_hz:.3f}", cells))
+        return rows
+
+    def _words(self, found: RunningReading | None) -> list[str]:
+        refused = [f"✗ {sentence(text)}" for text in self.desk.refusals("running")]
+        if found is None:
+            return refused or ["No running recording yet: press a to name one."]
+        picture = found.picture
+        others = (
+            "" if self._count < 2 else f" ({self.number % self._count + 1} of {self._count}, v)"
+        )
+        heading = (
+            f"{found.file}{others}, {seconds(found.duration_s)}: overall "
+            f"{level(picture.overall_rms, picture.spectrum.unit)} RMS, "
+            f"{picture.low_hz:g} to {picture.high_hz:g} Hz"
+        )
+        return [heading, *refused, *map(sentence, (*found.notes, *picture.warnings))]
+
+    @property
+    def _count(self) -> int:
+        return len(self.desk.workup.running) if self.desk.workup else 0
+
+    def action_add(self) -> None:
+        """Name a running recording."""
+        self.post_message(AddWanted("recording", {"kind": "running"}))
+
+    def action_edit(self) -> None:
+        """Change what the job says of the recording on screen."""
+        entry = self.reading.entry if self.reading else None
+        if entry is not None and self.desk.job is not None:
+            self.post_message(EditWanted("recording", self.desk.job.recordings.index(entry)))
+
+    def action_next(self) -> None:
+        """Show the next recording."""
+        self.number += 1
+        self.draw()
+
+    def on_data_table_row_selected(self, _event: DataTable.RowSelected) -> None:
+        """Enter on a line does what ``e`` does."""
+        self.action_edit()
