@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import islice
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,7 +17,7 @@ from fieldkit.signal.windows import HANN, HFT90D
 MOST_LINES = 20
 FALSE_LINES = 1e-3
 """Lines expected from white noise alone, in one spectrum."""
-LEAST_RATIO = 2.0
+LEAST_PROMINENCE = 2.0
 """A line is at least this many times as high as the median around it."""
 _TELLING_PROMINENCE = 4.0
 """Below it the noise under a line varies its level too much to call it steady or not."""
@@ -74,8 +75,9 @@ def find_lines(
     inside = slice(max(2, int(np.ceil(low_hz / line_hz))), int(high_hz / line_hz) + 1)
     candidates = _candidates(mean_square, inside, power.segments)
     peaks = _distinct([_peak(mean_square, k) for k in candidates], mean_square)
-    lines = (_line(peak, peaks, spectrum, signal, rate_hz) for peak in peaks[:MOST_LINES])
-    return tuple(sorted(lines, key=lambda line: -line.rms))
+    lines = (_line(peak, peaks, spectrum, signal, rate_hz) for peak in peaks)
+    clear = islice((line for line in lines if line.prominence >= LEAST_PROMINENCE), MOST_LINES)
+    return tuple(sorted(clear, key=lambda line: -line.rms))
 
 
 def _candidates(mean_square: NDArray[np.float64], inside: slice, segments: int) -> NDArray[np.intp]:
@@ -88,7 +90,7 @@ def _candidates(mean_square: NDArray[np.float64], inside: slice, segments: int) 
         return np.empty(0, dtype=np.intp)
     freedom = 1 + (segments - 1) / (1 + 2 * _OVERLAP_CORRELATION)
     by_chance = gammainccinv(freedom, FALSE_LINES / len(power)) / gammaincinv(freedom, 0.5)
-    threshold = max(LEAST_RATIO**2, float(by_chance)) * _floor(power)
+    threshold = max(LEAST_PROMINENCE**2, float(by_chance)) * _floor(power)
     before, after = mean_square[start - 1 : inside.stop - 1], mean_square[start + 1 :][: len(power)]
     after = np.pad(after, (0, len(power) - len(after)))
     found = np.flatnonzero((power > before) & (power >= after) & (power > threshold))

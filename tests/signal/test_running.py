@@ -7,6 +7,7 @@ import pytest
 
 from fieldkit.errors import InputError, Refusal
 from fieldkit.signal.running import read_running
+from fieldkit.signal.steady_lines import LEAST_PROMINENCE, MOST_LINES
 
 RATE_HZ = 1024.0
 
@@ -45,7 +46,7 @@ def test_lines_are_read_with_frequency_level_and_order():
     for found, (frequency_hz, rms) in zip(picture.lines, lines, strict=True):
         assert found.frequency_hz == pytest.approx(frequency_hz, abs=0.01)
         assert found.rms == pytest.approx(rms, rel=0.05)
-        assert found.prominence > 2
+        assert found.prominence >= LEAST_PROMINENCE
     assert picture.lines[0].rms == pytest.approx(3.0, rel=2e-3)
 
 
@@ -65,6 +66,14 @@ def test_slip_is_told_from_mains_in_forty_seconds():
     picture = read_running(sines(40.0, (49.6, 1.0), (50.0, 0.5), noise=0.05), RATE_HZ)
     assert [round(line.frequency_hz, 1) for line in picture.lines] == [49.6, 50.0]
     assert [line.rms for line in picture.lines] == pytest.approx([1.0, 0.5], rel=0.03)
+
+
+def test_no_more_than_the_strongest_lines_are_listed():
+    harmonics = [(12.0 * k, 1.0 / k) for k in range(1, 31)]
+    picture = read_running(sines(30.0, *harmonics, noise=1e-3), RATE_HZ)
+    assert len(picture.lines) == MOST_LINES
+    expected = [frequency_hz for frequency_hz, _ in harmonics[:MOST_LINES]]
+    assert [line.frequency_hz for line in picture.lines] == pytest.approx(expected, abs=0.01)
 
 
 def test_white_noise_has_hardly_any_lines():
@@ -149,6 +158,8 @@ def test_clipping_is_seen_at_full_scale_and_at_a_rail_of_its_own(step):
         assert "clipped" in found.warnings[0]
     lower = read_running(0.3 * signal, RATE_HZ, full_scale=1.0)
     assert "clipped" in lower.warnings[0]
+    noisy = signal + 1e-4 * np.random.default_rng(1).standard_normal(len(signal))
+    assert "clipped" in read_running(noisy, RATE_HZ).warnings[0]
 
 
 def test_slow_sine_in_coarse_samples_is_not_taken_for_clipping():
