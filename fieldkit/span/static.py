@@ -5,23 +5,31 @@ Linear, every unknown stiffness at its median; supports push and pull alike.
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.errors import Refusal
 from fieldkit.span import axial
 from fieldkit.span.factor import Factor, rounding_floor
-from fieldkit.span.layout import Span, State, Support
+from fieldkit.span.layout import Span, State, axis_vectors
 from fieldkit.span.restraint import span_matrices
-from fieldkit.span.structure import Structure, assemble
+from fieldkit.span.structure import Structure, assemble, contents_mass
 from fieldkit.span.supports import springs
+
+if TYPE_CHECKING:
+    from scipy.sparse import csc_array
 
 Array = NDArray[np.float64]
 
 GRAVITY_M_PER_S2 = 9.80665
 MESH_HZ = 50.0
 """The mesh that is good for modes up to this frequency is more than fine enough at rest."""
+FALLEN_SHARE = 0.2
+FALLEN_RAD = 1.0
+"""Movement and turning under weight that no standing pipe shows."""
 
 
 @dataclass(frozen=True)
@@ -36,13 +44,25 @@ class WeightAnswer:
     """(index of the support, force (3,) in newtons on the pipe, x y z), in order of support."""
 
 
+@dataclass(frozen=True)
+class AddedLoad:
+    """What a new support comes to carry once the line is no longer as it was set."""
+
+    filling_n: Array
+    """(3,) force on the pipe from the change of contents, x y z."""
+    heat_n: Array
+    """(3,) force on the pipe from heat and pressure."""
+
+
 def weight_answer(span: Span, state: State) -> WeightAnswer:
-    """Sag and support loads under pipe, contents, insulation and point masses."""
+    """Sag and support loads under pipe, contents, insulation and point masses.
+
+    Refusal where nothing holds the span up, or keeps an offset mass from turning the pipe over.
+    """
     structure = assemble(span, state, up_to_hz=MESH_HZ, axial=False)
     stiffness, mass = span_matrices(structure, springs(span), span.masses)
-    down = np.zeros((len(structure.station_m), 6))
-    down[:, 2] = -GRAVITY_M_PER_S2
-    moved = _at_rest(stiffness, mass, mass @ down.ravel())
+    moved = _solver(stiffness, mass).solve(_weight(mass))
+    _refuse_falling(span, moved)
     drop = -moved.reshape(-1, 6)[:, 2]
     lowest = int(np.argmax(drop))
     loads = tuple((i, _support_force(structure, i, moved)) for i in range(len(span.supports)))
@@ -60,14 +80,29 @@ def thermal_movement(span: Span, cold: State, hot: State, at_m: float) -> Array:
 def restraint_force(
     span: Span, cold: State, hot: State, at_m: float, axis: str, stiffness_n_per_m: float
 ) -> float:
-    """Force in newtons that a new spring along ``axis`` holds back between the states."""
-    held = Support(at_m, "free", **{axis: stiffness_n_per_m})
-    with_spring = replace(span, supports=(*span.supports, held))
-    structure = assemble(with_spring, hot, up_to_hz=MESH_HZ, axial=False)
+    """Force in newtons by which a spring along ``axis``, set in the cold state, holds heat back."""
+    load = added_support_load(span, cold, hot, at_m, axis, stiffness_n_per_m)
+    return float(np.linalg.norm(load.heat_n))
+
+
+def added_support_load(
+    span: Span, cold: State, hot: State, at_m: float, axis: str, stiffness_n_per_m: float
+) -> AddedLoad:
+    """Load on a spring set free of force in one state, once the line is in the other.
+
+    The spring meets the pipe's own compliance c: F = movement / (1/k + c).
+    """
+    structure = assemble(span, hot, up_to_hz=MESH_HZ, axial=False)
+    stiffness, mass = span_matrices(structure, springs(span), span.masses)
+    solver = _solver(stiffness, mass)
     rows = structure.motion_rows(at_m, axis)
-    hot_growth = axial.growth(structure)
-    cold_growth = axial.growth(assemble(with_spring, cold, up_to_hz=MESH_HZ, axial=False))
-    return float(stiffness_n_per_m * np.linalg.norm(rows @ (hot_growth - cold_growth)))
+    give = np.eye(len(rows)) / stiffness_n_per_m + rows @ solver.solve(rows.T)
+    vectors = axis_vectors(span.centre_line.at(at_m)[1], axis)
+    emptied = (structure.fill - cold.nominal_fill) * contents_mass(structure)
+    filling = rows @ solver.solve(_weight(emptied))
+    heat = vectors @ thermal_movement(span, cold, hot, at_m)
+    held = [-np.linalg.solve(give, movement) @ vectors for movement in (filling, heat)]
+    return AddedLoad(*held)
 
 
 def _grown(span: Span, state: State, at_m: float) -> Array:
@@ -76,20 +111,36 @@ def _grown(span: Span, state: State, at_m: float) -> Array:
     return np.asarray(rows @ axial.growth(structure))
 
 
-def _at_rest(stiffness: object, mass: object, force: Array) -> Array:
-    """Displacement (6N,) under a load; a free direction moves until rounding holds it."""
-    floor = rounding_floor(stiffness, mass)  # type: ignore[arg-type]
-    return Factor(stiffness + floor * mass).solve(force)  # type: ignore[operator]
+def _weight(mass: csc_array) -> Array:
+    """Nodal loads (6N,) of gravity on a mass matrix."""
+    down = np.zeros((mass.shape[0] // 6, 6))
+    down[:, 2] = -GRAVITY_M_PER_S2
+    load: Array = mass @ down.ravel()
+    return load
+
+
+def _solver(stiffness: csc_array, mass: csc_array) -> Factor:
+    """A free direction moves until rounding holds it."""
+    return Factor((stiffness + rounding_floor(stiffness, mass) * mass).tocsc())
+
+
+def _refuse_falling(span: Span, moved: Array) -> None:
+    nodal = np.abs(moved.reshape(-1, 6))
+    if nodal[:, 2].max() > FALLEN_SHARE * span.length_m:
+        raise Refusal("no support holds the span up", "add what carries its weight")
+    if nodal[:, 3:].max() > FALLEN_RAD:
+        raise Refusal(
+            "no support keeps the span from turning over under its weight",
+            "add a support that grips it (clamp, anchor), or correct the offset of the mass",
+        )
 
 
 def _support_force(structure: Structure, index: int, moved: Array) -> Array:
     """Force (3,) that a support puts on the pipe."""
     force = np.zeros(3)
     for spring in springs(structure.span):
-        if spring.support != index or spring.axis in ("rotation", "torsion"):
-            continue
-        rows = structure.motion_rows(spring.at_m, spring.axis)
-        translation = structure.point_rows(spring.at_m, (0.0, 0.0, 0.0))
-        vectors = rows @ np.linalg.pinv(translation)
-        force -= spring.stiffness * vectors.T @ (rows @ moved)
+        if spring.support == index and spring.axis not in ("rotation", "torsion"):
+            rows = structure.motion_rows(spring.at_m, spring.axis)
+            vectors = axis_vectors(structure.span.centre_line.at(spring.at_m)[1], spring.axis)
+            force -= spring.stiffness * vectors.T @ (rows @ moved)
     return force

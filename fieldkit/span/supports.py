@@ -203,8 +203,13 @@ def _unit(span: Span, support: Support, axis: str) -> float:
 
 
 def _neighbour_distance(span: Span, support: Support) -> float:
-    """Mean distance to the next supports (or the ends) on either side."""
-    stations = sorted({0.0, span.length_m, *(s.at_m for s in span.supports)})
+    """Mean distance to the next supports (or the ends) on either side.
+
+    Supports that the job states in full (kind ``free``) do not count, so that adding one leaves
+    what the others are worth as it was.
+    """
+    others = [s.at_m for s in span.supports if s.kind != "free"]
+    stations = sorted({0.0, span.length_m, support.at_m, *others})
     gaps = [b - a for a, b in pairwise(stations) if b - a > 1e-6]
     beside = [
         b - a
