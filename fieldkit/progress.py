@@ -20,9 +20,17 @@ def _never() -> bool:
 class Progress:
     """Handed down into long work; the default is silent and never stops."""
 
-    on_step: Callable[[str, float], None] = _say_nothing
+    on_step: Callable[[str, float], object] = _say_nothing
     """Called with what is being done and how far it is, 0 to 1."""
     stop: Callable[[], bool] = _never
+
+    def within(self, start: float, end: float) -> Progress:
+        """The same for a part of the work that runs from ``start`` to ``end`` of the whole."""
+
+        def scaled(message: str, fraction: float) -> None:
+            self.on_step(message, start + (end - start) * fraction)
+
+        return Progress(scaled, self.stop)
 
     def step(self, message: str, fraction: float) -> None:
         """Report a step; raises Cancelled when the user asked to stop."""

@@ -6,7 +6,6 @@ from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from itertools import groupby
 from pathlib import Path
-from typing import TypeVar
 
 import numpy as np
 from numpy.typing import NDArray
@@ -32,8 +31,6 @@ from fieldkit.span.static import WeightAnswer, weight_answer
 LEAST_HZ = 2.0
 NYQUIST_SHARE = 0.4
 """Highest frequency analysed, as a share of the sampling rate."""
-
-T = TypeVar("T")
 
 
 @dataclass(frozen=True)
@@ -107,33 +104,59 @@ class Workup:
         return tuple(refusal.reason for refusal in self.refused if refusal.step == step)
 
 
-def run(job: Job, progress: Progress | None = None) -> Workup:
+def run(
+    job: Job,
+    progress: Progress | None = None,
+    on_part: Callable[[Workup], None] | None = None,
+) -> Workup:
     """Everything that can be computed for a job.
 
-    Refusals and bad recordings become entries of ``refused``; Cancelled passes through.
+    ``on_part`` gets the workup as far as it is after each step. Refusals and bad recordings become
+    entries of ``refused``; Cancelled passes through.
     """
     progress = progress or Progress()
-    steps = _Steps(progress)
-    taps, evidence = steps.attempt(
-        "tap", 0.0, 0.35, lambda p: gather(job, p), ((), Evidence(job.measured))
-    )
-    running = steps.attempt("running", 0.35, 0.45, lambda p: running_readings(job, p), ())
-    states = steps.attempt("span", 0.45, 0.5, lambda p: state_modes(job, p), ())
-    matched = steps.attempt("match", 0.5, 0.75, lambda p: matching(job, evidence, states, p), None)
-    detuned = steps.attempt(
-        "detune", 0.75, 1.0, lambda p: detuning(job, evidence, matched, p), None
-    )
-    return Workup(
-        job=job,
-        taps=taps,
-        evidence=evidence,
-        running=running,
-        match=matched,
-        detuning=detuned,
-        refused=tuple(steps.refused),
-        warnings=evidence.warnings,
-        states=states,
-    )
+    work = Workup(job, (), Evidence(job.measured), (), None, None)
+    for step, start, end, add in STEPS:
+        progress.step(step, start)
+        try:
+            work = add(work, progress.within(start, end))
+        except (Refusal, InputError) as error:
+            refusal = StepRefusal(step, str(error), isinstance(error, InputError))
+            work = replace(work, refused=(*work.refused, refusal))
+        if on_part is not None:
+            on_part(work)
+    return work
+
+
+def _with_taps(work: Workup, progress: Progress) -> Workup:
+    taps, evidence = gather(work.job, progress)
+    return replace(work, taps=taps, evidence=evidence, warnings=evidence.warnings)
+
+
+def _with_running(work: Workup, progress: Progress) -> Workup:
+    return replace(work, running=running_readings(work.job, progress))
+
+
+def _with_states(work: Workup, progress: Progress) -> Workup:
+    return replace(work, states=state_modes(work.job, progress))
+
+
+def _with_match(work: Workup, progress: Progress) -> Workup:
+    return replace(work, match=matching(work.job, work.evidence, work.states, progress))
+
+
+def _with_detuning(work: Workup, progress: Progress) -> Workup:
+    return replace(work, detuning=detuning(work.job, work.evidence, work.match, progress))
+
+
+STEPS: tuple[tuple[str, float, float, Callable[[Workup, Progress], Workup]], ...] = (
+    ("tap", 0.0, 0.35, _with_taps),
+    ("running", 0.35, 0.45, _with_running),
+    ("span", 0.45, 0.5, _with_states),
+    ("match", 0.5, 0.75, _with_match),
+    ("detune", 0.75, 1.0, _with_detuning),
+)
+"""The steps in the order of the work, each with its share of the progress."""
 
 
 def gather(job: Job, progress: Progress) -> tuple[tuple[TapReading, ...], Evidence]:
@@ -194,7 +217,7 @@ def evidence_from(
             f" ({_why_unusable(readings)})",
             "record three taps or more, each left to ring out, a quiet second before the first",
         )
-    estimates = []
+    estimates: list[tuple[GroupKey, ModeEstimate]] = []
     for key, group in groupby(sorted(usable, key=_group_key), key=_group_key):
         progress.step("finding modes", 0.5 + 0.5 * len(estimates) / len(usable))
         estimates.append((key, _estimate(list(group), up_to_hz)))
@@ -340,29 +363,6 @@ def detuning(job: Job, evidence: Evidence, matched: Match | None, progress: Prog
         job.units,
         progress,
     )
-
-
-class _Steps:
-    """Runs the steps one after the other and keeps why one of them failed."""
-
-    def __init__(self, progress: Progress) -> None:
-        self.progress = progress
-        self.refused: list[StepRefusal] = []
-
-    def attempt(
-        self, step: str, start: float, end: float, work: Callable[[Progress], T], otherwise: T
-    ) -> T:
-        """The answer of a step, or ``otherwise`` with the reason noted."""
-
-        def within(message: str, fraction: float) -> None:
-            self.progress.on_step(message, start + (end - start) * fraction)
-
-        self.progress.step(step, start)
-        try:
-            return work(Progress(within, self.progress.stop))
-        except (Refusal, InputError) as error:
-            self.refused.append(StepRefusal(step, str(error), isinstance(error, InputError)))
-            return otherwise
 
 
 def _channel(entry: RecordingEntry) -> tuple[Recording, NDArray[np.float64]]:

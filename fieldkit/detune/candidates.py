@@ -7,7 +7,8 @@ fix is added here and in ``fixes``.
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -118,7 +119,7 @@ def added_supports(search: Search) -> Iterable[Candidate]:
             stiffness = _scattered(search, levels, len(ports))
             clear = count.clear_with_springs(receptance, stiffness)
             for level, k, chance in zip(levels, stiffness, clear.mean(axis=1), strict=True):
-                change = AddSupport(at_m, **{f"{axis}_n_per_m": float(level) for axis in axes})
+                change = replace(AddSupport(at_m), **_levels(axes, level))
                 push = Push(ports=ports, moved_by=shape, stiffness=k)
                 yield Candidate(change, push, float(chance))
 
@@ -194,8 +195,12 @@ def _stiffened(
         total = level * search.scatter.stiffness_factor[:, None]
         added = np.maximum(total - now, 1e-3 * level)
         chance = count.clear_with_springs(receptance, added[None]).mean()
-        change = StiffenSupport(index, **{f"{axis}_n_per_m": float(level) for axis in axes})
+        change = replace(StiffenSupport(index), **_levels(axes, level))
         yield Candidate(change, Push(ports=ports, stiffness=added), float(chance))
+
+
+def _levels(axes: tuple[str, ...], level: float) -> dict[str, Any]:
+    return {f"{axis}_n_per_m": float(level) for axis in axes}
 
 
 def _springs_along(search: Search, index: int, axes: tuple[str, ...]) -> list[int]:
@@ -288,7 +293,7 @@ def _displaced(search: Search, base: Field, axes: tuple[str, ...], station: int)
     slope = (base.motion(after) - base.motion(before)) / (
         base.station_m[high] - base.station_m[low]
     )
-    return here + search.scatter.place_m[:, None, None] * slope
+    return np.asarray(here + search.scatter.place_m[:, None, None] * slope)
 
 
 def _residual(base: Field, ports: tuple[int, ...]) -> Array:

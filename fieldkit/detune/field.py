@@ -171,7 +171,7 @@ def _ports(span: Span, model: ReducedModel, stations: Array) -> Ports:
     for i, mass in enumerate(span.masses):
         add("mass", i, mass.at_m, mass_rows(structure, mass))
     full = csr_array(np.concatenate(blocks))
-    return Ports(tuple(keys), groups, full @ model.basis, model, full)
+    return Ports(tuple(keys), groups, np.asarray(full @ model.basis), model, full)
 
 
 def _residual(model: ReducedModel, rows: Array) -> Array:

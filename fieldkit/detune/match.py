@@ -206,7 +206,7 @@ def _motion(model: ReducedModel, stations: Array, axes: Sequence[str]) -> Array:
     rows = [
         model.structure.motion_rows(float(station), axis) for station in stations for axis in axes
     ]
-    return np.concatenate(rows) @ model.basis / np.sqrt(len(stations))
+    return np.asarray(np.concatenate(rows) @ model.basis / np.sqrt(len(stations)))
 
 
 @dataclass(frozen=True)

@@ -173,7 +173,7 @@ def _optimise(problem: Problem, z: Array, progress: Progress) -> _Optima:
             best, best_value = _keep_better(problem, z, best, best_value)
     _, curvature, log_likelihoods = _expected(problem, best, 1.0)
     value = log_likelihoods - 0.5 * np.sum(best**2, axis=1)
-    return _Optima(best, value, np.linalg.inv(curvature))
+    return _Optima(best, value, np.asarray(np.linalg.inv(curvature)))
 
 
 def _keep_better(problem: Problem, z: Array, best: Array, best_value: Array) -> tuple[Array, Array]:
@@ -213,7 +213,9 @@ def _mixture(optima: _Optima) -> _Mixture:
             chosen.append(int(i))
     weight = np.exp(0.7 * (evidence[chosen] - evidence.max()))
     covariance = INFLATION**2 * optima.covariance[chosen]
-    return _Mixture(weight / weight.sum(), optima.z[chosen], np.linalg.cholesky(covariance))
+    return _Mixture(
+        weight / weight.sum(), optima.z[chosen], np.asarray(np.linalg.cholesky(covariance))
+    )
 
 
 def _apart(optima: _Optima, i: int, j: int) -> bool:
@@ -270,7 +272,7 @@ def _move(
 
 
 def _tempered(level: float, z: Array, start: Array, likelihood: Array) -> Array:
-    return (1 - level) * start + level * (likelihood - 0.5 * np.sum(z**2, axis=1))
+    return np.asarray((1 - level) * start + level * (likelihood - 0.5 * np.sum(z**2, axis=1)))
 
 
 def _next_rise(log_ratio: Array, most: float) -> float:

@@ -58,7 +58,7 @@ class Unknown:
     def slope(self, z: Array) -> Array:
         """Derivative of ``at`` with respect to z."""
         if self.role == "spring":
-            return self.spread * self.at(z)
+            return np.asarray(self.spread * self.at(z))
         if self.role == "fill":
             density = np.exp(-0.5 * z**2) / np.sqrt(2 * np.pi)
             return np.asarray(2 * self.spread * density)

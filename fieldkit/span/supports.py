@@ -66,7 +66,9 @@ KINDS = _kinds(
     SupportKind("u-bolt", _D(6e6, 1.6), _D(2e6, 1.6), _D(2e5, 1.7), _D(0.05, 1.8), grips_pipe=True),
     SupportKind("guide", _D(4e6, 1.4), _D(4e6, 1.4), None, None, grips_pipe=True),
     SupportKind("rest", _D(6e6, 1.6), _D(2e5, 1.6), _D(2e5, 1.6), None, grips_pipe=False),
-    SupportKind("hanger", _D(8e5, 1.3), _D(2e4, 1.3), _D(2e4, 1.3), None, grips_pipe=False),
+    SupportKind(
+        "hanger", _D(8e5, 1.3), _D(2e4, 1.3), _D(2e4, 1.3), None, grips_pipe=False, structural=False
+    ),
     SupportKind("free", None, None, None, None, grips_pipe=False, structural=False),
 )  # fmt: skip
 
