@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from dataclasses import dataclass
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -16,10 +18,9 @@ from fieldkit.detune.fixes import (
     SetMass,
     StiffenSupport,
 )
-from fieldkit.errors import Refusal
 from fieldkit.quantity import show
 from fieldkit.span.layout import Span, State, axis_vectors
-from fieldkit.span.static import thermal_movement, weight_answer
+from fieldkit.span.static import ThermalGrowth, WeightAnswer, thermal_growth, weight_answer
 from fieldkit.span.supports import springs
 
 Array = NDArray[np.float64]
@@ -35,22 +36,33 @@ NOTABLE_LOAD_N = 20.0
 _DIRECTIONS = ("vertical", "lateral", "axial")
 
 
+@dataclass(frozen=True)
+class Resting:
+    """The span at rest as it is now, computed once for all changes."""
+
+    span: Span
+    tapped: State
+    running: State
+    weight: WeightAnswer
+    growth: ThermalGrowth
+
+
+def at_rest(span: Span, tapped: State, running: State) -> Resting:
+    """Sag, support loads and thermal growth before any change."""
+    growth = thermal_growth(span, tapped, running)
+    return Resting(span, tapped, running, weight_answer(span, running), growth)
+
+
 def cautions(
-    change: Change,
-    span: Span,
-    tapped: State,
-    running: State,
-    least_share: float | None,
-    goal: Goal,
-    units: str,
+    change: Change, resting: Resting, least_share: float | None, goal: Goal, units: str
 ) -> tuple[str, ...]:
     """In words for the person who will do it; ``least_share`` is of the drawn stiffness."""
     found: list[str] = []
     if least_share is not None:
         found.append(_stiffness_needed(change, least_share, goal, units))
-    found += _weight(change, span, running, units)
-    found += _heat(change, span, tapped, running, units)
-    found += _mass(change, span, units)
+    found += _weight(change, resting, units)
+    found += _heat(change, resting, units)
+    found += _mass(change, resting.span, units)
     return (*(text for text in found if text), ALWAYS)
 
 
@@ -65,13 +77,10 @@ def _stiffness_needed(change: Change, least_share: float, goal: Goal, units: str
     )
 
 
-def _weight(change: Change, span: Span, running: State, units: str) -> list[str]:
+def _weight(change: Change, resting: Resting, units: str) -> list[str]:
     """Sag and support load before and after, filled and running."""
-    try:
-        before = weight_answer(span, running)
-        after = weight_answer(change.apply(span), running)
-    except Refusal as refusal:
-        return [f"sag and support loads could not be computed: {refusal}"]
+    span, before = resting.span, resting.weight
+    after = weight_answer(change.apply(span), resting.running)
     found = []
     if abs(after.sag_m - before.sag_m) > max(0.05e-3, 0.1 * before.sag_m):
         found.append(
@@ -94,15 +103,13 @@ def _support_number(change: Change, span: Span) -> int | None:
     return change.index if isinstance(change, MoveSupport | StiffenSupport) else None
 
 
-def _heat(change: Change, span: Span, tapped: State, running: State, units: str) -> list[str]:
+def _heat(change: Change, resting: Resting, units: str) -> list[str]:
     """Free thermal movement at the station that a new restraint would hold back."""
+    span, tapped, running = resting.span, resting.tapped, resting.running
     station = _restrained_at(change, span)
-    if station is None or abs(running.temperature_k - tapped.temperature_k) < 1.0:
+    if station is None:
         return []
-    try:
-        movement = thermal_movement(span, tapped, running, station)
-    except Refusal as refusal:
-        return [f"thermal movement could not be computed: {refusal}"]
+    movement = resting.growth.at(station)
     held = float(np.linalg.norm(_held_directions(change, span, station) @ movement))
     size = float(np.linalg.norm(movement))
     if held >= NOTABLE_MOVEMENT_M:

@@ -25,7 +25,7 @@ from fieldkit.detune.reduced import (
     spring_rows,
 )
 from fieldkit.detune.tracking import central_member
-from fieldkit.span.layout import Span
+from fieldkit.span.layout import Span, axis_vectors
 from fieldkit.span.supports import springs
 
 Array = NDArray[np.float64]
@@ -163,9 +163,12 @@ def _ports(span: Span, model: ReducedModel, stations: Array) -> Ports:
         count += len(rows)
 
     axes = dict.fromkeys((*AXES, "x", "y", "z", *(spring.axis for spring in springs(span))))
-    for axis in axes:
-        for i, station in enumerate(stations):
-            add(axis, i, float(station), structure.motion_rows(float(station), axis))
+    for i, station in enumerate(map(float, stations)):
+        translation, rotation = structure.station_motion(station)
+        tangent = span.centre_line.at(station)[1]
+        for axis in axes:
+            motion = rotation if axis in ("rotation", "torsion") else translation
+            add(axis, i, station, axis_vectors(tangent, axis) @ motion)
     for i, spring in enumerate(springs(span)):
         add("spring", i, spring.at_m, spring_rows(structure, spring))
     for i, mass in enumerate(span.masses):

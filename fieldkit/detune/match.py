@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -221,6 +222,14 @@ class _Reading:
     problem: Problem
     population: Population
 
+    @cached_property
+    def fields(self) -> dict[int, Field]:
+        """The ensemble as seen as tapped, and in every other state something was measured in."""
+        return {
+            i: field(self.span, self.models[i], self.population.z)
+            for i in sorted({0, *self.problem.used})
+        }
+
     def belonging(self, number: int) -> Array:
         """(members, peaks, modes) of one group."""
         found, _, _ = posterior.alignments(self.problem, self.population.z)
@@ -251,10 +260,9 @@ def _answer(
     reading: _Reading, evidence: Evidence, unknowns: tuple[Unknown, ...], handbook_hz: float | None
 ) -> Match:
     z = reading.population.z
-    tapped = field(reading.span, reading.models[0], z)
     pairs, unpaired = _pairs(reading, handbook_hz)
     parameters = tuple(_parameter(unknown, z[:, i]) for i, unknown in enumerate(unknowns))
-    modes = model_modes(tapped)
+    modes = model_modes(reading.fields[0])
     return Match(
         measured=evidence.modes,
         pairs=pairs,
@@ -289,8 +297,7 @@ def _pairs(
     pairs: list[Pair] = []
     unpaired: list[MeasuredMode] = []
     for number, group in enumerate(reading.groups):
-        model = reading.models[reading.problem.seen[number].model]
-        seen = field(reading.span, model, reading.population.z)
+        seen = reading.fields[reading.problem.seen[number].model]
         belonging = reading.belonging(number)
         followed_modes = _Followed.of(seen, belonging.shape[2])
         share = followed_modes.probability(belonging)

@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from fieldkit.detune import judge
 from fieldkit.detune.candidates import Candidate, Push, Search, generate
-from fieldkit.detune.cautions import cautions
+from fieldkit.detune.cautions import Resting, at_rest, cautions
 from fieldkit.detune.effort import effort
 from fieldkit.detune.excitation import Band, Excitation, Goal, bands
 from fieldkit.detune.field import Field, field
@@ -83,9 +83,9 @@ def detune(
         progress.step("re-solving the best changes", i / max(1, len(chosen)))
         judged.append(_judge(search, running, candidate))
     judged.sort(key=lambda j: _order(j.chance, j.candidate, span))
+    resting = at_rest(span, tapped, running)
     verdicts = tuple(
-        _verdict(search, tapped, running, j, rank, units)
-        for rank, j in enumerate(judged[:SHOWN], start=1)
+        _verdict(search, resting, j, rank, units) for rank, j in enumerate(judged[:SHOWN], start=1)
     )
     modes = judge.judged_modes(now, forbidden, goal.up_to_hz)
     return Detuning(
@@ -182,9 +182,7 @@ def _judge(search: Search, running: State, candidate: Candidate) -> _Judged:
     return _Judged(candidate, spectrum, chance, correction)
 
 
-def _verdict(
-    search: Search, tapped: State, running: State, judged: _Judged, rank: int, units: str
-) -> Verdict:
+def _verdict(search: Search, resting: Resting, judged: _Judged, rank: int, units: str) -> Verdict:
     change = judged.candidate.change
     modes = judge.judged_modes(judged.spectrum, search.bands, search.goal.up_to_hz)
     least = (
@@ -198,7 +196,7 @@ def _verdict(
         modes_after=modes,
         nearest=judge.nearest(modes, search.bands) or Nearest("", 1.0),
         chance=judged.chance,
-        cautions=cautions(change, search.span, tapped, running, least, search.goal, units),
+        cautions=cautions(change, resting, least, search.goal, units),
     )
 
 

@@ -75,7 +75,7 @@ def _normal_share(z: Array) -> Array:
         0.319381530 + t * (-0.356563782 + t * (1.781477937 + t * (-1.821255978 + t * 1.330274429)))
     )
     tail = np.exp(-0.5 * z**2) / np.sqrt(2 * np.pi) * polynomial
-    return np.where(z >= 0, 1 - tail, tail)
+    return np.asarray(np.where(z >= 0, 1 - tail, tail))
 
 
 def unknowns_of(span: Span, states: Sequence[State]) -> tuple[Unknown, ...]:

@@ -69,12 +69,32 @@ def weight_answer(span: Span, state: State) -> WeightAnswer:
     return WeightAnswer(max(float(drop[lowest]), 0.0), float(structure.station_m[lowest]), loads)
 
 
-def thermal_movement(span: Span, cold: State, hot: State, at_m: float) -> Array:
-    """Movement (3,) in metres of a station from one state to the other, x y z.
+@dataclass(frozen=True)
+class ThermalGrowth:
+    """How a span moves from one state to another by heat and pressure, its supports holding."""
 
-    Heat and pressure against the supports there are; weight is the same in both and left out.
-    """
-    return _grown(span, hot, at_m) - _grown(span, cold, at_m)
+    cold: Structure
+    cold_moved: Array
+    hot: Structure
+    hot_moved: Array
+
+    def at(self, at_m: float) -> Array:
+        """Movement (3,) in metres of a station, x y z."""
+        hot = self.hot.point_rows(at_m, (0.0, 0.0, 0.0)) @ self.hot_moved
+        cold = self.cold.point_rows(at_m, (0.0, 0.0, 0.0)) @ self.cold_moved
+        return np.asarray(hot - cold)
+
+
+def thermal_growth(span: Span, cold: State, hot: State) -> ThermalGrowth:
+    """Movement of every station; weight is the same in both states and left out."""
+    before = assemble(span, cold, up_to_hz=MESH_HZ, axial=False)
+    after = assemble(span, hot, up_to_hz=MESH_HZ, axial=False)
+    return ThermalGrowth(before, axial.growth(before), after, axial.growth(after))
+
+
+def thermal_movement(span: Span, cold: State, hot: State, at_m: float) -> Array:
+    """Movement (3,) in metres of one station from one state to the other, x y z."""
+    return thermal_growth(span, cold, hot).at(at_m)
 
 
 def restraint_force(
@@ -103,12 +123,6 @@ def added_support_load(
     heat = vectors @ thermal_movement(span, cold, hot, at_m)
     held = [-np.linalg.solve(give, movement) @ vectors for movement in (filling, heat)]
     return AddedLoad(*held)
-
-
-def _grown(span: Span, state: State, at_m: float) -> Array:
-    structure = assemble(span, state, up_to_hz=MESH_HZ, axial=False)
-    rows = structure.point_rows(at_m, (0.0, 0.0, 0.0))
-    return np.asarray(rows @ axial.growth(structure))
 
 
 def _weight(mass: csc_array) -> Array:

@@ -70,29 +70,35 @@ class Structure:
         ``axis`` is any of ``layout.axis_vectors``; ``rotation`` and ``torsion`` give rotations.
         Inside an element the element's own shape functions are used.
         """
-        translation, rotation = self._motion(at_m)
+        translation, rotation = self.station_motion(at_m)
         tangent = self.span.centre_line.at(at_m)[1]
         vectors = axis_vectors(tangent, axis)
         return vectors @ (rotation if axis in ("rotation", "torsion") else translation)
 
     def point_rows(self, at_m: float, offset_m: tuple[float, float, float]) -> Array:
         """Rows J (3, 6N): translation of a point rigidly offset from the centre line."""
-        translation, rotation = self._motion(at_m)
-        x, y, z = offset_m
-        cross = np.array([[0.0, z, -y], [-z, 0.0, x], [y, -x, 0.0]])
-        return translation + cross @ rotation
+        translation, rotation = self.station_motion(at_m)
+        carried: Array = translation - element.cross_matrix(np.array(offset_m)) @ rotation
+        return carried
 
-    def _motion(self, at_m: float) -> tuple[Array, Array]:
+    def station_motion(self, at_m: float) -> tuple[Array, Array]:
         """Translation and rotation (3, 6N each) of the centre line at a station."""
         last = len(self.station_m) - 2
         index = int(np.clip(np.searchsorted(self.station_m, at_m) - 1, 0, last))
         start, end = self.station_m[index : index + 2]
         share = float(np.clip((at_m - start) / (end - start), 0.0, 1.0))
-        inside = element.motion_inside(self.elements, index, share)
         translation, rotation = np.zeros((2, 3, 6 * len(self.station_m)))
         columns = slice(6 * index, 6 * index + 12)
-        translation[:, columns], rotation[:, columns] = inside
+        translation[:, columns], rotation[:, columns] = self._inside(index, share, at_m)
         return translation, rotation
+
+    def _inside(self, index: int, share: float, at_m: float) -> tuple[Array, Array]:
+        """Motion (3, 12 each) of the true centre line beside a point of an element's own line."""
+        translation, rotation = element.motion_inside(self.elements, index, share)
+        start, end = self.position_m[index : index + 2]
+        on_element = start + share * (end - start) + self.elements.offset_m[index]
+        lever = self.span.centre_line.at(at_m)[0] - on_element
+        return translation - element.cross_matrix(lever) @ rotation, rotation
 
 
 def assemble(
@@ -264,6 +270,7 @@ def _elements(span: Span, state: State, mesh: Mesh, fill: float) -> ElementSet:
     return ElementSet(
         length_m=mesh.chord_m,
         axes=element.local_axes(mesh.direction),
+        offset_m=mesh.bulge_m,
         axial_rigidity_n=line.axial_n * shorter,
         bending_rigidity_n_m2=line.bending_n_m2
         * shorter
