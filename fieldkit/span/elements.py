@@ -36,6 +36,9 @@ class ElementSet:
     """Distance between the two nodes."""
     axes: Array
     """(E, 3, 3): rows are the local x (along), y and z axes in global components."""
+    offset_m: Array
+    """(E, 3) from both nodes to the line of the element; a chord stands off its nodes so that it
+    runs through the middle of the arc it stands for."""
     axial_rigidity_n: Array
     """E A."""
     bending_rigidity_n_m2: Array
@@ -55,7 +58,9 @@ class ElementSet:
 
     def stretched(self, factor: Array) -> ElementSet:
         """The same elements with each length multiplied by ``factor`` (E,)."""
-        return replace(self, length_m=self.length_m * factor)
+        return replace(
+            self, length_m=self.length_m * factor, offset_m=self.offset_m * factor[:, None]
+        )
 
 
 def cowper_shear_coefficient(bore_ratio: float, poisson: float) -> float:
@@ -122,24 +127,19 @@ def motion_inside(elements: ElementSet, index: int, xi: float) -> tuple[Array, A
     for (dofs, sign), across, about in zip(_PLANES, (1, 2), (2, 1), strict=True):
         translation[across, dofs] = deflection * sign
         rotation[about, dofs] = turn * sign * sign[1]
-    axes = elements.axes[index]
-    to_local = np.zeros((12, 12))
-    for block in range(0, 12, 3):
-        to_local[block : block + 3, block : block + 3] = axes
-    return axes.T @ translation @ to_local, axes.T @ rotation @ to_local
+    to_local = _to_local(elements.axes[index : index + 1], elements.offset_m[index : index + 1])[0]
+    to_global = elements.axes[index].T
+    return to_global @ translation @ to_local, to_global @ rotation @ to_local
 
 
 def axial_strain_load(elements: ElementSet, strain: Array) -> Array:
     """Nodal loads (E, 12, global) by which elements push outward when ``strain`` (E,) is held."""
-    push = (elements.axial_rigidity_n * strain)[:, None] * elements.axes[:, 0]
-    zero = np.zeros_like(push)
-    return np.concatenate([-push, zero, push, zero], axis=1)
+    return (elements.axial_rigidity_n * strain)[:, None] * _lengthening(elements)
 
 
 def axial_strain(elements: ElementSet, displacement: Array) -> Array:
     """Strain (E,) along each element under element displacements (E, 12, global)."""
-    apart = displacement[:, 6:9] - displacement[:, 0:3]
-    stretch: Array = np.sum(apart * elements.axes[:, 0], axis=1)
+    stretch: Array = np.sum(_lengthening(elements) * displacement, axis=1)
     return stretch / elements.length_m
 
 
@@ -214,11 +214,34 @@ def _outer(a: Array, b: Array) -> Array:
 
 
 def _to_global(elements: ElementSet, local: Array) -> Array:
-    turn = np.zeros((len(local), 12, 12))
-    for block in range(0, 12, 3):
-        turn[:, block : block + 3, block : block + 3] = elements.axes
-    product: Array = turn.transpose(0, 2, 1) @ local @ turn
+    to_local = _to_local(elements.axes, elements.offset_m)
+    product: Array = to_local.transpose(0, 2, 1) @ local @ to_local
     return product
+
+
+def _to_local(axes: Array, offset_m: Array) -> Array:
+    """(E, 12, 12): motions of the element's own ends, in its axes, from those of its nodes."""
+    turn = np.zeros((len(axes), 12, 12))
+    lever = axes @ cross_matrix(offset_m)
+    for first in (0, 6):
+        turn[:, first : first + 3, first : first + 3] = axes
+        turn[:, first : first + 3, first + 3 : first + 6] = -lever
+        turn[:, first + 3 : first + 6, first + 3 : first + 6] = axes
+    return turn
+
+
+def _lengthening(elements: ElementSet) -> Array:
+    """Rows (E, 12): lengthening of each element by its nodes' motions."""
+    to_local = _to_local(elements.axes, elements.offset_m)
+    return to_local[:, 6] - to_local[:, 0]
+
+
+def cross_matrix(vector: Array) -> Array:
+    """Matrices (.., 3, 3) by which a vector (.., 3) is crossed with what follows it."""
+    x, y, z = np.moveaxis(np.asarray(vector, dtype=float), -1, 0)
+    zero = np.zeros_like(x)
+    rows = [[zero, -z, y], [z, zero, -x], [-y, x, zero]]
+    return np.stack([np.stack(row, axis=-1) for row in rows], axis=-2)
 
 
 def local_axes(direction: Array) -> Array:

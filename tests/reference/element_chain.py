@@ -33,6 +33,7 @@ def chain(
     return ElementSet(
         length_m=one * length_m / count,
         axes=np.broadcast_to(np.eye(3), (count, 3, 3)).copy(),
+        offset_m=np.zeros((count, 3)),
         axial_rigidity_n=one * axial_n,
         bending_rigidity_n_m2=one * bending_n_m2,
         torsional_rigidity_n_m2=one * torsion_n_m2,
