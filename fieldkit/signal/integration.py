@@ -62,8 +62,6 @@ def _over_frequency(
 ) -> NDArray[np.float64]:
     frequency_hz = line_frequencies(len(signal), rate_hz)
     factor = frequency_factor(frequency_hz, integrals, corner_hz)
+    # irfft keeps the real part of the line at half the rate: its odd derivatives are 0 at samples.
     turned = np.fft.rfft(signal) * factor * (-1j) ** integrals
-    # An odd derivative of the line at half the rate is not seen at the samples.
-    if len(signal) % 2 == 0 and integrals % 2:
-        turned[-1] = 0.0
     return np.fft.irfft(turned, len(signal))

@@ -23,7 +23,8 @@ _TELLING_PROMINENCE = 4.0
 """Below it the noise under a line varies its level too much to call it steady or not."""
 _FLOOR_BINS = 64
 _AROUND_BINS = 40
-_NEXT_LINE_BINS = 2.0
+_ROUNDING = 1e-9
+"""Of the highest line: what is lower may be an error of arithmetic."""
 _FLAT_TOP_CLEAR_BINS = 7.0
 _VALLEY = 0.5
 _VALLEY_BINS = 200.0
@@ -65,8 +66,8 @@ def find_lines(
     """Lines of a running spectrum of ``signal`` (n,), strongest first, at most MOST_LINES.
 
     Found and placed on a Hann spectrum of the same segments, whose lines are narrower; levels
-    are read from the flat-top spectrum where no other line is near. One sine gives one line: side
-    lobes, and bumps on the back of a broad peak, are left out.
+    are read from the flat-top spectrum where no other line is near. Bumps on the back of a broad
+    peak are left out.
     """
     length = round(rate_hz / spectrum.frequency_hz[1])
     power = segment_power(signal, HANN, length, HANN_OVERLAP)
@@ -90,7 +91,8 @@ def _candidates(mean_square: NDArray[np.float64], inside: slice, segments: int) 
         return np.empty(0, dtype=np.intp)
     freedom = 1 + (segments - 1) / (1 + 2 * _OVERLAP_CORRELATION)
     by_chance = gammainccinv(freedom, FALSE_LINES / len(power)) / gammaincinv(freedom, 0.5)
-    threshold = max(LEAST_PROMINENCE**2, float(by_chance)) * _floor(power)
+    floor = np.maximum(_floor(power), _ROUNDING**2 * mean_square.max())
+    threshold = max(LEAST_PROMINENCE**2, float(by_chance)) * floor
     before, after = mean_square[start - 1 : inside.stop - 1], mean_square[start + 1 :][: len(power)]
     after = np.pad(after, (0, len(power) - len(after)))
     found = np.flatnonzero((power > before) & (power >= after) & (power > threshold))
@@ -126,12 +128,12 @@ def _distinct(peaks: Sequence[_Peak], mean_square: NDArray[np.float64]) -> list[
 
 
 def _belongs(peak: _Peak, higher: _Peak, mean_square: NDArray[np.float64]) -> bool:
-    apart = abs(peak.bin - higher.bin)
-    if apart < _NEXT_LINE_BINS:
-        return True
-    side_lobes = higher.height / (np.pi * apart * (apart**2 - 1))
-    if peak.height < 2 * side_lobes or apart > _VALLEY_BINS:
-        return peak.height < 2 * side_lobes
+    """Whether the spectrum does not fall far enough between two peaks to make them two lines.
+
+    A steady sine has one maximum only: off its top, a Hann window falls from line to line.
+    """
+    if abs(peak.bin - higher.bin) > _VALLEY_BINS:
+        return False
     low, high = sorted((round(peak.bin), round(higher.bin)))
     return float(np.sqrt(mean_square[low : high + 1].min())) > _VALLEY * peak.height
 
@@ -148,7 +150,7 @@ def _line(
     k = round(peak.bin)
     flat_top = float(spectrum.amplitude[max(0, k - 1) : k + 2].max())
     rms = flat_top if apart >= _FLAT_TOP_CLEAR_BINS else peak.height
-    prominence = rms / max(_around(spectrum.amplitude, k), 1e-9 * rms)
+    prominence = rms / max(_around(spectrum.amplitude, k), _ROUNDING * rms)
     tells = prominence >= _TELLING_PROMINENCE
     return RunningLine(
         frequency_hz=peak.bin * line_hz,

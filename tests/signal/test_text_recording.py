@@ -198,6 +198,8 @@ def test_column_that_counts_the_samples_is_neither_time_nor_channel(tmp_path):
     named = load(file(tmp_path, ["sample,x", *lines]), rate_hz=RATE_HZ)
     assert [c.name for c in named.channels] == ["x"]
     assert "no sampling rate is known" in refusal(file(tmp_path, lines)).what
+    whole = [f"{i},{abs(1000 * x):.0f}" for i, x in zip(counts, X, strict=True)]
+    assert load(file(tmp_path, whole), rate_hz=RATE_HZ).samples.max() == 1500.0
 
 
 @pytest.mark.parametrize("fmt", ["%.4f", "%.6f", "%.6g", "%.5e"])
