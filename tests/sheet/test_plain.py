@@ -1,0 +1,27 @@
+"""Plain text: columns line up, nothing steers a terminal."""
+
+from __future__ import annotations
+
+from hypothesis import given
+from hypothesis import strategies as st
+
+from fieldkit.sheet.plain import WIDTH, clean, paragraph, table
+
+
+@given(st.text())
+def test_no_control_or_formatting_character_survives(text):
+    assert all(character.isprintable() for character in clean(text))
+
+
+def test_ordinary_text_is_left_alone():
+    assert clean("Pumpe Nr. 3, 50 °C, ± 2 %") == "Pumpe Nr. 3, 50 °C, ± 2 %"
+
+
+def test_numbers_stand_to_the_right_and_words_to_the_left():
+    lines = table(("what", "Hz"), [("pump", "9.5"), ("fan", "120.0")])
+    assert lines == ["  what     Hz", "  pump    9.5", "  fan   120.0"]
+
+
+@given(st.text(alphabet="abc def", min_size=1, max_size=400))
+def test_paragraphs_keep_to_the_page(text):
+    assert all(len(line) <= WIDTH for line in paragraph(text, 4, "- "))
