@@ -296,7 +296,13 @@ def read_running_entry(entry: RecordingEntry) -> RunningReading:
     """One running recording: its lines and its level."""
     recording, signal = _channel(entry)
     quantity, scale = _meaning(entry, recording)
-    picture = read_running(signal, recording.rate_hz, quantity=quantity, scale=scale)
+    picture = read_running(
+        signal,
+        recording.rate_hz,
+        quantity=quantity,
+        scale=scale,
+        full_scale=recording.full_scale,
+    )
     return RunningReading(
         entry.path.name,
         recording.rate_hz,

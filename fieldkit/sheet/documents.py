@@ -147,6 +147,7 @@ def _running_recording(reading: RunningReading, job: Job | None) -> Document:
                 "frequency_hz": line.frequency_hz,
                 "rms": line.rms,
                 "prominence": line.prominence,
+                "steady": line.steady,
                 "excitation": excitation_of(line.frequency_hz, job.excitations) if job else None,
             }
             for line in picture.lines

@@ -3,18 +3,15 @@
 from __future__ import annotations
 
 import textwrap
-import unicodedata
 from collections.abc import Sequence
 
 WIDTH = 78
-UNSAFE = ("Cc", "Cf", "Cs", "Co", "Zl", "Zp")
 
 
 def clean(text: str) -> str:
     """Text from a file with control and formatting characters made visible as ``\\u..``."""
     return "".join(
-        character if unicodedata.category(character) not in UNSAFE else f"\\u{ord(character):04x}"
-        for character in text
+        character if character.isprintable() else f"\\u{ord(character):04x}" for character in text
     )
 
 

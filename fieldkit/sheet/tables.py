@@ -51,12 +51,13 @@ def running(readings: Sequence[RunningReading], job: Job | None) -> list[str]:
             f"overall {picture.overall_rms:.3g} {unit} rms from {picture.low_hz:g} to "
             f"{picture.high_hz:g} Hz",
             *table(
-                ("line Hz", f"rms {unit}", "over background", "sits on"),
+                ("line Hz", f"rms {unit}", "over background", "steady", "sits on"),
                 [
                     (
                         f"{line.frequency_hz:.2f}",
                         f"{line.rms:.3g}",
                         f"{line.prominence:.0f}x",
+                        {True: "yes", False: "no", None: "?"}[line.steady],
                         (excitation_of(line.frequency_hz, job.excitations) if job else "") or "-",
                     )
                     for line in picture.lines
