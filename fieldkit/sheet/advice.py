@@ -62,6 +62,8 @@ def _running_lines(workup: Workup) -> list[str]:
                 f"({line.rms:.3g} {reading.picture.spectrum.unit} rms)"
             )
             text += f": {source}" if source else ": on no excitation the job names"
+            if line.steady is False:
+                text += "; not a steady line: a mode stirred by flow, or a speed that wanders"
             said += paragraph(f"{text}{_mode_beside(workup.detuning, line.frequency_hz)}.", 2)
     return said
 
