@@ -10,8 +10,8 @@ from numpy.typing import NDArray
 
 Real = NDArray[np.float64]
 
-_SMOOTHING = 0.12
-_LEAST_HALF_WIDTH = 6
+_SMOOTHING = 0.25
+_LEAST_HALF_WIDTH = 10
 MEDIAN_OF_MEAN = float(np.log(2))
 """Median over mean of a periodogram value, which is exponentially distributed."""
 
@@ -39,7 +39,8 @@ def noise_density(
     The median over a window of frequencies passes over lines, which are modelled on their own. None
     when all stretches together are too short to say anything.
     """
-    length = min(max((len(s) for s in segments), default=0), int(longest_s * rate_hz))
+    available = max((len(s) for s in segments), default=0)
+    length = min(max(available // 6, int(0.5 * rate_hz)), int(longest_s * rate_hz), available)
     if length < 32:
         return None
     spectra = [p for s in segments for p in periodograms(s, length, rate_hz)]
@@ -76,7 +77,7 @@ def floor_over_frequency(density: Real) -> Real:
     mean = levels / MEDIAN_OF_MEAN
     least = max(float(mean.max()) * 1e-14, np.finfo(float).tiny * 1e20)
     bins = np.arange(len(density))
-    return np.asarray(np.exp(np.interp(bins, at, np.log(np.maximum(mean, least)))))
+    return np.asarray(np.exp(np.interp(bins, at, smoothed(np.log(np.maximum(mean, least))))))
 
 
 def floor_centres(count: int) -> NDArray[np.int64]:
@@ -85,3 +86,9 @@ def floor_centres(count: int) -> NDArray[np.int64]:
     while at[-1] < count - 1:
         at.append(min(count - 1, at[-1] + max(2, int(_SMOOTHING * at[-1] / 2))))
     return np.array(at)
+
+
+def smoothed(values: Real) -> Real:
+    """Values averaged with their neighbours, ends kept."""
+    edged = np.pad(values, 1, mode="edge")
+    return np.asarray((edged[:-2] + 2 * edged[1:-1] + edged[2:]) / 4)

@@ -21,9 +21,12 @@ SHARP = 8.0
 """Error over its typical size: above it at a blow, below 7 where there is none."""
 SHORTEST_GAP_S = 0.0075
 LONGEST_GAP_S = 0.31
-_ORDERS = (24, 16, 12, 12, 12)
+_ORDERS = (24, 16, 12)
+"""Of the predictors, finest level first; the last holds for all coarser ones."""
 _BEFORE_S = 0.03
 _LOOK_S = 0.42
+_LEAST_LOOK = 200
+"""Samples a predictor is fitted to at the coarse levels."""
 _TRIMS = 4
 _KEEP = 0.9
 _OVER_TYPICAL = 6.5
@@ -70,11 +73,12 @@ class Errors:
 def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place | None:
     """Where, within a slack of a supposed blow, prediction fails most; None where nowhere.
 
-    All of the five finest levels are asked: the finest shows hard blows in quiet, the others soft
-    ones and those in noise. The time is that of the finest level that shows it.
+    All levels are asked: the finest shows hard blows in quiet, the others soft ones and those in
+    noise. The time is that of the finest level that shows it.
     """
     best: Place | None = None
-    for level, order in zip(levels, _ORDERS, strict=False):
+    for scale, level in enumerate(levels):
+        order = order_at(scale)
         errors = prediction_errors(level, about_s, np.inf, order, backwards=False, slack_s=slack_s)
         place = first_failure(errors, about_s, slack_s) if errors is not None else None
         if place is not None and (best is None or place.sharpness > best.sharpness):
@@ -108,9 +112,10 @@ def contact_end_s(level: Level, onset_s: float, until_s: float) -> float:
 
 
 def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list[Later]:
-    """Second blows at any of the five finest levels, in order of time."""
+    """Second blows at any level, in order of time."""
     found: list[Later] = []
-    for level, order in zip(levels, _ORDERS, strict=False):
+    for scale, level in enumerate(levels):
+        order = order_at(scale)
         errors = prediction_errors(level, onset_s, until_s, order, backwards=False)
         fresh = jumps(errors, order) if errors is not None else []
         for one in fresh:
@@ -118,6 +123,11 @@ def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list
             found = [k for k in found if k not in same]
             found.append(max([one, *same], key=lambda k: k.share))
     return sorted(found, key=lambda f: f.after_s)
+
+
+def order_at(scale: int) -> int:
+    """Order of the predictor at a level."""
+    return _ORDERS[min(scale, len(_ORDERS) - 1)]
 
 
 def prediction_errors(
@@ -131,8 +141,9 @@ def prediction_errors(
 ) -> Errors | None:
     """Errors from a little before the blow on; None where the stretch is too short to tell."""
     rate = level.rate_hz
+    look_s = max(_LOOK_S, _LEAST_LOOK / rate) + slack_s
     first = max(int((onset_s - _BEFORE_S - slack_s) * rate) - order, 0)
-    last = min(int(min(onset_s + _LOOK_S + slack_s, until_s) * rate), len(level.samples))
+    last = min(int(min(onset_s + look_s, until_s) * rate), len(level.samples))
     order = min(order, (last - first) // 8)
     if order < 2:
         return None
@@ -168,7 +179,7 @@ def jumps(errors: Errors, order: int) -> list[Later]:
     first = float(errors.size[at_first].max(initial=0.0))
     near = max(int(0.0015 * errors.rate_hz), 1)
     wide = max(int(0.006 * errors.rate_hz), 3)
-    loud = errors.size > max(_OVER_TYPICAL, _LEAST_SHARE * first)
+    loud = errors.size > max(SHARP, _LEAST_SHARE * first)
     inside = (errors.time_s > smeared_s) & (errors.time_s < LONGEST_GAP_S)
     ahead = np.lib.stride_tricks.sliding_window_view(np.pad(errors.size, (0, wide)), wide + 1)
     peak = ahead.max(axis=1)

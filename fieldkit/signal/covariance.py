@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.likelihood import Fit, inverse
 from fieldkit.signal.polish import Fitted
 
 Real = NDArray[np.float64]
@@ -39,35 +40,31 @@ class PoleEstimate:
 
 def pole_estimate(fitted: Fitted, strong: Real) -> PoleEstimate:
     """Values and standard deviations; ``strong`` (K,) says in which taps it stands on its own."""
-    part = fitted.part
-    cov = inverse(fitted.fit.information) * noise_factor(fitted)
+    taps, within = by_tap(fitted, strong)
+    loose = bool(fitted.tap_fits) and len(taps) > 1
+    if loose:
+        (frequency, damping), differs = [agreed(taps[:, i], within[:, i]) for i in range(2)], True
+    else:
+        shared = shared_estimates(fitted)
+        differs = any(disagree(taps[:, i], within[:, i]) for i in range(2))
+        mixed = [agreed(taps[:, i], within[:, i]) if differs else shared[i] for i in range(2)]
+        frequency, damping = mixed
+    peaks = np.abs(fitted.part.amplitudes[strong > 0])
+    return PoleEstimate(frequency, damping, differs, taps[:, 0], peaks)
+
+
+def shared_estimates(fitted: Fitted) -> list[Estimate]:
+    """Frequency and damping ratio of the pole shared by the taps."""
+    part = fitted.fit.active[fitted.place]
+    cov = inverse(fitted.fit.information) * noise_factor(fitted.fit)
     to_values = values_by_parameters(part.decay_per_s, part.pole.imag)
     at = slice(2 * fitted.place, 2 * fitted.place + 2)
-    variance = np.diag(to_values @ cov[at, at] @ to_values.T)
-    shared = np.array([part.natural_hz, part.damping_ratio])
-    taps, tap_variance = by_tap(fitted, strong, to_values, shared)
-    combined = [agreed(shared[i], variance[i], taps[:, i], tap_variance[:, i]) for i in range(2)]
-    return PoleEstimate(
-        combined[0][0],
-        combined[1][0],
-        combined[0][1] or combined[1][1],
-        taps[:, 0],
-        np.abs(part.amplitudes[strong > 0]),
-    )
+    sd = np.sqrt(np.diag(to_values @ cov[at, at] @ to_values.T))
+    return [Estimate(part.natural_hz, float(sd[0])), Estimate(part.damping_ratio, float(sd[1]))]
 
 
-def inverse(information: Real) -> Real:
-    """Inverse of a Fisher information, also where it is nearly singular."""
-    scale = np.sqrt(np.maximum(np.diag(information), 1e-300))
-    return np.asarray(
-        np.linalg.pinv(information / np.outer(scale, scale), hermitian=True)
-        / np.outer(scale, scale)
-    )
-
-
-def noise_factor(fitted: Fitted) -> float:
+def noise_factor(fit: Fit) -> float:
     """Residual variance over expected, drawn to 1 where few data say so."""
-    fit = fitted.fit
     return (fit.cost + _PRIOR_FREEDOM) / (max(fit.freedom, 0) + _PRIOR_FREEDOM)
 
 
@@ -83,35 +80,47 @@ def values_by_parameters(decay: float, omega: float) -> Real:
     )
 
 
-def by_tap(fitted: Fitted, strong: Real, to_values: Real, shared: Real) -> tuple[Real, Real]:
-    """(T, 2) values each strong tap would give on its own, to first order, and their variances."""
+def by_tap(fitted: Fitted, strong: Real) -> tuple[Real, Real]:
+    """(T, 2) frequency and damping ratio each strong tap gives on its own, and their variances.
+
+    From the fit of each tap where there is one, else to first order from the shared fit.
+    """
     at = slice(2 * fitted.place, 2 * fitted.place + 2)
     values, variances = [], []
     for k in np.flatnonzero(strong):
-        cov = inverse(fitted.fit.tap_information[k])
-        move = (cov @ fitted.fit.tap_gradient[k])[at]
-        values.append(shared + to_values @ move)
-        variances.append(np.diag(to_values @ cov[at, at] @ to_values.T) * noise_factor(fitted))
+        fit = fitted.tap_fits[k] if fitted.tap_fits else fitted.fit
+        part = fit.active[fitted.place]
+        row = 0 if fitted.tap_fits else k
+        cov = inverse(fit.tap_information[row])
+        to_values = values_by_parameters(part.decay_per_s, part.pole.imag)
+        move = (cov @ fit.tap_gradient[row])[at]
+        values.append(np.array([part.natural_hz, part.damping_ratio]) + to_values @ move)
+        variances.append(np.diag(to_values @ cov[at, at] @ to_values.T) * noise_factor(fit))
     return np.reshape(values, (-1, 2)), np.reshape(variances, (-1, 2))
 
 
-def agreed(shared: float, variance: float, taps: Real, within: Real) -> tuple[Estimate, bool]:
-    """Shared value unless the taps scatter more than noise; then their random-effects mean.
+def disagree(taps: Real, within: Real) -> bool:
+    """True where taps scatter by more than their own variances explain."""
+    from scipy.special import chdtrc
 
-    DerSimonian and Laird 1986 for the variance between taps, Student's factor for few of them.
+    if len(taps) < 2 or not np.all(within > 0):
+        return False
+    mean = np.average(taps, weights=1 / within)
+    return bool(chdtrc(len(taps) - 1, np.sum((taps - mean) ** 2 / within)) < _CHANCE_OF_SCATTER)
+
+
+def agreed(taps: Real, within: Real) -> Estimate:
+    """Random-effects mean of what the taps say, with Student's factor for few of them.
+
+    DerSimonian and Laird 1986 (from memory) for the variance between taps.
     """
-    from scipy.special import chdtrc, stdtrit
+    from scipy.special import stdtrit
 
     count = len(taps)
-    if count < 2 or not np.all(within > 0):
-        return Estimate(shared, float(np.sqrt(variance))), False
     weight = 1 / within
-    mean = weight @ taps / weight.sum()
-    spread = float(weight @ (taps - mean) ** 2)
-    if chdtrc(count - 1, spread) > _CHANCE_OF_SCATTER:
-        return Estimate(shared, float(np.sqrt(variance))), False
-    between = (spread - (count - 1)) / (weight.sum() - weight @ weight / weight.sum())
+    spread = float(weight @ (taps - np.average(taps, weights=weight)) ** 2)
+    total = weight.sum() - weight @ weight / weight.sum()
+    between = max((spread - (count - 1)) / float(total), 0.0)
     weight = 1 / (within + between)
-    mean = float(weight @ taps / weight.sum())
     student = float(stdtrit(count - 1, 0.975)) / 1.96
-    return Estimate(mean, student / float(np.sqrt(weight.sum()))), True
+    return Estimate(float(np.average(taps, weights=weight)), student / float(np.sqrt(weight.sum())))

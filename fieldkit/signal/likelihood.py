@@ -216,3 +216,12 @@ def passive_amplitudes(still: Still, active: Sequence[Component]) -> tuple[Compo
         out.append(replace(part, amplitudes=mine[:, 0] + 1j * mine[:, 1], slopes=slopes))
         at += width
     return tuple(out)
+
+
+def inverse(information: Real) -> Real:
+    """Inverse of a Fisher information, also where it is nearly singular."""
+    scale = np.sqrt(np.maximum(np.diag(information), 1e-300))
+    return np.asarray(
+        np.linalg.pinv(information / np.outer(scale, scale), hermitian=True)
+        / np.outer(scale, scale)
+    )

@@ -11,7 +11,8 @@ from numpy.typing import NDArray
 from fieldkit.errors import Refusal
 from fieldkit.signal.polish import polished
 from fieldkit.signal.preparation import Prepared, prepare
-from fieldkit.signal.search import Found, pruned, search
+from fieldkit.signal.pruning import pruned
+from fieldkit.signal.search import Found, search
 from fieldkit.signal.tones import tone_components
 from fieldkit.signal.traces import Component
 from fieldkit.signal.verdicts import Judged, judged
@@ -96,7 +97,7 @@ def estimate_modes(
         found = resolved(ready, found)
     found, fitted = polished(ready.traces, found, ready.region)
     verdicts = judged(fitted, ready.traces, ready.lines)
-    return told(verdicts, found.parts, ready, low_hz, high_hz)
+    return told(verdicts, found, ready, low_hz, high_hz)
 
 
 def resolved(ready: Prepared, known: Found | None = None) -> Found:
@@ -107,7 +108,7 @@ def resolved(ready: Prepared, known: Found | None = None) -> Found:
 
 def told(
     verdicts: Sequence[Judged],
-    parts: Sequence[Component],
+    found: Found,
     ready: Prepared,
     low_hz: float,
     high_hz: float,
@@ -117,13 +118,13 @@ def told(
     accepted = [v for v in inside if not v.reason]
     strongest = max((float(v.energy.sum()) for v in accepted), default=0.0)
     modes = [measured(v, strongest) for v in accepted]
-    steady = [p for p in parts if p.steady] + [v.part for v in inside if v.steady]
+    steady = [p for p in found.parts if p.steady] + [v.part for v in inside if v.steady]
     refused = [RefusedMode(v.estimate.frequency_hz.value, v.reason) for v in inside if v.reason]
     return ModeEstimate(
         tuple(sorted(modes, key=lambda m: m.frequency_hz)),
         told_tones(steady, [v.part for v in accepted], low_hz, high_hz),
         tuple(sorted(refused, key=lambda r: r.frequency_hz)),
-        tuple(warnings(accepted, ready)),
+        (*warnings(accepted, ready), *unresolved(accepted, found)),
     )
 
 
@@ -166,6 +167,19 @@ def warnings(modes: Sequence[Judged], ready: Prepared) -> list[str]:
             "leave two quiet seconds before the first tap"
         )
     return out + [drift(v) for v in modes if v.estimate.scattered]
+
+
+def unresolved(modes: Sequence[Judged], found: Found) -> list[str]:
+    """Which modes may be two."""
+    out = []
+    for verdict in modes:
+        part = verdict.part
+        if any(abs(pole - part.pole) < np.pi * part.half_power_hz for pole in found.unresolved):
+            out.append(
+                f"the mode at {verdict.estimate.frequency_hz.value:.4g} Hz may be two that lie "
+                "nearer than half their bandwidth; tap in another direction to tell them apart"
+            )
+    return out
 
 
 def drift(verdict: Judged) -> str:

@@ -10,6 +10,7 @@ import numpy as np
 from fieldkit.signal.clusters import fit_together, overlapping, span_s
 from fieldkit.signal.likelihood import Fit
 from fieldkit.signal.scan import Region
+from fieldkit.signal.scatter import loosened, scattered
 from fieldkit.signal.search import Found, updated, without
 from fieldkit.signal.tones import refitted
 from fieldkit.signal.traces import Component, Trace
@@ -17,12 +18,15 @@ from fieldkit.signal.traces import Component, Trace
 
 @dataclass(frozen=True)
 class Fitted:
-    """A component and the fit that its uncertainty is read from."""
+    """A component and the fits that its uncertainty is read from."""
 
     part: Component
     fit: Fit
+    """Of all taps with shared poles."""
     place: int
     """Which of the fit's active components it is."""
+    tap_fits: tuple[Fit, ...] = ()
+    """Of each tap alone, where the poles differ between taps."""
 
 
 def polished(
@@ -54,19 +58,28 @@ def swept(
     for group in groups(traces, parts):
         members = [parts[i] for i in group]
         rest = without(parts, members)
-        result = best_fit(traces, members, rest, region)
-        parts = in_place(parts, group, result, rest)
-        fitted += [Fitted(p, result, i) for i, p in enumerate(result.active)]
+        shared = [m.with_pole(m.pole) for m in members]
+        result = best_fit(traces, shared, rest, region)
+        tap_fits: tuple[Fit, ...] = ()
+        own = result.active
+        if any(scattered(m) for m in members):
+            loose = loosened(traces, members, rest, region.high_hz, members)
+            tap_fits, own = loose.fits, loose.parts
+        parts = in_place(parts, group, own, updated(rest, result.passive))
+        fitted += [Fitted(p, result, i, tap_fits) for i, p in enumerate(own)]
     return replace(found, parts=tuple(parts)), tuple(fitted)
 
 
 def in_place(
-    parts: Sequence[Component], group: Sequence[int], result: Fit, rest: Sequence[Component]
+    parts: Sequence[Component],
+    group: Sequence[int],
+    own: Sequence[Component],
+    rest: Sequence[Component],
 ) -> list[Component]:
-    """Parts in their order, the group's poles and its neighbours' amplitudes renewed."""
-    fresh = iter(updated(rest, result.passive))
-    own = dict(zip(group, result.active, strict=True))
-    return [own[i] if i in own else next(fresh) for i in range(len(parts))]
+    """Parts in their order, the group's members and the rest renewed."""
+    members = dict(zip(group, own, strict=True))
+    others = iter(rest)
+    return [members[i] if i in members else next(others) for i in range(len(parts))]
 
 
 def groups(traces: Sequence[Trace], parts: Sequence[Component]) -> list[list[int]]:

@@ -71,8 +71,8 @@ def ringing(level: Level, background_s: tuple[float, float]) -> Ringing:
     frames = np.lib.stride_tricks.sliding_window_view(level.samples, length)[::hop]
     window = np.hanning(length + 1)[:-1]
     spectra: NDArray[np.complex128] = np.fft.rfft(frames * window, axis=1)[:, 1:]
-    power: Real = np.asarray(spectra.real**2 + spectra.imag**2, dtype=np.float64)
-    time_s = (np.arange(len(frames)) * hop + length / 2) / level.rate_hz
+    power: Real = spectra.real**2 + spectra.imag**2
+    time_s: Real = (np.arange(len(frames), dtype=float) * hop + length / 2) / level.rate_hz
     quiet = background_power(power, time_s, background_s)
     ratio = power / quiet
     excess = np.maximum(power - 3 * quiet, 0).sum(axis=1)

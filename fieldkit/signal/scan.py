@@ -20,7 +20,8 @@ Real = NDArray[np.float64]
 FALSE_PER_SCAN = 1e-3
 GREATEST_DAMPING = 0.25
 _SETTLE_S = 0.003
-_LEVEL_BLOCK = 48
+_LEVEL_BLOCK = 96
+_LEVEL_QUANTILE = 0.25
 
 
 @dataclass(frozen=True)
@@ -30,6 +31,8 @@ class Candidate:
     pole: complex
     gain: float
     """Gain in twice the log-likelihood, all taps."""
+    clear: float
+    """The gain over how far its surroundings stand above the noise."""
 
 
 @dataclass(frozen=True)
@@ -51,14 +54,14 @@ def scan(leftovers: Sequence[Trace], region: Region, most: int = 8) -> list[Cand
     cells = 0
     decay = region.slowest_per_s
     while decay <= GREATEST_DAMPING * 2 * np.pi * region.high_hz:
-        frequency_hz, gain = gain_over_frequency(leftovers, decay)
+        frequency_hz, gain, clear = gain_over_frequency(leftovers, decay)
         lowest = max(region.low_hz, decay / (2 * np.pi * GREATEST_DAMPING))
         keep = (frequency_hz >= lowest) & (frequency_hz <= region.high_hz)
         cells += int(np.count_nonzero(keep))
-        found += peaks(frequency_hz[keep], gain[keep], decay)
+        found += peaks(frequency_hz[keep], gain[keep], clear[keep], decay)
         decay *= 2
     least = threshold(len(leftovers), cells)
-    return apart([c for c in found if c.gain > least], most)
+    return apart([c for c in found if c.clear > least], most)
 
 
 def threshold(taps: int, cells: int) -> float:
@@ -68,14 +71,14 @@ def threshold(taps: int, cells: int) -> float:
     return float(chdtri(2 * taps, FALSE_PER_SCAN / max(cells, 1)))
 
 
-def gain_over_frequency(traces: Sequence[Trace], decay: float) -> tuple[Real, Real]:
-    """(m,) frequencies and gains for one decay."""
+def gain_over_frequency(traces: Sequence[Trace], decay: float) -> tuple[Real, Real, Real]:
+    """(m,) frequencies, gains, and gains over their surroundings, for one decay."""
     longest = max(t.duration_s for t in traces)
     span_s = fast_span_s(8 / decay if 8 / decay < longest else 2 * longest, traces[0].rate_hz)
     gains = [tap_gain(t, decay, span_s) for t in traces]
     count = min(len(g) for g in gains)
     total = np.sum([g[:count] for g in gains], axis=0)
-    return np.arange(count) / span_s, total / excess(total, 2.0 * len(traces))
+    return np.arange(count) / span_s, total, total / excess(total, 2.0 * len(traces))
 
 
 def fast_span_s(span_s: float, rate_hz: float) -> float:
@@ -101,30 +104,38 @@ def settling(time_s: Real, decay: float) -> Real:
     return np.asarray(0.5 - 0.5 * np.cos(np.pi * np.minimum(time_s / rise_s, 1.0)))
 
 
-def excess(gain: Real, expected_mean: float) -> Real:
-    """How far the surroundings of each bin stand above what noise gives; at least 1."""
+def excess(gain: Real, degrees: float) -> Real:
+    """How far the surroundings of each bin stand above what noise gives; at least 1.
+
+    A low quantile of wide blocks, so that the skirt of a strong mode does not hide the mode itself.
+    """
     from scipy.special import chdtri
 
+    expected = float(chdtri(degrees, 1 - _LEVEL_QUANTILE))
     blocks = len(gain) // _LEVEL_BLOCK
-    if blocks < 1:
-        return np.maximum(np.full_like(gain, np.median(gain)) / chdtri(expected_mean, 0.5), 1.0)
+    if blocks < 2:
+        return np.full_like(gain, max(np.quantile(gain, _LEVEL_QUANTILE) / expected, 1.0))
     used = gain[: blocks * _LEVEL_BLOCK].reshape(blocks, _LEVEL_BLOCK)
-    medians = np.median(used, axis=1)
-    edged = np.pad(medians, 1, mode="edge")
-    medians = np.minimum(medians, np.maximum(edged[:-2], edged[2:]))
+    low = np.quantile(used, _LEVEL_QUANTILE, axis=1)
+    edged = np.pad(low, 1, mode="reflect")
+    level = np.minimum(low, np.maximum(edged[:-2], edged[2:]))
     centres = (np.arange(blocks) + 0.5) * _LEVEL_BLOCK
-    level = np.interp(np.arange(len(gain)), centres, medians)
-    return np.maximum(level / float(chdtri(expected_mean, 0.5)), 1.0)
+    smooth = np.interp(np.arange(len(gain)), centres, level)
+    return np.asarray(np.maximum(smooth / expected, 1.0))
 
 
-def peaks(frequency_hz: Real, gain: Real, decay: float) -> list[Candidate]:
+def peaks(frequency_hz: Real, gain: Real, clear: Real, decay: float) -> list[Candidate]:
     """Local maxima of one row of the bank."""
     if len(gain) < 3:
         return []
     inner = gain[1:-1]
     at = np.flatnonzero((inner > gain[:-2]) & (inner >= gain[2:])) + 1
     at = at[np.argsort(gain[at])[::-1][:60]]
-    return [Candidate(complex(-decay, 2 * np.pi * frequency_hz[i]), float(gain[i])) for i in at]
+    poles = -decay + 2j * np.pi * frequency_hz[at]
+    return [
+        Candidate(complex(p), float(gain[i]), float(clear[i]))
+        for p, i in zip(poles, at, strict=True)
+    ]
 
 
 def apart(candidates: list[Candidate], most: int) -> list[Candidate]:

@@ -10,6 +10,7 @@ import numpy as np
 from fieldkit.signal.clusters import fit_together, needed_gain, overlapping, span_s
 from fieldkit.signal.decimation import decimate
 from fieldkit.signal.scan import Candidate, Region, scan, threshold
+from fieldkit.signal.scatter import freedom_price, looser, scattered
 from fieldkit.signal.traces import Component, Trace, component, residual
 
 _MOST_ROUNDS = 14
@@ -24,6 +25,8 @@ class Found:
 
     parts: tuple[Component, ...]
     vain: tuple[complex, ...] = ()
+    unresolved: tuple[complex, ...] = ()
+    """Poles that may be two too near each other to be told apart."""
 
 
 def search(traces: Sequence[Trace], tones: Sequence[Component], region: Region) -> Found:
@@ -56,26 +59,39 @@ def leftovers(traces: Sequence[Trace], parts: Sequence[Component], region: Regio
 def tried(candidate: Candidate, vain: Sequence[complex], traces: Sequence[Trace]) -> bool:
     """True where an earlier candidate of about this pole was turned down."""
     spacing = 2 * np.pi / max(t.duration_s for t in traces)
+    decay = -candidate.pole.real
     return any(
-        abs(candidate.pole.imag - v.imag) < max(-candidate.pole.real, -v.real, spacing)
+        abs(candidate.pole.imag - v.imag) < max(decay, spacing) and 0.3 < -v.real / decay < 3.3
         for v in vain
     )
 
 
 def add(traces: Sequence[Trace], found: Found, candidate: Candidate, region: Region) -> Found:
-    """The search with the candidate taken in, or noted as vain."""
+    """The search with the candidate taken in, or explained otherwise, or noted as vain.
+
+    What looks like a further mode beside one already found may be that one with a pole that differs
+    from tap to tap; whichever says more with fewer parameters is kept.
+    """
     new = component(candidate.pole, len(traces))
-    duration_s = span_s([new], traces)
-    near = overlapping(new, found.parts, duration_s)
+    near = overlapping(new, found.parts, span_s([new], traces))
     rest = without(found.parts, near)
+    firm = [n for n in near if not scattered(n)]
+    held = [*rest, *(n for n in near if scattered(n))]
     around = [*near, new]
-    before = fit_together(traces, near, rest, region.high_hz, over=around)
-    after = fit_together(traces, [*before.active, new], rest, region.high_hz, over=around)
+    before = fit_together(traces, firm, held, region.high_hz, over=around)
+    after = fit_together(traces, [*before.active, new], held, region.high_hz, over=around)
+    loose = looser(traces, near, rest, region.high_hz, before, around)
+    noise = max(min(after.variance, loose.variance if loose else np.inf), 1.0)
     needed = needed_gain(before.freedom, len(traces), threshold(len(traces), 100))
-    if before.cost - after.cost < needed * max(after.variance, 1.0):
+    gain = before.cost - after.cost - needed * noise
+    if loose is not None:
+        price = freedom_price(near, len(traces), before.freedom)
+        if before.cost - loose.cost - price * noise > max(gain, 0.0):
+            return replace(found, parts=(*rest, *loose.parts))
+    if gain < 0:
         return replace(found, vain=(*found.vain, candidate.pole))
     settled = [still(p, traces) for p in after.active]
-    return replace(found, parts=(*updated(rest, after.passive), *settled))
+    return replace(found, parts=(*updated(held, after.passive), *settled))
 
 
 def still(part: Component, traces: Sequence[Trace]) -> Component:
@@ -96,27 +112,3 @@ def updated(parts: Sequence[Component], fresh: Sequence[Component]) -> list[Comp
     """Parts with the amplitudes of the fresh ones that have the same pole."""
     by_pole = {(p.pole, p.steady): p for p in fresh}
     return [by_pole.get((p.pole, p.steady), p) for p in parts]
-
-
-def pruned(traces: Sequence[Trace], found: Found, region: Region) -> Found:
-    """Backward elimination: drop, weakest first, what the others can explain after a refit."""
-    parts = list(found.parts)
-    for part in sorted((p for p in parts if not p.steady), key=peak_amplitude):
-        current = next((p for p in parts if p.pole == part.pole and not p.steady), None)
-        if current is None:
-            continue
-        near = overlapping(current, parts, span_s([current], traces))
-        rest = without(parts, [*near, current])
-        around = [*near, current]
-        with_it = fit_together(traces, around, rest, region.high_hz, over=around)
-        alone = fit_together(traces, near, rest, region.high_hz, over=around)
-        needed = needed_gain(alone.freedom, len(traces), threshold(len(traces), 100))
-        keep = alone.cost - with_it.cost >= needed * max(with_it.variance, 1.0)
-        chosen = with_it if keep else alone
-        parts = [*updated(rest, chosen.passive), *chosen.active]
-    return replace(found, parts=tuple(parts))
-
-
-def peak_amplitude(part: Component) -> float:
-    """Largest amplitude over the taps."""
-    return float(np.abs(part.amplitudes).max())

@@ -25,6 +25,7 @@ _LEAST_RECORD_S = 2.0
 _SHORTEST_RECORD_S = 0.2
 _ENOUGH_DROP_DB = 9.0
 _ENOUGH_OVERLAPPED_DB = 4.0
+_ENOUGH_S = 3.0
 _STILL_RINGS = 3 * RINGS
 _BLOCK_S = 0.05
 
@@ -237,7 +238,7 @@ def short_reason(blow: Blow, picture: Ringing, start_s: float, end_s: float) -> 
     length_s = end_s - start_s
     rings = picture.last(start_s, end_s) > _STILL_RINGS
     enough_db = _ENOUGH_DROP_DB if blow.last else _ENOUGH_OVERLAPPED_DB
-    too_little = picture.drop_db(start_s, end_s) < enough_db
+    too_little = length_s < _ENOUGH_S and picture.drop_db(start_s, end_s) < enough_db
     if length_s >= _SHORTEST_RECORD_S and not (rings and too_little):
         return []
     if blow.last:

@@ -1,0 +1,82 @@
+"""Backward elimination: drop what the others can explain after a refit."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+
+import numpy as np
+
+from fieldkit.signal.clusters import fit_together, needed_gain, overlapping, span_s
+from fieldkit.signal.scan import Region, threshold
+from fieldkit.signal.scatter import freedom_price, looser, scattered
+from fieldkit.signal.search import Found, updated, without
+from fieldkit.signal.traces import Component, Trace
+
+_RESOLVED = 0.5
+
+
+def pruned(traces: Sequence[Trace], found: Found, region: Region) -> Found:
+    """The search result less every mode that does not pay for itself, weakest first."""
+    parts = list(found.parts)
+    unresolved: list[complex] = []
+    for part in sorted((p for p in parts if not p.steady), key=peak_amplitude):
+        current = nearest_pole(part, parts)
+        twin = next((p for p in parts if twins(p, current)), None)
+        parts = without_if_idle(traces, parts, current, region, must_go=twin is not None)
+        unresolved += [twin.pole] if twin is not None else []
+    return replace(found, parts=tuple(parts), unresolved=tuple(unresolved))
+
+
+def twins(one: Component, other: Component) -> bool:
+    """True for two modes nearer to each other than half their bandwidth: not to be told apart."""
+    if one is other or one.steady or other.steady:
+        return False
+    apart_hz = abs(one.frequency_hz - other.frequency_hz)
+    return apart_hz < _RESOLVED * (one.half_power_hz + other.half_power_hz) / 2
+
+
+def nearest_pole(part: Component, parts: Sequence[Component]) -> Component:
+    """The component that a part has become after refits."""
+    modes = [p for p in parts if not p.steady]
+    return min(modes, key=lambda p: abs(p.pole - part.pole))
+
+
+def without_if_idle(
+    traces: Sequence[Trace],
+    parts: Sequence[Component],
+    current: Component,
+    region: Region,
+    *,
+    must_go: bool,
+) -> list[Component]:
+    """Parts refitted around one of them, without it where that costs too little or it must go.
+
+    "Without" also means its neighbours with poles of their own in every tap.
+    """
+    near = overlapping(current, parts, span_s([current], traces))
+    rest = without(parts, [*near, current])
+    firm = [p for p in (*near, current) if not scattered(p)]
+    held = [*rest, *(n for n in (*near, current) if scattered(n))]
+    around, top_hz = [*near, current], region.high_hz
+    with_it = fit_together(traces, firm, held, top_hz, over=around)
+    left = [p for p in firm if p is not current]
+    alone = fit_together(traces, left, without(held, [current]), top_hz, over=around)
+    loose = looser(traces, near, rest, top_hz, alone, around)
+    noise = max(min(with_it.variance, loose.variance if loose else np.inf), 1.0)
+    worth = needed_gain(alone.freedom, len(traces), threshold(len(traces), 100)) * noise
+    if scattered(current):
+        worth += freedom_price([current], len(traces), alone.freedom) * noise
+    kept = np.inf if must_go else with_it.cost + worth
+    if loose is not None:
+        price = freedom_price(near, len(traces), alone.freedom) * noise
+        if loose.cost + price < min(kept, alone.cost):
+            return [*rest, *loose.parts]
+    if alone.cost < kept:
+        return [*updated(without(held, [current]), alone.passive), *alone.active]
+    return [*updated(held, with_it.passive), *with_it.active]
+
+
+def peak_amplitude(part: Component) -> float:
+    """Largest amplitude over the taps."""
+    return float(np.abs(part.amplitudes).max())
