@@ -18,18 +18,21 @@ Array = NDArray[np.float64]
 
 
 class Factor:
-    """L D L^T of a symmetric matrix, without pivoting."""
+    """L D L^T of a symmetric matrix, without pivoting unless a pivot is zero."""
 
     def __init__(self, matrix: csc_array) -> None:
         from scipy.sparse.linalg import splu
 
         options = {"SymmetricMode": True, "Equil": False}
+        self._matrix = matrix
         self._lu = splu(matrix, permc_spec="NATURAL", diag_pivot_thresh=0.0, options=options)
 
     @property
     def negatives(self) -> int:
         """Number of negative eigenvalues (Sylvester's law of inertia)."""
-        return int(np.sum(self._lu.U.diagonal() < 0))
+        if np.array_equal(self._lu.perm_r, self._lu.perm_c):
+            return int(np.sum(self._lu.U.diagonal() < 0))
+        return int(np.sum(np.linalg.eigvalsh(self._matrix.toarray()) < 0))
 
     def solve(self, right: Array) -> Array:
         """Solution for one (n,) or several (n, k) right-hand sides."""

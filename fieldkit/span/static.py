@@ -141,7 +141,7 @@ def _solver(stiffness: csc_array, mass: csc_array) -> Factor:
 def _refuse_falling(span: Span, moved: Array) -> None:
     nodal = np.abs(moved.reshape(-1, 6))
     if nodal[:, 2].max() > FALLEN_SHARE * span.length_m:
-        raise Refusal("no support holds the span up", "add what carries its weight")
+        raise Refusal("the supports do not hold the span up", "add what carries its weight")
     if nodal[:, 3:].max() > FALLEN_RAD:
         raise Refusal(
             "no support keeps the span from turning over under its weight",

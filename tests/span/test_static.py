@@ -2,22 +2,29 @@
 
 from __future__ import annotations
 
+import math
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
-from fieldkit.span.layout import Leg, Span, State, Support
+from fieldkit.errors import Refusal
+from fieldkit.span.layout import Leg, PointMass, Span, State, Support
 from fieldkit.span.materials import material
 from fieldkit.span.pipes import standard_pipe
 from fieldkit.span.static import (
     GRAVITY_M_PER_S2,
+    added_support_load,
     restraint_force,
     thermal_movement,
     weight_answer,
 )
+from tests.reference.spans import anchored, level_span, square_legs
 
 LENGTH_M = 6.0
 COLD = State("tapped", (0.0, 0.0))
 HOT = State("running", (1.0, 1.0), temperature_k=353.15)
+FILLED = State("running", (1.0, 1.0))
 STIFF = 1e11
 
 
@@ -80,3 +87,62 @@ def test_a_spring_against_growth_carries_k_times_what_it_lets_through(stiffness)
 
 def test_nothing_moves_between_equal_states():
     assert np.allclose(thermal_movement(pinned(), COLD, COLD, 3.0), 0.0)
+
+
+def test_a_new_prop_under_an_empty_line_carries_five_eighths_of_the_water():
+    """Rigid prop at mid span, set empty, then filled: 5/8 of w L (beam tables, from memory)."""
+    span = pinned()
+    load = added_support_load(span, COLD, FILLED, LENGTH_M / 2, "vertical", STIFF)
+    water = GRAVITY_M_PER_S2 * span.pipe.bore_area_m2 * span.contents_density_kg_per_m3
+    assert load.filling_n == pytest.approx([0, 0, 5 / 8 * water * LENGTH_M], rel=5e-3, abs=1e-6)
+    assert load.heat_n == pytest.approx([0.0, 0.0, 0.0], abs=1e-6)
+
+
+def test_a_rigid_stop_takes_the_whole_thermal_force():
+    """No give at all: F = alpha dT L / (L/EA + 1/k of the anchor)."""
+    span = pinned()
+    modulus = span.material.modulus_at(HOT.temperature_k)
+    give = LENGTH_M / (modulus * span.pipe.wall_area_m2) + 1 / STIFF
+    expected = span.material.expansion_per_k * 60.0 * LENGTH_M / give
+    load = added_support_load(span, COLD, HOT, LENGTH_M, "axial", math.inf)
+    assert load.heat_n == pytest.approx([-expected, 0.0, 0.0], rel=1e-3)
+
+
+def test_a_riser_between_levels_lifts_off_what_stands_beside_it():
+    """An L that rises 3 m grows up by alpha dT h at its top, less what the leg across holds."""
+    legs = square_legs([3.0, 1.0], ["+z", "+x"], 0.15)
+    span = Span(pinned().pipe, pinned().material, legs, (anchored(0.0),))
+    growth = span.material.expansion_per_k * 60.0
+    assert thermal_movement(span, COLD, HOT, 4.0) == pytest.approx(
+        [growth * 1.0, 0.0, growth * 3.0], abs=1e-6
+    )
+
+
+def test_a_cantilever_with_a_mass_sags_at_its_tip():
+    """M g L^3/3EI beside the pipe's own w L^4/8EI; shear adds less than 1 %."""
+    span = level_span(3.0, [anchored(0.0)], (PointMass(3.0, 20.0),), pipe=pinned().pipe)
+    answer = weight_answer(span, COLD)
+    rigidity = 2e11 * span.pipe.second_moment_m4
+    own = weight_n_per_m(span) * 3.0**4 / 8
+    expected = (20.0 * GRAVITY_M_PER_S2 * 3.0**3 / 3 + own) / rigidity
+    assert answer.sag_m == pytest.approx(expected, rel=1e-2)
+    assert answer.sag_at_m == pytest.approx(3.0)
+
+
+SIDEWAYS = PointMass(3.0, 5.0, offset_m=(0.0, 0.4, 0.0))
+
+
+@pytest.mark.parametrize(
+    ("supports", "words"),
+    [
+        ((), "do not hold the span up"),
+        ((Support(0.0, "free", lateral=STIFF, axial=STIFF),), "do not hold the span up"),
+        ((Support(2.0, "free", vertical=STIFF),), "do not hold the span up"),
+        ((Support(0.0, "rest"), Support(6.0, "rest")), "turning over"),
+    ],
+)
+def test_a_span_that_falls_is_refused(supports, words):
+    """No support, none upward, one on which it see-saws, or rests under a mass at the side."""
+    fallen = replace(pinned(), supports=supports, masses=(SIDEWAYS,))
+    with pytest.raises(Refusal, match=words):
+        weight_answer(fallen, HOT)
