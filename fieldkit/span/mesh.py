@@ -17,6 +17,7 @@ from numpy.typing import NDArray
 
 from fieldkit.errors import Refusal
 from fieldkit.span.layout import Piece, Span
+from fieldkit.span.line import Line
 
 Array = NDArray[np.float64]
 
@@ -28,19 +29,6 @@ LARGEST_CHORD_RAD = math.radians(12.0)
 APART_M = 2e-4
 """Closer stations share a node; no tape tells them apart."""
 MOST_NODES = 2000
-
-
-@dataclass(frozen=True)
-class Line:
-    """What the mesh must know of a pipe: rigidities and masses per length, bore full."""
-
-    bending_n_m2: float
-    shear_n: float
-    axial_n: float
-    torsion_n_m2: float
-    mass_kg_per_m: float
-    polar_inertia_kg_m: float
-    outside_diameter_m: float
 
 
 @dataclass(frozen=True)
@@ -64,12 +52,12 @@ class Mesh:
 def longest_element_m(line: Line, up_to_hz: float, flexibility: float = 1.0) -> float:
     """Element length that keeps every frequency below ``up_to_hz`` within MESH_ERROR."""
     omega = 2 * math.pi * up_to_hz
-    bending = line.bending_n_m2 / flexibility
-    beta2 = omega * math.sqrt(line.mass_kg_per_m / bending)
+    mass, bending = line.full_mass_kg_per_m, line.bending_n_m2 / flexibility
+    beta2 = omega * math.sqrt(mass / bending)
     shear = beta2 * bending / line.shear_n
     x = 720 * (math.sqrt((shear / 24) ** 2 + 4 * MESH_ERROR / 1440) - shear / 24)
-    longitudinal = omega * math.sqrt(line.mass_kg_per_m / line.axial_n)
-    torsional = omega * math.sqrt(line.polar_inertia_kg_m / line.torsion_n_m2)
+    longitudinal = omega * math.sqrt(mass / line.axial_n)
+    torsional = omega * math.sqrt(2 * line.rotary_inertia_kg_m / line.torsion_n_m2)
     return min(math.sqrt(x / beta2), math.sqrt(24 * MESH_ERROR) / max(longitudinal, torsional))
 
 

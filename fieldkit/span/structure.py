@@ -21,8 +21,8 @@ from fieldkit.span import axial as axial_forces
 from fieldkit.span import elements as element
 from fieldkit.span.elements import ElementSet
 from fieldkit.span.layout import Span, State, axis_vectors
-from fieldkit.span.mesh import Line, Mesh, lay_mesh
-from fieldkit.span.pipes import PipeSection
+from fieldkit.span.line import flexibility_of, line_of
+from fieldkit.span.mesh import Mesh, lay_mesh
 
 if TYPE_CHECKING:
     from scipy.sparse import csc_array
@@ -88,6 +88,10 @@ class Structure:
         start, end = self.station_m[index : index + 2]
         share = float(np.clip((at_m - start) / (end - start), 0.0, 1.0))
         translation, rotation = np.zeros((2, 3, 6 * len(self.station_m)))
+        if share in (0.0, 1.0):
+            first = 6 * (index + int(share))
+            translation[:, first : first + 3] = rotation[:, first + 3 : first + 6] = np.eye(3)
+            return translation, rotation
         columns = slice(6 * index, 6 * index + 12)
         translation[:, columns], rotation[:, columns] = self._inside(index, share, at_m)
         return translation, rotation
@@ -116,11 +120,9 @@ def assemble(
     and restrained heat is found with the supports at their medians and stiffens or softens the
     pipe; Refusal where the span buckles under it, or where it needs too many nodes.
     """
-    line = _line(span, state)
-    flexibility = _flexibility(
-        span, state, np.array([piece.radius_m for piece in span.centre_line.pieces])
-    )
-    mesh = lay_mesh(span, line, up_to_hz, tuple(extra_stations_m), flexibility)
+    radii = np.array([piece.radius_m for piece in span.centre_line.pieces])
+    flexibility = flexibility_of(span, state, radii)
+    mesh = lay_mesh(span, line_of(span, state), up_to_hz, tuple(extra_stations_m), flexibility)
     filled = state.nominal_fill if fill is None else fill
     elements = _elements(span, state, mesh, filled)
     no_force = np.zeros(len(mesh.chord_m))
@@ -193,13 +195,11 @@ def wall_derivative(structure: Structure) -> tuple[csc_array, csc_array]:
 
 def contents_mass(structure: Structure) -> csc_array:
     """Mass matrix of the full contents: M = M_empty + fill * contents_mass."""
-    span, elements = structure.span, structure.elements
-    per_metre = span.contents_density_kg_per_m3 * span.pipe.bore_area_m2
-    ratio = structure.mesh.arc_length_m / structure.mesh.chord_m
+    full = line_of(structure.span, structure.state).contents_kg_per_m
     contents = replace(
-        elements,
-        mass_kg_per_m=per_metre * ratio,
-        rotary_inertia_kg_m=np.zeros_like(elements.rotary_inertia_kg_m),
+        structure.elements,
+        mass_kg_per_m=full * structure.mesh.arc_length_m / structure.mesh.chord_m,
+        rotary_inertia_kg_m=np.zeros_like(structure.elements.rotary_inertia_kg_m),
     )
     return _joined(element.mass(contents))
 
@@ -246,74 +246,19 @@ def _joined(matrices: Array) -> csc_array:
     return csc_array((matrices.ravel(), (rows, columns)), shape=(size, size))
 
 
-def _line(span: Span, state: State) -> Line:
-    pipe, modulus = span.pipe, span.material.modulus_at(state.temperature_k)
-    contents = span.contents_density_kg_per_m3 * pipe.bore_area_m2
-    return Line(
-        bending_n_m2=modulus * pipe.second_moment_m4,
-        shear_n=_shear_rigidity(span, state),
-        axial_n=modulus * pipe.wall_area_m2,
-        torsion_n_m2=span.material.shear_modulus_at(state.temperature_k)
-        * 2
-        * pipe.second_moment_m4,
-        mass_kg_per_m=_own_mass(span) + contents,
-        polar_inertia_kg_m=2 * _rotary_inertia(span),
-        outside_diameter_m=pipe.outside_diameter_m,
-    )
-
-
 def _elements(span: Span, state: State, mesh: Mesh, fill: float) -> ElementSet:
     """Sections on the mesh; a chord is as flexible and as heavy as the arc it stands for."""
-    line = _line(span, state)
+    line = line_of(span, state)
     shorter = mesh.chord_m / mesh.arc_length_m
-    contents = fill * span.contents_density_kg_per_m3 * span.pipe.bore_area_m2
+    softer = shorter / flexibility_of(span, state, mesh.bend_radius_m)
     return ElementSet(
         length_m=mesh.chord_m,
         axes=element.local_axes(mesh.direction),
         offset_m=mesh.bulge_m,
         axial_rigidity_n=line.axial_n * shorter,
-        bending_rigidity_n_m2=line.bending_n_m2
-        * shorter
-        / _flexibility(span, state, mesh.bend_radius_m),
+        bending_rigidity_n_m2=line.bending_n_m2 * softer,
         torsional_rigidity_n_m2=line.torsion_n_m2 * shorter,
         shear_rigidity_n=line.shear_n * shorter,
-        mass_kg_per_m=(_own_mass(span) + contents) / shorter,
-        rotary_inertia_kg_m=_rotary_inertia(span) / shorter,
+        mass_kg_per_m=(line.own_mass_kg_per_m + fill * line.contents_kg_per_m) / shorter,
+        rotary_inertia_kg_m=line.rotary_inertia_kg_m / shorter,
     )
-
-
-def _flexibility(span: Span, state: State, radius_m: Array) -> Array:
-    pipe, modulus = span.pipe, span.material.modulus_at(state.temperature_k)
-    return element.bend_flexibility(
-        radius_m, pipe.mean_radius_m, pipe.wall_m, state.pressure_pa, modulus
-    )
-
-
-def _shear_rigidity(span: Span, state: State) -> float:
-    pipe: PipeSection = span.pipe
-    kappa = element.cowper_shear_coefficient(
-        pipe.bore_m / pipe.outside_diameter_m, span.material.poisson
-    )
-    return kappa * span.material.shear_modulus_at(state.temperature_k) * pipe.wall_area_m2
-
-
-def _own_mass(span: Span) -> float:
-    """Pipe and insulation, kg/m."""
-    return span.material.density_kg_per_m3 * span.pipe.wall_area_m2 + _insulation(span)[0]
-
-
-def _rotary_inertia(span: Span) -> float:
-    """Pipe and insulation about a diameter, kg m."""
-    return span.material.density_kg_per_m3 * span.pipe.second_moment_m4 + _insulation(span)[1]
-
-
-def _insulation(span: Span) -> tuple[float, float]:
-    """Mass and rotary inertia of the insulation per metre."""
-    if span.insulation is None:
-        return 0.0, 0.0
-    inside = span.pipe.outside_diameter_m
-    outside = inside + 2 * span.insulation.thickness_m
-    density = span.insulation.density_kg_per_m3
-    area = np.pi / 4 * (outside**2 - inside**2)
-    second_moment = np.pi / 64 * (outside**4 - inside**4)
-    return density * area, density * second_moment
