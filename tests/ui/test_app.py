@@ -86,6 +86,21 @@ async def test_each_number_key_shows_its_view_with_ruler_and_reading(
             assert len(text_of(app, "#reading")) > 20
 
 
+async def test_a_number_key_pressed_before_the_views_are_there_is_remembered(
+    job_path: Path, quick: None
+) -> None:
+    class Late(FieldkitApp):
+        async def go_on(self) -> None:
+            """Not yet."""
+
+    app = Late(job_path)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await pilot.press("4")
+        await FieldkitApp.go_on(app)
+        await settled(pilot)
+        assert app.view("match").display
+
+
 async def test_the_strip_tells_the_state_of_each_step_in_a_word(app: FieldkitApp) -> None:
     async with opened(app):
         for step in app.query(Step):
@@ -96,7 +111,7 @@ async def test_the_strip_tells_the_state_of_each_step_in_a_word(app: FieldkitApp
 async def test_measured_modes_stand_in_the_table_with_their_doubt(app: FieldkitApp) -> None:
     async with opened(app):
         assert rows_of(app, "#modes")[0] == ["23.41 ±0.02", "1.10 ±0.06", "vertical", "3"]
-        assert ["", "14.00", "✗ struck twice: another blow 0.3 s later"] in rows_of(app, "#blows")
+        assert ["    14.00 s", "✗ struck twice: another blow 0.3 s later"] in rows_of(app, "#blows")
 
 
 async def test_what_was_not_accepted_is_listed_with_reasons(app: FieldkitApp) -> None:
@@ -242,6 +257,9 @@ async def test_arrow_keys_choose_the_mode_that_is_drawn(app: FieldkitApp) -> Non
         await pilot.press("right")
         await pilot.pause()
         assert "mode 2 of 3: 28.4 Hz lateral" in text_of(app, "#drawn")
+        await pilot.press("m")
+        await pilot.pause()
+        assert "With change 1, running" in text_of(app, "#drawn")
         await pilot.press("m")
         await pilot.pause()
         assert "As tapped" in text_of(app, "#drawn")

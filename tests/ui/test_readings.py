@@ -104,7 +104,7 @@ def test_no_chance_is_called_certain(share: float, text: str) -> None:
 @pytest.mark.parametrize(
     ("value", "sd", "text"),
     [(23.414, 0.021, "23.41 ±0.02"), (23.414, 0.013, "23.414 ±0.013"), (88.3, 0.2, "88.3 ±0.2"),
-     (150.2, 3.0, "150 ±3"), (23.4, 0.0, "23.40 ±0.00")],
+     (150.2, 3.0, "150 ±3"), (23.4, 0.0, "23.40 ±0.00"), (53.02, 0.0002, "53.020 ±<0.001")],
 )  # fmt: skip
 def test_a_value_shows_the_decimals_its_doubt_allows(value: float, sd: float, text: str) -> None:
     assert plus_minus(value, sd) == text

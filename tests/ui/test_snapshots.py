@@ -1,0 +1,59 @@
+"""One picture per view at both sizes, on results that are written down and never computed."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+import numpy as np
+import pytest
+from textual.pilot import Pilot
+
+from fieldkit.job.store import JobText
+from fieldkit.ui.app import FieldkitApp
+from fieldkit.ui.desk import STEPS
+from fieldkit.ui.document import OpenJob
+from tests.ui import glycol
+from tests.ui.job_text import JOB_TEXT
+
+SIZES = [(80, 24), (120, 40)]
+
+
+class StillApp(FieldkitApp):
+    """The app with the made-up results already on its desk, and no thread at all."""
+
+    def open_or_ask(self) -> None:
+        """Lay the results out."""
+        text = JobText(JOB_TEXT, Path("job.toml"))
+        job = text.job()
+        samples: dict[object, np.ndarray] = {
+            entry: glycol.decay()[0] for entry in job.recordings_of("tap")
+        }
+        self.open_job = OpenJob(text, text)
+        self.put(
+            job=job,
+            text=text,
+            workup=glycol.workup(job),
+            states=glycol.states(),
+            traces=samples,
+            chosen=glycol.FIXES[0],
+            chosen_modes=glycol.states()[1].modes,
+        )
+
+    def shape_fix(self, *_: object) -> None:
+        """The shapes lie on the desk already."""
+
+
+@pytest.mark.parametrize("size", SIZES, ids=["80x24", "120x40"])
+@pytest.mark.parametrize("view", STEPS)
+def test_the_view_looks_as_it_did(
+    snap_compare: Callable[..., bool], view: str, size: tuple[int, int]
+) -> None:
+    async def go(pilot: Pilot[None]) -> None:
+        await pilot.press(str(STEPS.index(view) + 1))
+        assert isinstance(pilot.app, FieldkitApp)
+        while pilot.app.desk.job is None:
+            await pilot.pause()
+        await pilot.pause()
+
+    assert snap_compare(StillApp(), terminal_size=size, run_before=go)
