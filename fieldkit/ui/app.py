@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Awaitable, Callable, Iterable
 from pathlib import Path
 from typing import ClassVar
 
@@ -38,11 +38,8 @@ class FieldkitApp(Editing):
 
     TITLE = "fieldkit"
     CSS_PATH = Path(__file__).with_name("app.tcss")
-    HORIZONTAL_BREAKPOINTS: ClassVar[list[tuple[int, str]] | None] = [
-        (0, "-narrow"),
-        (100, "-wide"),
-    ]
-    VERTICAL_BREAKPOINTS: ClassVar[list[tuple[int, str]] | None] = [(0, "-short"), (34, "-tall")]
+    HORIZONTAL_BREAKPOINTS = [(0, "-narrow"), (100, "-wide")]  # noqa: RUF012
+    VERTICAL_BREAKPOINTS = [(0, "-short"), (34, "-tall")]  # noqa: RUF012
     BINDINGS: ClassVar[list[BindingType]] = [
         *_view_keys(),
         Binding("ctrl+s", "save", "Save", id="file.save", tooltip="Write the job file"),
@@ -74,12 +71,14 @@ class FieldkitApp(Editing):
         self.job_path = job_path
         self.copy_samples = copy_samples
         self.here = STEPS[0]
+        self.ready = False
+        """Whether all six views are there; a number key pressed before is remembered."""
 
     def compose(self) -> ComposeResult:
-        """Strip, views, ruler, reading, keys."""
+        """Strip, the first view, ruler, reading, keys; the other views come after the paint."""
         yield Strip()
         with ContentSwitcher(initial=self.here, id="views"):
-            yield from (view() for view in VIEWS)
+            yield VIEWS[0]()
         yield FrequencyRuler(id="ruler")
         yield plain("reading")
         yield Footer(compact=True, show_command_palette=False)
@@ -89,9 +88,17 @@ class FieldkitApp(Editing):
         self.refresh_desk()
         self.call_after_refresh(self.go_on)
 
-    def go_on(self) -> None:
-        """Open what was asked for, or ask."""
-        self.view(self.here).focus_home()
+    async def go_on(self) -> None:
+        """The other views, then the job."""
+        switcher = self.screen_stack[0].query_one("#views", ContentSwitcher)
+        for view in VIEWS[1:]:
+            await switcher.add_content(view(), id=view.NAME)
+        self.ready = True
+        self.action_view(self.here)
+        self.open_or_ask()
+
+    def open_or_ask(self) -> None:
+        """Open the job that was named, or ask where to start."""
         if self.job_path is not None:
             self.say_progress("opening")
             self.read_job(self.job_path)
@@ -108,7 +115,8 @@ class FieldkitApp(Editing):
         base = self.screen_stack[0]
         unsaved = self.open_job is not None and self.open_job.unsaved
         base.query_one(Strip).show(self.desk, self.here, unsaved)
-        self.view(self.here).show(self.desk)
+        if self.ready:
+            self.view(self.here).show(self.desk)
         desk = self.desk
         base.query_one(FrequencyRuler).show(
             RulerData(desk.up_to_hz, shaded(desk), desk.measured_hz, desk.now, desk.after)
@@ -118,7 +126,7 @@ class FieldkitApp(Editing):
 
     def on_resize(self) -> None:
         """The reading is cut to the width."""
-        if self.is_mounted and self.query("#reading"):
+        if self.query("#reading"):
             self.refresh_desk()
 
     def say_progress(self, doing: str, fraction: float | None = None) -> None:
@@ -132,6 +140,8 @@ class FieldkitApp(Editing):
     def action_view(self, name: str) -> None:
         """Go to a view."""
         self.here = name
+        if not self.ready:
+            return
         self.screen_stack[0].query_one("#views", ContentSwitcher).current = name
         self.refresh_desk()
         self.view(name).focus_home()
@@ -159,7 +169,7 @@ class FieldkitApp(Editing):
         for command in COMMANDS:
             yield SystemCommand(command.name, command.help, self._runner(command.action))
 
-    def _runner(self, action: str):  # type: ignore[no-untyped-def]
+    def _runner(self, action: str) -> Callable[[], Awaitable[None]]:
         async def run() -> None:
             await self.run_action(action)
 

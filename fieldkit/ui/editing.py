@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-from typing import TYPE_CHECKING
-
 from textual import work
 
 from fieldkit.errors import FieldkitError
@@ -14,9 +12,6 @@ from fieldkit.ui.files import Files
 from fieldkit.ui.forms.rows import row_label, texts_of, with_values
 from fieldkit.ui.forms.tables import FORMS, Form
 from fieldkit.ui.forms.window import FormWindow, Values
-
-if TYPE_CHECKING:
-    pass
 
 ADDABLE = (
     ("support", "Support"),
@@ -66,7 +61,8 @@ class Editing(Files):
         if self.desk.text is None:
             return
         if not table:
-            table = await self.push_screen_wait(PickScreen("Add what?", ADDABLE)) or ""
+            picked = await self.push_screen_wait(PickScreen("Add what?", ADDABLE))
+            table = picked or ""
         if not table:
             return
         form = FORMS[table]

@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from fieldkit.detune.verdict import Verdict
     from fieldkit.job.document import Job, RecordingEntry
     from fieldkit.job.store import JobText
+    from fieldkit.workup import Workup
 
 
 class JobApp(App[None]):
@@ -137,6 +138,12 @@ class JobApp(App[None]):
         if message.ticket == self.ticket:
             self.say_progress("")
             self.put(workup=message.workup, working=False)
+            self._choose_best(message.workup)
+
+    def _choose_best(self, found: Workup) -> None:
+        """The ruler shows the best fix until another is chosen."""
+        if found.detuning is not None and found.detuning.fixes:
+            self.on_fix_chosen(say.FixChosen(found.detuning.fixes[0]))
 
     def on_work_failed(self, message: say.WorkFailed) -> None:
         """No result, and why."""

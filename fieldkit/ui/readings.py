@@ -37,6 +37,8 @@ class Reading:
         return short if len(short) <= cells else f"{short[: cells - 1]}…"
 
 
+RESONANT = 0.1
+"""A mode this close to a line, relative, is taken to answer it (common practice, no source)."""
 NO_JOB = Reading("No job is open", next="press o to open one, n for a new one, s for a sample")
 
 
@@ -47,13 +49,14 @@ def reading(view: str, desk: Desk) -> Reading:
     return READERS[view](desk)
 
 
-def waiting(desk: Desk, what: str, next_step: str) -> Reading:
-    """While there is no result: being worked on, stopped, failed or never asked."""
+def waiting(desk: Desk, step: str, otherwise: str) -> Reading:
+    """While a step has no result: being worked on, stopped, refused, failed or never asked."""
     if desk.working:
-        return Reading(f"{what} is being worked out")
+        return Reading(f"{step.capitalize()}: being worked out")
     if desk.stopped:
         return Reading("Stopped", next="press r to work the job out again")
-    return Reading(desk.failed or next_step)
+    refused = desk.refusals(step)
+    return Reading(refused[0] if refused else desk.failed or otherwise)
 
 
 def _tap(desk: Desk) -> Reading:
@@ -62,13 +65,12 @@ def _tap(desk: Desk) -> Reading:
             "Nothing tapped yet: frequencies below come from the description alone",
             next="record four or more soft taps, then name the file with a",
         )
-    if desk.workup is None:
-        return waiting(desk, "The tap", "The tap has not been read")
-    modes = desk.workup.evidence.modes
+    modes = desk.workup.evidence.modes if desk.workup else ()
     if not modes:
-        return Reading(
-            "No mode could be read from these taps",
-            next="tap harder or closer, sensor and hammer at mid-span; reasons under x",
+        return waiting(
+            desk,
+            "tap",
+            "No mode could be read from these taps: tap again at mid-span; reasons under x",
         )
     lowest = modes[0]
     return Reading(
@@ -86,7 +88,11 @@ def measured(mode: MeasuredMode) -> str:
 def _seen_in(desk: Desk, mode: MeasuredMode) -> str:
     if not mode.taps:
         return "typed in by hand"
-    usable = sum(len(reading.records) for reading in desk.workup.taps) if desk.workup else 0
+    usable = sum(
+        len(reading.records)
+        for reading in (desk.workup.taps if desk.workup else ())
+        if (reading.entry.direction, reading.entry.at_m) == (mode.direction, mode.at_m)
+    )
     few = ", too few to trust its damping" if mode.taps < 3 else ""
     return f"seen in {mode.taps} of {usable} usable taps{few}"
 
@@ -101,8 +107,8 @@ def _running(desk: Desk) -> Reading:
             "No running recording: which line shakes the pipe is not known",
             next="record half a minute with the machine running, then name the file with a",
         )
-    if desk.workup is None:
-        return waiting(desk, "The running recording", "The running recording has not been read")
+    if desk.workup is None or not desk.workup.running:
+        return waiting(desk, "running", "The running recording has not been read")
     lines = tuple(chain.from_iterable(r.picture.lines for r in desk.workup.running))
     if not lines:
         return Reading(
@@ -119,12 +125,9 @@ def _strongest_line(desk: Desk, line: RunningLine) -> Reading:
     if mode_hz is None:
         return Reading(says, next="tap the pipe to learn whether a mode lies there")
     apart = abs(mode_hz / line.frequency_hz - 1)
-    if apart < 0.1:
-        return Reading(
-            says,
-            f"a mode lies {ratio_percent(apart)} away: resonance is likely",
-            "go to Detune (5)",
-        )
+    if apart < RESONANT:
+        sure = f"a mode lies {ratio_percent(apart)} away: resonance is likely"
+        return Reading(says, sure, "go to Detune (5)")
     return Reading(
         says,
         f"the nearest mode is {ratio_percent(apart)} away: forced, more than resonant",
@@ -148,7 +151,7 @@ def _span(desk: Desk) -> Reading:
         return Reading(desk.span_refused)
     modes = desk.modes_of("running")
     if not modes:
-        return waiting(desk, "The span", "This span has no mode below the limit")
+        return waiting(desk, "span", "This span has no mode below the limit")
     says = f"As described the first mode runs at {hertz(modes[0].frequency_hz)} Hz"
     if not desk.measured_hz:
         return Reading(
@@ -168,7 +171,7 @@ def _match(desk: Desk) -> Reading:
         )
     if found is None:
         return waiting(
-            desk, "The match", "The tap and the description do not agree on any plausible pipe"
+            desk, "match", "The tap and the description do not agree on any plausible pipe"
         )
     informed = [p.name for p in found.parameters if p.informed]
     says = f"{len(found.pairs)} of {count(len(found.measured), 'measured mode')} explained"
@@ -179,13 +182,14 @@ def _match(desk: Desk) -> Reading:
 def _detune(desk: Desk) -> Reading:
     found = desk.workup.detuning if desk.workup else None
     if found is None or desk.job is None:
-        return waiting(desk, "The cure", "There is nothing to detune from yet")
+        return waiting(desk, "detune", "There is nothing to detune from yet")
     wanted = desk.job.goal.chance
     says = f"As it is, {percent(found.chance_now)} chance of being clear"
     if found.chance_now >= wanted:
         return Reading(says, f"the {percent(wanted)} wanted is met", "leave the pipe as it is")
-    best = found.fixes[0] if found.fixes else None
-    if best is None or best.chance < wanted:
+    best = next((fix for fix in found.fixes if fix.chance >= wanted), None)
+    if best is None:
+        best = max(found.fixes, key=lambda fix: fix.chance, default=None)
         reach = f"the best change reaches {percent(best.chance)}" if best else "no change was found"
         return Reading(
             says,
@@ -193,13 +197,15 @@ def _detune(desk: Desk) -> Reading:
             "try another speed, damping or an absorber, or a better tap",
         )
     return Reading(
-        says, f"change 1 reaches {percent(best.chance)}", "adopt with a, then re-tap to prove it"
+        says,
+        f"change {best.rank} reaches {percent(best.chance)}",
+        "adopt with a, then re-tap to prove it",
     )
 
 
 def _sheet(desk: Desk) -> Reading:
     if desk.workup is None:
-        return waiting(desk, "The sheet", "There is no result to write down yet")
+        return waiting(desk, "sheet", "There is no result to write down yet")
     return Reading(
         "What another engineer needs to check this by hand",
         next="save it with w; have it checked before anything is cut, welded or clamped",

@@ -67,5 +67,5 @@ class Strip(Vertical):
     def say(self, doing: str, fraction: float | None) -> None:
         """What is being done now; an empty text clears it."""
         share = f" {fraction:4.0%}" if fraction is not None else ""
-        text = f"▸ {doing}{share}  esc stops " if doing else ""
+        text = f"  ▸ {doing}{share}  esc stops " if doing else ""
         self.query_one("#activity", Static).update(Content(safe(text)))

@@ -42,8 +42,8 @@ class Table(DataTable[Text]):
         chosen, height = self.chosen, self.cursor_row
         self._rows = fresh
         self.clear()
-        for key, cells in fresh:
-            self.add_row(*(_plain(cell) for cell in cells), key=key)
+        for _, cells in fresh:
+            self.add_row(*(_plain(cell) for cell in cells))
         keys = [key for key, _ in fresh]
         row = keys.index(chosen) if chosen in keys else min(height, len(keys) - 1)
         if row > 0:
@@ -59,7 +59,7 @@ class Table(DataTable[Text]):
     def choose(self, key: str) -> None:
         """Put the cursor on a row."""
         keys = [row_key for row_key, _ in self._rows]
-        if key in keys:
+        if key in keys and self.chosen != key:
             self.move_cursor(row=keys.index(key))
 
 

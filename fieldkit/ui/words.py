@@ -18,10 +18,12 @@ def decimals_for(sd: float) -> int:
     return max(0, -first + (1 if leading < 1.95 else 0))
 
 
-def plus_minus(value: float, sd: float) -> str:
-    """``23.41 ±0.02``: as many decimals as the doubt allows."""
-    decimals = min(4, decimals_for(sd))
-    return f"{value:.{decimals}f} ±{sd:.{decimals}f}"
+def plus_minus(value: float, sd: float, most: int = 3) -> str:
+    """``23.41 ±0.02``: as many decimals as the doubt allows, ``most`` at most."""
+    decimals = min(most, decimals_for(sd))
+    least = 10.0**-decimals
+    doubt = f"<{least:.{decimals}f}" if 0 < sd < least / 2 else f"{sd:.{decimals}f}"
+    return f"{value:.{decimals}f} ±{doubt}"
 
 
 def hertz(value_hz: float) -> str:

@@ -30,6 +30,11 @@ def warm() -> None:
     import scipy.optimize
     import scipy.signal  # noqa: F401
 
+    from fieldkit import workup  # noqa: F401
+    from fieldkit.quantity import show
+
+    show(1.0, "length")
+
 
 def open_job(path: Path, post: Post) -> None:
     """Read a job file."""

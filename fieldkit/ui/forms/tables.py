@@ -93,7 +93,7 @@ FORMS: dict[str, Form] = {
                 Field("schedule", "schedule", Words("40, 80, STD, XS, 10S"), when_empty="by wall"),
                 Field("outside_diameter", "outside diam.", LENGTH, when_empty="by size"),
                 Field("wall", "wall", LENGTH, when_empty="by schedule"),
-                Field("material", "material", Words("carbon steel"), needed=True, said=""),
+                Field("material", "material", Words("carbon steel"), when_empty="own", said=""),
                 Field("insulation.thickness", "insulation", LENGTH, when_empty="bare pipe"),
                 Field("insulation.density", "its density", Quantity("density")),
             ),
@@ -163,8 +163,8 @@ FORMS: dict[str, Form] = {
             "recording",
             "Recording",
             (
-                Field("file", "file", Words("tap-1.flac, beside the job file"), needed=True),
-                Field("kind", "kind", Choice(("tap", "running")), needed=True),
+                Field("file", "file", Words("as beside the job file"), needed=True, said=""),
+                Field("kind", "kind", Choice(("tap", "running")), needed=True, said=""),
                 Field("state", "state", STATE, when_empty="as its kind says"),
                 Field("channel", "channel", Number(1, 256, whole=True), when_empty="1"),
                 Field("quantity", "quantity",
@@ -172,6 +172,7 @@ FORMS: dict[str, Form] = {
                       when_empty="acceleration"),
                 Field("sensitivity", "sensitivity", SENSITIVITY, when_empty="uncalibrated"),
                 Field("full_scale", "full scale", VOLTAGE, when_empty="of the recorder"),
+                Field("scale", "scale", Words("9.81 m/s^2 per unit"), when_empty="by sensitivity"),
                 Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said"),
                 Field("at", "station", LENGTH, when_empty="nobody said"),
                 Field("rate", "rate", FREQUENCY, when_empty="as the file says"),
@@ -180,13 +181,14 @@ FORMS: dict[str, Form] = {
         ),
         Form(
             "measured",
-            "Peak read elsewhere",
+            "Peak",
             (
-                Field("frequency", "frequency", FREQUENCY, needed=True),
+                Field("frequency", "frequency", FREQUENCY, needed=True, said=""),
                 Field("sd", "its sd", FREQUENCY),
                 Field("damping", "damping ratio", Number(0.0, 1.0)),
                 Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said"),
                 Field("state", "state", STATE, when_empty="tapped"),
+                Field("at", "station", LENGTH, when_empty="nobody said"),
             ),
             repeated=True,
         ),
@@ -210,6 +212,6 @@ FORMS: dict[str, Form] = {
 
 ORDER_OF_ROWS = (
     "", "pipe", "contents", "state.tapped", "state.running",
-    "leg", "support", "mass", "excitation", "goal",
+    "leg", "support", "mass", "excitation", "goal", "recording", "measured",
 )  # fmt: skip
 """The tables that the Span view lists."""

@@ -2,21 +2,23 @@
 
 from __future__ import annotations
 
-from typing import ClassVar
+from typing import TYPE_CHECKING, ClassVar
 
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical, VerticalScroll
 from textual.widgets import DataTable
 
-from fieldkit.detune.effort import effort
-from fieldkit.detune.verdict import Detuning, Nearest, Verdict
 from fieldkit.ui.messages import AdoptWanted, FixChosen
+from fieldkit.ui.plots import SHORT
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.views.base import View, plain
 from fieldkit.ui.views.fixed_span import draw_fixed
 from fieldkit.ui.widgets import SpanDrawing
 from fieldkit.ui.words import DASH, hertz, percent, ratio_percent, sentence, span_of
+
+if TYPE_CHECKING:
+    from fieldkit.detune.verdict import Detuning, Nearest, Verdict
 
 
 class DetuneView(View):
@@ -34,7 +36,7 @@ class DetuneView(View):
         yield plain("question")
         yield Table("#", "chance", "effort", "apart", "nearest band", "change", id="fixes")
         with Horizontal(classes="lower"):
-            yield Table("#", "now Hz", "after 90 %", "direction", "clear", id="after")
+            yield Table("#", "now Hz", "after 90 %", "dir", "clear", id="after")
             with Vertical(id="fix-side"):
                 with VerticalScroll(id="fix-words", can_focus=True):
                     yield plain("fix-text")
@@ -44,7 +46,10 @@ class DetuneView(View):
         """Everything but the cursor, which stays where it was."""
         found = self._found
         self.write("#question", self._question(found))
-        self.table("#fixes").fill(self._fix_rows(found) if found else [])
+        fixes = self.table("#fixes")
+        fixes.fill(self._fix_rows(found) if found else [])
+        if self.desk.chosen is not None:
+            fixes.choose(str(self.desk.chosen.rank))
         self._draw_chosen()
 
     @property
@@ -78,6 +83,8 @@ class DetuneView(View):
         return [(str(fix.rank), self._fix_cells(fix)) for fix in found.fixes]
 
     def _fix_cells(self, fix: Verdict) -> tuple[str, ...]:
+        from fieldkit.detune.effort import effort
+
         size = effort(fix.change, self.desk.job.span) if self.desk.job else 0.0
         return (
             str(fix.rank),
@@ -108,7 +115,11 @@ class DetuneView(View):
     def _words(self, found: Detuning | None, fix: Verdict | None) -> list[str]:
         if found is None:
             return [sentence(text) for text in self.desk.refusals("detune")]
-        return [*self._shortfall(found), *(_fix_words(fix) if fix else []), *found.warnings]
+        return [
+            *self._shortfall(found),
+            *(_fix_words(fix) if fix else []),
+            *map(sentence, found.warnings),
+        ]
 
     def _shortfall(self, found: Detuning) -> list[str]:
         """Said plainly when nothing reaches what was wanted."""
@@ -136,7 +147,16 @@ def _mode_rows(found: Detuning, fix: Verdict | None) -> list[Row]:
         mode = after[i] if i < len(after) else found.modes[i]
         then = span_of(mode.low_hz, mode.high_hz) if i < len(after) else DASH
         rows.append(
-            (str(i + 1), (str(i + 1), now, then, mode.direction, percent(mode.chance_clear)))
+            (
+                str(i + 1),
+                (
+                    str(i + 1),
+                    now,
+                    then,
+                    SHORT.get(mode.direction, mode.direction),
+                    percent(mode.chance_clear),
+                ),
+            )
         )
     return rows
 

@@ -2,14 +2,18 @@
 
 from __future__ import annotations
 
+from typing import TYPE_CHECKING
+
 from textual.app import ComposeResult
 from textual.containers import Horizontal, VerticalScroll
 
-from fieldkit.detune.match import Match, Pair, ParameterReading
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import interval
 from fieldkit.ui.views.base import View, plain
 from fieldkit.ui.words import DASH, hertz, plus_minus, sentence, span_of
+
+if TYPE_CHECKING:
+    from fieldkit.detune.match import Match, Pair, ParameterReading
 
 
 class MatchView(View):
@@ -31,7 +35,7 @@ class MatchView(View):
             id="pairs",
         )
         with Horizontal(classes="lower"):
-            yield Table("unknown", "told", "before 90 %", "after 90 %", id="parameters")
+            yield Table("unknown", "told", "after 90 %", "before 90 %", id="parameters")
             with VerticalScroll(id="match-words", can_focus=True):
                 yield plain("match-text")
 
@@ -53,7 +57,7 @@ class MatchView(View):
 
 
 def _pair_rows(found: Match) -> list[Row]:
-    rows = [(f"pair-{pair.mode}", _pair_cells(pair)) for pair in found.pairs]
+    rows: list[Row] = [(f"pair-{pair.mode}", _pair_cells(pair)) for pair in found.pairs]
     for number, mode in enumerate(found.unpaired, start=1):
         measured = plus_minus(mode.frequency_hz, mode.frequency_sd_hz)
         cells = (DASH, measured, "no partner", DASH, DASH, DASH, mode.direction or "not said")
@@ -75,13 +79,14 @@ def _pair_cells(pair: Pair) -> tuple[str, ...]:
 
 
 def _parameter_rows(found: Match, units: str) -> list[Row]:
-    return [(one.name, _parameter_cells(one, units)) for one in found.parameters]
+    told_first = sorted(found.parameters, key=lambda one: not one.informed)
+    return [(one.name, _parameter_cells(one, units)) for one in told_first]
 
 
 def _parameter_cells(one: ParameterReading, units: str) -> tuple[str, ...]:
     return (
         one.name,
         "✓ by tap" if one.informed else "· no",
-        interval(one.prior_low, one.prior_high, one.unit, units),
         interval(one.low, one.high, one.unit, units),
+        interval(one.prior_low, one.prior_high, one.unit, units),
     )

@@ -21,6 +21,9 @@ if TYPE_CHECKING:
     from fieldkit.workup import RunningReading
 
 
+NO_RECORDING = "No running recording yet: press a to name one"
+
+
 class RunningView(View):
     """Spectrum above, its lines below, levels beside."""
 
@@ -40,11 +43,7 @@ class RunningView(View):
 
     def compose(self) -> ComposeResult:
         """Plot, text, table."""
-        yield SpectrumPlot(
-            id="running-spectrum",
-            classes="plot",
-            empty="No running recording yet: press a to name one",
-        )
+        yield SpectrumPlot(id="running-spectrum", classes="plot")
         yield plain("running-text")
         yield Table("Hz", "RMS", "order", "nearest mode", "apart", id="lines")
 
@@ -58,7 +57,9 @@ class RunningView(View):
         """Plot, lines and levels of the recording on screen."""
         found = self.reading
         spectrum = found.picture.spectrum if found else None
-        self.query_one(SpectrumPlot).show(
+        plot = self.query_one(SpectrumPlot)
+        plot.empty_sentence = self._missing
+        plot.show(
             (spectrum_curve(spectrum, found.file),) if found and spectrum else (),
             running_marks(found.picture.lines, self.desk) if found else (),
             shaded(self.desk),
@@ -68,10 +69,17 @@ class RunningView(View):
         self.table("#lines").fill(self._rows(found) if found else [])
         self.write("#running-text", "\n".join(self._words(found)))
 
+    @property
+    def _missing(self) -> str:
+        """What stands where there is no curve."""
+        if self.desk.working and self.desk.has("running"):
+            return "Reading the recording ..."
+        return " ".join(map(sentence, self.desk.refusals("running"))) or NO_RECORDING
+
     def _rows(self, found: RunningReading) -> list[Row]:
         unit = found.picture.spectrum.unit
         modes_hz = self.desk.mode_hz
-        rows = []
+        rows: list[Row] = []
         for line in found.picture.lines:
             order = order_of(line.frequency_hz, self.desk.bands)
             mode_hz = nearest(line.frequency_hz, modes_hz)
@@ -89,7 +97,7 @@ class RunningView(View):
     def _words(self, found: RunningReading | None) -> list[str]:
         refused = [f"✗ {sentence(text)}" for text in self.desk.refusals("running")]
         if found is None:
-            return refused or ["No running recording yet: press a to name one."]
+            return refused
         picture = found.picture
         others = (
             "" if self._count < 2 else f" ({self.number % self._count + 1} of {self._count}, v)"

@@ -10,7 +10,7 @@ from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical
 from textual.widgets import DataTable
 
-from fieldkit.ui.forms.rows import rows_of
+from fieldkit.ui.forms.rows import JobRow, rows_of
 from fieldkit.ui.messages import AddWanted, EditWanted, RemoveWanted
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import length
@@ -176,7 +176,7 @@ class SpanView(View):
             return
         self.post_message(RemoveWanted(row.table, row.index))
 
-    def _row(self):  # type: ignore[no-untyped-def]
+    def _row(self) -> JobRow | None:
         key = self.table("#rows").chosen
         return next((row for row in rows_of(self.desk.text) if row.key == key), None)
 

@@ -9,22 +9,22 @@ from textual.binding import Binding, BindingType
 from textual.containers import Container, Horizontal
 from textual.widgets import DataTable
 
-from fieldkit.signal.modes import MeasuredMode
-from fieldkit.signal.taps import Tap
 from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.messages import AddWanted, EditWanted, RemoveWanted, TraceWanted
 from fieldkit.ui.plots import blow_marks, shaded, spectrum_curve, tap_marks, unit_of
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.views.base import View, plain
 from fieldkit.ui.widgets import SpectrumPlot, TimePlot
-from fieldkit.ui.words import DASH, count, plus_minus, seconds, sentence
+from fieldkit.ui.words import DASH, plus_minus, seconds, sentence
 
 if TYPE_CHECKING:
+    from fieldkit.signal.modes import MeasuredMode
+    from fieldkit.signal.taps import Tap
     from fieldkit.workup import TapReading
 
 
 NO_TAP = "No tap recording yet: press a to name one, or p to type in a peak read elsewhere"
-CAUTION_LINE = "! Ask the operator first; no hot or pressurised line without a permit (c: more)"
+CAUTION_LINE = "! Ask the operator first; no hot or pressurised line without a permit (c)"
 CAUTION = """\
 Before you strike a pipe
 
@@ -53,13 +53,13 @@ class TapView(View):
     HOME = "#modes"
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("a", "add", "Add", id="tap.add", tooltip="Name a tap recording"),
-        Binding("p", "peak", "Type a peak", id="tap.peak",
+        Binding("p", "peak", "Peak", id="tap.peak",
                 tooltip="Type in a peak that was read elsewhere"),
         Binding("e", "edit", "Edit", id="tap.edit",
                 tooltip="Change the recording under the cursor"),
         Binding("d,delete", "remove", "Remove", show=False, id="tap.remove",
                 tooltip="Take the recording under the cursor out of the job"),
-        Binding("v", "other_plot", "Time/spectrum", id="tap.plot",
+        Binding("v", "other_plot", "Plot", id="tap.plot",
                 tooltip="Show the signal instead of the spectrum, or back"),
         Binding("x", "refused", "Refused", id="tap.refused",
                 tooltip="Tones, and the peaks and blows that were not accepted, with reasons"),
@@ -70,11 +70,11 @@ class TapView(View):
         """Caution, two plots, two tables."""
         yield plain("tap-caution", classes="caution")
         with Container(id="tap-plots"):
-            yield SpectrumPlot(id="tap-spectrum", classes="plot", empty=NO_TAP)
-            yield TimePlot(id="tap-time", classes="plot", empty=NO_TAP)
+            yield SpectrumPlot(id="tap-spectrum", classes="plot")
+            yield TimePlot(id="tap-time", classes="plot")
         with Horizontal(classes="lower"):
             yield Table("mode Hz", "damping %", "direction", "taps", id="modes")
-            yield Table("recording", "at s", "blow", id="blows")
+            yield Table("blow at", "judged", id="blows")
 
     def on_mount(self) -> None:
         """The caution never changes."""
@@ -96,10 +96,19 @@ class TapView(View):
         number = int(key.partition(".")[0])
         return found[number] if number < len(found) else None
 
+    @property
+    def _missing(self) -> str:
+        """What stands where there is no curve."""
+        if self.desk.working and self.desk.has("tap"):
+            return "Reading the taps ..."
+        return " ".join(map(sentence, self.desk.refusals("tap"))) or NO_TAP
+
     def _draw_plots(self) -> None:
         found = self.reading
         spectrum = found.spectrum if found else None
-        self.query_one(SpectrumPlot).show(
+        plot = self.query_one(SpectrumPlot)
+        plot.empty_sentence = self._missing
+        plot.show(
             (spectrum_curve(spectrum, found.file),) if found and spectrum else (),
             tap_marks(self.desk),
             shaded(self.desk),
@@ -110,6 +119,7 @@ class TapView(View):
 
     def _draw_trace(self, found: TapReading | None) -> None:
         plot = self.query_one(TimePlot)
+        plot.empty_sentence = self._missing
         signal = self.desk.traces.get(found.entry) if found else None
         if found is None or signal is None:
             plot.show((), 1.0)
@@ -189,7 +199,7 @@ def _mode_rows(modes: tuple[MeasuredMode, ...]) -> list[Row]:
 def _mode_cells(mode: MeasuredMode) -> tuple[str, ...]:
     damping = DASH
     if mode.damping_ratio is not None:
-        damping = plus_minus(100 * mode.damping_ratio, 100 * (mode.damping_sd or 0.0))
+        damping = plus_minus(100 * mode.damping_ratio, 100 * (mode.damping_sd or 0.0), most=2)
     return (
         plus_minus(mode.frequency_hz, mode.frequency_sd_hz),
         damping,
@@ -201,10 +211,10 @@ def _mode_cells(mode: MeasuredMode) -> tuple[str, ...]:
 def _blow_rows(readings: tuple[TapReading, ...]) -> list[Row]:
     rows: list[Row] = []
     for number, reading in enumerate(readings):
-        usable = count(len(reading.records), "usable tap")
-        rows.append((str(number), (reading.file, seconds(reading.duration_s), usable)))
+        usable = f"{len(reading.records)} of {len(reading.search.taps)} usable"
+        rows.append((str(number), (reading.file, f"{usable}, {seconds(reading.duration_s)}")))
         rows += [
-            (f"{number}.{i}", ("", f"{blow.at_s:.2f}", _judged(blow)))
+            (f"{number}.{i}", (f"{blow.at_s:9.2f} s", _judged(blow)))
             for i, blow in enumerate(reading.search.taps)
         ]
     return rows
