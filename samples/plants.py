@@ -266,7 +266,7 @@ SMALL_BORE = Plant(
     tapped=Condition(0.0, 22.0),
     running=Condition(14.0, 71.0, 1.2e6, damping_added=0.001),
     machine=Machine(
-        "compressor", 590.0, 610.0, 598.0, {1: 3.0, 2: 6.0, 4: 2.2}, 0.15, (0.5, 0.2, 0.8)
+        "compressor", 590.0, 610.0, 598.0, {1: 3.0, 2: 6.0, 4: 2.2}, 0.15, (0.9, 0.2, 0.8)
     ),
     taps=(
         TapSession("tap-vertical.flac", 0.33, "vertical", 0.25, _hits(1.8, 2.9, 220.0, 1.5e-3),
@@ -274,7 +274,7 @@ SMALL_BORE = Plant(
         TapSession("tap-lateral.flac", 0.33, "lateral", 0.25, _hits(1.7, 2.4, 220.0, 1.5e-3),
                    15.5, 48000, 16, 490.3, {60.0: 0.5}, 2.5e-4, 1.5e-2, 302),
     ),
-    run=RunningSession("running.flac", 0.33, 24.0, 4000, 98.07, 0.05, 8e-3, 303),
+    run=RunningSession("running.flac", 0.33, 24.0, 4000, 98.07, 0.02, 8e-3, 303),
     up_to_hz=150.0,
     damping_seed=33,
     damping_middle=0.007,
