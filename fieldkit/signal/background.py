@@ -12,6 +12,7 @@ Real = NDArray[np.float64]
 
 _SMOOTHING = 0.25
 _LEAST_HALF_WIDTH = 10
+_LONGEST_PART_S = 2.0
 MEDIAN_OF_MEAN = float(np.log(2))
 """Median over mean of a periodogram value, which is exponentially distributed."""
 
@@ -32,15 +33,17 @@ class NoiseDensity:
 
 
 def noise_density(
-    segments: Sequence[Real], rate_hz: float, *, longest_s: float = 2.0
+    segments: Sequence[Real], rate_hz: float, *, whole: bool = False
 ) -> NoiseDensity | None:
     """Density from quiet stretches by Welch's method, medians over time and over frequency.
 
-    The median over a window of frequencies passes over lines, which are modelled on their own. None
-    when all stretches together are too short to say anything.
+    The median over a window of frequencies passes over lines, which are modelled on their own;
+    ``whole`` stretches, not parts of them, keep also the lines of modes narrow. None when all
+    stretches together are too short to say anything.
     """
     available = max((len(s) for s in segments), default=0)
-    length = min(max(available // 6, int(0.5 * rate_hz)), int(longest_s * rate_hz), available)
+    part = min(max(available // 6, int(0.5 * rate_hz)), int(_LONGEST_PART_S * rate_hz), available)
+    length = available if whole else part
     if length < 32:
         return None
     spectra = [p for s in segments for p in periodograms(s, length, rate_hz)]

@@ -15,7 +15,12 @@ _BANDWIDTHS = 16.0
 _LEAST_BINS = 16.0
 _TOGETHER = 4.0
 _MOST_TOGETHER = 5
+_ALIKE = 10.0
+"""Poles of which one decays so much faster hardly move each other."""
 _MOST_BINS = 600.0
+_ROWS_PER_PART = 10
+"""Real data of one tap for every component with free amplitudes; with fewer they are kept."""
+_SHORTEST_S = 0.04
 _TONE_SHARE = 0.4
 """A tone's amplitude is fitted anew only over this share of the longest record, else kept."""
 
@@ -24,7 +29,8 @@ def span_s(parts: Sequence[Component], traces: Sequence[Trace]) -> float:
     """How much of the record serves these poles: eight decays of the slowest."""
     longest = max(t.duration_s for t in traces)
     slowest = min((p.decay_per_s for p in parts if not p.steady), default=0.0)
-    return longest if slowest * longest <= DECAYS_USED else DECAYS_USED / slowest
+    enough = max(DECAYS_USED / slowest, _SHORTEST_S) if slowest > 0 else longest
+    return min(enough, longest)
 
 
 def limits_hz(parts: Sequence[Component], duration_s: float, top_hz: float) -> tuple[float, float]:
@@ -45,8 +51,14 @@ def overlapping(part: Component, others: Sequence[Component], duration_s: float)
         width = part.half_power_hz + other.half_power_hz + 1 / duration_s
         return abs(other.frequency_hz - part.frequency_hz) / width
 
-    near = [o for o in others if o is not part and not o.steady and closeness(o) < _TOGETHER]
+    modes = [o for o in others if o is not part and not o.steady and alike(part, o, _ALIKE)]
+    near = [o for o in modes if closeness(o) < _TOGETHER]
     return sorted(near, key=closeness)[: _MOST_TOGETHER - 1]
+
+
+def alike(one: Component, other: Component, factor: float) -> bool:
+    """True where neither decays faster than the other by more than a factor."""
+    return one.decay_per_s < factor * other.decay_per_s < factor**2 * one.decay_per_s
 
 
 def fit_together(
@@ -77,13 +89,14 @@ def prepared(
     """The band around some poles, free of what stands outside, and what else stands inside."""
     duration_s = span_s(around, traces)
     low, high = limits_hz(around, duration_s, top_hz)
+    bins = band(traces, low, high, duration_s)
     longest = max(t.duration_s for t in traces)
     free = [o for o in others if not o.steady or duration_s > _TONE_SHARE * longest]
     inside = [o for o in free if low <= o.frequency_hz <= high]
+    if _ROWS_PER_PART * (len(inside) + len(around)) * len(traces) > bins.rows:
+        inside = []
     kept = {id(o) for o in inside}
-    outside = [o for o in others if id(o) not in kept]
-    bins = band(traces, low, high, duration_s)
-    return subtract(bins, outside), inside
+    return subtract(bins, [o for o in others if id(o) not in kept]), inside
 
 
 def needed_gain(rows: int, taps: int, threshold: float) -> float:

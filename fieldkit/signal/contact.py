@@ -21,13 +21,15 @@ SHARP = 8.0
 """Error over its typical size: above it at a blow, below 7 where there is none."""
 SHORTEST_GAP_S = 0.0075
 LONGEST_GAP_S = 0.31
-_ORDERS = (24, 16, 12)
-"""Of the predictors, finest level first; the last holds for all coarser ones."""
+_ORDERS = (12, 24, 40)
+_NEARLY = 1.7
 _BEFORE_S = 0.03
 _LOOK_S = 0.42
 _LEAST_LOOK = 200
 """Samples a predictor is fitted to at the coarse levels."""
 _TRIMS = 4
+_BLOCK_S = 0.02
+_OVER_QUIET = 4.0
 _KEEP = 0.9
 _OVER_TYPICAL = 6.5
 _OVER_FORCE = 0.03
@@ -68,6 +70,8 @@ class Errors:
     size: Real
     """(n,)"""
     rate_hz: float
+    order: int
+    """Of the predictor: for so many samples after a blow it errs still."""
 
 
 def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place | None:
@@ -77,9 +81,8 @@ def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place |
     noise. The time is that of the finest level that shows it.
     """
     best: Place | None = None
-    for scale, level in enumerate(levels):
-        order = order_at(scale)
-        errors = prediction_errors(level, about_s, np.inf, order, backwards=False, slack_s=slack_s)
+    for level in levels:
+        errors = prediction_errors(level, about_s, np.inf, backwards=False, slack_s=slack_s)
         place = first_failure(errors, about_s, slack_s) if errors is not None else None
         if place is not None and (best is None or place.sharpness > best.sharpness):
             at_s = best.at_s if best is not None else place.at_s
@@ -101,7 +104,7 @@ def first_failure(errors: Errors, about_s: float, slack_s: float) -> Place | Non
 
 def contact_end_s(level: Level, onset_s: float, until_s: float) -> float:
     """How long after the onset the force acts, by the finest level."""
-    errors = prediction_errors(level, onset_s, until_s, _ORDERS[0], backwards=True)
+    errors = prediction_errors(level, onset_s, until_s, backwards=True)
     if errors is None:
         return 2 / level.rate_hz
     within = (errors.time_s > -0.002) & (errors.time_s < _LONGEST_CONTACT_S)
@@ -114,10 +117,9 @@ def contact_end_s(level: Level, onset_s: float, until_s: float) -> float:
 def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list[Later]:
     """Second blows at any level, in order of time."""
     found: list[Later] = []
-    for scale, level in enumerate(levels):
-        order = order_at(scale)
-        errors = prediction_errors(level, onset_s, until_s, order, backwards=False)
-        fresh = jumps(errors, order) if errors is not None else []
+    for level in levels:
+        errors = prediction_errors(level, onset_s, until_s, backwards=False)
+        fresh = jumps(errors) if errors is not None else []
         for one in fresh:
             same = [k for k in found if abs(one.after_s - k.after_s) < _SAME_S]
             found = [k for k in found if k not in same]
@@ -125,16 +127,10 @@ def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list
     return sorted(found, key=lambda f: f.after_s)
 
 
-def order_at(scale: int) -> int:
-    """Order of the predictor at a level."""
-    return _ORDERS[min(scale, len(_ORDERS) - 1)]
-
-
 def prediction_errors(
     level: Level,
     onset_s: float,
     until_s: float,
-    order: int,
     *,
     backwards: bool,
     slack_s: float = 0.0,
@@ -142,18 +138,48 @@ def prediction_errors(
     """Errors from a little before the blow on; None where the stretch is too short to tell."""
     rate = level.rate_hz
     look_s = max(_LOOK_S, _LEAST_LOOK / rate) + slack_s
-    first = max(int((onset_s - _BEFORE_S - slack_s) * rate) - order, 0)
+    first = max(int((onset_s - _BEFORE_S - slack_s) * rate) - _ORDERS[-1], 0)
     last = min(int(min(onset_s + look_s, until_s) * rate), len(level.samples))
-    order = min(order, (last - first) // 8)
-    if order < 2:
-        return None
+    last = first + ringing_part(level.samples[first:last], rate)
     stretch = level.samples[first:last]
-    size = robust_errors(stretch[::-1], order)[::-1] if backwards else robust_errors(stretch, order)
-    return Errors((first + np.arange(len(size))) / rate - onset_s, size, rate)
+    orders = [order for order in _ORDERS if order <= len(stretch) // 6]
+    if not orders:
+        return None
+    size, order = sparing_errors(stretch[::-1] if backwards else stretch, orders)
+    time_s = (first + np.arange(len(size))) / rate - onset_s
+    return Errors(time_s, size[::-1] if backwards else size, rate, order)
 
 
-def robust_errors(stretch: Real, order: int) -> Real:
-    """(n,) error of the least-squares predictor fitted where it works; over its median there.
+def ringing_part(stretch: Real, rate_hz: float) -> int:
+    """Samples up to where the ringing has sunk into the noise, at least a quarter of the stretch.
+
+    A predictor fitted to noise alone would not know a heavily damped ringing.
+    """
+    block = max(int(_BLOCK_S * rate_hz), 4)
+    count = len(stretch) // block
+    if count < 4:
+        return len(stretch)
+    power = np.var(stretch[: count * block].reshape(count, block), axis=1)
+    rings = np.flatnonzero(power > _OVER_QUIET * power.min())
+    last = (int(rings[-1]) + 2) * block if len(rings) else 0
+    return min(max(last, len(stretch) // 4), len(stretch))
+
+
+def sparing_errors(stretch: Real, orders: Sequence[int]) -> tuple[Real, int]:
+    """(n,) errors over their typical size by the lowest order nearly as good as the highest.
+
+    A low order forgets a blow soon; many modes need a high one.
+    """
+    tried = [robust_errors(stretch, order) for order in orders]
+    best = min(typical for _, typical in tried)
+    chosen = next(i for i, (_, typical) in enumerate(tried) if typical <= _NEARLY * best)
+    error, typical = tried[chosen]
+    least = max(typical, float(np.abs(stretch).max()) * 1e-7, 1e-280)
+    return error / least, orders[chosen]
+
+
+def robust_errors(stretch: Real, order: int) -> tuple[Real, float]:
+    """(n,) error of the least-squares predictor fitted where it works, and its median there.
 
     Trimmed least squares: the samples it predicts worst, which hold the blows, are left out. The
     first ``order`` samples have no past and get 0.
@@ -168,13 +194,13 @@ def robust_errors(stretch: Real, order: int) -> Real:
         weights = np.linalg.solve(a.T @ a + ridge, a.T @ now[kept])
         error = np.abs(now - past @ weights)
         kept = error <= np.quantile(error, _KEEP)
-    typical = max(float(np.median(error)), float(np.abs(stretch).max()) * 1e-7, 1e-280)
-    return np.concatenate([np.zeros(order), error / typical])
+    freedom = max(1 - order / np.count_nonzero(kept), 0.1)
+    return np.concatenate([np.zeros(order), error]), float(np.median(error)) / np.sqrt(freedom)
 
 
-def jumps(errors: Errors, order: int) -> list[Later]:
+def jumps(errors: Errors) -> list[Later]:
     """Sudden rises of the forward error after the first blow, each against the first."""
-    smeared_s = max(SHORTEST_GAP_S, (order + _SMEARED) / errors.rate_hz)
+    smeared_s = max(SHORTEST_GAP_S, (errors.order + _SMEARED) / errors.rate_hz)
     at_first = (errors.time_s > -smeared_s) & (errors.time_s < smeared_s)
     first = float(errors.size[at_first].max(initial=0.0))
     near = max(int(0.0015 * errors.rate_hz), 1)

@@ -96,7 +96,7 @@ def estimate_modes(
         ready = ready.with_noise_from(found.parts)
         found = resolved(ready, found)
     found, fitted = polished(ready.traces, found, ready.region)
-    verdicts = judged(fitted, ready.traces, ready.lines)
+    verdicts = judged(fitted, ready.traces, ready.lines, found.unresolved)
     return told(verdicts, found, ready, low_hz, high_hz)
 
 
@@ -124,7 +124,7 @@ def told(
         tuple(sorted(modes, key=lambda m: m.frequency_hz)),
         told_tones(steady, [v.part for v in accepted], low_hz, high_hz),
         tuple(sorted(refused, key=lambda r: r.frequency_hz)),
-        (*warnings(accepted, ready), *unresolved(accepted, found)),
+        tuple(warnings(accepted, ready)),
     )
 
 
@@ -166,20 +166,16 @@ def warnings(modes: Sequence[Judged], ready: Prepared) -> list[str]:
             "no quiet time before the blow: steady tones cannot be told from modes for sure; "
             "leave two quiet seconds before the first tap"
         )
+    out += [unresolved(v) for v in modes if v.two]
     return out + [drift(v) for v in modes if v.estimate.scattered]
 
 
-def unresolved(modes: Sequence[Judged], found: Found) -> list[str]:
-    """Which modes may be two."""
-    out = []
-    for verdict in modes:
-        part = verdict.part
-        if any(abs(pole - part.pole) < np.pi * part.half_power_hz for pole in found.unresolved):
-            out.append(
-                f"the mode at {verdict.estimate.frequency_hz.value:.4g} Hz may be two that lie "
-                "nearer than half their bandwidth; tap in another direction to tell them apart"
-            )
-    return out
+def unresolved(verdict: Judged) -> str:
+    """A mode that may be two."""
+    return (
+        f"the mode at {verdict.estimate.frequency_hz.value:.4g} Hz may be two that lie nearer than "
+        "half their bandwidth; tap in another direction to tell them apart"
+    )
 
 
 def drift(verdict: Judged) -> str:

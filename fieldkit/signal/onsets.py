@@ -33,6 +33,8 @@ class Onset:
     """Amplitude of the innovation over its median."""
     scale: int
     """0 for the finest level."""
+    rise_s: float = 0.0
+    """How long a soft one takes to reach its height; 0 for a sudden one."""
 
 
 def onsets(scales: Sequence[Level]) -> list[Onset]:

@@ -56,7 +56,8 @@ class Prepared:
         traces = []
         for tap, trace in enumerate(self.traces):
             left = residual(trace, tap, parts)
-            fresh = floored(noise_density([left], trace.rate_hz), trace.samples, trace.rate_hz)
+            noise = noise_density([left], trace.rate_hz, whole=True)
+            fresh = floored(noise, trace.samples, trace.rate_hz)
             traces.append(replace(trace, noise=fresh))
         return replace(self, traces=tuple(traces))
 
@@ -102,9 +103,9 @@ def quiet_stretch(record: Record, high_hz: float, top_hz: float) -> tuple[Real, 
 
 
 def trace_noise(known: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:
-    """The background's density, else that of the last third of the trace itself."""
-    tail = samples[2 * len(samples) // 3 :]
-    return floored(known or noise_density([tail], rate_hz), samples, rate_hz)
+    """The background's density, else that between the lines of the trace itself."""
+    noise = known or noise_density([samples], rate_hz, whole=True)
+    return floored(noise, samples, rate_hz)
 
 
 def floored(noise: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:

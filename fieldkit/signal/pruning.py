@@ -7,24 +7,27 @@ from dataclasses import replace
 
 import numpy as np
 
-from fieldkit.signal.clusters import fit_together, needed_gain, overlapping, span_s
+from fieldkit.signal.clusters import alike, fit_together, needed_gain, overlapping, span_s
 from fieldkit.signal.scan import Region, threshold
 from fieldkit.signal.scatter import freedom_price, looser, scattered
 from fieldkit.signal.search import Found, updated, without
 from fieldkit.signal.traces import Component, Trace
 
 _RESOLVED = 0.5
+_ALIKE = 3.0
 
 
 def pruned(traces: Sequence[Trace], found: Found, region: Region) -> Found:
     """The search result less every mode that does not pay for itself, weakest first."""
     parts = list(found.parts)
-    unresolved: list[complex] = []
+    unresolved: list[tuple[complex, complex]] = []
     for part in sorted((p for p in parts if not p.steady), key=peak_amplitude):
         current = nearest_pole(part, parts)
+        if current is None:
+            continue
         twin = next((p for p in parts if twins(p, current)), None)
-        parts = without_if_idle(traces, parts, current, region, must_go=twin is not None)
-        unresolved += [twin.pole] if twin is not None else []
+        parts, poor = without_if_idle(traces, parts, current, region, must_go=twin is not None)
+        unresolved += [(current.pole, twin.pole)] if twin is not None and poor else []
     return replace(found, parts=tuple(parts), unresolved=tuple(unresolved))
 
 
@@ -32,14 +35,18 @@ def twins(one: Component, other: Component) -> bool:
     """True for two modes nearer to each other than half their bandwidth: not to be told apart."""
     if one is other or one.steady or other.steady:
         return False
+    if not alike(one, other, _ALIKE):
+        return False
     apart_hz = abs(one.frequency_hz - other.frequency_hz)
     return apart_hz < _RESOLVED * (one.half_power_hz + other.half_power_hz) / 2
 
 
-def nearest_pole(part: Component, parts: Sequence[Component]) -> Component:
-    """The component that a part has become after refits."""
+def nearest_pole(part: Component, parts: Sequence[Component]) -> Component | None:
+    """The component that a part has become after refits; None where it is gone."""
     modes = [p for p in parts if not p.steady]
-    return min(modes, key=lambda p: abs(p.pole - part.pole))
+    nearest = min(modes, key=lambda p: abs(p.pole - part.pole), default=None)
+    gone = nearest is None or abs(nearest.pole - part.pole) > 2 * part.decay_per_s
+    return None if gone else nearest
 
 
 def without_if_idle(
@@ -49,10 +56,11 @@ def without_if_idle(
     region: Region,
     *,
     must_go: bool,
-) -> list[Component]:
+) -> tuple[list[Component], bool]:
     """Parts refitted around one of them, without it where that costs too little or it must go.
 
-    "Without" also means its neighbours with poles of their own in every tap.
+    "Without" also means its neighbours with poles of their own in every tap. The second value is
+    True where leaving it out leaves something unexplained.
     """
     near = overlapping(current, parts, span_s([current], traces))
     rest = without(parts, [*near, current])
@@ -71,10 +79,11 @@ def without_if_idle(
     if loose is not None:
         price = freedom_price(near, len(traces), alone.freedom) * noise
         if loose.cost + price < min(kept, alone.cost):
-            return [*rest, *loose.parts]
+            return [*rest, *loose.parts], loose.cost > with_it.cost + worth
     if alone.cost < kept:
-        return [*updated(without(held, [current]), alone.passive), *alone.active]
-    return [*updated(held, with_it.passive), *with_it.active]
+        left = [*updated(without(held, [current]), alone.passive), *alone.active]
+        return left, alone.cost > with_it.cost + worth
+    return [*updated(held, with_it.passive), *with_it.active], False
 
 
 def peak_amplitude(part: Component) -> float:

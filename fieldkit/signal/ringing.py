@@ -13,7 +13,7 @@ Real = NDArray[np.float64]
 
 _FRAME_S = 0.25
 _LEAST_FRAMES = 4
-_LOW_SHARE = 0.2
+_LOW_SHARE = 0.1
 RINGS = 20.0
 """Power over the background's, in any one bin, that noise alone hardly reaches."""
 
@@ -24,10 +24,26 @@ class Ringing:
 
     time_s: Real
     """(f,) centres of the frames."""
+    frequency_hz: Real
+    """(b,) of the bins, 0 left out."""
+    power: Real
+    """(f, b)"""
+    quiet: Real
+    """(b,) the background's."""
     over: Real
     """(f,) largest ratio of power to background over all bins."""
     excess: Real
     """(f,) power above the background, all bins together."""
+
+    @property
+    def frame_s(self) -> float:
+        """Length of a frame."""
+        return _FRAME_S
+
+    @property
+    def hop_s(self) -> float:
+        """Time from frame to frame; 0 where there is only one."""
+        return float(self.time_s[1] - self.time_s[0]) if len(self.time_s) > 1 else 0.0
 
     def between(self, first_s: float, last_s: float) -> NDArray[np.intp]:
         """Frames whose whole stretch lies between two times."""
@@ -67,7 +83,8 @@ def ringing(level: Level, background_s: tuple[float, float]) -> Ringing:
     length = max(int(_FRAME_S * level.rate_hz), 8)
     hop = max(length // 4, 1)
     if len(level.samples) < length:
-        return Ringing(np.zeros(0), np.zeros(0), np.zeros(0))
+        nothing = np.zeros(0)
+        return Ringing(nothing, nothing, np.zeros((0, 0)), nothing, nothing, nothing)
     frames = np.lib.stride_tricks.sliding_window_view(level.samples, length)[::hop]
     window = np.hanning(length + 1)[:-1]
     spectra: NDArray[np.complex128] = np.fft.rfft(frames * window, axis=1)[:, 1:]
@@ -76,7 +93,8 @@ def ringing(level: Level, background_s: tuple[float, float]) -> Ringing:
     quiet = background_power(power, time_s, background_s)
     ratio = power / quiet
     excess = np.maximum(power - 3 * quiet, 0).sum(axis=1)
-    return Ringing(time_s, ratio.max(axis=1), excess)
+    frequency_hz = np.arange(1, power.shape[1] + 1) * level.rate_hz / length
+    return Ringing(time_s, frequency_hz, power, quiet, ratio.max(axis=1), excess)
 
 
 def background_power(power: Real, time_s: Real, background_s: tuple[float, float]) -> Real:

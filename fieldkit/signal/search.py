@@ -25,8 +25,8 @@ class Found:
 
     parts: tuple[Component, ...]
     vain: tuple[complex, ...] = ()
-    unresolved: tuple[complex, ...] = ()
-    """Poles that may be two too near each other to be told apart."""
+    unresolved: tuple[tuple[complex, complex], ...] = ()
+    """Pairs of poles too near each other to be told apart; one component stands for both."""
 
 
 def search(traces: Sequence[Trace], tones: Sequence[Component], region: Region) -> Found:

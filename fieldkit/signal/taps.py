@@ -8,12 +8,13 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.clipping import clipped_samples
+from fieldkit.signal.clipping import clipped_at
 from fieldkit.signal.contact import LONGEST_GAP_S, Later, contact_end_s, later_blows, sharpest
 from fieldkit.signal.innovation import Level, levels
 from fieldkit.signal.modes import TapRecord
 from fieldkit.signal.onsets import Onset, onsets
 from fieldkit.signal.ringing import RINGS, Ringing, ringing
+from fieldkit.signal.swells import swells
 
 Real = NDArray[np.float64]
 
@@ -26,8 +27,12 @@ _SHORTEST_RECORD_S = 0.2
 _ENOUGH_DROP_DB = 9.0
 _ENOUGH_OVERLAPPED_DB = 4.0
 _ENOUGH_S = 3.0
+_ENOUGH_OVERLAPPED_S = 1.0
 _STILL_RINGS = 3 * RINGS
 _BLOCK_S = 0.05
+_RATTLE_S = 0.2
+"""Clipped ringing goes on for as long after the last sample at the rail."""
+_EDGE_S = 0.05
 
 
 @dataclass(frozen=True)
@@ -82,11 +87,14 @@ def find_taps(
         return TapSearch((), (0, len(samples)), 0.0)
     scales = levels(samples, rate_hz)
     duration_s = len(samples) / rate_hz
-    blows = grouped(confirmed(onsets(scales), scales), scales, duration_s)
+    sharp = confirmed(onsets(scales), scales)
+    soft = soft_onsets(scales, sharp)
+    blows = grouped(sorted([*sharp, *soft], key=lambda o: o.at_s), scales, duration_s)
     background_s = quiet_before(blows, duration_s)
     picture = ringing(spectral_level(scales), background_s)
     if background_s[1] - background_s[0] < _LEAST_QUIET_S:
         background_s = longest_quiet(blows, picture, background_s)
+    blows = without_rattle(blows, samples, rate_hz, full_scale)
     taps = tuple(read_blow(b, samples, rate_hz, scales, picture, full_scale) for b in blows)
     background = (int(background_s[0] * rate_hz), int(background_s[1] * rate_hz))
     return TapSearch(taps, background, noise_level(samples, rate_hz, background))
@@ -108,10 +116,13 @@ def cut(
 def confirmed(found: Sequence[Onset], scales: Sequence[Level]) -> list[Onset]:
     """Onsets at which a predictor fitted nearby fails too, each at its refined time."""
     out: list[Onset] = []
+    last_s = len(scales[0].samples) / scales[0].rate_hz - _EDGE_S
     for onset in found:
         slack_s = 4 / scales[onset.scale].rate_hz if onset.scale else 0.004
         place = sharpest(scales, onset.at_s, slack_s)
-        if place is not None and not (out and place.at_s - out[-1].at_s < slack_s):
+        if place is None or place.at_s > last_s:
+            continue
+        if not (out and place.at_s - out[-1].at_s < slack_s):
             out.append(replace(onset, at_s=place.at_s))
     return out
 
@@ -133,7 +144,7 @@ def all_later(
     first: Onset, found: Sequence[Onset], scales: Sequence[Level], limit_s: float
 ) -> list[Later]:
     """Later blows by either detector."""
-    close = later_blows(scales, first.at_s, limit_s)
+    close = later_blows(scales, first.at_s, limit_s) if first.rise_s == 0 else []
     for onset in found:
         after_s = onset.at_s - first.at_s
         new = all(abs(after_s - c.after_s) > 0.015 for c in close)
@@ -147,11 +158,35 @@ def spectral_level(scales: Sequence[Level]) -> Level:
     return [s for s in scales if s is scales[0] or s.rate_hz >= 800][-1]
 
 
+def soft_onsets(scales: Sequence[Level], sharp: Sequence[Onset]) -> list[Onset]:
+    """Blows that show only as a line that swells over the quietest moments."""
+    level = spectral_level(scales)
+    found = swells(level, ringing(level, (0.0, 0.0)), [o.at_s for o in sharp])
+    return [Onset(s.at_s, 0.0, len(scales) - 1, s.full_s - s.at_s) for s in found]
+
+
 def quiet_before(blows: Sequence[Blow], duration_s: float) -> tuple[float, float]:
     """What lies before the first blow."""
-    if not blows:
-        return 0.0, duration_s
-    return 0.0, max(blows[0].onset.at_s - _GUARD_S, 0.0)
+    return (0.0, max(blows[0].onset.at_s - _GUARD_S, 0.0)) if blows else (0.0, duration_s)
+
+
+def without_rattle(
+    blows: Sequence[Blow], samples: Real, rate_hz: float, full_scale: float | None
+) -> list[Blow]:
+    """Blows less those that only seem to be some because what rings then is clipped."""
+    kept: list[Blow] = []
+    clipped_until_s = -np.inf
+    for blow in blows:
+        at_s = blow.onset.at_s
+        if kept and at_s < clipped_until_s + _RATTLE_S:
+            kept[-1] = replace(kept[-1], limit_s=blow.limit_s, last=blow.last)
+        else:
+            kept.append(blow)
+        stretch = samples[int(at_s * rate_hz) : int(blow.limit_s * rate_hz)]
+        rails = clipped_at(stretch, full_scale)
+        if len(rails):
+            clipped_until_s = at_s + float(rails[-1]) / rate_hz
+    return kept
 
 
 def longest_quiet(
@@ -206,6 +241,8 @@ def read_blow(
 
 def contact_s(blow: Blow, begin_s: float, scales: Sequence[Level]) -> float:
     """Time from the onset to the start of the free decay."""
+    if blow.onset.rise_s > 0:
+        return blow.onset.rise_s
     finest = contact_end_s(scales[0], begin_s, blow.limit_s)
     coarse = 8 / scales[blow.onset.scale].rate_hz if blow.onset.scale > 0 else 0.0
     return max(finest, coarse)
@@ -213,7 +250,7 @@ def contact_s(blow: Blow, begin_s: float, scales: Sequence[Level]) -> float:
 
 def clip_reason(near: Real, full_scale: float | None) -> list[str]:
     """Clipped?"""
-    count = clipped_samples(near, full_scale)
+    count = len(clipped_at(near, full_scale))
     if not count:
         return []
     peak = float(np.abs(near).max())
@@ -238,7 +275,8 @@ def short_reason(blow: Blow, picture: Ringing, start_s: float, end_s: float) -> 
     length_s = end_s - start_s
     rings = picture.last(start_s, end_s) > _STILL_RINGS
     enough_db = _ENOUGH_DROP_DB if blow.last else _ENOUGH_OVERLAPPED_DB
-    too_little = length_s < _ENOUGH_S and picture.drop_db(start_s, end_s) < enough_db
+    enough_s = _ENOUGH_S if blow.last else _ENOUGH_OVERLAPPED_S
+    too_little = length_s < enough_s and picture.drop_db(start_s, end_s) < enough_db
     if length_s >= _SHORTEST_RECORD_S and not (rings and too_little):
         return []
     if blow.last:

@@ -3,12 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.covariance import PoleEstimate, pole_estimate
+from fieldkit.signal.covariance import Estimate, PoleEstimate, pole_estimate
 from fieldkit.signal.polish import Fitted
 from fieldkit.signal.tones import Line
 from fieldkit.signal.traces import Component, Trace, decay_energy
@@ -39,6 +39,8 @@ class Judged:
     """Empty for a mode."""
     steady: bool = False
     """Refused because it is a steady tone."""
+    two: bool = False
+    """May be two modes too near each other to be told apart."""
 
     @property
     def taps(self) -> int:
@@ -47,7 +49,10 @@ class Judged:
 
 
 def judged(
-    fitted: Sequence[Fitted], traces: Sequence[Trace], lines: Sequence[Line]
+    fitted: Sequence[Fitted],
+    traces: Sequence[Trace],
+    lines: Sequence[Line],
+    unresolved: Sequence[tuple[complex, complex]] = (),
 ) -> list[Judged]:
     """Every fitted component, judged."""
     gains = [tap_gains(f, traces) for f in fitted]
@@ -55,11 +60,37 @@ def judged(
     out = []
     for one, gain in zip(fitted, gains, strict=True):
         estimate = pole_estimate(one, (gain > _SEEN).astype(float))
+        twins = [pair for pair in unresolved if stands_for(one.part, pair)]
+        for pair in twins:
+            estimate = spanning(estimate, pair)
         steady = steadiness(one.part, estimate, traces, lines)
         energy = decay_energy(one.part, traces)
         reason = steady or objection(estimate) or lonely(gain, strength - energy)
-        out.append(Judged(one.part, estimate, energy, gain, reason, bool(steady)))
+        out.append(Judged(one.part, estimate, energy, gain, reason, bool(steady), bool(twins)))
     return out
+
+
+def stands_for(part: Component, pair: tuple[complex, complex]) -> bool:
+    """True for the component that stands for two unresolved ones."""
+    nearest = min(abs(pole - part.pole) for pole in pair)
+    return nearest < 2 * np.pi * part.half_power_hz
+
+
+def spanning(estimate: PoleEstimate, pair: tuple[complex, complex]) -> PoleEstimate:
+    """Uncertainties wide enough to hold both of two unresolved modes."""
+    natural_hz = [abs(pole) / (2 * np.pi) for pole in pair]
+    damping = [-pole.real / abs(pole) for pole in pair]
+    return replace(
+        estimate,
+        frequency_hz=reaching(estimate.frequency_hz, natural_hz),
+        damping_ratio=reaching(estimate.damping_ratio, damping),
+    )
+
+
+def reaching(estimate: Estimate, values: Sequence[float]) -> Estimate:
+    """The estimate with a 95 % interval that reaches all values."""
+    farthest = max(abs(value - estimate.value) for value in values)
+    return replace(estimate, sd=float(np.hypot(estimate.sd, farthest / 1.96)))
 
 
 def tap_gains(fitted: Fitted, traces: Sequence[Trace]) -> Real:

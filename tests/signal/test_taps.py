@@ -41,7 +41,7 @@ def test_every_blow_is_found_at_its_time(rate_hz: float) -> None:
     """Soft and hard blows, at rates from 400 Hz up, within a few milliseconds or samples."""
     signal = recorded(FIVE, rate_hz=rate_hz)
     search = find_taps(signal, rate_hz, full_scale=None)
-    assert times(search) == pytest.approx([b.at_s for b in FIVE], abs=max(0.01, 6 / rate_hz))
+    assert times(search) == pytest.approx([b.at_s for b in FIVE], abs=max(0.015, 6 / rate_hz))
     assert all(t.usable for t in search.taps)
 
 
@@ -49,7 +49,7 @@ def test_192_khz() -> None:
     """The highest rate a recorder gives works as the others do."""
     signal = recorded(FIVE[:2], rate_hz=192000.0)
     search = find_taps(signal, 192000.0, full_scale=None)
-    assert times(search) == pytest.approx([b.at_s for b in FIVE[:2]], abs=0.01)
+    assert times(search) == pytest.approx([b.at_s for b in FIVE[:2]], abs=0.015)
 
 
 @pytest.mark.parametrize(
@@ -63,7 +63,7 @@ def test_blows_are_found_in_a_background(background: str, exponent: float) -> No
     if background == "machine":
         signal += hum(len(signal), 8000.0, 24.63, [0.1, 0.08, 0.03, 0.02])
     search = find_taps(signal, 8000.0, full_scale=None)
-    assert times(search) == pytest.approx([b.at_s for b in FIVE], abs=0.01)
+    assert times(search) == pytest.approx([b.at_s for b in FIVE], abs=0.015)
 
 
 def test_free_decay_starts_after_the_contact() -> None:
