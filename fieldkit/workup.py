@@ -405,17 +405,19 @@ def excitation_of(
     return None
 
 
-def weights(job: Job) -> dict[str, WeightAnswer]:
-    """Sag and support loads by state."""
-    return {state.name: weight_answer(job.span, state) for state in (job.tapped, job.running)}
-
-
-def span_notes(job: Job) -> tuple[str, ...]:
-    """What the span model leaves open, in words for the user."""
+def at_rest(job: Job) -> tuple[dict[str, WeightAnswer], tuple[str, ...]]:
+    """Sag and support loads by state, and what the span leaves open, in words for the user."""
+    found: dict[str, WeightAnswer] = {}
+    notes: list[str] = []
     free = free_directions(job.span)
-    if not free:
-        return ()
-    return (
-        f"no support holds the span along {' and '.join(free)}: it is free to move that way, and "
-        "only the modes that remain are shown",
-    )
+    if free:
+        notes.append(
+            f"no support holds the span along {' and '.join(free)}: it is free to move that way, "
+            "and only the modes that remain are shown"
+        )
+    for state in (job.tapped, job.running):
+        try:
+            found[state.name] = weight_answer(job.span, state)
+        except Refusal as refusal:
+            notes.append(str(refusal))
+    return found, tuple(dict.fromkeys(notes))

@@ -164,8 +164,7 @@ def span(job_file: JobFile, as_json: AsJson = False) -> None:
         progress = output.progress()
         job = _load(job_file)
         states = workup.state_modes(job, progress)
-        weights = workup.weights(job)
-        notes = workup.span_notes(job)
+        weights, notes = workup.at_rest(job)
         output.clear_progress()
         output.answer(
             documents.span(states, weights, notes),

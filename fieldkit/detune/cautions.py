@@ -18,9 +18,16 @@ from fieldkit.detune.fixes import (
     SetMass,
     StiffenSupport,
 )
+from fieldkit.errors import Refusal
 from fieldkit.quantity import show
 from fieldkit.span.layout import Span, State, axis_vectors
-from fieldkit.span.static import ThermalGrowth, WeightAnswer, thermal_growth, weight_answer
+from fieldkit.span.static import (
+    ThermalGrowth,
+    WeightAnswer,
+    added_support_load,
+    thermal_growth,
+    weight_answer,
+)
 from fieldkit.span.supports import springs
 
 Array = NDArray[np.float64]
@@ -43,14 +50,18 @@ class Resting:
     span: Span
     tapped: State
     running: State
-    weight: WeightAnswer
     growth: ThermalGrowth
+    weight: WeightAnswer | None
+    weight_refused: str = ""
 
 
 def at_rest(span: Span, tapped: State, running: State) -> Resting:
     """Sag, support loads and thermal growth before any change."""
     growth = thermal_growth(span, tapped, running)
-    return Resting(span, tapped, running, weight_answer(span, running), growth)
+    try:
+        return Resting(span, tapped, running, growth, weight_answer(span, running))
+    except Refusal as refusal:
+        return Resting(span, tapped, running, growth, None, str(refusal))
 
 
 def cautions(
@@ -80,6 +91,8 @@ def _stiffness_needed(change: Change, least_share: float, goal: Goal, units: str
 def _weight(change: Change, resting: Resting, units: str) -> list[str]:
     """Sag and support load before and after, filled and running."""
     span, before = resting.span, resting.weight
+    if before is None:
+        return [f"sag and support loads could not be computed: {resting.weight_refused}"]
     after = weight_answer(change.apply(span), resting.running)
     found = []
     if abs(after.sag_m - before.sag_m) > max(0.05e-3, 0.1 * before.sag_m):
@@ -87,20 +100,39 @@ def _weight(change: Change, resting: Resting, units: str) -> list[str]:
             f"sag under weight goes from {_small(before.sag_m, units)} to "
             f"{_small(after.sag_m, units)}"
         )
-    loads = [float(np.linalg.norm(load)) for _, load in after.support_loads]
-    held = _support_number(change, span)
-    if held is not None and loads[held] >= NOTABLE_LOAD_N:
-        found.append(
-            f"this support carries about {loads[held] / 1e3:.2g} kN of weight if it is set with "
-            "the line empty of strain; shim it so that it neither lifts nor hangs"
-        )
+    if isinstance(change, AddSupport):
+        return found + _new_support_load(change, resting, units)
+    if isinstance(change, MoveSupport | StiffenSupport):
+        load = float(np.linalg.norm(after.support_loads[change.index][1]))
+        if load >= NOTABLE_LOAD_N:
+            found.append(f"this support carries about {_force(load, units)} of weight")
     return found
 
 
-def _support_number(change: Change, span: Span) -> int | None:
-    if isinstance(change, AddSupport):
-        return len(span.supports)
-    return change.index if isinstance(change, MoveSupport | StiffenSupport) else None
+def _new_support_load(change: AddSupport, resting: Resting, units: str) -> list[str]:
+    """What a support set without load in the tapped state comes to carry in the running one."""
+    if not change.vertical_n_per_m:
+        return []
+    load = added_support_load(
+        resting.span,
+        resting.tapped,
+        resting.running,
+        change.at_m,
+        "vertical",
+        change.vertical_n_per_m,
+    )
+    filling, heat = float(np.linalg.norm(load.filling_n)), float(np.linalg.norm(load.heat_n))
+    if max(filling, heat) < NOTABLE_LOAD_N:
+        return []
+    return [
+        f"set snug and free of load as {resting.tapped.name}, it comes to carry about "
+        f"{_force(filling, units)} from filling and {_force(heat, units)} from heat, "
+        f"{resting.running.name}; shim it so that it neither lifts nor hangs"
+    ]
+
+
+def _force(newtons: float, units: str) -> str:
+    return show(newtons, "force", units, 2)
 
 
 def _heat(change: Change, resting: Resting, units: str) -> list[str]:

@@ -18,6 +18,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.detune.unknowns import Unknown, stretches
+from fieldkit.errors import Refusal
 from fieldkit.span.layout import PointMass, Span, State
 from fieldkit.span.modes import TWIST, direction_shares, solve
 from fieldkit.span.structure import (
@@ -321,16 +322,25 @@ def _basis(terms: FullTerms, unknowns: Sequence[Unknown], up_to_hz: float) -> li
     middle = np.zeros(len(unknowns))
     stiffness, mass = _full_at(terms, unknowns, middle)
     _, vectors = solve(stiffness, mass, up_to_hz=BASIS_RANGE * up_to_hz)
-    soft = np.array([SOFT_Z if u.role == "spring" else 0.0 for u in unknowns])
-    soft_stiffness, _ = _full_at(terms, unknowns, soft)
-    _, soft_vectors = solve(soft_stiffness, mass, up_to_hz=up_to_hz)
-    columns = [_felt(terms, vectors), _felt(terms, soft_vectors)]
+    columns = [_felt(terms, vectors), *_soft_modes(terms, unknowns, mass, up_to_hz)]
     if terms.ports:
         shifted = csc_matrix(stiffness + SHIFT_RAD2_PER_S2 * mass)
         columns.append(splu(shifted).solve(np.concatenate(terms.ports).T))
     every = np.concatenate(columns, axis=1)
     parts = [_orthonormal(np.where(own[:, None], every, 0.0), mass) for own in _uncoupled(terms)]
     return [part for part in parts if part.shape[1]]
+
+
+def _soft_modes(
+    terms: FullTerms, unknowns: Sequence[Unknown], mass: Sparse, up_to_hz: float
+) -> list[Array]:
+    """Modes with soft springs; none where a hot line would buckle on them."""
+    soft = np.array([SOFT_Z if u.role == "spring" else 0.0 for u in unknowns])
+    stiffness, _ = _full_at(terms, unknowns, soft)
+    try:
+        return [_felt(terms, solve(stiffness, mass, up_to_hz=up_to_hz)[1])]
+    except Refusal:
+        return []
 
 
 def _uncoupled(terms: FullTerms) -> list[NDArray[np.bool_]]:

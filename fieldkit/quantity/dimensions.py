@@ -56,6 +56,7 @@ DIMENSIONS: dict[str, Dimension] = {
         "a shaft speed", "Hz", "'1480 rpm' or '25 Hz'", 1e4,
         bare_from=None, bare_units=("rpm", "Hz"),
     ),
+    "force": _positive("a force", "N", "'2 kN' or '450 lbf'", 1e9),
     "stiffness": _positive(
         "a stiffness", "N/m", "'2 MN/m', '2e6 N/m' or '11 kip/in'", 1e15,
         bare_from=1e3, bare_units=("MN/m", "N/m"),

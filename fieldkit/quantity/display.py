@@ -13,6 +13,7 @@ _Steps = tuple[tuple[float, str], ...]
 _UNITS: dict[str, tuple[_Steps, _Steps]] = {
     "length": (((0.5, "m"), (1e-3, "mm"), (0.0, "um")), ((12 * _INCH_M, "ft"), (0.0, "in"))),
     "mass": (((0.1, "kg"), (0.0, "g")), ((0.0, "lb"),)),
+    "force": (((100.0, "kN"), (0.0, "N")), ((0.0, "lbf"),)),
     "frequency": (((1e4, "kHz"), (0.0, "Hz")),) * 2,
     "speed": (((0.0, "rpm"),),) * 2,
     "stiffness": (
