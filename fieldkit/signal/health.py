@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.clipping import clipped_samples
+from fieldkit.signal.clipping import clipped_at
 
 _LEVEL_RATIO = 1.5
 _SHARES = 4
@@ -13,7 +13,7 @@ _SHARES = 4
 
 def clipping(signal: NDArray[np.float64], full_scale: float | None = None) -> tuple[str, ...]:
     """A warning where a signal (n,) rests on a rail, at its full scale or below it."""
-    count = clipped_samples(signal, full_scale)
+    count = len(clipped_at(signal, full_scale))
     if not count:
         return ()
     return (
