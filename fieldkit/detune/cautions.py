@@ -84,7 +84,7 @@ def _stiffness_needed(change: Change, least_share: float, goal: Goal, units: str
     least = show(least_share * drawn, "stiffness", units, 2)
     return (
         f"clamp, bracket and what they stand on together must give at least {least}: below that "
-        f"the chance falls under {goal.chance:.0%}"
+        f"the chance falls under {100 * goal.chance:.0f} %"
     )
 
 
@@ -188,7 +188,8 @@ def _mass(change: Change, span: Span, units: str) -> list[str]:
         share = change.mass_kg / pipe_mass_kg(span)
         heavy = " - heavy for this line: check the supports" if share > HEAVY_SHARE else ""
         return [
-            f"the mass is {share:.0%} of the pipe's own{heavy}; clamp it so that it cannot slip"
+            f"the mass is {100 * share:.0f} % of the pipe's own{heavy}; clamp it so that it cannot "
+            "slip"
         ]
     if isinstance(change, SetMass):
         if change.mass_kg == 0:

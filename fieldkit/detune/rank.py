@@ -233,15 +233,15 @@ def _warnings(
     best = max((v.chance for v in verdicts), default=0.0)
     if best < goal.chance:
         found.append(
-            f"no single change reaches the wanted chance of {goal.chance:.0%} (best {best:.0%}); "
-            "what else helps: keep the machine out of part of its speed range, add damping, fit a "
+            f"no single change reaches the wanted chance of {100 * goal.chance:.0f} % "
+            f"(best {100 * best:.0f} %); what else helps: keep the machine out of part of its speed range, add damping, fit a "
             "tuned absorber, combine two changes, or narrow the doubt with a better tap"
         )
     worst = max((j.correction for j in judged), default=0.0)
     if worst > judge.WORST_DISAGREEMENT:
         found.append(
-            f"the quick model missed the full re-solve by up to {worst:.1%}; the figures shown are "
-            "scaled to the full re-solve"
+            f"the quick model missed the full re-solve by up to {100 * worst:.1f} %; the figures "
+            "shown are scaled to the full re-solve"
         )
     if all(band.avoid_low_hz > goal.up_to_hz for band in forbidden):
         found.append(

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from fieldkit.detune.verdict import Detuning
 from fieldkit.sheet import tables
-from fieldkit.sheet.plain import clean, paragraph
+from fieldkit.sheet.plain import clean, paragraph, percent
 from fieldkit.workup import Workup, excitation_of
 
 RESULTS_CAUTION = (
@@ -47,7 +47,7 @@ def _resonance(workup: Workup) -> list[str]:
         )
     ]
     said = said or ["  No computed mode is more likely in a band than out of it."]
-    said += paragraph(f"Chance that every mode is clear now: {detuning.chance_now:.0%}.", 2)
+    said += paragraph(f"Chance that every mode is clear now: {percent(detuning.chance_now)}.", 2)
     return said + _running_lines(workup)
 
 
@@ -88,10 +88,10 @@ def _cure(workup: Workup) -> list[str]:
     said = []
     if best.chance < goal:
         said += paragraph(
-            f"No single change reaches the wanted chance of {goal:.0%}. The best found:", 2
+            f"No single change reaches the wanted chance of {percent(goal)}. The best found:", 2
         )
     said += tables.fix(best)
-    others = [f"chance {fix.chance:.0%}: {fix.summary}" for fix in detuning.fixes[1:4]]
+    others = [f"chance {percent(fix.chance)}: {fix.summary}" for fix in detuning.fixes[1:4]]
     if others:
         said += ["", "  Else"]
         said += [line for other in others for line in paragraph(other, 4, "- ")]

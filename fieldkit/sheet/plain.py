@@ -15,6 +15,13 @@ def clean(text: str) -> str:
     )
 
 
+def percent(chance: float) -> str:
+    """A chance as people say it; never quite certain."""
+    if chance >= 0.995:
+        return ">99 %"
+    return "<1 %" if chance < 0.01 else f"{100 * chance:.0f} %"
+
+
 def table(head: Sequence[str], rows: Sequence[Sequence[str]], indent: int = 2) -> list[str]:
     """Columns as wide as their widest cell; the first column to the left, numbers to the right."""
     cells = [list(head), *([clean(cell) for cell in row] for row in rows)]

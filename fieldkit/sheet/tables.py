@@ -9,7 +9,7 @@ from fieldkit.detune.match import Match
 from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.job.document import Job
 from fieldkit.quantity import show
-from fieldkit.sheet.plain import clean, paragraph, table
+from fieldkit.sheet.plain import clean, paragraph, percent, table
 from fieldkit.signal.modes import MeasuredMode
 from fieldkit.span.static import WeightAnswer
 from fieldkit.workup import RunningReading, StateModes, TapReading, excitation_of
@@ -137,7 +137,7 @@ def match(found: Match, units: str) -> list[str]:
 
 def detune(found: Detuning, units: str) -> list[str]:
     """Bands, modes as they are, ranked changes."""
-    lines = [f"To stay clear of, with a margin of {found.margin:.0%}, Hz"]
+    lines = [f"To stay clear of, with a margin of {100 * found.margin:.0f} %, Hz"]
     lines += table(
         ("excitation", "from", "to", "avoid from", "to"),
         [
@@ -152,7 +152,7 @@ def detune(found: Detuning, units: str) -> list[str]:
         ],
     )
     lines += ["", f"Modes now, {found.state}, Hz", *_judged_table(found.modes)]
-    lines += ["", f"Chance that every mode is clear now: {found.chance_now:.0%}", ""]
+    lines += ["", f"Chance that every mode is clear now: {percent(found.chance_now)}", ""]
     lines += ["Changes, best first"]
     for verdict in found.fixes:
         lines += fix(verdict)
@@ -163,11 +163,13 @@ def fix(verdict: Verdict) -> list[str]:
     """One change with its chance, what it does to the modes, and its cautions."""
     modes = ", ".join(f"{mode.median_hz:.1f}" for mode in verdict.modes_after[:8])
     nearest = (
-        f"nearest {verdict.nearest.band}, {verdict.nearest.separation:.0%} away"
+        f"nearest {verdict.nearest.band}, {100 * verdict.nearest.separation:.0f} % away"
         if verdict.nearest.band
         else "no band near"
     )
-    lines = paragraph(f"chance {verdict.chance:.0%}: {verdict.summary}", 2, f"{verdict.rank:2d}. ")
+    lines = paragraph(
+        f"chance {percent(verdict.chance)}: {verdict.summary}", 2, f"{verdict.rank:2d}. "
+    )
     lines += paragraph(f"modes after {modes} Hz; {nearest}", 6)
     for caution in verdict.cautions:
         lines += paragraph(caution, 6, "- ")
@@ -226,7 +228,7 @@ def _judged_table(modes: Sequence[JudgedMode]) -> list[str]:
                 f"{mode.low_hz:.2f}",
                 f"{mode.high_hz:.2f}",
                 mode.direction,
-                f"{mode.chance_clear:.0%}",
+                f"{percent(mode.chance_clear)}",
             )
             for mode in modes
         ],

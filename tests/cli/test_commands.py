@@ -10,6 +10,7 @@ from pathlib import Path
 import pytest
 
 from fieldkit.cli.samples import sample_jobs
+from fieldkit.sheet.plain import percent
 from tests.cli.running import fieldkit
 
 JOBS = {path.parent.name: path for path in sample_jobs()}
@@ -113,7 +114,7 @@ def test_the_advice_is_printed_where_there_is_no_terminal():
     best = detuned("glycol-booster").document["fixes"][0]
     flat = " ".join(ran.stdout.split())
     assert best["summary"] in flat
-    assert f"chance {best['chance']:.0%}" in flat
+    assert f"chance {percent(best['chance'])}" in flat
     assert "local code" in flat
 
 

@@ -8,6 +8,7 @@ from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.excitation import Excitation, Goal
 from fieldkit.job.document import Job
 from fieldkit.sheet import advice, documents, tables
+from fieldkit.sheet.plain import percent
 from fieldkit.workup import StepRefusal, Workup
 from tests.detune.lines import RUNNING, TAPPED, booster, booster_answer
 
@@ -35,7 +36,7 @@ def test_the_cure_and_its_chance_are_in_the_advice():
     said = text(workup())
     best = workup().detuning.fixes[0]
     assert best.summary in said
-    assert f"chance {best.chance:.0%}" in said
+    assert f"chance {percent(best.chance)}" in said
 
 
 def test_the_resonance_is_named_with_its_source():
@@ -68,7 +69,7 @@ def test_no_good_fix_is_said_plainly():
     work = workup()
     weak = replace(work.detuning.fixes[0], chance=0.4)
     said = text(replace(work, detuning=replace(work.detuning, fixes=(weak,))))
-    assert "No single change reaches the wanted chance of 90%" in said
+    assert "No single change reaches the wanted chance of 90 %" in said
 
 
 def test_tables_and_documents_hold_the_same_fixes():
