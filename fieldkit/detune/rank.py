@@ -234,8 +234,9 @@ def _warnings(
     if best < goal.chance:
         found.append(
             f"no single change reaches the wanted chance of {100 * goal.chance:.0f} % "
-            f"(best {100 * best:.0f} %); what else helps: keep the machine out of part of its speed range, add damping, fit a "
-            "tuned absorber, combine two changes, or narrow the doubt with a better tap"
+            f"(best {100 * best:.0f} %); what else helps: keep the machine out of part of its speed "
+            "range, add damping, fit a tuned absorber, combine two changes, or narrow the doubt "
+            "with a better tap"
         )
     worst = max((j.correction for j in judged), default=0.0)
     if worst > judge.WORST_DISAGREEMENT:
