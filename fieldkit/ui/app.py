@@ -53,7 +53,7 @@ class FieldkitApp(Editing):
                 tooltip="Take the last change of the job back"),
         Binding("r", "rerun", "Rework", show=False, id="work.again",
                 tooltip="Work the whole job out again"),
-        Binding("escape", "stop", "Stop", show=False, id="work.stop",
+        Binding("escape", "stop", "Stop", show=False, priority=True, id="work.stop",
                 tooltip="Stop what is being worked out"),
         Binding("t", "toggle_light", "Light/dark", show=False, id="look.light",
                 tooltip="Light or dark"),
@@ -90,7 +90,7 @@ class FieldkitApp(Editing):
 
     async def go_on(self) -> None:
         """The other views, then the job."""
-        switcher = self.screen_stack[0].query_one("#views", ContentSwitcher)
+        switcher = self.base.query_one("#views", ContentSwitcher)
         for view in VIEWS[1:]:
             await switcher.add_content(view(), id=view.NAME)
         self.ready = True
@@ -108,11 +108,18 @@ class FieldkitApp(Editing):
 
     def view(self, name: str) -> View:
         """One of the six."""
-        return self.screen_stack[0].query_one(f"#{name}", View)
+        return self.base.query_one(f"#{name}", View)
+
+    @property
+    def base(self) -> Screen[object]:
+        """The screen under every window."""
+        return self.screen_stack[0]
 
     def refresh_desk(self) -> None:
         """Hand the desk to the strip, the view on screen, the ruler and the reading."""
-        base = self.screen_stack[0]
+        if not self.screen_stack:
+            return  # a thread's last word while the app closes
+        base = self.base
         unsaved = self.open_job is not None and self.open_job.unsaved
         base.query_one(Strip).show(self.desk, self.here, unsaved)
         if self.ready:
@@ -131,7 +138,8 @@ class FieldkitApp(Editing):
 
     def say_progress(self, doing: str, fraction: float | None = None) -> None:
         """Activity at the right end of the title line."""
-        self.screen_stack[0].query_one(Strip).say(doing, fraction)
+        if self.screen_stack:
+            self.base.query_one(Strip).say(doing, fraction)
 
     def on_step_picked(self, message: Step.Picked) -> None:
         """A click on the strip."""
@@ -142,9 +150,15 @@ class FieldkitApp(Editing):
         self.here = name
         if not self.ready:
             return
-        self.screen_stack[0].query_one("#views", ContentSwitcher).current = name
+        self.base.query_one("#views", ContentSwitcher).current = name
         self.refresh_desk()
         self.view(name).focus_home()
+
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """Escape belongs to windows and plots while there is nothing to stop."""
+        if action == "stop":
+            return self.desk.working and len(self.screen_stack) == 1
+        return super().check_action(action, parameters)
 
     def action_stop(self) -> None:
         """Stop the work under way."""

@@ -94,7 +94,9 @@ def _seen_in(desk: Desk, mode: MeasuredMode) -> str:
         if (reading.entry.direction, reading.entry.at_m) == (mode.direction, mode.at_m)
     )
     few = ", too few to trust its damping" if mode.taps < 3 else ""
-    return f"seen in {mode.taps} of {usable} usable taps{few}"
+    remarks = len(desk.workup.evidence.warnings) if desk.workup else 0
+    more = f"; {count(remarks, 'remark')} under x" if remarks else ""
+    return f"seen in {mode.taps} of {usable} usable taps{few}{more}"
 
 
 def _one_direction(modes: tuple[MeasuredMode, ...]) -> bool:

@@ -38,21 +38,23 @@ def warm() -> None:
 
 def open_job(path: Path, post: Post) -> None:
     """Read a job file."""
-    from fieldkit.job.store import load_text
-
     try:
+        from fieldkit.job.store import load_text
+
         text = load_text(path)
         post(say.JobOpened(text, text.job()))
-    except (FieldkitError, OSError) as error:
+    except FieldkitError as error:
         post(say.OpenFailed(path, str(error)))
+    except Exception as error:
+        post(say.OpenFailed(path, unexpected(error)))
 
 
 def work_up(job: Job, ticket: int, post: Post, stop: Stop) -> None:
     """The computed modes first, for they are quick; then the whole chain."""
-    from fieldkit import workup
-
     progress = Progress(lambda doing, share: post(say.WorkStep(ticket, doing, share)), stop)
     try:
+        from fieldkit import workup
+
         post(_span_modes(job, ticket))
         post(say.WorkupReady(ticket, workup.run(job, progress)))
     except Cancelled:

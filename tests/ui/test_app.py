@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import subprocess
+import sys
 import threading
 from collections.abc import AsyncIterator, Callable
 from contextlib import asynccontextmanager
@@ -67,6 +69,16 @@ def rows_of(app: FieldkitApp, selector: str) -> list[list[str]]:
 
 def said(app: FieldkitApp) -> list[str]:
     return [notification.message for notification in app._notifications]
+
+
+def test_the_app_is_loaded_without_the_slow_libraries() -> None:
+    """The first paint must not wait for them."""
+    code = (
+        "import sys, fieldkit.ui.app; "
+        "print([m for m in ('scipy', 'pint', 'pydantic', 'fluids', 'tomlkit') if m in sys.modules])"
+    )
+    done = subprocess.run([sys.executable, "-c", code], capture_output=True, text=True, check=True)
+    assert done.stdout.strip() == "[]"
 
 
 @pytest.mark.parametrize("size", SIZES)
@@ -420,6 +432,7 @@ async def test_escape_stops_the_work_and_says_so(
         await until(pilot, slow.started.is_set)
         await until(pilot, lambda: "esc stops" in text_of(app, "#activity"))
         assert app.query_one("#step-match", Step).state is StepState.WORKING
+        app.query_one("#tap-spectrum").focus()
         await pilot.press("escape")
         slow.go.set()
         await until(pilot, lambda: app.desk.stopped)
@@ -443,6 +456,23 @@ async def test_a_result_that_comes_too_late_is_dropped(
         await settled(pilot)
         assert app.desk.workup is not None
         assert app.desk.workup.job.title == "Another title"
+
+
+async def test_escape_closes_a_window_and_leaves_the_work_alone(
+    app: FieldkitApp, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    slow = Slow()
+    monkeypatch.setattr(chain, "run", slow)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await until(pilot, slow.started.is_set)
+        await pilot.press("question_mark")
+        await pilot.pause()
+        await pilot.press("escape")
+        await pilot.pause()
+        assert not isinstance(app.screen, TextScreen)
+        slow.go.set()
+        await until(pilot, lambda: app.desk.workup is not None)
+        await settled(pilot)
 
 
 async def test_a_fault_in_the_chain_is_a_sentence_not_a_traceback(
