@@ -28,12 +28,14 @@ _LOOK_S = 0.42
 _LEAST_LOOK = 200
 """Samples a predictor is fitted to at the coarse levels."""
 _TRIMS = 4
+_SHARP_ENOUGH = 30.0
 _BLOCK_S = 0.02
 _OVER_QUIET = 4.0
 _KEEP = 0.9
 _OVER_TYPICAL = 6.5
 _OVER_FORCE = 0.03
 _FOOT = 0.1
+_STRIDE_S = 0.25
 _SAME_S = 0.015
 _OVER_PRECEDING = 2.5
 _LEAST_SHARE = 0.12
@@ -73,6 +75,17 @@ class Errors:
     order: int
     """Of the predictor: for so many samples after a blow it errs still."""
 
+    @property
+    def smeared_s(self) -> float:
+        """How long after a blow no second one can be told."""
+        return max(SHORTEST_GAP_S, (self.order + _SMEARED) / self.rate_hz)
+
+    @property
+    def first(self) -> float:
+        """Largest error at the blow itself."""
+        near = np.abs(self.time_s) < self.smeared_s
+        return float(self.size[near].max(initial=0.0))
+
 
 def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place | None:
     """Where, within a slack of a supposed blow, prediction fails most; None where nowhere.
@@ -82,11 +95,13 @@ def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place |
     """
     best: Place | None = None
     for level in levels:
-        errors = prediction_errors(level, about_s, np.inf, backwards=False, slack_s=slack_s)
+        errors = prediction_errors(level, about_s, np.inf, slack_s=slack_s)
         place = first_failure(errors, about_s, slack_s) if errors is not None else None
         if place is not None and (best is None or place.sharpness > best.sharpness):
             at_s = best.at_s if best is not None else place.at_s
             best = Place(at_s, place.sharpness)
+        if best is not None and best.sharpness > _SHARP_ENOUGH:
+            break
     return best
 
 
@@ -100,6 +115,32 @@ def first_failure(errors: Errors, about_s: float, slack_s: float) -> Place | Non
         return None
     first = int(np.argmax(size > max(_OVER_TYPICAL, _FOOT * peak)))
     return Place(about_s + float(errors.time_s[first]), peak)
+
+
+def overlooked(level: Level, ringing_s: Real, known_s: Sequence[float]) -> list[float]:
+    """Times of blows amid loud ringing that no comparison with the whole recording shows.
+
+    ``ringing_s`` (f,) are the moments that ring. Every quarter of a second is compared with a
+    predictor fitted to it alone.
+    """
+    found: list[float] = []
+    for about_s in np.arange(0.0, len(level.samples) / level.rate_hz, _STRIDE_S):
+        if not np.any(np.abs(ringing_s - about_s) < _STRIDE_S):
+            continue
+        errors = prediction_errors(level, float(about_s), np.inf, orders=_ORDERS[-1:])
+        if errors is None:
+            continue
+        inside = (errors.time_s > 0) & (errors.time_s <= _STRIDE_S)
+        first = int(np.argmax(inside & (errors.size > SHARP)))
+        at_s = float(about_s + errors.time_s[first])
+        if inside[first] and errors.size[first] > SHARP and far_from(at_s, [*known_s, *found]):
+            found.append(at_s)
+    return found
+
+
+def far_from(at_s: float, known_s: Sequence[float]) -> bool:
+    """True where no known blow is so near that this is part of it."""
+    return all(not -0.05 < at_s - known < LONGEST_GAP_S for known in known_s)
 
 
 def contact_end_s(level: Level, onset_s: float, until_s: float) -> float:
@@ -118,9 +159,8 @@ def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list
     """Second blows at any level, in order of time."""
     found: list[Later] = []
     for level in levels:
-        errors = prediction_errors(level, onset_s, until_s, backwards=False)
-        fresh = jumps(errors) if errors is not None else []
-        for one in fresh:
+        errors = prediction_errors(level, onset_s, until_s)
+        for one in jumps(errors) if errors is not None else []:
             same = [k for k in found if abs(one.after_s - k.after_s) < _SAME_S]
             found = [k for k in found if k not in same]
             found.append(max([one, *same], key=lambda k: k.share))
@@ -132,8 +172,9 @@ def prediction_errors(
     onset_s: float,
     until_s: float,
     *,
-    backwards: bool,
+    backwards: bool = False,
     slack_s: float = 0.0,
+    orders: Sequence[int] = _ORDERS,
 ) -> Errors | None:
     """Errors from a little before the blow on; None where the stretch is too short to tell."""
     rate = level.rate_hz
@@ -142,10 +183,10 @@ def prediction_errors(
     last = min(int(min(onset_s + look_s, until_s) * rate), len(level.samples))
     last = first + ringing_part(level.samples[first:last], rate)
     stretch = level.samples[first:last]
-    orders = [order for order in _ORDERS if order <= len(stretch) // 6]
-    if not orders:
+    usable = [order for order in orders if order <= len(stretch) // 6]
+    if not usable:
         return None
-    size, order = sparing_errors(stretch[::-1] if backwards else stretch, orders)
+    size, order = sparing_errors(stretch[::-1] if backwards else stretch, usable)
     time_s = (first + np.arange(len(size))) / rate - onset_s
     return Errors(time_s, size[::-1] if backwards else size, rate, order)
 
@@ -200,13 +241,11 @@ def robust_errors(stretch: Real, order: int) -> tuple[Real, float]:
 
 def jumps(errors: Errors) -> list[Later]:
     """Sudden rises of the forward error after the first blow, each against the first."""
-    smeared_s = max(SHORTEST_GAP_S, (errors.order + _SMEARED) / errors.rate_hz)
-    at_first = (errors.time_s > -smeared_s) & (errors.time_s < smeared_s)
-    first = float(errors.size[at_first].max(initial=0.0))
+    first = errors.first
     near = max(int(0.0015 * errors.rate_hz), 1)
     wide = max(int(0.006 * errors.rate_hz), 3)
     loud = errors.size > max(SHARP, _LEAST_SHARE * first)
-    inside = (errors.time_s > smeared_s) & (errors.time_s < LONGEST_GAP_S)
+    inside = (errors.time_s > errors.smeared_s) & (errors.time_s < LONGEST_GAP_S)
     ahead = np.lib.stride_tricks.sliding_window_view(np.pad(errors.size, (0, wide)), wide + 1)
     peak = ahead.max(axis=1)
     found: list[Later] = []

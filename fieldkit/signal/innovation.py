@@ -88,7 +88,7 @@ def innovation(signal: Real, rate_hz: float, order: int) -> Innovation:
 
 def levelled(signal: Real, rate_hz: float) -> Real:
     """The signal over its short-time level, so that a loud decay does not rule the predictor."""
-    width = max(int(0.03 * rate_hz), 8)
+    width = min(max(int(0.03 * rate_hz), 8), len(signal))
     power = np.convolve(signal**2, np.ones(width) / width, mode="same")
     floor = max(float(np.median(power)) * 1e-3, float(power.max(initial=0.0)) * 1e-12, 1e-300)
     return np.asarray(signal / np.sqrt(power + floor))

@@ -17,6 +17,8 @@ from fieldkit.signal.tones import tone_components
 from fieldkit.signal.traces import Component
 from fieldkit.signal.verdicts import Judged, judged
 
+_LEAST_SAMPLES = 64
+
 
 @dataclass(frozen=True)
 class TapRecord:
@@ -85,12 +87,13 @@ def estimate_modes(
     weighted by the background. Frequencies are undamped natural frequencies. Raises Refusal where
     there is no record.
     """
-    if not records:
+    long_enough = [r for r in records if len(r.samples) >= _LEAST_SAMPLES and np.any(r.samples)]
+    if not long_enough:
         raise Refusal(
             "no usable tap in these recordings",
             "record at least three taps with a quiet second before the first and let each ring out",
         )
-    ready = prepare(records, high_hz)
+    ready = prepare(long_enough, high_hz)
     found = resolved(ready)
     if not ready.has_background:
         ready = ready.with_noise_from(found.parts)

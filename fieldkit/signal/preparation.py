@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from fieldkit.signal.background import NoiseDensity, noise_density
 from fieldkit.signal.decimation import decimate
 from fieldkit.signal.scan import Region
-from fieldkit.signal.tones import Line, background_lines
+from fieldkit.signal.tones import Line, background_lines, dies_away
 from fieldkit.signal.traces import Component, Trace, residual
 
 Real = NDArray[np.float64]
@@ -22,6 +22,7 @@ _ANALYSED_OVER_REPORTED = 3.0
 _USABLE_OF_RATE = 0.45
 _LEAST_BACKGROUND_S = 0.5
 _LONGEST_BACKGROUND_S = 30.0
+_FAR_LOWER = 0.5
 _RANGE_DB = 100.0
 """Noise is never taken as lower than this below the peak of the trace."""
 
@@ -70,7 +71,7 @@ def prepare(records: Sequence[Record], high_hz: float) -> Prepared:
     top_hz = min(
         _ANALYSED_OVER_REPORTED * high_hz, min(_USABLE_OF_RATE * r.rate_hz for r in records)
     )
-    lowered = [lower(r.samples, r.rate_hz, high_hz, top_hz) for r in records]
+    lowered = [lower(r.samples - rest(r), r.rate_hz, high_hz, top_hz) for r in records]
     quiet = {id(r.background): quiet_stretch(r, high_hz, top_hz) for r in records}
     noises = {key: noise_density([s], rate_hz) for key, (s, rate_hz) in quiet.items()}
     has_background = all(n is not None for n in noises.values())
@@ -82,6 +83,12 @@ def prepare(records: Sequence[Record], high_hz: float) -> Prepared:
     region = Region(1 / longest, top_hz, 1 / longest)
     lines = lines_of(quiet[id(records[0].background)], noises[id(records[0].background)], top_hz)
     return Prepared(traces, lines, region, has_background)
+
+
+def rest(record: Record) -> float:
+    """What the sensor reads at rest."""
+    quiet = record.background if len(record.background) > 0 else record.samples
+    return float(np.mean(quiet))
 
 
 def lower(samples: Real, rate_hz: float, high_hz: float, top_hz: float) -> tuple[Real, float]:
@@ -96,16 +103,23 @@ def lower(samples: Real, rate_hz: float, high_hz: float, top_hz: float) -> tuple
 
 def quiet_stretch(record: Record, high_hz: float, top_hz: float) -> tuple[Real, float]:
     """The background at the analysis rate: its last part, empty where it is too short to use."""
-    samples = record.background[-int(_LONGEST_BACKGROUND_S * record.rate_hz) :]
+    samples = record.background[-int(_LONGEST_BACKGROUND_S * record.rate_hz) :] - rest(record)
     if len(samples) < _LEAST_BACKGROUND_S * record.rate_hz:
         return np.zeros(0), record.rate_hz
     return lower(samples, record.rate_hz, high_hz, top_hz)
 
 
 def trace_noise(known: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:
-    """The background's density, else that between the lines of the trace itself."""
-    noise = known or noise_density([samples], rate_hz, whole=True)
-    return floored(noise, samples, rate_hz)
+    """The background's density; where that between the lines of the trace is far lower, this one.
+
+    A background that still rings from an earlier blow would hide the very modes that ring in it.
+    """
+    own = noise_density([samples], rate_hz, whole=True)
+    if known is None or own is None:
+        return floored(known or own, samples, rate_hz)
+    density = known.at(own.frequency_hz)
+    lower = np.where(own.density < _FAR_LOWER * density, own.density, density)
+    return floored(replace(own, density=lower), samples, rate_hz)
 
 
 def floored(noise: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:
@@ -122,4 +136,8 @@ def lines_of(
 ) -> tuple[Line, ...]:
     """Steady lines of a background, none where there is no background."""
     samples, rate_hz = quiet
-    return background_lines(samples, rate_hz, noise, top_hz) if noise is not None else ()
+    if noise is None:
+        return ()
+    trace = Trace(samples, rate_hz, floored(noise, samples, rate_hz))
+    lines = background_lines(samples, rate_hz, noise, top_hz)
+    return tuple(line for line in lines if not dies_away(line, trace))

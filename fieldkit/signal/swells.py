@@ -12,8 +12,10 @@ from fieldkit.signal.ringing import Ringing
 
 Real = NDArray[np.float64]
 
-_JUMP = 50.0
-"""Power just after over the highest of the seconds before and over the background's, in one bin."""
+_JUMP = 8.0
+"""Power just after over the highest of the seconds before, in one bin."""
+_OVER_QUIET = 35.0
+"""Power just after over the background's."""
 _APART_S = 0.4
 _MEMORY_S = 2.0
 """Two lines that beat swell again within this time, but not above where they were."""
@@ -37,7 +39,7 @@ def swells(level: Level, picture: Ringing, known_s: list[float]) -> list[Swell]:
     if step < 1 or len(picture.power) <= 2 * step:
         return found
     before, after = highest_before(picture)[:-step], picture.power[step:]
-    ratio = after / np.maximum(before, picture.quiet)
+    ratio = after / np.maximum(before, _OVER_QUIET / _JUMP * picture.quiet)
     jump, line = ratio.max(axis=1), ratio.argmax(axis=1)
     while len(jump) and jump.max() > _JUMP:
         at = int(jump.argmax())

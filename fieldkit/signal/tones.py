@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from fieldkit.signal.background import NoiseDensity, detrended
 from fieldkit.signal.bands import band, subtract
-from fieldkit.signal.likelihood import fit
+from fieldkit.signal.likelihood import fit, inverse
 from fieldkit.signal.traces import Component, Trace, component
 
 Real = NDArray[np.float64]
@@ -18,6 +18,9 @@ Real = NDArray[np.float64]
 FALSE_PER_BACKGROUND = 1e-3
 _PADDING = 4
 _MOST_TONES = 40
+_DIES_AWAY = 0.15
+"""Decays over the background, and the relative standard deviation it must be known with."""
+_SURELY = 0.12
 
 
 @dataclass(frozen=True)
@@ -73,6 +76,18 @@ def clear_of(line: Line, stronger: Sequence[Line]) -> bool:
         for s in stronger
         if abs(line.frequency_hz - s.frequency_hz) < 12 * line.resolution_hz
     )
+
+
+def dies_away(line: Line, background: Trace) -> bool:
+    """True for a line of the background that is the last of an earlier blow's ringing."""
+    start = component(complex(-0.5 * line.resolution_hz, 2 * np.pi * line.frequency_hz), 1)
+    reach = 12 * line.resolution_hz
+    low, high = max(line.frequency_hz - reach, 0.0), line.frequency_hz + reach
+    bins = band([background], low, high, background.duration_s)
+    result = fit(bins, [start], leftover_terms=1)
+    decay = result.active[0].decay_per_s
+    sd_of_log = np.sqrt(inverse(result.information)[1, 1] * max(result.variance, 1.0))
+    return bool(decay * background.duration_s > _DIES_AWAY and sd_of_log < _SURELY)
 
 
 def tone_components(lines: Sequence[Line], traces: Sequence[Trace]) -> list[Component]:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -51,10 +52,10 @@ class Component:
     steady: bool = False
     """True for a tone: no decay, in the fit at a fixed frequency."""
 
-    @property
+    @cached_property
     def pole(self) -> complex:
         """The pole shared by the taps."""
-        return complex(np.mean(self.poles))
+        return complex(self.poles.sum()) / len(self.poles)
 
     @property
     def frequency_hz(self) -> float:

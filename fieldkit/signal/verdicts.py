@@ -23,6 +23,7 @@ _OVER_LINE = 3.0
 _LINE_WANDER = 2e-3
 _MAINS_HZ = (50.0, 60.0)
 _HARDLY_DECAYS = 0.5
+_SURE = 0.1
 
 
 @dataclass(frozen=True)
@@ -111,13 +112,20 @@ def steadiness(
     for line in lines:
         reach = max(1 / duration_s, line.resolution_hz / 2, _LINE_WANDER * line.frequency_hz)
         near = abs(line.frequency_hz - part.frequency_hz) < reach
-        if near and peak < _OVER_LINE * line.amplitude:
+        if near and peak < _OVER_LINE * line.amplitude and not surely_decays(decays, estimate):
             return f"a steady line at {line.frequency_hz:.2f} Hz is there before the blow"
     if decays < _HARDLY_DECAYS and near_mains(part.frequency_hz):
         return "does not decay over the record and stands at a multiple of the mains frequency"
     if decays < _HARDLY_DECAYS and estimate.damping_ratio.sd * 3 > estimate.damping_ratio.value:
         return "its damping cannot be told from none over this record: a steady line"
     return ""
+
+
+def surely_decays(decays: float, estimate: PoleEstimate) -> bool:
+    """True where several taps agree on a decay, as no steady line makes them do."""
+    zeta = estimate.damping_ratio
+    agree = len(estimate.tap_frequencies_hz) > 1 and not estimate.scattered
+    return decays > 1 and zeta.sd < _SURE * zeta.value and agree
 
 
 def near_mains(frequency_hz: float) -> bool:
