@@ -53,12 +53,13 @@ class Editing(Files):
         title = row_label(form, index)
         values = await self._ask(form, title, texts_of(text, form, index), index)
         if values:
-            self.text_changed(with_values(text, form, index, values))
+            self.change_text(lambda: with_values(text, form, index, values))
 
     @work
     async def add_row(self, table: str, preset: dict[str, str]) -> None:
         """Add one row, asking of what kind where that is not said."""
-        if self.desk.text is None:
+        text = self.desk.text
+        if text is None:
             return
         if not table:
             picked = await self.push_screen_wait(PickScreen("Add what?", ADDABLE))
@@ -68,7 +69,7 @@ class Editing(Files):
         form = FORMS[table]
         values = await self._ask(form, f"New {form.title.lower()}", preset, -1)
         if values:
-            self.text_changed(with_values(self.desk.text, form, -1, values))
+            self.change_text(lambda: with_values(text, form, -1, values))
 
     async def _ask(
         self, form: Form, title: str, texts: dict[str, str], index: int | None
@@ -95,7 +96,7 @@ class Editing(Files):
             return
         question = f"Remove {row_label(FORMS[table], index).lower()}? (u takes it back)"
         if await self.push_screen_wait(AskScreen(question, REMOVE)) == "remove":
-            self.text_changed(text.without(table, index))
+            self.change_text(lambda: text.without(table, index))
 
     @work
     async def adopt(self, message: say.AdoptWanted) -> None:
@@ -109,7 +110,7 @@ class Editing(Files):
             "no longer fit it. Save under another name (S) to keep both. (u takes it back)"
         )
         if await self.push_screen_wait(AskScreen(question, ADOPT)) == "adopt":
-            self.text_changed(text.with_change(verdict.change))
+            self.change_text(lambda: text.with_change(verdict.change))
 
     def action_undo(self) -> None:
         """Take the last change back."""

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -180,13 +181,14 @@ class JobApp(App[None]):
         """Samples of a recording."""
         self.put(traces={**self.desk.traces, message.entry: message.samples})
 
-    def text_changed(self, text: JobText) -> bool:
+    def change_text(self, changed: Callable[[], JobText]) -> bool:
         """Take a changed text; False, and one sentence, where it does not hold together."""
         from fieldkit.errors import FieldkitError
 
         if self.open_job is None:
             return False
         try:
+            text = changed()
             job = text.job()
         except FieldkitError as error:
             self.tell(str(error), wrong=True)

@@ -20,7 +20,7 @@ def interval(low: float, high: float, unit: str, units: str) -> str:
     """``0.63–140 MN/m``: both ends in the unit of the higher one."""
     dimension = DIMENSION_OF.get(unit)
     if dimension is None:
-        return f"{low:.3g}–{high:.3g} {unit}".strip()
+        return f"{low:.3g}–{high:.3g} {unit.replace('ratio', 'times')}".strip()
     number, _, shown = show(high, dimension, units, 2).partition(" ")
     scale, _ = to_si(shown, dimension)
     return f"{float(f'{low / scale:.1e}'):g}–{number} {shown}"

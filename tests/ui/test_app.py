@@ -310,6 +310,23 @@ async def test_a_fix_is_adopted_only_after_asking(app: FieldkitApp) -> None:
         assert app.desk.job.span.supports[3].vertical == 4e6
 
 
+async def test_a_fix_that_a_job_file_cannot_hold_is_one_sentence(
+    app: FieldkitApp, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    def refuse(_text: JobText, _change: object) -> JobText:
+        raise Refusal("a job file cannot hold this change", "build it and tap again")
+
+    monkeypatch.setattr(JobText, "with_change", refuse)
+    async with opened(app) as pilot:
+        await pilot.press("5")
+        await settled(pilot)
+        await pilot.press("a")
+        await pilot.pause()
+        await pilot.press("enter")
+        await settled(pilot)
+        assert said(app)[-1] == "a job file cannot hold this change; build it and tap again"
+
+
 async def test_where_no_fix_is_enough_that_is_said(
     app: FieldkitApp, monkeypatch: pytest.MonkeyPatch
 ) -> None:
@@ -365,7 +382,8 @@ async def change_something(pilot: Pilot[None]) -> None:
     app = pilot.app
     assert isinstance(app, FieldkitApp)
     assert app.open_job is not None
-    app.text_changed(app.open_job.text.with_value("title", "Another title"))
+    text = app.open_job.text
+    app.change_text(lambda: text.with_value("title", "Another title"))
     await settled(pilot)
 
 
