@@ -35,6 +35,10 @@ ALIKE_SHARE = 0.07
 """Changes closer along the span than this share of its length are one idea."""
 WORTHWHILE = 0.02
 """A change must raise the chance by more than this to be listed."""
+WHAT_ELSE_HELPS = (
+    "what else helps: keep the machine out of part of its speed range, add damping, fit a tuned "
+    "absorber, combine two changes, or narrow the doubt with a better tap"
+)
 SEED = 20
 PRIOR_MEMBERS = 256
 SOFTENING = np.geomspace(1.0, 0.01, 25)
@@ -234,9 +238,7 @@ def _warnings(
     if best < goal.chance:
         found.append(
             f"no single change reaches the wanted chance of {100 * goal.chance:.0f} % "
-            f"(best {100 * best:.0f} %); what else helps: keep the machine out of part of its speed "
-            "range, add damping, fit a tuned absorber, combine two changes, or narrow the doubt "
-            "with a better tap"
+            f"(best {100 * best:.0f} %); {WHAT_ELSE_HELPS}"
         )
     worst = max((j.correction for j in judged), default=0.0)
     if worst > judge.WORST_DISAGREEMENT:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from fieldkit.detune.verdict import Detuning
 from fieldkit.sheet import tables
 from fieldkit.sheet.plain import clean, paragraph, percent
 from fieldkit.workup import Workup, excitation_of
@@ -55,22 +54,26 @@ def _running_lines(workup: Workup) -> list[str]:
     """The strongest running lines, with what they sit on and the mode beside them."""
     said = []
     for reading in workup.running:
+        sensor = f"{reading.entry.direction} sensor, " if reading.entry.direction else ""
         for line in reading.picture.lines[:3]:
             source = excitation_of(line.frequency_hz, workup.job.excitations)
             text = (
-                f"Running, {line.frequency_hz:.2f} Hz stands out "
+                f"Running, {sensor}{line.frequency_hz:.2f} Hz stands out "
                 f"({line.rms:.3g} {reading.picture.spectrum.unit} rms)"
             )
             text += f": {source}" if source else ": on no excitation the job names"
             if line.steady is False:
                 text += "; not a steady line: a mode stirred by flow, or a speed that wanders"
-            said += paragraph(f"{text}{_mode_beside(workup.detuning, line.frequency_hz)}.", 2)
+            said += paragraph(f"{text}{_mode_beside(workup, line.frequency_hz)}.", 2)
     return said
 
 
-def _mode_beside(detuning: Detuning | None, frequency_hz: float) -> str:
+def _mode_beside(workup: Workup, frequency_hz: float) -> str:
+    detuning, limit = workup.detuning, workup.job.goal.up_to_hz
     if detuning is None or not detuning.modes:
         return ""
+    if frequency_hz > limit * (1 - NEAR_LINE):
+        return f"; modes were looked for up to {limit:g} Hz only"
     nearest = min(detuning.modes, key=lambda mode: abs(mode.median_hz - frequency_hz))
     if abs(nearest.median_hz / frequency_hz - 1) > NEAR_LINE:
         return "; no mode beside it: forced, not resonant"
