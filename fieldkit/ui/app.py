@@ -15,7 +15,6 @@ from fieldkit.ui.commands import COMMANDS, help_text
 from fieldkit.ui.desk import STEPS
 from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.editing import Editing
-from fieldkit.ui.files import CopySamples
 from fieldkit.ui.plots import shaded
 from fieldkit.ui.readings import reading
 from fieldkit.ui.strip import Step, Strip
@@ -63,13 +62,9 @@ class FieldkitApp(Editing):
                 tooltip="Leave; asks first when something is unsaved"),
     ]  # fmt: skip
 
-    def __init__(
-        self, job_path: Path | None = None, copy_samples: CopySamples | None = None
-    ) -> None:
-        """``copy_samples`` puts the sample jobs below a folder and names their job files."""
+    def __init__(self, job_path: Path | None = None) -> None:
         super().__init__()
         self.job_path = job_path
-        self.copy_samples = copy_samples
         self.here = STEPS[0]
         self.ready = False
         """Whether all six views are there; a number key pressed before is remembered."""

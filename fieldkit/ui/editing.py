@@ -9,7 +9,7 @@ from fieldkit.ui import messages as say
 from fieldkit.ui.dialogs import AskScreen, PickScreen
 from fieldkit.ui.document import OpenJob
 from fieldkit.ui.files import Files
-from fieldkit.ui.forms.rows import row_label, texts_of, with_values
+from fieldkit.ui.forms.rows import row_label, texts_of, with_values, without_taps
 from fieldkit.ui.forms.tables import FORMS, Form
 from fieldkit.ui.forms.window import FormWindow, Values
 
@@ -22,7 +22,11 @@ ADDABLE = (
     ("recording", "Recording"),
 )
 REMOVE = (("remove", "Remove"), ("back", "Back"))
-ADOPT = (("adopt", "Adopt"), ("back", "Back"))
+ADOPT = (
+    ("aside", "Adopt, taps aside"),
+    ("keep", "Adopt, keep taps"),
+    ("back", "Back"),
+)
 
 
 class Editing(Files):
@@ -106,10 +110,14 @@ class Editing(Files):
             return
         question = (
             f"Adopt change {verdict.rank} into the job?\n\n{verdict.summary}\n\n"
-            "The description then shows the pipe as it will be; taps of the pipe as it was "
-            "no longer fit it. Save under another name (S) to keep both. (u takes it back)"
+            "The description then shows the pipe as it will be. The taps are of the pipe as it "
+            "was: set them aside, build the change, tap again. Save under another name (S) to "
+            "keep both; u takes it back."
         )
-        if await self.push_screen_wait(AskScreen(question, ADOPT)) == "adopt":
+        answer = await self.push_screen_wait(AskScreen(question, ADOPT))
+        if answer == "aside":
+            self.change_text(lambda: without_taps(text).with_change(verdict.change))
+        elif answer == "keep":
             self.change_text(lambda: text.with_change(verdict.change))
 
     def action_undo(self) -> None:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
 from pathlib import Path
 
 from textual import work
@@ -12,7 +11,6 @@ from fieldkit.ui.dialogs import AskScreen, PathScreen, PickScreen
 from fieldkit.ui.job_app import JobApp
 from fieldkit.ui.views.sheet import sheet_text
 
-CopySamples = Callable[[Path], tuple[Path, ...]]
 SAVE_QUESTION = (("save", "Save"), ("discard", "Leave unsaved"), ("back", "Back"))
 WELCOME = (
     ("sample", "Sample   copy the sample jobs out and open one"),
@@ -24,13 +22,10 @@ WELCOME = (
 class Files(JobApp):
     """The app's dealings with files."""
 
-    copy_samples: CopySamples | None = None
-
     @work
     async def welcome(self) -> None:
         """What to start with."""
-        offered = [o for o in WELCOME if o[0] != "sample" or self.copy_samples is not None]
-        choice = await self.push_screen_wait(PickScreen("fieldkit: where to start?", offered))
+        choice = await self.push_screen_wait(PickScreen("fieldkit: where to start?", WELCOME))
         if choice is not None:
             await self.run_action(choice)
 
@@ -97,7 +92,9 @@ class Files(JobApp):
     @work
     async def action_sample(self) -> None:
         """Copy the sample jobs out and open one of them."""
-        if self.copy_samples is None or not await self.may_go_on():
+        from fieldkit.cli.samples import copy_samples
+
+        if not await self.may_go_on():
             return
         start = str(Path.cwd() / "fieldkit-samples")
         asked = PathScreen("Copy the sample jobs into which folder?", start, must_exist=False)
@@ -105,7 +102,7 @@ class Files(JobApp):
         if folder is None:
             return
         try:
-            jobs = self.copy_samples(folder)
+            jobs = copy_samples(folder)
         except FieldkitError as error:
             self.tell(str(error), wrong=True)
             return

@@ -308,6 +308,20 @@ async def test_a_fix_is_adopted_only_after_asking(app: FieldkitApp) -> None:
         await pilot.press("enter")
         await settled(pilot)
         assert app.desk.job.span.supports[3].vertical == 4e6
+        assert app.desk.job.recordings_of("tap") == ()
+        assert len(app.desk.job.recordings_of("running")) == 1
+
+
+async def test_a_fix_can_be_adopted_with_the_taps_kept(app: FieldkitApp) -> None:
+    async with opened(app) as pilot:
+        await pilot.press("5")
+        await settled(pilot)
+        await pilot.press("a")
+        await pilot.pause()
+        await pilot.press("right", "enter")
+        await settled(pilot)
+        assert app.desk.job.span.supports[3].vertical == 4e6
+        assert len(app.desk.job.recordings_of("tap")) == 1
 
 
 async def test_a_fix_that_a_job_file_cannot_hold_is_one_sentence(
@@ -549,7 +563,7 @@ async def test_without_a_job_the_app_offers_a_start(quick: None) -> None:
     app = FieldkitApp()
     async with opened(app) as pilot:
         assert isinstance(app.screen, PickScreen)
-        await pilot.press("down", "enter")
+        await pilot.press("down", "down", "enter")
         await settled(pilot)
         assert app.desk.job is not None
         assert app.desk.job.title == "New job"
@@ -557,7 +571,7 @@ async def test_without_a_job_the_app_offers_a_start(quick: None) -> None:
 
 
 async def test_samples_are_copied_out_and_one_is_opened(
-    tmp_path: Path, job_path: Path, quick: None
+    tmp_path: Path, job_path: Path, quick: None, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     asked: list[Path] = []
 
@@ -565,7 +579,8 @@ async def test_samples_are_copied_out_and_one_is_opened(
         asked.append(folder)
         return (job_path,)
 
-    app = FieldkitApp(None, copy)
+    monkeypatch.setattr("fieldkit.cli.samples.copy_samples", copy)
+    app = FieldkitApp()
     async with opened(app) as pilot:
         await pilot.press("enter")
         await pilot.pause()

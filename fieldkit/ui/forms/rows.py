@@ -77,3 +77,13 @@ def with_values(text: JobText, form: Form, index: int | None, values: Mapping[st
     for key, typed in values.items():
         text = text.with_value(f"{start}{key}", typed)
     return text
+
+
+def without_taps(text: JobText) -> JobText:
+    """The text without tap recordings and typed peaks: they are of the pipe before a change."""
+    taps = [i for i, row in enumerate(text.rows("recording")) if row.get("kind") == "tap"]
+    for index in reversed(taps):
+        text = text.without("recording", index)
+    for index in reversed(range(len(text.rows("measured")))):
+        text = text.without("measured", index)
+    return text
