@@ -59,10 +59,12 @@ def find_blows(scales: Sequence[Level]) -> list[Blow]:
         for s in swells(level, picture, [o.at_s for o in sharp])
     ]
     known = [*sharp, *soft]
-    amid = overlooked(level, loud_moments(picture), [o.at_s for o in known])
-    hidden = confirmed([Onset(at_s, 0.0, 0) for at_s in amid], scales)
-    every = sorted([*known, *hidden], key=lambda o: o.at_s)
-    return grouped(every, scales, len(scales[0].samples) / scales[0].rate_hz)
+    for scale, coarse in enumerate(scales):
+        if coarse.rate_hz <= level.rate_hz and (coarse.rate_hz > 100 or scale == 0):
+            amid = overlooked(coarse, loud_moments(picture), [o.at_s for o in known])
+            known += confirmed([Onset(at_s, 0.0, scale) for at_s in amid], scales)
+    known.sort(key=lambda o: o.at_s)
+    return grouped(known, scales, len(scales[0].samples) / scales[0].rate_hz)
 
 
 def spectral_level(scales: Sequence[Level]) -> Level:

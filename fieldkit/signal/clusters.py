@@ -51,14 +51,15 @@ def overlapping(part: Component, others: Sequence[Component], duration_s: float)
         width = part.half_power_hz + other.half_power_hz + 1 / duration_s
         return abs(other.frequency_hz - part.frequency_hz) / width
 
-    modes = [o for o in others if o is not part and not o.steady and alike(part, o, _ALIKE)]
-    near = [o for o in modes if closeness(o) < _TOGETHER]
+    modes = [o for o in others if o is not part and not o.steady]
+    near = [o for o in modes if closeness(o) < _TOGETHER and alike(part, o, _ALIKE, duration_s)]
     return sorted(near, key=closeness)[: _MOST_TOGETHER - 1]
 
 
-def alike(one: Component, other: Component, factor: float) -> bool:
-    """True where neither decays faster than the other by more than a factor."""
-    return one.decay_per_s < factor * other.decay_per_s < factor**2 * one.decay_per_s
+def alike(one: Component, other: Component, factor: float, duration_s: float) -> bool:
+    """True where neither decays faster than the other by more than a factor, as far as seen."""
+    first, second = one.decay_per_s + 1 / duration_s, other.decay_per_s + 1 / duration_s
+    return first < factor * second < factor**2 * first
 
 
 def fit_together(

@@ -40,6 +40,8 @@ class Fit:
     passive: tuple[Component, ...]
     cost: float
     """Chi-squared of the residual."""
+    tap_cost: Real
+    """(K,) the same by tap."""
     freedom: int
     """Data less parameters."""
     information: Real
@@ -164,6 +166,7 @@ class Point:
             self.active,
             passive_amplitudes(still, self.active),
             self.cost,
+            np.sum(self.residual**2, axis=1),
             bins.rows - parameters,
             information.sum(axis=0),
             information,

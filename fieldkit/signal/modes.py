@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.errors import Refusal
-from fieldkit.signal.polish import polished
+from fieldkit.signal.audit import odd_taps
+from fieldkit.signal.polish import Fitted, polished
 from fieldkit.signal.preparation import Prepared, prepare
 from fieldkit.signal.pruning import pruned
 from fieldkit.signal.search import Found, search
@@ -93,14 +94,36 @@ def estimate_modes(
             "no usable tap in these recordings",
             "record at least three taps with a quiet second before the first and let each ring out",
         )
-    ready = prepare(long_enough, high_hz)
+    ready, found, fitted = fitted_modes(long_enough, high_hz)
+    odd = odd_taps(fitted, len(long_enough))
+    if odd.any():
+        kept = [r for r, left_out in zip(long_enough, odd, strict=True) if not left_out]
+        ready, found, fitted = fitted_modes(kept, high_hz)
+    verdicts = judged(fitted, ready.traces, ready.lines, found.unresolved)
+    estimate = told(verdicts, found, ready, low_hz, high_hz)
+    left_out = tuple(without_tap(int(i) + 1, len(long_enough)) for i in np.flatnonzero(odd))
+    return replace(estimate, warnings=left_out + estimate.warnings)
+
+
+def fitted_modes(
+    records: Sequence[TapRecord], high_hz: float
+) -> tuple[Prepared, Found, tuple[Fitted, ...]]:
+    """Search, elimination and last fits of all records together."""
+    ready = prepare(records, high_hz)
     found = resolved(ready)
     if not ready.has_background:
         ready = ready.with_noise_from(found.parts)
         found = resolved(ready, found)
     found, fitted = polished(ready.traces, found, ready.region)
-    verdicts = judged(fitted, ready.traces, ready.lines, found.unresolved)
-    return told(verdicts, found, ready, low_hz, high_hz)
+    return ready, found, fitted
+
+
+def without_tap(number: int, count: int) -> str:
+    """A tap that was left out."""
+    return (
+        f"usable tap {number} of {count} was left out: it does not decay freely as the others do "
+        "(struck again, or touched?)"
+    )
 
 
 def resolved(ready: Prepared, known: Found | None = None) -> Found:

@@ -81,7 +81,7 @@ def prepare(records: Sequence[Record], high_hz: float) -> Prepared:
     )
     longest = max(t.duration_s for t in traces)
     region = Region(1 / longest, top_hz, 1 / longest)
-    lines = lines_of(quiet[id(records[0].background)], noises[id(records[0].background)], top_hz)
+    lines = distinct([lines_of(quiet[key], noises[key], top_hz) for key in quiet])
     return Prepared(traces, lines, region, has_background)
 
 
@@ -129,6 +129,15 @@ def floored(noise: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseD
     if noise is None:
         return NoiseDensity(np.array([1.0, rate_hz / 2]), np.full(2, least))
     return replace(noise, density=np.maximum(noise.density, least))
+
+
+def distinct(found: Sequence[Sequence[Line]]) -> tuple[Line, ...]:
+    """Lines of several backgrounds, those of the same frequency once."""
+    out: list[Line] = []
+    for line in (line for lines in found for line in lines):
+        if all(abs(line.frequency_hz - o.frequency_hz) > line.resolution_hz for o in out):
+            out.append(line)
+    return tuple(out)
 
 
 def lines_of(

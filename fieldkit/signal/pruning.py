@@ -15,6 +15,8 @@ from fieldkit.signal.traces import Component, Trace
 
 _RESOLVED = 0.5
 _ALIKE = 3.0
+_NO_DECAY = 0.12
+"""Decays over the whole record below which a line is taken as steady."""
 
 
 def pruned(traces: Sequence[Trace], found: Found, region: Region) -> Found:
@@ -28,14 +30,23 @@ def pruned(traces: Sequence[Trace], found: Found, region: Region) -> Found:
         twin = next((p for p in parts if twins(p, current)), None)
         parts, poor = without_if_idle(traces, parts, current, region, must_go=twin is not None)
         unresolved += [(current.pole, twin.pole)] if twin is not None and poor else []
-    return replace(found, parts=tuple(parts), unresolved=tuple(unresolved))
+    settled = tuple(still(p, traces) for p in parts)
+    return replace(found, parts=settled, unresolved=tuple(unresolved))
+
+
+def still(part: Component, traces: Sequence[Trace]) -> Component:
+    """A component that does not decay over the record becomes a steady tone."""
+    longest = max(t.duration_s for t in traces)
+    if part.steady or part.decay_per_s * longest > _NO_DECAY:
+        return part
+    return replace(part.with_pole(1j * part.pole.imag), steady=True)
 
 
 def twins(one: Component, other: Component) -> bool:
     """True for two modes nearer to each other than half their bandwidth: not to be told apart."""
     if one is other or one.steady or other.steady:
         return False
-    if not alike(one, other, _ALIKE):
+    if not alike(one, other, _ALIKE, np.inf):
         return False
     apart_hz = abs(one.frequency_hz - other.frequency_hz)
     return apart_hz < _RESOLVED * (one.half_power_hz + other.half_power_hz) / 2

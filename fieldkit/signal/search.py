@@ -15,8 +15,6 @@ from fieldkit.signal.traces import Component, Trace, component, residual
 
 _MOST_ROUNDS = 14
 _MOST_PARTS = 60
-_NO_DECAY = 0.12
-"""Decays over the whole record below which a line is taken as steady."""
 
 
 @dataclass(frozen=True)
@@ -79,7 +77,9 @@ def add(traces: Sequence[Trace], found: Found, candidate: Candidate, region: Reg
     held = [*rest, *(n for n in near if scattered(n))]
     around = [*near, new]
     before = fit_together(traces, firm, held, region.high_hz, over=around)
-    after = fit_together(traces, [*before.active, new], held, region.high_hz, over=around)
+    starts = [[*before.active, new], *split(before.active, new, traces)]
+    tried = [fit_together(traces, s, held, region.high_hz, over=around) for s in starts]
+    after = min(tried, key=lambda fit: fit.cost)
     loose = looser(traces, near, rest, region.high_hz, before, around)
     noise = max(min(after.variance, loose.variance if loose else np.inf), 1.0)
     needed = needed_gain(before.freedom, len(traces), threshold(len(traces), 100))
@@ -90,16 +90,27 @@ def add(traces: Sequence[Trace], found: Found, candidate: Candidate, region: Reg
             return replace(found, parts=(*rest, *loose.parts))
     if gain < 0:
         return replace(found, vain=(*found.vain, candidate.pole))
-    settled = [still(p, traces) for p in after.active]
-    return replace(found, parts=(*updated(held, after.passive), *settled))
+    return replace(found, parts=(*updated(held, after.passive), *after.active))
 
 
-def still(part: Component, traces: Sequence[Trace]) -> Component:
-    """A component that does not decay over the record becomes a steady tone."""
+def split(
+    near: Sequence[Component], new: Component, traces: Sequence[Trace]
+) -> list[list[Component]]:
+    """Another start for a close pair: the mode next to the new one, split in two.
+
+    What one mode leaves of a pair has its peaks beside the pair, not on it.
+    """
+    if not near:
+        return []
+    nearest = min(near, key=lambda p: abs(p.pole - new.pole))
     longest = max(t.duration_s for t in traces)
-    if part.decay_per_s * longest > _NO_DECAY:
-        return part
-    return replace(part.with_pole(1j * part.pole.imag), steady=True)
+    shift = max(nearest.decay_per_s, np.pi / longest)
+    if abs(new.pole.imag - nearest.pole.imag) > 8 * shift:
+        return []
+    decay = max(min(nearest.decay_per_s, -new.pole.real), 1 / longest)
+    halves = [complex(-decay, nearest.pole.imag + sign * shift) for sign in (-1, 1)]
+    others = [p for p in near if p is not nearest]
+    return [[*others, *(nearest.with_pole(pole) for pole in halves)]]
 
 
 def without(parts: Sequence[Component], gone: Sequence[Component]) -> list[Component]:

@@ -169,6 +169,15 @@ def test_machine_that_runs_on_is_tones() -> None:
     assert all(t.strength < 0.2 for t in estimate.tones)
 
 
+def test_tones_of_every_recording_are_known() -> None:
+    """Two recordings of the same pipe, a machine in the second only."""
+    quiet = records(MODES, strengths=[1.0, 0.7])
+    loud = records(MODES, strengths=[0.9, 1.2], tones=[(24.6, 0.1)], seed=1)
+    estimate = estimate_modes([*quiet, *loud])
+    assert_found(estimate, MODES)
+    assert [t.frequency_hz for t in estimate.tones] == pytest.approx([24.6], abs=0.02)
+
+
 def test_tones_and_noise_alone_are_no_modes() -> None:
     estimate = estimate_modes(records([], tones=[(50.0, 0.3), (24.3, 0.1)]))
     assert estimate.modes == ()
@@ -213,6 +222,17 @@ def test_what_one_of_several_taps_shows_is_refused() -> None:
     refused = [r for r in estimate.refused if abs(r.frequency_hz - 57.0) < 0.5]
     assert len(refused) == 1
     assert refused[0].reason.startswith("seen in one of 4 taps only")
+
+
+def test_tap_struck_again_unnoticed_is_left_out() -> None:
+    """A second blow amid the third decay: the modes come from the other taps, and it is said."""
+    taps = records(MODES)
+    again = tap_recording(MODES, [Blow(0.9, 0.7)], 6.0, RATE_HZ)
+    third = taps[2]
+    taps[2] = TapRecord(third.samples + again[: len(third.samples)], RATE_HZ, third.background)
+    estimate = estimate_modes(taps)
+    assert_found(estimate, MODES)
+    assert estimate.warnings[0].startswith("usable tap 3 of 4 was left out")
 
 
 def test_taps_that_disagree_widen_the_uncertainty_and_are_named() -> None:
