@@ -18,8 +18,8 @@ from fieldkit.ui.editing import Editing
 from fieldkit.ui.plots import shaded
 from fieldkit.ui.readings import reading
 from fieldkit.ui.strip import Step, Strip
-from fieldkit.ui.views import VIEWS
 from fieldkit.ui.views.base import View, plain
+from fieldkit.ui.views.tap import TapView
 from fieldkit.ui.widgets import FrequencyRuler, RulerData
 from fieldkit.ui.words import safe
 
@@ -73,7 +73,7 @@ class FieldkitApp(Editing):
         """Strip, the first view, ruler, reading, keys; the other views come after the paint."""
         yield Strip()
         with ContentSwitcher(initial=self.here, id="views"):
-            yield VIEWS[0]()
+            yield TapView()
         yield FrequencyRuler(id="ruler")
         yield plain("reading")
         yield Footer(compact=True, show_command_palette=False)
@@ -85,6 +85,8 @@ class FieldkitApp(Editing):
 
     async def go_on(self) -> None:
         """The other views, then the job."""
+        from fieldkit.ui.views.order import VIEWS
+
         switcher = self.base.query_one("#views", ContentSwitcher)
         for view in VIEWS[1:]:
             await switcher.add_content(view(), id=view.NAME)
@@ -169,6 +171,8 @@ class FieldkitApp(Editing):
 
     def action_help(self) -> None:
         """List every key."""
+        from fieldkit.ui.views.order import VIEWS
+
         sections = [("Everywhere", self.BINDINGS)]
         sections += [(f"In {view.NAME.capitalize()}", view.BINDINGS) for view in VIEWS]
         self.push_screen(TextScreen("Keys", help_text(sections)))

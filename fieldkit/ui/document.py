@@ -31,10 +31,11 @@ class OpenJob:
         return replace(self, text=text, past=(*self.past, self.text)[-STEPS_BACK:])
 
     def undone(self) -> OpenJob:
-        """As before the last edit; itself where there was none."""
+        """As before the last edit, in the file of now; itself where there was none."""
         if not self.past:
             return self
-        return replace(self, text=self.past[-1], past=self.past[:-1])
+        before = replace(self.past[-1], path=self.path)
+        return replace(self, text=before, past=self.past[:-1])
 
     @property
     def path(self) -> Path | None:

@@ -1,6 +1,11 @@
-"""Changing the job: forms, new and removed rows, adopted fixes, and the way back."""
+"""Changing the job: forms, new and removed rows, adopted fixes, and the way back.
+
+The forms are loaded when the first one is asked for: the first paint does not wait for them.
+"""
 
 from __future__ import annotations
+
+from typing import TYPE_CHECKING
 
 from textual import work
 
@@ -9,9 +14,9 @@ from fieldkit.ui import messages as say
 from fieldkit.ui.dialogs import AskScreen, PickScreen
 from fieldkit.ui.document import OpenJob
 from fieldkit.ui.files import Files
-from fieldkit.ui.forms.rows import row_label, texts_of, with_values, without_taps
-from fieldkit.ui.forms.tables import FORMS, Form
-from fieldkit.ui.forms.window import FormWindow, Values
+
+if TYPE_CHECKING:
+    from fieldkit.ui.forms import Form, Values
 
 ADDABLE = (
     ("support", "Support"),
@@ -34,7 +39,7 @@ class Editing(Files):
 
     async def on_edit_wanted(self, message: say.EditWanted) -> None:
         """One row in a form."""
-        self.edit_row(FORMS[message.table], message.index)
+        self.edit_row(message.table, message.index)
 
     async def on_add_wanted(self, message: say.AddWanted) -> None:
         """A new row in a form."""
@@ -49,19 +54,23 @@ class Editing(Files):
         self.adopt(message)
 
     @work
-    async def edit_row(self, form: Form, index: int | None) -> None:
+    async def edit_row(self, table: str, index: int | None) -> None:
         """Change one row."""
-        text = self.desk.text
+        from fieldkit.ui import forms
+
+        text, form = self.desk.text, forms.FORMS[table]
         if text is None:
             return
-        title = row_label(form, index)
-        values = await self._ask(form, title, texts_of(text, form, index), index)
+        texts = forms.texts_of(text, form, index)
+        values = await self._ask(form, forms.row_label(form, index), texts, index)
         if values:
-            self.change_text(lambda: with_values(text, form, index, values))
+            self.change_text(lambda: forms.with_values(text, form, index, values))
 
     @work
     async def add_row(self, table: str, preset: dict[str, str]) -> None:
         """Add one row, asking of what kind where that is not said."""
+        from fieldkit.ui import forms
+
         text = self.desk.text
         if text is None:
             return
@@ -70,41 +79,48 @@ class Editing(Files):
             table = picked or ""
         if not table:
             return
-        form = FORMS[table]
+        form = forms.FORMS[table]
         values = await self._ask(form, f"New {form.title.lower()}", preset, -1)
         if values:
-            self.change_text(lambda: with_values(text, form, -1, values))
+            self.change_text(lambda: forms.with_values(text, form, -1, values))
 
     async def _ask(
         self, form: Form, title: str, texts: dict[str, str], index: int | None
     ) -> Values | None:
+        from fieldkit.ui import forms
+
         text = self.desk.text
         assert text is not None
 
         def objection(values: Values) -> str:
             try:
-                with_values(text, form, index, values).job()
+                forms.with_values(text, form, index, values).job()
             except FieldkitError as error:
                 return str(error)
             return ""
 
         return await self.push_screen_wait(
-            FormWindow(form, title, texts, self.desk.units, objection)
+            forms.FormWindow(form, title, texts, self.desk.units, objection)
         )
 
     @work
     async def remove_row(self, table: str, index: int) -> None:
         """Take one row out, after asking."""
+        from fieldkit.ui import forms
+
         text = self.desk.text
         if text is None:
             return
-        question = f"Remove {row_label(FORMS[table], index).lower()}? (u takes it back)"
+        what = forms.row_label(forms.FORMS[table], index).lower()
+        question = f"Remove {what}? (u takes it back)"
         if await self.push_screen_wait(AskScreen(question, REMOVE)) == "remove":
             self.change_text(lambda: text.without(table, index))
 
     @work
     async def adopt(self, message: say.AdoptWanted) -> None:
         """Write a fix into the job, after asking."""
+        from fieldkit.ui import forms
+
         text, verdict = self.desk.text, message.verdict
         if text is None:
             return
@@ -116,7 +132,7 @@ class Editing(Files):
         )
         answer = await self.push_screen_wait(AskScreen(question, ADOPT))
         if answer == "aside":
-            self.change_text(lambda: without_taps(text).with_change(verdict.change))
+            self.change_text(lambda: forms.without_taps(text).with_change(verdict.change))
         elif answer == "keep":
             self.change_text(lambda: text.with_change(verdict.change))
 

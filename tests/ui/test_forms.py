@@ -7,9 +7,9 @@ import pytest
 from fieldkit.job.file_model import keys_of
 from fieldkit.job.store import JobText, new_job_text
 from fieldkit.span.supports import KINDS
+from fieldkit.ui.forms import FORMS, rows_of, texts_of, with_values
 from fieldkit.ui.forms.codecs import checked
-from fieldkit.ui.forms.rows import rows_of, texts_of, with_values
-from fieldkit.ui.forms.tables import FORMS, SUPPORT_KINDS
+from fieldkit.ui.forms.tables import SUPPORT_KINDS
 from tests.ui.job_text import JOB_TEXT
 
 

@@ -10,7 +10,7 @@ from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical
 from textual.widgets import DataTable
 
-from fieldkit.ui.forms.rows import JobRow, rows_of
+from fieldkit.ui.forms import JobRow, rows_of
 from fieldkit.ui.messages import AddWanted, EditWanted, RemoveWanted
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import length
