@@ -37,6 +37,9 @@ _OVER_FORCE = 0.03
 _FOOT = 0.1
 _STRIDE_S = 0.25
 _SAME_S = 0.015
+_CLEAR = 20.0
+_CLEAR_SOON = 13.0
+_SOON_S = 0.03
 _OVER_PRECEDING = 2.5
 _LEAST_SHARE = 0.12
 _LONGEST_CONTACT_S = 0.015
@@ -61,6 +64,8 @@ class Later:
     """Time after the first."""
     share: float
     """Of the first one's strength, roughly."""
+    sharpness: float
+    """Error over its typical size."""
 
 
 @dataclass(frozen=True)
@@ -156,15 +161,25 @@ def contact_end_s(level: Level, onset_s: float, until_s: float) -> float:
 
 
 def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list[Later]:
-    """Second blows at any level, in order of time."""
-    found: list[Later] = []
-    for level in levels:
-        errors = prediction_errors(level, onset_s, until_s)
-        for one in jumps(errors) if errors is not None else []:
-            same = [k for k in found if abs(one.after_s - k.after_s) < _SAME_S]
-            found = [k for k in found if k not in same]
-            found.append(max([one, *same], key=lambda k: k.share))
-    return sorted(found, key=lambda f: f.after_s)
+    """Second blows in order of time: what two levels show, or one clearly."""
+    tried = [prediction_errors(level, onset_s, until_s) for level in levels]
+    shown = sorted(
+        (one for errors in tried if errors is not None for one in jumps(errors)),
+        key=lambda one: one.after_s,
+    )
+    groups: list[list[Later]] = []
+    for one in shown:
+        if groups and one.after_s - groups[-1][-1].after_s < _SAME_S:
+            groups[-1].append(one)
+        else:
+            groups.append([one])
+    return [max(group, key=lambda one: one.share) for group in groups if sure(group)]
+
+
+def sure(seen: Sequence[Later]) -> bool:
+    """True for what two levels show, or one clearly; soon after the first few levels can tell."""
+    needed = _CLEAR_SOON if seen[0].after_s < _SOON_S else _CLEAR
+    return len(seen) > 1 or seen[0].sharpness > needed
 
 
 def prediction_errors(
@@ -244,16 +259,18 @@ def jumps(errors: Errors) -> list[Later]:
     first = errors.first
     near = max(int(0.0015 * errors.rate_hz), 1)
     wide = max(int(0.006 * errors.rate_hz), 3)
-    loud = errors.size > max(SHARP, _LEAST_SHARE * first)
-    inside = (errors.time_s > errors.smeared_s) & (errors.time_s < LONGEST_GAP_S)
     ahead = np.lib.stride_tricks.sliding_window_view(np.pad(errors.size, (0, wide)), wide + 1)
     peak = ahead.max(axis=1)
+    loud = peak > max(SHARP, _LEAST_SHARE * first)
+    inside = (errors.time_s > errors.smeared_s) & (errors.time_s < LONGEST_GAP_S)
     found: list[Later] = []
     for i in np.flatnonzero(loud & inside):
         preceding = float(errors.size[max(i - near - wide, 0) : max(i - near + 1, 1)].max())
-        after_s = float(errors.time_s[i])
+        top = min(int(i) + int(np.argmax(ahead[i])), len(peak) - 1)
+        after_s = float(errors.time_s[top])
         if peak[i] > _OVER_PRECEDING * preceding and not (
             found and after_s - found[-1].after_s < 0.01
         ):
-            found.append(Later(after_s, float(peak[i]) / max(first, 1e-300)))
+            size = float(peak[i])
+            found.append(Later(after_s, size / max(first, 1e-300), size))
     return found
