@@ -134,7 +134,7 @@ def _spring_unknowns(span: Span) -> list[Unknown]:
     return [
         Unknown(
             _spring_name(spring),
-            "N m/rad" if spring.axis == "rotation" else "N/m",
+            "N m/rad" if spring.axis in ("rotation", "torsion") else "N/m",
             "spring",
             i,
             spring.stiffness,
