@@ -4,8 +4,8 @@ Two shapes are tried and the lower frequency taken, since each is an upper bound
 bare span, exact without masses, and the deflection under the weight of pipe and masses, nearly
 exact for heavy masses. For one mass of up to twice the span's own, anywhere, the better of the two
 is at most 2.3 % high; of up to thirty times, 7.5 % (beside a clamp, where it hardly moves); for a
-mass in the middle half of a held span it is within 0.6 %. Rayleigh's method: any text on vibration, such as
-Thomson, Theory of Vibration with Applications (from memory).
+mass in the middle half of a held span it is within 0.6 %. Rayleigh's method: any text on
+vibration, such as Thomson, Theory of Vibration with Applications (from memory).
 """
 
 from __future__ import annotations
