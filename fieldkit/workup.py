@@ -98,6 +98,8 @@ class Workup:
     refused: tuple[StepRefusal, ...] = ()
     warnings: tuple[str, ...] = ()
     states: tuple[StateModes, ...] = ()
+    done: tuple[str, ...] = ()
+    """Steps that were gone through, with or without an answer."""
 
     def refusals(self, step: str) -> tuple[str, ...]:
         """Why a step has no answer; empty when it has one."""
@@ -107,7 +109,7 @@ class Workup:
 def run(
     job: Job,
     progress: Progress | None = None,
-    on_part: Callable[[Workup], None] | None = None,
+    on_part: Callable[[Workup], object] | None = None,
 ) -> Workup:
     """Everything that can be computed for a job.
 
@@ -123,6 +125,7 @@ def run(
         except (Refusal, InputError) as error:
             refusal = StepRefusal(step, str(error), isinstance(error, InputError))
             work = replace(work, refused=(*work.refused, refusal))
+        work = replace(work, done=(*work.done, step))
         if on_part is not None:
             on_part(work)
     return work

@@ -19,7 +19,7 @@ def percent(chance: float) -> str:
     """A chance as people say it; never quite certain."""
     if chance >= 0.995:
         return ">99 %"
-    return "<1 %" if chance < 0.01 else f"{100 * chance:.0f} %"
+    return "<1 %" if chance < 0.005 else f"{100 * chance:.0f} %"
 
 
 def table(head: Sequence[str], rows: Sequence[Sequence[str]], indent: int = 2) -> list[str]:

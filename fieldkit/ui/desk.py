@@ -65,6 +65,8 @@ class Desk:
     traces: Mapping[RecordingEntry, NDArray[np.float64]] = field(default_factory=dict)
     """Samples of the recordings looked at so far."""
     working: bool = False
+    fresh: tuple[str, ...] = ()
+    """Steps whose results came in while the work goes on."""
     stopped: bool = False
     failed: str = ""
     """Why the whole chain could not be finished."""
@@ -118,6 +120,10 @@ class Desk:
                 return entry.modes
         return ()
 
+    def awaits(self, step: str) -> bool:
+        """Whether the work going on has still to come to a step."""
+        return self.working and step not in self.fresh
+
     def refusals(self, step: str) -> tuple[str, ...]:
         """Why a step has no answer; empty when it has one or was not asked."""
         return self.workup.refusals(step) if self.workup else ()
@@ -144,7 +150,7 @@ def _state_of(step: str, desk: Desk) -> StepState:
         return StepState.TO_DO
     if step == "span" and (desk.states or desk.span_refused):
         return StepState.REFUSED if desk.span_refused else StepState.DONE
-    if desk.working:
+    if desk.awaits(step):
         return StepState.WORKING
     if _answered(step, desk):
         return StepState.DONE

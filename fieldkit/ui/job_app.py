@@ -74,7 +74,7 @@ class JobApp(App[None]):
         if self.desk.job is None:
             return
         self.ticket += 1
-        self.put(working=True, stopped=False, failed="")
+        self.put(working=True, stopped=False, failed="", fresh=())
         self.say_progress("reading")
         self.work_up(self.desk.job, self.ticket)
 
@@ -133,6 +133,12 @@ class JobApp(App[None]):
         """Computed modes."""
         if message.ticket == self.ticket:
             self.put(states=message.states, span_refused=message.refused)
+
+    def on_part_ready(self, message: say.PartReady) -> None:
+        """A step of the first run; after an edit the older results stand until all is done."""
+        first = self.desk.workup is None or bool(self.desk.fresh)
+        if message.ticket == self.ticket and self.desk.working and first:
+            self.put(workup=message.workup, fresh=message.workup.done)
 
     def on_workup_ready(self, message: say.WorkupReady) -> None:
         """The whole chain."""

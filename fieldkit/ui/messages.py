@@ -58,6 +58,14 @@ class SpanReady(Message):
 
 
 @dataclass
+class PartReady(Message):
+    """One more step of the chain is done; the later ones are still missing."""
+
+    ticket: int
+    workup: Workup
+
+
+@dataclass
 class WorkupReady(Message):
     """The whole chain is done."""
 

@@ -7,8 +7,9 @@ from dataclasses import dataclass, replace
 from itertools import chain
 from typing import TYPE_CHECKING
 
+from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import Desk
-from fieldkit.ui.words import count, hertz, percent, plus_minus, ratio_percent, sentence
+from fieldkit.ui.words import count, hertz, plus_minus, ratio_percent, sentence
 
 if TYPE_CHECKING:
     from fieldkit.detune.excitation import Band
@@ -51,7 +52,7 @@ def reading(view: str, desk: Desk) -> Reading:
 
 def waiting(desk: Desk, step: str, otherwise: str) -> Reading:
     """While a step has no result: being worked on, stopped, refused, failed or never asked."""
-    if desk.working:
+    if desk.awaits(step):
         return Reading(f"{step.capitalize()}: being worked out")
     if desk.stopped:
         return Reading("Stopped", next="press r to work the job out again")

@@ -37,15 +37,6 @@ def span_of(low: float, high: float) -> str:
     return first if first == second else f"{first}–{second}"
 
 
-def percent(share: float) -> str:
-    """A chance: never ``0 %`` or ``100 %``, for nothing here is that sure."""
-    if share < 0.005:
-        return "<1 %"
-    if share >= 0.995:
-        return ">99 %"
-    return f"{100 * share:.0f} %"
-
-
 def ratio_percent(share: float) -> str:
     """A relative distance such as a separation."""
     return f"{100 * share:.0f} %"

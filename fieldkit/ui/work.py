@@ -27,8 +27,11 @@ Stop = Callable[[], bool]
 def warm() -> None:
     """Load the slow libraries, so that the first answer does not wait for them."""
     import scipy.linalg
+    import scipy.ndimage
     import scipy.optimize
-    import scipy.signal  # noqa: F401
+    import scipy.sparse.csgraph
+    import scipy.sparse.linalg
+    import scipy.special  # noqa: F401
 
     from fieldkit import workup  # noqa: F401
     from fieldkit.quantity import show
@@ -56,7 +59,8 @@ def work_up(job: Job, ticket: int, post: Post, stop: Stop) -> None:
         from fieldkit import workup
 
         post(_span_modes(job, ticket))
-        post(say.WorkupReady(ticket, workup.run(job, progress)))
+        found = workup.run(job, progress, lambda part: post(say.PartReady(ticket, part)))
+        post(say.WorkupReady(ticket, found))
     except Cancelled:
         post(say.WorkStopped(ticket))
     except FieldkitError as error:

@@ -31,7 +31,7 @@ def job_path(tmp_path: Path) -> Path:
 def quick(monkeypatch: pytest.MonkeyPatch) -> None:
     """Results come from the made-up workup instead of the solver."""
 
-    def run(job: Job, progress: Progress) -> chain.Workup:
+    def run(job: Job, progress: Progress, _on_part: object) -> chain.Workup:
         progress.step("tap", 0.0)
         return glycol.workup(job)
 

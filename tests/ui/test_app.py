@@ -132,7 +132,7 @@ async def test_where_no_fix_is_enough_that_is_said(
     app: FieldkitApp, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     short = replace(glycol.DETUNING, fixes=glycol.FIXES[1:])
-    monkeypatch.setattr(chain, "run", lambda job, _: glycol.workup(job, detuning=short))
+    monkeypatch.setattr(chain, "run", lambda job, *_: glycol.workup(job, detuning=short))
     async with opened(app) as pilot:
         await pilot.press("5")
         await settled(pilot)

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import threading
+from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
@@ -28,7 +30,7 @@ class Slow:
         self.started = threading.Event()
         self.go = threading.Event()
 
-    def __call__(self, job: Job, progress: Progress) -> chain.Workup:
+    def __call__(self, job: Job, progress: Progress, _on_part: object) -> chain.Workup:
         progress.step("tap", 0.1)
         self.started.set()
         self.go.wait(20)
@@ -62,7 +64,7 @@ async def test_a_result_that_comes_too_late_is_dropped(
     monkeypatch.setattr(chain, "run", slow)
     async with app.run_test(size=(80, 24)) as pilot:
         await until(pilot, slow.started.is_set)
-        monkeypatch.setattr(chain, "run", lambda job, _: glycol.workup(job))
+        monkeypatch.setattr(chain, "run", lambda job, *_: glycol.workup(job))
         await change_something(pilot)
         slow.go.set()
         await until(pilot, lambda: app.desk.workup is not None)
@@ -91,7 +93,7 @@ async def test_escape_closes_a_window_and_leaves_the_work_alone(
 async def test_a_fault_in_the_chain_is_a_sentence_not_a_traceback(
     app: FieldkitApp, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    def broken(_job: Job, _progress: Progress) -> chain.Workup:
+    def broken(_job: Job, _progress: Progress, _on_part: object) -> chain.Workup:
         raise ZeroDivisionError("oh")
 
     monkeypatch.setattr(chain, "run", broken)
@@ -121,7 +123,7 @@ async def test_a_refused_match_shows_why_in_its_view(
         chain.StepRefusal("match", "no plausible support explains 23 Hz; check the pipe size"),
     )
     monkeypatch.setattr(
-        chain, "run", lambda job, _: glycol.workup(job, match=None, refused=refused)
+        chain, "run", lambda job, *_: glycol.workup(job, match=None, refused=refused)
     )
     async with opened(app) as pilot:
         await pilot.press("4")
@@ -136,7 +138,7 @@ async def test_without_recordings_the_span_and_the_cure_still_answer(
     text = JobText(JOB_TEXT).without("recording", 1).without("recording", 0)
     path = tmp_path / "job.toml"
     text.save(path)
-    monkeypatch.setattr(chain, "run", lambda job, _: glycol.workup(job, match=None))
+    monkeypatch.setattr(chain, "run", lambda job, *_: glycol.workup(job, match=None))
     app = FieldkitApp(path)
     async with opened(app) as pilot:
         assert app.query_one("#step-tap", Step).state is StepState.TO_DO
@@ -145,3 +147,27 @@ async def test_without_recordings_the_span_and_the_cure_still_answer(
         await pilot.press("5")
         await settled(pilot)
         assert len(rows_of(app, "#fixes")) == 3
+
+
+async def test_each_step_is_shown_as_soon_as_it_is_done(
+    app: FieldkitApp, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """While the match still runs the taps are there and their step says done."""
+    go = threading.Event()
+
+    def step_by_step(job: Job, progress: Progress, on_part: Callable[[chain.Workup], object]):
+        whole = glycol.workup(job)
+        on_part(replace(whole, match=None, detuning=None, done=("tap", "running", "span")))
+        go.wait(20)
+        return whole
+
+    monkeypatch.setattr(chain, "run", step_by_step)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await until(pilot, lambda: app.desk.fresh != ())
+        await pilot.pause()
+        assert app.query_one("#step-tap", Step).state is StepState.DONE
+        assert app.query_one("#step-match", Step).state is StepState.WORKING
+        assert rows_of(app, "#modes")
+        go.set()
+        await settled(pilot)
+        assert app.query_one("#step-match", Step).state is StepState.DONE

@@ -9,13 +9,14 @@ from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical, VerticalScroll
 from textual.widgets import DataTable
 
+from fieldkit.sheet.plain import percent
 from fieldkit.ui.messages import AdoptWanted, FixChosen
 from fieldkit.ui.plots import SHORT
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.views.base import View, plain
 from fieldkit.ui.views.fixed_span import draw_fixed
 from fieldkit.ui.widgets import SpanDrawing
-from fieldkit.ui.words import DASH, hertz, percent, ratio_percent, sentence, span_of
+from fieldkit.ui.words import DASH, hertz, ratio_percent, sentence, span_of
 
 if TYPE_CHECKING:
     from fieldkit.detune.verdict import Detuning, Nearest, Verdict

@@ -72,7 +72,7 @@ class RunningView(View):
     @property
     def _missing(self) -> str:
         """What stands where there is no curve."""
-        if self.desk.working and self.desk.has("running"):
+        if self.desk.awaits("running") and self.desk.has("running"):
             return "Reading the recording ..."
         return " ".join(map(sentence, self.desk.refusals("running"))) or NO_RECORDING
 

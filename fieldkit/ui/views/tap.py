@@ -99,7 +99,7 @@ class TapView(View):
     @property
     def _missing(self) -> str:
         """What stands where there is no curve."""
-        if self.desk.working and self.desk.has("tap"):
+        if self.desk.awaits("tap") and self.desk.has("tap"):
             return "Reading the taps ..."
         return " ".join(map(sentence, self.desk.refusals("tap"))) or NO_TAP
 
