@@ -19,7 +19,8 @@ from fieldkit.detune.fixes import (
 from fieldkit.span.layout import Span
 from fieldkit.span.supports import REFERENCE_DIAMETER_M
 
-MOVE_BASE = 0.8
+MOVE_BASE = 1.3
+"""A new bracket, and the old one taken away."""
 STIFFEN_BASE = 0.5
 SUPPORT_BASE = 1.0
 MASS_BASE = 0.4

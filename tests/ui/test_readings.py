@@ -6,9 +6,10 @@ from dataclasses import replace
 
 import pytest
 
+from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
 from fieldkit.ui.readings import order_of, reading
-from fieldkit.ui.words import percent, plus_minus, sentence
+from fieldkit.ui.words import plus_minus, sentence
 from tests.ui.glycol import DETUNING, EVIDENCE, FIXES, job, workup
 
 FULL = Desk(job=job(), workup=workup())
