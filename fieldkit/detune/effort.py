@@ -24,6 +24,8 @@ MOVE_BASE = 1.3
 STIFFEN_BASE = 0.5
 SUPPORT_BASE = 1.0
 MASS_BASE = 0.4
+MASS_SHARE_WEIGHT = 3.0
+"""Per share of the pipe's own mass: heavy clamps load supports and sag the line."""
 VALVE_BASE = 1.2
 """Taking out, changing or moving an item that is part of the line."""
 SECOND_DIRECTION = 0.25
@@ -45,7 +47,7 @@ def effort(change: Change, span: Span) -> float:
     if isinstance(change, MoveSupport):
         return MOVE_BASE + PER_METRE_MOVED * abs(change.to_m - span.supports[change.index].at_m)
     if isinstance(change, AddMass):
-        return MASS_BASE + 2 * change.mass_kg / pipe_mass_kg(span)
+        return MASS_BASE + MASS_SHARE_WEIGHT * change.mass_kg / pipe_mass_kg(span)
     if isinstance(change, SetMass):
         old = span.masses[change.index].mass_kg
         return VALVE_BASE + abs(change.mass_kg - old) / old
