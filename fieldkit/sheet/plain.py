@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import textwrap
 from collections.abc import Sequence
 
@@ -20,6 +21,18 @@ def percent(chance: float) -> str:
     if chance >= 0.995:
         return ">99 %"
     return "<1 %" if chance < 0.005 else f"{100 * chance:.0f} %"
+
+
+def with_doubt(value: float, sd: float | None, most_decimals: int = 4) -> tuple[str, str]:
+    """A value and its standard deviation to the digits the deviation leaves standing."""
+    if sd is None:
+        return f"{value:.2f}", "-"
+    decimals = most_decimals
+    if sd > 0:
+        decimals = min(most_decimals, max(0, 1 - math.floor(math.log10(sd))))
+    least = 10.0**-most_decimals
+    shown = f"<{least:.{most_decimals}f}" if sd < least else f"{sd:.{decimals}f}"
+    return f"{value:.{decimals}f}", shown
 
 
 def table(head: Sequence[str], rows: Sequence[Sequence[str]], indent: int = 2) -> list[str]:

@@ -9,7 +9,7 @@ from fieldkit.detune.match import Match
 from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.job.document import Job
 from fieldkit.quantity import show
-from fieldkit.sheet.plain import clean, paragraph, percent, table
+from fieldkit.sheet.plain import clean, paragraph, percent, table, with_doubt
 from fieldkit.signal.modes import MeasuredMode
 from fieldkit.span.static import WeightAnswer
 from fieldkit.workup import RunningReading, StateModes, TapReading, excitation_of
@@ -202,10 +202,8 @@ def _modes_table(modes: Sequence[MeasuredMode]) -> list[str]:
             ("Hz", "± Hz", "damping %", "± %", "direction", "state", "taps", "strength"),
             [
                 (
-                    f"{mode.frequency_hz:.3f}",
-                    f"{mode.frequency_sd_hz:.3f}",
-                    "-" if mode.damping_ratio is None else f"{100 * mode.damping_ratio:.2f}",
-                    "-" if mode.damping_sd is None else f"{100 * mode.damping_sd:.2f}",
+                    *with_doubt(mode.frequency_hz, mode.frequency_sd_hz),
+                    *_damping(mode),
                     mode.direction or "unknown",
                     mode.state,
                     str(mode.taps) if mode.taps else "typed",
@@ -217,6 +215,14 @@ def _modes_table(modes: Sequence[MeasuredMode]) -> list[str]:
         if modes
         else []
     )
+
+
+def _damping(mode: MeasuredMode) -> tuple[str, str]:
+    """Damping and its doubt, per cent."""
+    if mode.damping_ratio is None:
+        return "-", "-"
+    sd = None if mode.damping_sd is None else 100 * mode.damping_sd
+    return with_doubt(100 * mode.damping_ratio, sd, most_decimals=3)
 
 
 def _judged_table(modes: Sequence[JudgedMode]) -> list[str]:

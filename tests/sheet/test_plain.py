@@ -2,10 +2,11 @@
 
 from __future__ import annotations
 
+import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from fieldkit.sheet.plain import WIDTH, clean, paragraph, table
+from fieldkit.sheet.plain import WIDTH, clean, paragraph, table, with_doubt
 
 
 @given(st.text())
@@ -25,3 +26,18 @@ def test_numbers_stand_to_the_right_and_words_to_the_left():
 @given(st.text(alphabet="abc def", min_size=1, max_size=400))
 def test_paragraphs_keep_to_the_page(text):
     assert all(len(line) <= WIDTH for line in paragraph(text, 4, "- "))
+
+
+@pytest.mark.parametrize(
+    ("value", "sd", "shown"),
+    [
+        (53.02834, 0.00123, ("53.0283", "0.0012")),
+        (53.02834, 0.00001, ("53.0283", "<0.0001")),
+        (53.02834, 0.234, ("53.03", "0.23")),
+        (53.02834, 12.0, ("53", "12")),
+        (53.02834, 0.0, ("53.0283", "<0.0001")),
+        (53.02834, None, ("53.03", "-")),
+    ],
+)
+def test_digits_follow_the_doubt(value, sd, shown):
+    assert with_doubt(value, sd) == shown
