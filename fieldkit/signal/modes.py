@@ -21,6 +21,10 @@ from fieldkit.signal.verdicts import Judged, judged
 _LEAST_SAMPLES = 64
 
 
+WORTH_SAYING = 2e-3
+"""Taps that differ by less, relative, only widen the stated uncertainty."""
+
+
 @dataclass(frozen=True)
 class TapRecord:
     """One usable tap cut out of a recording, ready for estimation."""
@@ -193,7 +197,13 @@ def warnings(modes: Sequence[Judged], ready: Prepared) -> list[str]:
             "leave two quiet seconds before the first tap"
         )
     out += [unresolved(v) for v in modes if v.two]
-    return out + [drift(v) for v in modes if v.estimate.scattered]
+    return out + [drift(v) for v in modes if v.estimate.scattered and spread(v) > WORTH_SAYING]
+
+
+def spread(verdict: Judged) -> float:
+    """Range of a mode's frequency over the taps, relative."""
+    frequency_hz = verdict.estimate.tap_frequencies_hz
+    return float(np.ptp(frequency_hz) / verdict.estimate.frequency_hz.value)
 
 
 def unresolved(verdict: Judged) -> str:
@@ -208,7 +218,7 @@ def drift(verdict: Judged) -> str:
     """How the taps disagree about one mode."""
     frequency_hz, peaks = verdict.estimate.tap_frequencies_hz, verdict.estimate.tap_peaks
     where = f"the taps disagree about the mode at {verdict.estimate.frequency_hz.value:.4g} Hz"
-    span = f"{frequency_hz.min():.4g} to {frequency_hz.max():.4g} Hz"
+    span = f"{frequency_hz.min():.2f} to {frequency_hz.max():.2f} Hz"
     if len(peaks) < 3 or np.ptp(peaks) < 0.2 * peaks.max():
         return f"{where} ({span}): its uncertainty is widened"
     rank = float(np.corrcoef(peaks, frequency_hz)[0, 1])
