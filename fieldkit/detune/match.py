@@ -13,6 +13,7 @@ from fieldkit.detune import posterior
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.field import AXES, Field, field
 from fieldkit.detune.likelihood import DOUBTFUL_PEAK_RATE, FALSE_PEAK_RATE, Peaks
+from fieldkit.detune.matched import Ensemble, Match, ModelMode, Pair, ParameterReading
 from fieldkit.detune.posterior import Population, Problem, Seen
 from fieldkit.detune.reduced import ReducedModel, build
 from fieldkit.detune.tracking import follow, followed
@@ -35,86 +36,6 @@ FAINT = 0.02
 HEAVY_DAMPING = 0.06
 MARGIN_ABOVE_TYPED = 1.08
 """Typed-in peaks: nobody looked for modes higher than this times the highest one."""
-
-
-@dataclass(frozen=True)
-class ParameterReading:
-    """One unknown after the match, beside what was believed before."""
-
-    name: str
-    unit: str
-    prior_median: float
-    prior_low: float
-    prior_high: float
-    median: float
-    low: float
-    """5 %."""
-    high: float
-    """95 %."""
-    informed: bool
-    """Whether the tap narrowed it."""
-
-
-@dataclass(frozen=True)
-class Pair:
-    """A measured mode beside the computed one it is taken for."""
-
-    mode: int
-    """Number of the computed mode, from 1."""
-    measured: MeasuredMode
-    prior_hz: float
-    """Computed before the match, every unknown at its prior median."""
-    model_hz: float
-    """Ensemble median."""
-    low_hz: float
-    high_hz: float
-    direction: str
-    handbook_hz: float | None
-    """Handbook estimate, where it speaks of this mode (the first)."""
-
-
-@dataclass(frozen=True)
-class Ensemble:
-    """Weighted parameter sets that agree with the evidence."""
-
-    names: tuple[str, ...]
-    standard: NDArray[np.float64]
-    """(members, parameters) in standard-normal coordinates of the prior."""
-    weights: NDArray[np.float64]
-    """(members,) summing to 1."""
-
-    @property
-    def effective_size(self) -> float:
-        """Number of equally weighted members that would say as much."""
-        return float(1 / np.sum(self.weights**2))
-
-
-@dataclass(frozen=True)
-class ModelMode:
-    """One mode of the ensemble in one state."""
-
-    median_hz: float
-    low_hz: float
-    """5 %."""
-    high_hz: float
-    """95 %."""
-    direction: str
-    where_m: float
-    """Station where it moves most."""
-
-
-@dataclass(frozen=True)
-class Match:
-    """Everything the match has to say."""
-
-    measured: tuple[MeasuredMode, ...]
-    pairs: tuple[Pair, ...]
-    unpaired: tuple[MeasuredMode, ...]
-    parameters: tuple[ParameterReading, ...]
-    ensemble: Ensemble
-    tapped_modes: tuple[ModelMode, ...]
-    next_measurement: str
-    warnings: tuple[str, ...] = ()
 
 
 def match(

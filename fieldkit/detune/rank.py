@@ -14,7 +14,7 @@ from fieldkit.detune.cautions import Resting, at_rest, cautions
 from fieldkit.detune.effort import effort
 from fieldkit.detune.excitation import Band, Excitation, Goal, bands
 from fieldkit.detune.field import Field, field
-from fieldkit.detune.match import Match
+from fieldkit.detune.matched import Match
 from fieldkit.detune.reduced import build
 from fieldkit.detune.screen import as_installed, counter
 from fieldkit.detune.unknowns import unknowns_of

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 from typing import Any
 
 from fieldkit.detune.evidence import Evidence
-from fieldkit.detune.match import Match, Pair, ParameterReading
+from fieldkit.detune.matched import Match, Pair, ParameterReading
 from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.job.document import Job
 from fieldkit.signal.modes import MeasuredMode

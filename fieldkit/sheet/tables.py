@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 
 from fieldkit.detune.evidence import Evidence
-from fieldkit.detune.match import Match
+from fieldkit.detune.matched import Match
 from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.job.document import Job
 from fieldkit.quantity import show

@@ -9,7 +9,8 @@ import numpy as np
 
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.excitation import Excitation, Goal
-from fieldkit.detune.match import Match, match
+from fieldkit.detune.match import match
+from fieldkit.detune.matched import Match
 from fieldkit.detune.rank import detune
 from fieldkit.detune.unknowns import member_span, unknowns_of
 from fieldkit.detune.verdict import Detuning

@@ -11,7 +11,7 @@ import numpy as np
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.excitation import Excitation, Goal, bands
 from fieldkit.detune.fixes import AddMass, AddSupport, StiffenSupport
-from fieldkit.detune.match import Ensemble, Match, ModelMode, Pair, ParameterReading
+from fieldkit.detune.matched import Ensemble, Match, ModelMode, Pair, ParameterReading
 from fieldkit.detune.verdict import Detuning, JudgedMode, Nearest, Verdict
 from fieldkit.job.document import Job, RecordingEntry
 from fieldkit.signal.modes import MeasuredMode, RefusedMode, TapRecord, Tone

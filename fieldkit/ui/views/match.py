@@ -13,7 +13,7 @@ from fieldkit.ui.views.base import View, plain
 from fieldkit.ui.words import DASH, hertz, plus_minus, sentence, span_of
 
 if TYPE_CHECKING:
-    from fieldkit.detune.match import Match, Pair, ParameterReading
+    from fieldkit.detune.matched import Match, Pair, ParameterReading
 
 
 class MatchView(View):

@@ -32,6 +32,9 @@ BESIDE = {"rest": 1, "hanger": -1}
 """Kinds that stand below or hang above the pipe: rows from it, down counted positive."""
 MASS_GLYPH, MARK_GLYPH = "●", "◎"
 SHAPE_SHARE, LEAST_SHAPE_DOTS = 0.2, 3.0
+MARGIN_SHARE, MOST_ABOVE, MOST_BELOW = 0.3, 2, 3
+CELL_HEIGHT = 2
+"""Widths of a cell."""
 
 
 class Shape(Protocol):
@@ -98,7 +101,7 @@ def draw_span(canvas: Canvas, picture: Picture) -> None:
     flat = plane.project(points)
     roomy = canvas.columns >= 24 and canvas.rows >= 6
     side = min(10, canvas.columns / 6) if roomy else 1
-    above, below = (2, 3) if roomy else (0, 0)
+    above, below = _margins(canvas.rows) if roomy else (0, 0)
     onto = fit(
         flat,
         2 * side,
@@ -111,13 +114,20 @@ def draw_span(canvas: Canvas, picture: Picture) -> None:
         _draw_shape(canvas, picture.shape, plane, stations, line)
     canvas.polyline(line[:, 0], line[:, 1], "pipe")
     items = _items(picture)
-    places = _places(onto, plane, picture.span, items)
+    places = _places(onto, plane, picture.span, items, canvas.rows - bool(below))
     for item, (column, row) in zip(items, places, strict=True):
         canvas.write(row, column, item.glyph, item.ink)
     if roomy:
         _write_foot(canvas, picture, plane, onto)
-        for item, (column, row) in zip(items, places, strict=True):
-            _write_label(canvas, column, row, item)
+        for item, place in zip(items, places, strict=True):
+            _write_label(canvas, place, item, [other for other in places if other != place])
+
+
+def _margins(rows: int) -> tuple[int, int]:
+    """Rows kept free above and below the pipe, the foot among them; the pipe has most of them."""
+    spare = int(MARGIN_SHARE * rows)
+    above = min(MOST_ABOVE, spare // 2)
+    return above, min(MOST_BELOW, max(1, spare - above))
 
 
 def _displacement(shape: Shape, stations: Floats) -> Floats:
@@ -162,13 +172,16 @@ def _items(picture: Picture) -> list[Item]:
     return items
 
 
-def _places(onto: Fit, plane: Plane, span: Span, items: list[Item]) -> list[tuple[int, int]]:
+def _places(
+    onto: Fit, plane: Plane, span: Span, items: list[Item], rows: int
+) -> list[tuple[int, int]]:
     """(column, row) of each glyph; what would cover an earlier one moves a cell aside."""
     found: list[tuple[int, int]] = []
     for item in items:
         column, row = _cell(onto, plane, span, item)
-        asides = ((0, 0), (0, 1), (0, -1), (1, 0), (-1, 0))
-        free = [(column + a, row + d) for a, d in asides if (column + a, row + d) not in found]
+        row = min(max(row, 0), rows - 1)
+        asides = [(column + a, row + d) for a, d in ((0, 0), (0, 1), (0, -1), (1, 0), (-1, 0))]
+        free = [place for place in asides if place not in found and 0 <= place[1] < rows]
         found.append(free[0] if free else (column, row))
     return found
 
@@ -180,16 +193,29 @@ def _cell(onto: Fit, plane: Plane, span: Span, item: Item) -> tuple[int, int]:
     return int(column), int(row) + (item.rows_off if plane.up[2] else 0)
 
 
-def _write_label(canvas: Canvas, column: int, row: int, item: Item) -> None:
-    """The longest wording that fits on blank cells nearby, as close as can be."""
+def _write_label(
+    canvas: Canvas, place: tuple[int, int], item: Item, others: list[tuple[int, int]]
+) -> None:
+    """The longest wording that fits on blank cells nearer to its glyph than to any other."""
+    column, row = place
     for wording in item.wordings:
         width = cell_len(wording)
         for down, start in _around(column, width):
             first, end = max(0, start - 1), min(canvas.columns, start + width + 1)
             fits = start >= 0 and start + width <= canvas.columns
-            if fits and canvas.blank(row + down, first, end):
+            if not fits or not canvas.blank(row + down, first, end):
+                continue
+            own = _distance(place, row + down, start, width)
+            if all(own < _distance(other, row + down, start, width) for other in others):
                 canvas.write(row + down, start, wording, item.ink)
                 return
+
+
+def _distance(place: tuple[int, int], row: int, start: int, width: int) -> float:
+    """From a glyph to the nearest end of a label, in widths of a cell."""
+    column = place[0]
+    across = max(start - column, column - (start + width - 1), 0)
+    return math.hypot(across, CELL_HEIGHT * (place[1] - row))
 
 
 def _around(column: int, width: int) -> list[tuple[int, int]]:

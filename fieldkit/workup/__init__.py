@@ -1,0 +1,45 @@
+"""The whole chain for one job: load, evidence, span, match, detune."""
+
+from fieldkit.workup.chain import (
+    StateModes,
+    StepRefusal,
+    Workup,
+    at_rest,
+    detuning,
+    gather,
+    matching,
+    run,
+    state_modes,
+)
+from fieldkit.workup.evidence import evidence_from
+from fieldkit.workup.readings import (
+    RunningReading,
+    TapReading,
+    entry_for,
+    excitation_of,
+    read_running_entry,
+    read_tap,
+    running_readings,
+    tap_readings,
+)
+
+__all__ = [
+    "RunningReading",
+    "StateModes",
+    "StepRefusal",
+    "TapReading",
+    "Workup",
+    "at_rest",
+    "detuning",
+    "entry_for",
+    "evidence_from",
+    "excitation_of",
+    "gather",
+    "matching",
+    "read_running_entry",
+    "read_tap",
+    "run",
+    "running_readings",
+    "state_modes",
+    "tap_readings",
+]

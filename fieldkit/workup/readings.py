@@ -1,0 +1,152 @@
+"""Recordings of a job, loaded and read one by one."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.detune.excitation import Excitation
+from fieldkit.errors import InputError
+from fieldkit.job.document import Job, RecordingEntry
+from fieldkit.progress import Progress
+from fieldkit.signal.modes import TapRecord
+from fieldkit.signal.recording import Recording, channel_signal, load
+from fieldkit.signal.running import RunningPicture, read_running
+from fieldkit.signal.spectrum import Spectrum, tap_spectrum
+from fieldkit.signal.taps import TapSearch, cut, find_taps
+
+
+@dataclass(frozen=True)
+class TapReading:
+    """One tap recording, read."""
+
+    file: str
+    rate_hz: float
+    channels: int
+    duration_s: float
+    search: TapSearch
+    records: tuple[TapRecord, ...]
+    """The usable taps, cut out."""
+    spectrum: Spectrum | None
+    """Averaged over its usable taps; None when it has none."""
+    entry: RecordingEntry
+    notes: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class RunningReading:
+    """One running recording, read."""
+
+    file: str
+    rate_hz: float
+    channels: int
+    duration_s: float
+    picture: RunningPicture
+    entry: RecordingEntry
+    notes: tuple[str, ...] = ()
+
+
+def tap_readings(entries: Sequence[RecordingEntry], progress: Progress) -> tuple[TapReading, ...]:
+    """Load recordings and find their taps."""
+    found = []
+    for i, entry in enumerate(entries):
+        progress.step(f"reading {entry.path.name}", 0.5 * i / len(entries))
+        found.append(read_tap(entry))
+    return tuple(found)
+
+
+def read_tap(entry: RecordingEntry) -> TapReading:
+    """One tap recording: its blows, which of them are usable, and their mean spectrum."""
+    recording, signal = _channel(entry)
+    search = find_taps(signal, recording.rate_hz, full_scale=recording.full_scale)
+    records = cut(signal, recording.rate_hz, search, source=entry.path.name)
+    spectrum = None
+    if records:
+        quantity, scale = _meaning(entry, recording)
+        spectrum = tap_spectrum(
+            [record.samples for record in records],
+            recording.rate_hz,
+            quantity=quantity,
+            scale=scale,
+        )
+    return TapReading(
+        entry.path.name,
+        recording.rate_hz,
+        len(recording.channels),
+        recording.duration_s,
+        search,
+        records,
+        spectrum,
+        entry,
+        recording.notes,
+    )
+
+
+def running_readings(job: Job, progress: Progress) -> tuple[RunningReading, ...]:
+    """All running recordings of a job."""
+    entries = job.recordings_of("running")
+    found = []
+    for i, entry in enumerate(entries):
+        progress.step(f"reading {entry.path.name}", i / len(entries))
+        found.append(read_running_entry(entry))
+    return tuple(found)
+
+
+def read_running_entry(entry: RecordingEntry) -> RunningReading:
+    """One running recording: its lines and its level."""
+    recording, signal = _channel(entry)
+    quantity, scale = _meaning(entry, recording)
+    picture = read_running(
+        signal,
+        recording.rate_hz,
+        quantity=quantity,
+        scale=scale,
+        full_scale=recording.full_scale,
+    )
+    return RunningReading(
+        entry.path.name,
+        recording.rate_hz,
+        len(recording.channels),
+        recording.duration_s,
+        picture,
+        entry,
+        recording.notes,
+    )
+
+
+def entry_for(
+    path: Path, kind: str, channel: int = 1, rate_hz: float | None = None
+) -> RecordingEntry:
+    """A recording that no job describes: uncalibrated, direction unknown."""
+    return RecordingEntry(path, kind, kind.replace("tap", "tapped"), channel, rate_hz=rate_hz)
+
+
+def excitation_of(
+    frequency_hz: float, excitations: Sequence[Excitation], tolerance: float = 0.02
+) -> str | None:
+    """Name of the excitation whose range holds a running line, within a relative tolerance."""
+    for excitation in excitations:
+        for name, low, high in excitation.ranges():
+            if low * (1 - tolerance) <= frequency_hz <= high * (1 + tolerance):
+                return name
+    return None
+
+
+def _channel(entry: RecordingEntry) -> tuple[Recording, NDArray[np.float64]]:
+    recording = load(entry.path, rate_hz=entry.rate_hz)
+    try:
+        return recording, channel_signal(recording, entry.channel)
+    except InputError as error:
+        raise error.at(file=entry.path) from error
+
+
+def _meaning(entry: RecordingEntry, recording: Recording) -> tuple[str | None, float | None]:
+    """Quantity and scale of a channel: the job's word first, then the file's own."""
+    channel = recording.channels[entry.channel - 1]
+    if entry.scale is None and channel.scale is not None:
+        return channel.quantity, channel.scale
+    return entry.quantity, entry.scale
