@@ -81,7 +81,7 @@ WRONG_VALUES = [
      "guide, rest, hanger or free"),
     ('"2 MN/m"', '"-2 MN/m"', "support[1].lateral", "a stiffness cannot be negative"),
     ('"2 MN/m"', '"stiff"', "support[1].lateral", 'or "rigid", "free" or "unknown"'),
-    ('"2 MN/m"', '"2 MN"', "support[1].lateral", "'MN' is not a unit of a stiffness"),
+    ('"2 MN/m"', '"2 MN"', "support[1].lateral", "'MN' is the unit of a force, not of a stiffness"),
     ('rotation = "rigid"', 'rotation = "2 MN/m"', "support[1].rotation",
      "'MN/m' is the unit of a stiffness, not of a rotational stiffness"),
     ('axial = "free"', 'z = "1 MN/m"', "support[1].z", "vertical and z hold the same direction"),
