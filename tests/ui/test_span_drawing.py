@@ -33,6 +33,18 @@ ELBOW = span_of(
     supports=(Support(0.0, "anchor"), Support(3.0, "clamp"), Support(6.3, "nozzle")),
     masses=(PointMass(2.0, 24.0, "check valve"),),
 )
+RISER = span_of(
+    (X, 1.5),
+    (Z, 2.4),
+    (Y, 2.4),
+    supports=(
+        Support(0.0, "anchor"),
+        Support(2.3, "guide"),
+        Support(4.8, "hanger"),
+        Support(6.3, "clamp"),
+    ),
+    masses=(PointMass(4.35, 9.0, "flange pair"),),
+)
 SPATIAL = span_of((X, 3.0), (Y, 2.0), (Z, 2.5))
 
 
@@ -180,6 +192,56 @@ def test_a_small_drawing_still_shows_supports():
     assert KIND_GLYPHS["anchor"] in text
     assert KIND_GLYPHS["clamp"] in text
     assert "anchor" in text
+
+
+def pipe_share(span, columns, rows):
+    """The share of the canvas that the pipe takes, wide or high, the larger of the two."""
+    canvas = drawn(picture(span, marked=(2.0, "change 1")), columns, rows)
+    down, across = np.nonzero(canvas.dots)
+    return max((np.ptp(down) + 1) / canvas.dot_rows, (np.ptp(across) + 1) / canvas.dot_columns)
+
+
+@pytest.mark.parametrize(("columns", "rows"), [(40, 7), (49, 6), (30, 8), (71, 9), (70, 18)])
+@pytest.mark.parametrize("span", [RISER, ELBOW, STRAIGHT], ids=["riser", "elbow", "straight"])
+def test_the_pipe_takes_most_of_the_pane_whatever_labels_want(span, columns, rows):
+    assert pipe_share(span, columns, rows) >= 0.6
+
+
+def test_a_small_pane_keeps_every_glyph_though_not_every_word():
+    text = text_of(drawn(picture(RISER), 40, 7))
+    for glyph in ("▓", "‖", "┬", "╫", "●"):
+        assert glyph in text
+
+
+@pytest.mark.parametrize(("columns", "rows"), [(24, 6), (40, 7), (49, 6), (71, 9), (70, 18)])
+@pytest.mark.parametrize("at_m", [0.0, 1.6, 2.3, 4.43, 5.32, 6.3])
+def test_the_chosen_station_keeps_every_letter_of_its_label(at_m, columns, rows):
+    canvas = drawn(picture(RISER, wave(RISER, Y), marked=(at_m, "change 1")), columns, rows)
+    inked = "".join(run.text for row in canvas.runs() for run in row if run.ink == "marked")
+    whole = (f"change 1 {at_m:g} m", "change 1", f"{at_m:g} m")
+    assert inked.replace("◎", "") in whole
+
+
+@pytest.mark.parametrize(("columns", "rows"), [(40, 7), (49, 6), (71, 9)])
+def test_no_label_stands_among_the_words_of_the_foot(columns, rows):
+    for span in (RISER, ELBOW, STRAIGHT):
+        foot = drawn(picture(span, marked=(2.0, "change 1")), columns, rows).runs()[-1]
+        assert {run.ink for run in foot if run.text.strip()} == {"note"}
+
+
+def test_a_chosen_station_without_words_is_told_by_its_place():
+    canvas = drawn(picture(STRAIGHT, marked=(4.0, "")))
+    inked = "".join(run.text for row in canvas.runs() for run in row if run.ink == "marked")
+    assert inked.replace("◎", "") == "4 m"
+
+
+def test_a_label_stands_nearer_to_its_own_glyph_than_to_another():
+    """The flange pair hangs beside the hanger and above the guide, and is taken for neither."""
+    for columns, rows in ((40, 7), (49, 6), (71, 9)):
+        lines = drawn(picture(RISER), columns, rows).lines()
+        said = next((row for row, line in enumerate(lines) if "flange pair" in line), None)
+        mass = next(row for row, line in enumerate(lines) if "●" in line)
+        assert said is None or abs(said - mass) <= 1
 
 
 class Host(App):

@@ -154,7 +154,8 @@ def _items(picture: Picture) -> list[Item]:
     items = []
     if picture.marked is not None:
         at, words = picture.marked
-        items.append(Item(at, MARK_GLYPH, (f"{words} {length(at)}", words, length(at)), "marked"))
+        wordings = (f"{words} {length(at)}", words, length(at)) if words else (length(at),)
+        items.append(Item(at, MARK_GLYPH, wordings, "marked"))
     for mass in span.masses:
         weight = picture.mass_text(mass.mass_kg)
         items.append(
@@ -196,19 +197,32 @@ def _cell(onto: Fit, plane: Plane, span: Span, item: Item) -> tuple[int, int]:
 def _write_label(
     canvas: Canvas, place: tuple[int, int], item: Item, others: list[tuple[int, int]]
 ) -> None:
-    """The longest wording that fits on blank cells nearer to its glyph than to any other."""
-    column, row = place
+    """The longest wording that fits nearer to its glyph than to any other.
+
+    The chosen station has an ink of its own, so its label may stand farther off if need be.
+    """
+    rivalries = (others, []) if item.ink == "marked" else (others,)
     for wording in item.wordings:
-        width = cell_len(wording)
-        for down, start in _around(column, width):
-            first, end = max(0, start - 1), min(canvas.columns, start + width + 1)
-            fits = start >= 0 and start + width <= canvas.columns
-            if not fits or not canvas.blank(row + down, first, end):
-                continue
-            own = _distance(place, row + down, start, width)
-            if all(own < _distance(other, row + down, start, width) for other in others):
-                canvas.write(row + down, start, wording, item.ink)
+        for rivals in rivalries:
+            found = _label_room(canvas, place, cell_len(wording), rivals)
+            if found is not None:
+                canvas.write(*found, wording, item.ink)
                 return
+
+
+def _label_room(
+    canvas: Canvas, place: tuple[int, int], width: int, rivals: list[tuple[int, int]]
+) -> tuple[int, int] | None:
+    """(row, first column) of blank cells above the foot, nearer to ``place`` than to rivals."""
+    for down, start in _around(place[0], width):
+        row = place[1] + down
+        first, end = max(0, start - 1), min(canvas.columns, start + width + 1)
+        fits = start >= 0 and start + width <= canvas.columns
+        if fits and row < canvas.rows - 1 and canvas.blank(row, first, end):
+            own = _distance(place, row, start, width)
+            if all(own < _distance(rival, row, start, width) for rival in rivals):
+                return row, start
+    return None
 
 
 def _distance(place: tuple[int, int], row: int, start: int, width: int) -> float:
