@@ -1,4 +1,4 @@
-"""For all tests: one thread for small matrices, and generated input that never depends on the clock."""
+"""For all tests: one thread for small matrices, and no test that depends on the clock."""
 
 from __future__ import annotations
 
