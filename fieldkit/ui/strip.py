@@ -9,6 +9,7 @@ from textual.events import Click
 from textual.message import Message
 from textual.widgets import Static
 
+from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
 from fieldkit.ui.words import safe
 
@@ -44,6 +45,18 @@ class Step(Static):
         self.post_message(self.Picked(self.step))
 
 
+def verdict(desk: Desk) -> str:
+    """The answer in a few words, wherever one is; empty while there is none."""
+    found = desk.workup.detuning if desk.workup else None
+    if found is None or desk.job is None:
+        return ""
+    if found.chance_now >= desk.job.goal.chance:
+        return f"  clear as it is, chance {percent(found.chance_now)} "
+    if not found.fixes:
+        return "  no change helps: see 5 "
+    return f"  best change reaches {percent(found.fixes[0].chance)}: press 5 "
+
+
 class Strip(Vertical):
     """Title line and the six steps."""
 
@@ -61,6 +74,8 @@ class Strip(Vertical):
         title = desk.job.title if desk.job else "no job open"
         mark = "  * unsaved" if unsaved else ""
         self.query_one("#job-title", Static).update(Content(safe(f" fieldkit  {title}{mark}")))
+        if not desk.working:
+            self.query_one("#activity", Static).update(Content(safe(verdict(desk))))
         for step, state in step_states(desk).items():
             self.query_one(f"#step-{step}", Step).show(state, step == here)
 

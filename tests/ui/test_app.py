@@ -156,3 +156,11 @@ async def test_the_palette_offers_every_command(app: FieldkitApp) -> None:
     async with opened(app):
         names = {command.title for command in app.get_system_commands(app.screen)}
         assert {"Detune", "Save as", "Sample job", "Stop", "Keys"} <= names
+
+
+async def test_the_answer_is_told_at_the_top_of_every_view(app: FieldkitApp) -> None:
+    """Whoever has not found the way to Detune yet is pointed there."""
+    async with opened(app) as pilot:
+        for key in "123456":
+            await pilot.press(key)
+            assert "press 5" in text_of(app, "#activity")
