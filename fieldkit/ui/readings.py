@@ -124,7 +124,10 @@ def _strongest_line(desk: Desk, line: RunningLine) -> Reading:
     order = order_of(line.frequency_hz, desk.bands)
     name = f"on {order.name}" if order else "on no known order"
     says = f"The strongest line, {hertz(line.frequency_hz)} Hz, sits {name}"
-    mode_hz = nearest(line.frequency_hz, desk.mode_hz)
+    if line.frequency_hz > desk.up_to_hz:
+        limit = f"modes were looked for up to {hertz(desk.up_to_hz)} Hz only"
+        return Reading(says, limit, "raise up_to in the goal (3) to look there")
+    mode_hz = nearest_mode(desk, line.frequency_hz)
     if mode_hz is None:
         return Reading(says, next="tap the pipe to learn whether a mode lies there")
     apart = abs(mode_hz / line.frequency_hz - 1)
@@ -144,9 +147,11 @@ def order_of(frequency_hz: float, forbidden: tuple[Band, ...], within: float = 0
     return min(close, key=lambda band: band.separation(frequency_hz), default=None)
 
 
-def nearest(frequency_hz: float, among_hz: tuple[float, ...]) -> float | None:
-    """The frequency closest in ratio; None where there is none."""
-    return min(among_hz, key=lambda other: abs(other / frequency_hz - 1), default=None)
+def nearest_mode(desk: Desk, frequency_hz: float) -> float | None:
+    """The mode closest in ratio; None where there is none, or where none was looked for."""
+    if frequency_hz > desk.up_to_hz:
+        return None
+    return min(desk.mode_hz, key=lambda other: abs(other / frequency_hz - 1), default=None)
 
 
 def _span(desk: Desk) -> Reading:
@@ -210,7 +215,7 @@ def _sheet(desk: Desk) -> Reading:
     if desk.workup is None:
         return waiting(desk, "sheet", "There is no result to write down yet")
     return Reading(
-        "What another engineer needs to check this by hand",
+        "The advice as text, with what it rests on",
         next="save it with w; have it checked before anything is cut, welded or clamped",
     )
 

@@ -8,7 +8,7 @@ import pytest
 
 from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
-from fieldkit.ui.readings import order_of, reading
+from fieldkit.ui.readings import nearest_mode, order_of, reading
 from fieldkit.ui.words import plus_minus, sentence
 from tests.ui.glycol import DETUNING, EVIDENCE, FIXES, job, workup
 
@@ -115,3 +115,10 @@ def test_a_sentence_starts_with_a_capital_and_ends() -> None:
     assert sentence("tap again") == "Tap again."
     assert sentence("Why?") == "Why?"
     assert sentence("") == ""
+
+
+def test_nothing_is_claimed_about_a_line_above_the_highest_mode_looked_at() -> None:
+    assert FULL.job is not None
+    low_limit = replace(FULL, job=replace(FULL.job, goal=replace(FULL.job.goal, up_to_hz=40.0)))
+    assert nearest_mode(low_limit, 49.1) is None
+    assert "up to 40.0 Hz only" in str(reading("running", low_limit))

@@ -10,7 +10,7 @@ from textual.widgets import DataTable
 
 from fieldkit.ui.messages import AddWanted, EditWanted
 from fieldkit.ui.plots import running_marks, shaded, spectrum_curve, unit_of
-from fieldkit.ui.readings import nearest, order_of
+from fieldkit.ui.readings import nearest_mode, order_of
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import level
 from fieldkit.ui.views.base import View, plain
@@ -78,11 +78,10 @@ class RunningView(View):
 
     def _rows(self, found: RunningReading) -> list[Row]:
         unit = found.picture.spectrum.unit
-        modes_hz = self.desk.mode_hz
         rows: list[Row] = []
         for line in found.picture.lines:
             order = order_of(line.frequency_hz, self.desk.bands)
-            mode_hz = nearest(line.frequency_hz, modes_hz)
+            mode_hz = nearest_mode(self.desk, line.frequency_hz)
             apart = DASH if mode_hz is None else ratio_percent(abs(mode_hz / line.frequency_hz - 1))
             cells = (
                 f"{line.frequency_hz:.2f}",
