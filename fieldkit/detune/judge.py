@@ -96,17 +96,18 @@ def _spectrum(field: Field, frequency_hz: Array, vector: Array, up_to_hz: float)
 
 
 def corrected(
-    spectrum: Spectrum, field: Field, exact_hz: Sequence[float]
+    spectrum: Spectrum, field: Field, exact_hz: Sequence[float], up_to_hz: float
 ) -> tuple[Spectrum, float]:
     """Scale each mode by exact over reduced frequency at the central member.
 
-    Returns the scaled spectrum and the largest relative correction among the compared modes.
+    Returns the scaled spectrum and the largest relative correction of a mode up to the limit.
     """
     central = spectrum.all_hz[field.central]
     central = central[~np.isnan(central)]
     count = min(len(central), len(exact_hz))
     ratio = np.asarray(exact_hz[:count]) / central[:count]
-    worst = float(np.max(np.abs(ratio - 1), initial=0.0))
+    looked_at = np.asarray(exact_hz[:count]) <= up_to_hz
+    worst = float(np.max(np.abs(ratio - 1), initial=0.0, where=looked_at))
     if not count:
         return spectrum, worst
     tracked = np.interp(spectrum.frequency_hz, central[:count], ratio)

@@ -177,7 +177,7 @@ def _checked(
     spectrum = judge.after(base, push, goal.up_to_hz) if push else judge.now(base, goal.up_to_hz)
     change = candidate.change if candidate else None
     exact = judge.resolve(base, span, running, change, 1.3 * goal.up_to_hz)
-    return judge.corrected(spectrum, base, exact)
+    return judge.corrected(spectrum, base, exact, goal.up_to_hz)
 
 
 def _judge(search: Search, running: State, candidate: Candidate) -> _Judged:

@@ -45,6 +45,12 @@ def test_shown_frequencies_are_those_of_the_changed_span():
         assert sorted(shown) == pytest.approx(after[: len(shown)], rel=0.03)
 
 
+def test_the_quick_model_agrees_with_the_full_re_solve():
+    """Within 1 % for every mode up to the limit and every judged change, so nothing is said."""
+    _, answer = booster_answer()
+    assert not any("quick model missed" in text for text in answer.warnings)
+
+
 def test_ranked_by_chance_then_by_size():
     span, _, _ = booster()
     _, answer = booster_answer()
