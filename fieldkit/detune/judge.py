@@ -30,10 +30,13 @@ from fieldkit.span.modes import span_modes
 Array = NDArray[np.float64]
 
 KEPT_MODES = 22
-"""Modes of the base that carry the dynamics; the others act as static flexibility."""
+"""Modes of the base that carry the dynamics under added springs; the others act as static
+flexibility. Under added mass, where there is no such short cut, all of them are kept."""
 RIGID_HZ = 0.2
 """Below this a mode is a free direction of the model, not a vibration."""
 WORST_DISAGREEMENT = 0.01
+"""Beyond this the user is told; on a hot line a change of axial restraint alone can cause it, since
+the quick model keeps the axial force of the span as it is."""
 
 
 @dataclass(frozen=True)
@@ -66,7 +69,7 @@ def after(field: Field, push: Push, up_to_hz: float) -> Spectrum:
 
 def _pushed(base: Field, push: Push) -> Modes:
     shape = push.moved_by if push.moved_by is not None else base.motion(push.ports)
-    kept = min(KEPT_MODES, shape.shape[2])
+    kept = min(KEPT_MODES, shape.shape[2]) if push.mass is None else shape.shape[2]
     low, high = shape[:, :, :kept], shape[:, :, kept:]
     members, ports = shape.shape[:2]
     stiffness = base.modes.eigenvalue[:, :kept, None] * np.eye(kept)
