@@ -139,6 +139,7 @@ def _running_recording(reading: RunningReading, job: Job | None) -> Document:
         "unit": picture.spectrum.unit,
         "overall": {
             "rms": picture.overall_rms,
+            "velocity_rms_m_per_s": picture.velocity_rms_m_per_s,
             "low_hz": picture.low_hz,
             "high_hz": picture.high_hz,
         },

@@ -48,7 +48,8 @@ def running(readings: Sequence[RunningReading], job: Job | None) -> list[str]:
         unit = picture.spectrum.unit
         lines += [
             f"{clean(reading.file)}: {reading.duration_s:.1f} s at {reading.rate_hz:g} Hz, "
-            f"overall {picture.overall_rms:.3g} {unit} rms from {picture.low_hz:g} to "
+            f"overall {picture.overall_rms:.3g} {unit} rms"
+            f"{_as_velocity(picture.velocity_rms_m_per_s, job)}, {picture.low_hz:g} to "
             f"{picture.high_hz:g} Hz",
             *table(
                 ("line Hz", f"rms {unit}", "over background", "steady", "sits on"),
@@ -67,6 +68,11 @@ def running(readings: Sequence[RunningReading], job: Job | None) -> list[str]:
             "",
         ]
     return lines[:-1] if lines else ["No running recording."]
+
+
+def _as_velocity(rms_m_per_s: float | None, job: Job | None) -> str:
+    units = job.units if job else "SI"
+    return "" if rms_m_per_s is None else f" = {show(rms_m_per_s, 'velocity', units)} rms velocity"
 
 
 def span(

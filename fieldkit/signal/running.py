@@ -9,14 +9,21 @@ from numpy.typing import NDArray
 
 from fieldkit.errors import InputError, Refusal
 from fieldkit.signal.health import clipping, offset_and_drift, unsteady_level
-from fieldkit.signal.integration import CORNER_HZ
-from fieldkit.signal.spectrum import SAMPLE_UNITS, Spectrum, overall_rms, running_spectrum
+from fieldkit.signal.integration import CORNER_HZ, frequency_factor
+from fieldkit.signal.spectrum import (
+    SAMPLE_UNITS,
+    Spectrum,
+    overall_rms,
+    power_density,
+    running_spectrum,
+)
 from fieldkit.signal.steady_lines import RunningLine, find_lines
 from fieldkit.signal.welch import LOWEST_LINE
 from fieldkit.signal.windows import HANN
 
 __all__ = ["RunningLine", "RunningPicture", "read_running"]
 
+_INTEGRALS_TO_VELOCITY = {"acceleration": 1, "velocity": 0, "displacement": -1}
 HIGHEST_SHARE_OF_RATE = 1 / 2.56
 """Where the filters of recorders begin to cut (common practice, no source)."""
 
@@ -33,6 +40,8 @@ class RunningPicture:
     low_hz: float
     high_hz: float
     warnings: tuple[str, ...] = ()
+    velocity_rms_m_per_s: float | None = None
+    """The same level as velocity; None where the channel is uncalibrated or measures no motion."""
 
 
 def read_running(
@@ -69,7 +78,26 @@ def read_running(
             *unsteady_level(vibration),
             *_short_record(len(signal) / rate_hz, low_hz),
         ),
+        velocity_rms_m_per_s=_velocity_rms(vibration, rate_hz, quantity, scale, **band),
     )
+
+
+def _velocity_rms(
+    vibration: NDArray[np.float64],
+    rate_hz: float,
+    quantity: str | None,
+    scale: float | None,
+    low_hz: float,
+    high_hz: float,
+) -> float | None:
+    """Velocity between two frequencies, from the power density divided by (2 pi f)^2 as needed."""
+    if scale is None or quantity not in _INTEGRALS_TO_VELOCITY:
+        return None
+    frequency_hz, density = power_density(vibration, rate_hz, scale=scale, low_hz=low_hz)
+    kept = (frequency_hz >= low_hz) & (frequency_hz <= high_hz)
+    factor = frequency_factor(frequency_hz[kept], _INTEGRALS_TO_VELOCITY[quantity], low_hz)
+    step_hz = frequency_hz[1] - frequency_hz[0]
+    return float(np.sqrt(np.sum(density[kept] * factor**2) * step_hz))
 
 
 def _upper_limit(

@@ -206,3 +206,21 @@ def test_samples_that_are_not_finite_are_refused(bad):
     signal[100] = bad
     with pytest.raises(InputError, match="not finite"):
         read_running(signal, RATE_HZ)
+
+
+@pytest.mark.parametrize(
+    ("quantity", "rms"),
+    [("acceleration", 9.80665), ("velocity", 9.80665e-3), ("displacement", 9.80665e-6)],
+)
+def test_the_level_is_told_as_velocity_too(quantity, rms):
+    """1 g rms at 1000 rad/s is 9.807 mm/s is 9.807 um (arithmetic of the 159.155 Hz convention)."""
+    rate_hz = 2048.0
+    wave = np.sqrt(2) * rms / 0.5 * np.sin(1000 * np.arange(int(20 * rate_hz)) / rate_hz)
+    picture = read_running(wave, rate_hz, quantity=quantity, scale=0.5)
+    assert picture.velocity_rms_m_per_s == pytest.approx(9.80665e-3, rel=1e-3)
+
+
+def test_no_velocity_is_made_up_for_a_microphone_or_without_calibration():
+    wave = np.sin(1000 * np.arange(20_480) / 2048.0)
+    assert read_running(wave, 2048.0, quantity="pressure", scale=1.0).velocity_rms_m_per_s is None
+    assert read_running(wave, 2048.0, quantity="acceleration").velocity_rms_m_per_s is None

@@ -18,6 +18,7 @@ from fieldkit.ui.widgets import SpectrumPlot
 from fieldkit.ui.words import DASH, hertz, ratio_percent, seconds, sentence
 
 if TYPE_CHECKING:
+    from fieldkit.signal.running import RunningPicture
     from fieldkit.workup import RunningReading
 
 
@@ -103,10 +104,16 @@ class RunningView(View):
         )
         heading = (
             f"{found.file}{others}, {seconds(found.duration_s)}: overall "
-            f"{level(picture.overall_rms, picture.spectrum.unit)} RMS, "
+            f"{level(picture.overall_rms, picture.spectrum.unit)} RMS"
+            f"{self._as_velocity(picture)}, "
             f"{picture.low_hz:g} to {picture.high_hz:g} Hz"
         )
         return [heading, *refused, *map(sentence, (*found.notes, *picture.warnings))]
+
+    @staticmethod
+    def _as_velocity(picture: RunningPicture) -> str:
+        rms = picture.velocity_rms_m_per_s
+        return "" if rms is None else f" ({level(rms, 'm/s')} velocity)"
 
     @property
     def _count(self) -> int:
