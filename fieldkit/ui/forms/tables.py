@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from fieldkit.span.supports import KINDS
 from fieldkit.ui.forms.codecs import (
     Choice,
     Codec,
@@ -25,7 +26,7 @@ TURNING = Quantity("rotational_stiffness", ("rigid", "free", "unknown"))
 SHARE = Number(0.0, 1.0)
 STATE = Choice(("tapped", "running"))
 DIRECTION_OF_MOTION = Choice(("vertical", "lateral", "axial", "x", "y", "z"))
-SUPPORT_KINDS = ("anchor", "nozzle", "clamp", "u-bolt", "guide", "rest", "hanger", "free")
+SUPPORT_KINDS = tuple(KINDS)
 
 
 @dataclass(frozen=True)
