@@ -8,6 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+SAME_LINE = 0.02
+"""A line this close to an excitation, relative, is its own: plates state speeds roughly."""
+
 
 @dataclass(frozen=True)
 class Excitation:
@@ -57,6 +60,12 @@ def bands(excitations: Iterable[Excitation], margin: float) -> tuple[Band, ...]:
         for name, low, high in excitation.ranges()
     ]
     return tuple(sorted(found, key=lambda band: (band.low_hz, band.high_hz)))
+
+
+def excitation_band(frequency_hz: float, forbidden: Sequence[Band]) -> Band | None:
+    """The excitation a running line belongs to: its range holds it, or ends within 2 % of it."""
+    close = [band for band in forbidden if band.separation(frequency_hz) <= SAME_LINE]
+    return min(close, key=lambda band: band.separation(frequency_hz), default=None)
 
 
 def clear_of_all(frequency_hz: NDArray[np.float64], forbidden: Sequence[Band]) -> NDArray[np.bool_]:

@@ -17,7 +17,7 @@ from typing import Any, TypeAlias
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.detune.unknowns import Unknown, stretches
+from fieldkit.detune.unknowns import Unknown
 from fieldkit.errors import Refusal
 from fieldkit.span.layout import PointMass, Span, State
 from fieldkit.span.modes import TWIST, direction_shares, solve
@@ -25,6 +25,7 @@ from fieldkit.span.structure import (
     Structure,
     assemble,
     contents_mass,
+    segments,
     stretch_derivative,
     wall_derivative,
 )
@@ -237,7 +238,7 @@ def full_terms(span: Span, state: State, unknowns: Sequence[Unknown], up_to_hz: 
     for i, point_mass in enumerate(span.masses):
         if i not in free_masses:
             mass = mass + point_mass.mass_kg * _outer(mass_rows(structure, point_mass))
-    lengths = stretches(span)
+    lengths = segments(span)
     stiffness_terms: list[Sparse | None] = []
     mass_terms: list[Sparse | None] = []
     ports = []

@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.span.layout import Leg, PointMass, Span, State, Support
+from fieldkit.span.structure import segments
 from fieldkit.span.supports import Spring, springs
 
 Array = NDArray[np.float64]
@@ -90,14 +91,6 @@ def unknowns_of(span: Span, states: Sequence[State]) -> tuple[Unknown, ...]:
     )
 
 
-def stretches(span: Span) -> tuple[tuple[float, float], ...]:
-    """Stretches between consecutive ends, corners and supports: what a tape measures one by one."""
-    corners = np.cumsum([leg.length_m for leg in span.legs])
-    marks = {0.0, *(round(float(c), 9) for c in corners)}
-    marks |= {round(min(max(s.at_m, 0.0), span.length_m), 9) for s in span.supports}
-    return tuple((a, b) for a, b in pairwise(sorted(marks)) if b - a > 1e-6)
-
-
 def member_span(span: Span, unknowns: Sequence[Unknown], z: Array) -> Span:
     """The span with every unknown at the values of one member; ``z`` is (parameters,)."""
     value = _values(unknowns, z)
@@ -165,7 +158,7 @@ def _fill_unknown(state: State) -> Unknown:
 def _length_unknowns(span: Span) -> list[Unknown]:
     return [
         Unknown(f"length {a:g} to {b:g} m", "ratio", "length", i, 1.0, LENGTH_SD)
-        for i, (a, b) in enumerate(stretches(span))
+        for i, (a, b) in enumerate(segments(span))
     ]
 
 
@@ -188,7 +181,7 @@ class StationMap:
 def station_map(span: Span, unknowns: Sequence[Unknown], z: Array) -> StationMap:
     """Nominal to actual stations of one member; ``z`` is (parameters,)."""
     value = _values(unknowns, z)
-    pieces = stretches(span)
+    pieces = segments(span)
     knots = np.array([pieces[0][0], *(b for _, b in pieces)])
     lengths = [(b - a) * value[("length", i)] for i, (a, b) in enumerate(pieces)]
     return StationMap(knots, knots[0] + np.concatenate([[0.0], np.cumsum(lengths)]))

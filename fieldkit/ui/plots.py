@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from typing import TYPE_CHECKING
 
-from fieldkit.ui.readings import order_of
+from fieldkit.detune.excitation import excitation_band
 from fieldkit.ui.units import AMPLITUDES
 from fieldkit.ui.widgets import BandShade, Curve, Mark, TapMark
 from fieldkit.ui.words import safe
@@ -76,6 +76,6 @@ def tap_marks(desk: Desk) -> tuple[Mark, ...]:
 def running_marks(lines: Iterable[RunningLine], desk: Desk) -> tuple[Mark, ...]:
     """The strongest lines with their order, and the modes beside them."""
     strongest = sorted(lines, key=lambda line: -line.rms)[:MOST_MARKS]
-    orders = [(line, order_of(line.frequency_hz, desk.bands)) for line in strongest]
+    orders = [(line, excitation_band(line.frequency_hz, desk.bands)) for line in strongest]
     marks = tuple(Mark(line.frequency_hz, o.name if o else "", "tone") for line, o in orders)
     return (*marks, *(Mark(hz, "mode", "mode") for hz in desk.mode_hz))

@@ -7,12 +7,12 @@ from dataclasses import dataclass, replace
 from itertools import chain
 from typing import TYPE_CHECKING
 
+from fieldkit.detune.excitation import excitation_band
 from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import Desk
 from fieldkit.ui.words import count, hertz, plus_minus, ratio_percent, sentence
 
 if TYPE_CHECKING:
-    from fieldkit.detune.excitation import Band
     from fieldkit.signal.modes import MeasuredMode
     from fieldkit.signal.running import RunningLine
 
@@ -121,7 +121,7 @@ def _running(desk: Desk) -> Reading:
 
 
 def _strongest_line(desk: Desk, line: RunningLine) -> Reading:
-    order = order_of(line.frequency_hz, desk.bands)
+    order = excitation_band(line.frequency_hz, desk.bands)
     name = f"on {order.name}" if order else "on no known order"
     says = f"The strongest line, {hertz(line.frequency_hz)} Hz, sits {name}"
     if line.frequency_hz > desk.up_to_hz:
@@ -139,12 +139,6 @@ def _strongest_line(desk: Desk, line: RunningLine) -> Reading:
         f"the nearest mode is {ratio_percent(apart)} away: forced, more than resonant",
         "look at the source as well as at the pipe",
     )
-
-
-def order_of(frequency_hz: float, forbidden: tuple[Band, ...], within: float = 0.02) -> Band | None:
-    """The excitation a line belongs to: inside its range, or within 2 % of it."""
-    close = [band for band in forbidden if band.separation(frequency_hz) <= within]
-    return min(close, key=lambda band: band.separation(frequency_hz), default=None)
 
 
 def nearest_mode(desk: Desk, frequency_hz: float) -> float | None:

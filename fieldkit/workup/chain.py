@@ -12,6 +12,7 @@ from fieldkit.detune.rank import detune
 from fieldkit.detune.verdict import Detuning
 from fieldkit.errors import InputError, Refusal
 from fieldkit.job.document import Job
+from fieldkit.job.schema import require_excitation
 from fieldkit.progress import Progress
 from fieldkit.span.handbook import HandbookEstimate, estimate
 from fieldkit.span.layout import Span, State
@@ -166,6 +167,7 @@ def detuning(job: Job, evidence: Evidence, matched: Match | None, progress: Prog
     Without any measured mode the ranking rests on the prior and says so; a measurement that the
     model cannot explain is a Refusal, since no promise can be built on either of them.
     """
+    require_excitation(job)
     if matched is None and evidence.modes:
         raise Refusal(
             "no change can be promised while the model does not explain the measurement",

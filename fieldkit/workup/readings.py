@@ -9,7 +9,7 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.detune.excitation import Excitation
+from fieldkit.detune.excitation import Excitation, bands, excitation_band
 from fieldkit.errors import InputError
 from fieldkit.job.document import Job, RecordingEntry
 from fieldkit.progress import Progress
@@ -125,15 +125,10 @@ def entry_for(
     return RecordingEntry(path, kind, kind.replace("tap", "tapped"), channel, rate_hz=rate_hz)
 
 
-def excitation_of(
-    frequency_hz: float, excitations: Sequence[Excitation], tolerance: float = 0.02
-) -> str | None:
-    """Name of the excitation whose range holds a running line, within a relative tolerance."""
-    for excitation in excitations:
-        for name, low, high in excitation.ranges():
-            if low * (1 - tolerance) <= frequency_hz <= high * (1 + tolerance):
-                return name
-    return None
+def excitation_of(frequency_hz: float, excitations: Sequence[Excitation]) -> str | None:
+    """Name of the excitation a running line belongs to."""
+    found = excitation_band(frequency_hz, bands(excitations, 0.0))
+    return found.name if found else None
 
 
 def _channel(entry: RecordingEntry) -> tuple[Recording, NDArray[np.float64]]:

@@ -151,6 +151,8 @@ def test_a_job_without_excitation(tmp_path):
     ran = fieldkit("detune", job)
     assert ran.status == 2, ran
     assert "no excitation" in ran.err
+    assert "job.toml" in ran.err
+    assert one_sentence(ran.err)
 
 
 def test_a_channel_that_is_not_there(tmp_path):

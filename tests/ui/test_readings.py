@@ -6,9 +6,10 @@ from dataclasses import replace
 
 import pytest
 
+from fieldkit.detune.excitation import excitation_band
 from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
-from fieldkit.ui.readings import nearest_mode, order_of, reading
+from fieldkit.ui.readings import nearest_mode, reading
 from fieldkit.ui.words import plus_minus, sentence
 from tests.ui.glycol import DETUNING, EVIDENCE, FIXES, job, workup
 
@@ -84,8 +85,8 @@ def test_the_running_reading_names_the_order_and_the_distance_to_the_nearest_mod
 
 
 def test_a_line_two_percent_from_an_order_still_belongs_to_it() -> None:
-    assert order_of(50.5, FULL.bands) is not None
-    assert order_of(52.0, FULL.bands) is None
+    assert excitation_band(50.5, FULL.bands) is not None
+    assert excitation_band(52.0, FULL.bands) is None
 
 
 def test_a_mode_seen_in_two_taps_is_not_trusted_for_damping() -> None:

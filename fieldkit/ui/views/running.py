@@ -8,9 +8,10 @@ from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.widgets import DataTable
 
+from fieldkit.detune.excitation import excitation_band
 from fieldkit.ui.messages import AddWanted, EditWanted
 from fieldkit.ui.plots import running_marks, shaded, spectrum_curve, unit_of
-from fieldkit.ui.readings import nearest_mode, order_of
+from fieldkit.ui.readings import nearest_mode
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import level
 from fieldkit.ui.views.base import View, plain
@@ -81,7 +82,7 @@ class RunningView(View):
         unit = found.picture.spectrum.unit
         rows: list[Row] = []
         for line in found.picture.lines:
-            order = order_of(line.frequency_hz, self.desk.bands)
+            order = excitation_band(line.frequency_hz, self.desk.bands)
             mode_hz = nearest_mode(self.desk, line.frequency_hz)
             apart = DASH if mode_hz is None else ratio_percent(abs(mode_hz / line.frequency_hz - 1))
             cells = (
