@@ -23,14 +23,13 @@ from fieldkit.job.readers import (
     told,
     whole,
 )
+from fieldkit.signal.recording import DIRECTIONS, QUANTITIES
 from fieldkit.span.layout import Stiffness, Vector
 from fieldkit.span.supports import KINDS
 
 FORMAT = 1
 FAMILIES = ("support", "move", "stiffen", "mass")
 STATES = ("tapped", "running")
-QUANTITIES = ("acceleration", "velocity", "displacement", "pressure")
-DIRECTIONS = ("vertical", "lateral", "axial", "x", "y", "z")
 
 Text = Annotated[str, StringConstraints(max_length=200)]
 Spoken = Annotated[str, PlainValidator(told(number_or_text))]

@@ -8,19 +8,13 @@ from fieldkit.errors import InputError
 from fieldkit.job.document import RecordingEntry
 from fieldkit.job.file_model import MeasuredTable, RecordingTable
 from fieldkit.job.readers import bad
-from fieldkit.quantity import parse, quoted, show
+from fieldkit.quantity import scale_of, show
 from fieldkit.signal.modes import MeasuredMode
 from fieldkit.span.layout import END_TOLERANCE_M, Span
 
 READING_DOUBT = 0.01
 """Standard deviation of a frequency read off a screen, relative, where none is stated
 (common practice, no source)."""
-SCALED = {
-    "acceleration": "acceleration",
-    "velocity": "velocity",
-    "displacement": "length",
-    "pressure": "sound_pressure",
-}
 TEXT_FILES = (".csv", ".tsv", ".txt", ".dat", ".asc")
 
 
@@ -49,47 +43,18 @@ def recording_entry(
 def _scale(table: RecordingTable, where: str) -> float | None:
     """SI units per unit of sample; None where the file does not say.
 
-    A sensitivity alone calibrates a text file, taken to be in volts; a sound file needs the
-    voltage of its full scale as well.
+    A text file is taken to be in volts.
     """
-    if table.scale is not None and (table.sensitivity is not None or table.full_scale is not None):
-        what = "it has both a scale and a sensitivity"
-        raise bad(f"{where}.scale", what, "keep the one that is written on the sensor")
-    if table.scale is not None:
-        return _positive(_without_per_unit(table.scale), SCALED[table.quantity], f"{where}.scale")
-    if table.sensitivity is None and table.full_scale is None:
-        return None
-    if table.sensitivity is None:
-        what = "it has full_scale without sensitivity"
-        raise bad(f"{where}.full_scale", what, 'write sensitivity = "100 mV/g" beside it')
-    sensitivity = _positive(
-        table.sensitivity, f"{table.quantity}_sensitivity", f"{where}.sensitivity"
-    )
-    if table.full_scale is None:
-        in_volts = table.file.lower().endswith(TEXT_FILES)
-        return 1 / sensitivity if in_volts else None
-    return _positive(table.full_scale, "voltage", f"{where}.full_scale") / sensitivity
-
-
-def _without_per_unit(scale: object) -> object:
-    if not isinstance(scale, str):
-        return scale
-    spoken = " ".join(scale.split())
-    return spoken.removesuffix("/unit").removesuffix("per unit").rstrip()
-
-
-def _positive(value: object, dimension: str, where: str) -> float:
     try:
-        si = parse(value, dimension)
-    except InputError as error:
-        raise error.at(field=where) from None
-    if si <= 0:
-        raise bad(
-            where,
-            f"{quoted(value)} is not above zero",
-            "write what one unit of the file stands for",
+        return scale_of(
+            table.quantity,
+            sensitivity=table.sensitivity,
+            full_scale=table.full_scale,
+            scale=table.scale,
+            in_volts=table.file.lower().endswith(TEXT_FILES),
         )
-    return si
+    except InputError as error:
+        raise bad(f"{where}.{error.place.field}", error.what, error.remedy) from None
 
 
 def measured_mode(table: MeasuredTable, index: int, span: Span) -> MeasuredMode:

@@ -7,13 +7,12 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from difflib import get_close_matches
 from typing import Any, TypeVar
 
 from pydantic_core import PydanticCustomError
 
 from fieldkit.errors import InputError, Place
-from fieldkit.quantity import DIMENSIONS, parse, quoted, show
+from fieldkit.quantity import DIMENSIONS, chosen, parse, quoted, show
 from fieldkit.span.layout import Stiffness, Vector
 
 T = TypeVar("T")
@@ -165,20 +164,7 @@ def whole(low: int, high: int) -> Reader[int]:
 
 def one_of(noun: str, *words: str) -> Reader[str]:
     """One of a few words."""
-
-    def read(value: Any) -> str:
-        if isinstance(value, str) and value in words:
-            return value
-        close = get_close_matches(str(value).lower(), words, 1, 0.7)
-        meant = f"did you mean {close[0]!r}? " if close else ""
-        what = f"{quoted(value)} is not a {noun}"
-        raise InputError(what, f"{meant}use {_either(words)}")
-
-    return read
-
-
-def _either(words: tuple[str, ...]) -> str:
-    return f"{', '.join(words[:-1])} or {words[-1]}" if len(words) > 1 else words[0]
+    return lambda value: chosen(value, noun, words)
 
 
 def number_or_text(value: Any) -> str:

@@ -3,15 +3,14 @@
 from __future__ import annotations
 
 import os
-import secrets
 from collections.abc import Mapping
-from contextlib import suppress
 from dataclasses import dataclass, replace
 from functools import cached_property
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from fieldkit.errors import InputError, Place
+from fieldkit.files import replace_file
 from fieldkit.job import splice
 from fieldkit.job.lines import Loc, Places, field_loc, places
 from fieldkit.job.schema import parse_job
@@ -152,7 +151,7 @@ class JobText:
             raise InputError("this job has no file yet", "name one to save it to")
         try:
             content = ("\ufeff" if self.marked else "") + self.text
-            _replace_file(Path(os.path.realpath(target)), content.encode("utf-8"))
+            replace_file(Path(os.path.realpath(target)), content.encode("utf-8"))
         except (OSError, ValueError) as error:
             reason = getattr(error, "strerror", None) or str(error)
             what = f"it cannot be written ({reason.lower()})"
@@ -194,19 +193,3 @@ def _at(value: Any, loc: Loc) -> Any:
         else:
             return None
     return value
-
-
-def _replace_file(path: Path, content: bytes) -> None:
-    """Through a new file beside it, which takes its place only when it is safely written."""
-    beside = path.with_name(f".{path.name}.{secrets.token_hex(4)}")
-    try:
-        with beside.open("xb") as file:
-            file.write(content)
-            file.flush()
-            os.fsync(file.fileno())
-        if path.exists():
-            beside.chmod(path.stat().st_mode & 0o7777)
-        beside.replace(path)
-    finally:
-        with suppress(OSError):
-            beside.unlink(missing_ok=True)

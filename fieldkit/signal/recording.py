@@ -16,6 +16,7 @@ from fieldkit.signal.text_numbers import LARGEST_VALUE
 from fieldkit.signal.text_recording import read_text
 
 QUANTITIES = ("acceleration", "velocity", "displacement", "pressure")
+DIRECTIONS = ("vertical", "lateral", "axial", "x", "y", "z")
 SI_UNIT = {"acceleration": "m/s^2", "velocity": "m/s", "displacement": "m", "pressure": "Pa"}
 
 LOWEST_RATE_HZ = 100.0
