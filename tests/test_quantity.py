@@ -90,6 +90,9 @@ AS_WRITTEN = [
     ("4 V/(in/s)", "sensitivity", 4 / 0.0254),
     ("100 mV/in/s", "sensitivity", 0.1 / 0.0254),
     ("50 mV/Pa", "sensitivity", 0.05),
+    ("2.3 mV/N", "force_sensitivity", 0.0023),
+    ("10 mV/lb", "force_sensitivity", 0.01 / (0.45359237 * 9.80665)),
+    ("100 lb", "force", 45.359237 * 9.80665),
     ("50 mV/Pa", "pressure_sensitivity", 0.05),
     ("8 mV/µm", "displacement_sensitivity", 8000.0),
     ("12e-6 1/K", "expansion", 12e-6),
@@ -274,6 +277,7 @@ RANGES = {
     "velocity_sensitivity": (1e-2, 1e4),
     "displacement_sensitivity": (1.0, 1e5),
     "pressure_sensitivity": (1e-4, 1.0),
+    "force_sensitivity": (1e-5, 1.0),
     "expansion": (1e-6, 1e-4),
     "ratio": (-1.0, 2.0),
 }

@@ -26,6 +26,7 @@ _EXAMPLES = {
     "kind": 'kind = "clamp"',
     "mass": 'mass = "24 kg"',
     "file": 'file = "tap-1.flac"',
+    "channel": "channel = 2",
     "frequency": 'frequency = "23.4 Hz"',
     "thickness": 'thickness = "50 mm"',
     "density": 'density = "130 kg/m^3"',

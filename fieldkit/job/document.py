@@ -11,6 +11,18 @@ from fieldkit.span.layout import Span, State
 
 
 @dataclass(frozen=True)
+class HammerEntry:
+    """The channel of a tap recording that holds the force of the hammer."""
+
+    channel: int
+    """Counts from 1, as printed on the box."""
+    scale: float | None = None
+    """Newtons per unit of sample; None where uncalibrated."""
+    at_m: float | None = None
+    """Station that is struck; None where nobody said."""
+
+
+@dataclass(frozen=True)
 class RecordingEntry:
     """A recording named in the job file, and what it measures."""
 
@@ -29,6 +41,8 @@ class RecordingEntry:
     at_m: float | None = None
     rate_hz: float | None = None
     """For text files without a time column."""
+    hammer: HammerEntry | None = None
+    """None where no force was recorded."""
 
 
 @dataclass(frozen=True)

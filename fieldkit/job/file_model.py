@@ -177,6 +177,16 @@ class ExcitationTable(Table):
     frequency: FrequencyRange | None = None
 
 
+class HammerTable(Table):
+    """``recording.hammer``: the channel with the force of the blows."""
+
+    channel: Channel
+    sensitivity: Raw = None
+    full_scale: Raw = None
+    scale: Raw = None
+    at: Length | None = None
+
+
 class RecordingTable(Table):
     """``[[recording]]``."""
 
@@ -191,6 +201,7 @@ class RecordingTable(Table):
     direction: DirectionName | None = None
     at: Length | None = None
     rate: Frequency | None = None
+    hammer: HammerTable | None = None
 
 
 class MeasuredTable(Table):
@@ -253,6 +264,7 @@ TABLES: dict[tuple[str, ...], type[Table]] = {
     ("mass",): MassTable,
     ("excitation",): ExcitationTable,
     ("recording",): RecordingTable,
+    ("recording", "hammer"): HammerTable,
     ("measured",): MeasuredTable,
     ("goal",): GoalTable,
 }

@@ -5,8 +5,8 @@ from __future__ import annotations
 from pathlib import Path
 
 from fieldkit.errors import InputError
-from fieldkit.job.document import RecordingEntry
-from fieldkit.job.file_model import MeasuredTable, RecordingTable
+from fieldkit.job.document import HammerEntry, RecordingEntry
+from fieldkit.job.file_model import HammerTable, MeasuredTable, RecordingTable
 from fieldkit.job.readers import bad
 from fieldkit.quantity import scale_of, show
 from fieldkit.signal.modes import MeasuredMode
@@ -33,25 +33,43 @@ def recording_entry(
         state=table.state or ("tapped" if table.kind == "tap" else "running"),
         channel=table.channel,
         quantity=table.quantity,
-        scale=_scale(table, where),
+        scale=_scale(table, table.quantity, table.file, where),
         direction=table.direction,
         at_m=table.at,
         rate_hz=table.rate,
+        hammer=_hammer(table, span, where),
     )
 
 
-def _scale(table: RecordingTable, where: str) -> float | None:
+def _hammer(table: RecordingTable, span: Span, where: str) -> HammerEntry | None:
+    given = table.hammer
+    if given is None:
+        return None
+    where = f"{where}.hammer"
+    if table.kind != "tap":
+        what = "a hammer belongs to a tap recording, and this one is of the running machine"
+        raise bad(where, what, 'leave it out, or write kind = "tap"')
+    if given.channel == table.channel:
+        what = f"channel {given.channel} cannot be both the hammer and the sensor"
+        raise bad(f"{where}.channel", what, "write the channel that the hammer is plugged into")
+    _check_at(given.at, span, where)
+    return HammerEntry(given.channel, _scale(given, "force", table.file, where), given.at)
+
+
+def _scale(
+    table: RecordingTable | HammerTable, quantity: str, file: str, where: str
+) -> float | None:
     """SI units per unit of sample; None where the file does not say.
 
     A text file is taken to be in volts.
     """
     try:
         return scale_of(
-            table.quantity,
+            quantity,
             sensitivity=table.sensitivity,
             full_scale=table.full_scale,
             scale=table.scale,
-            in_volts=table.file.lower().endswith(TEXT_FILES),
+            in_volts=file.lower().endswith(TEXT_FILES),
         )
     except InputError as error:
         raise bad(f"{where}.{error.place.field}", error.what, error.remedy) from None

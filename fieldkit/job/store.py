@@ -117,15 +117,26 @@ class JobText:
         return self._with(splice.set_value(self.text, loc, rendered(written)))
 
     def with_new(self, table: str, values: Mapping[str, object]) -> JobText:
-        """With one more entry in a repeated table; blank values are left out."""
+        """With one more entry in a repeated table; blank values are left out.
+
+        Dotted keys (``hammer.channel``) go into a table inside the entry.
+        """
         self._checked((table,))
         index = len(self.table.get(table, []))
-        pairs = {
-            key: rendered(value_of(value, (table, index, key)) if isinstance(value, str) else value)
+        given = {
+            key: value
             for key, value in values.items()
             if value is not None and not (isinstance(value, str) and not value.strip())
         }
-        return self._with(splice.add_entry(self.text, table, pairs))
+        pairs = {
+            key: rendered(value_of(value, (table, index, key)) if isinstance(value, str) else value)
+            for key, value in given.items()
+            if "." not in key
+        }
+        added = self._with(splice.add_entry(self.text, table, pairs))
+        for key in (key for key in given if "." in key):
+            added = added.with_value(f"{table}[{index}].{key}", given[key])
+        return added
 
     def without(self, table: str, index: int) -> JobText:
         """With an entry of a repeated table taken out."""

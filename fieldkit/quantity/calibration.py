@@ -10,6 +10,7 @@ SCALED = {
     "velocity": "velocity",
     "displacement": "length",
     "pressure": "sound_pressure",
+    "force": "force",
 }
 """Dimension of a sample of each measured quantity."""
 
@@ -36,7 +37,8 @@ def scale_of(
         return None
     if sensitivity is None:
         what = "it has full_scale without sensitivity"
-        raise _bad("full_scale", what, 'write sensitivity = "100 mV/g" beside it')
+        example = "2.3 mV/N" if quantity == "force" else "100 mV/g"
+        raise _bad("full_scale", what, f'write sensitivity = "{example}" beside it')
     per_unit = _above_zero(sensitivity, f"{quantity}_sensitivity", "sensitivity")
     if full_scale is None:
         return 1 / per_unit if in_volts else None

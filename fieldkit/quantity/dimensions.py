@@ -99,6 +99,9 @@ DIMENSIONS: dict[str, Dimension] = {
     "pressure_sensitivity": _sensitivity(
         "a sensitivity to sound pressure", "'50 mV/Pa'", ("V/Pa",), "mV/Pa",
     ),
+    "force_sensitivity": _sensitivity(
+        "a sensitivity to force", "'2.3 mV/N' or '10 mV/lbf'", ("V/N",), "mV/N", "mV/lbf",
+    ),
     "sensitivity": _sensitivity(
         "a sensitivity", "'100 mV/g', '4 V/(in/s)' or '50 mV/Pa'",
         ("V/(m/s^2)", "V/(m/s)", "V/m", "V/Pa"), "mV/g", "mV/Pa",

@@ -36,6 +36,7 @@ _UNITS: dict[str, tuple[_Steps, _Steps]] = {
     "velocity_sensitivity": (((0.0, "mV/(mm/s)"),), ((0.0, "V/(in/s)"),)),
     "displacement_sensitivity": (((0.0, "mV/um"),), ((0.0, "mV/mil"),)),
     "pressure_sensitivity": (((0.0, "mV/Pa"),),) * 2,
+    "force_sensitivity": (((0.0, "mV/N"),), ((0.0, "mV/lbf"),)),
     "expansion": (((0.0, "um/m/K"),), ((0.0, "uin/in/degF"),)),
     "ratio": (((0.0, "%"),),) * 2,
 }  # fmt: skip

@@ -52,6 +52,8 @@ _STEPS = dict.fromkeys(("C", "degC", "celsius"), "K") | dict.fromkeys(
 )
 _PHASE = {"rad": "phase_radian", "radian": "phase_radian", "radians": "phase_radian"}
 _IN_DIMENSION: dict[str, dict[str, str]] = {
+    "force": _FORCES,
+    "force_sensitivity": _FORCES,
     "stiffness": _FORCES | _KIPS,
     "rotational_stiffness": _FORCES | _KIPS,
     "pressure": _FORCES,

@@ -20,6 +20,7 @@ LENGTH = Quantity("length")
 SPEED = Quantity("speed")
 FREQUENCY = Quantity("frequency")
 SENSITIVITY = Quantity("sensitivity")
+FORCE_SENSITIVITY = Quantity("force_sensitivity")
 VOLTAGE = Quantity("voltage")
 STIFFNESS = Quantity("stiffness", ("rigid", "free", "unknown"))
 TURNING = Quantity("rotational_stiffness", ("rigid", "free", "unknown"))
@@ -177,6 +178,15 @@ FORMS: dict[str, Form] = {
                 Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said"),
                 Field("at", "station", LENGTH, when_empty="nobody said"),
                 Field("rate", "rate", FREQUENCY, when_empty="as the file says"),
+                Field("hammer.channel", "hammer channel", Number(1, 256, whole=True),
+                      when_empty="no hammer", said="hammer on"),
+                Field("hammer.sensitivity", "its sensitivity", FORCE_SENSITIVITY,
+                      when_empty="uncalibrated"),
+                Field("hammer.full_scale", "its full scale", VOLTAGE,
+                      when_empty="of the recorder"),
+                Field("hammer.scale", "its scale", Words("434 N per unit"),
+                      when_empty="by sensitivity"),
+                Field("hammer.at", "its station", LENGTH, when_empty="nobody said"),
             ),
             repeated=True,
         ),
