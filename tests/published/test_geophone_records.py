@@ -14,6 +14,8 @@ from fieldkit.signal.running import read_running
 from fieldkit.signal.taps import cut, find_taps
 from tests.published.outside import seismic_traces
 
+pytestmark = pytest.mark.outside
+
 EXPLORATION = ("io", "seg2", "tests", "data", "20130107_103041000.CET.3c.cont.0.seg2.gz")
 """Three-component geophone, 1 kHz, 2 s; half of the power of one component is 50 Hz."""
 STATION = ("io", "mseed", "tests", "data", "timingquality.mseed")

@@ -18,6 +18,8 @@ from fieldkit.signal.running import read_running
 from fieldkit.signal.spectrum import overall_rms, power_density
 from tests.published.outside import seismic_file
 
+pytestmark = pytest.mark.outside
+
 HEADER_LINES = 17
 GAL_M_PER_S2 = 0.01  # exact: 1 gal = 1 cm/s^2
 
