@@ -146,6 +146,62 @@ def test_half_power_bandwidth(damping_ratio: float) -> None:
     assert one_mode(samples, np.zeros(0)).damping_ratio == pytest.approx(half_power, rel=4e-3)
 
 
+def by_log_decrement(samples: np.ndarray) -> float:
+    """Ratio of damping from positive peaks, each at the top of a parabola through three samples.
+
+    The peaks of exp(-at) sin(bt) fall by exp(-d) a cycle: zeta = d / sqrt(4 pi^2 + d^2).
+    """
+    before, here, after = samples[:-2], samples[1:-1], samples[2:]
+    at = np.flatnonzero((here > before) & (here >= after) & (here > 1e-3 * samples.max()))
+    slope, bend = (after[at] - before[at]) / 2, before[at] - 2 * here[at] + after[at]
+    heights = here[at] - slope**2 / (2 * bend)
+    decrement = np.log(heights[0] / heights[-1]) / (len(heights) - 1)
+    return float(decrement / np.sqrt(4 * np.pi**2 + decrement**2))
+
+
+def by_half_power(samples: np.ndarray, rate_hz: float, natural_hz: float, reach_hz: float) -> float:
+    """Ratio of damping from where the transform falls to 1 / sqrt 2 of its peak.
+
+    The transform of exp(-at) sin(bt) is a receptance, for which exactly
+    f2^2 - f1^2 = 4 zeta sqrt(1 - zeta^2) fn^2.
+    """
+    from scipy.signal import zoom_fft
+
+    band = (natural_hz - reach_hz, natural_hz + reach_hz)
+    frequency_hz = np.linspace(*band, 2001)
+    height = np.abs(zoom_fft(samples, band, 2001, fs=rate_hz, endpoint=True))
+    above = np.flatnonzero(height >= height.max() / np.sqrt(2))
+    first, last = above[0], above[-1]
+    level = height.max() / np.sqrt(2)
+    low_hz = np.interp(level, height[first - 1 : first + 1], frequency_hz[first - 1 : first + 1])
+    high_hz = np.interp(level, height[last : last + 2][::-1], frequency_hz[last : last + 2][::-1])
+    product = (high_hz**2 - low_hz**2) / (4 * natural_hz**2)
+    return float(np.sqrt((1 - np.sqrt(1 - 4 * product**2)) / 2))
+
+
+@pytest.mark.parametrize("damping_ratio", [0.001, 0.002, 0.005, 0.01, 0.02, 0.05, 0.1])
+def test_three_ways_to_damping_agree(damping_ratio: float) -> None:
+    """Log decrement, half power and the estimate from one and the same clean decay at 20 Hz.
+
+    Allowed: parabolas for tops (1e-6) and lines between transform points (5e-5).
+    """
+    rate_hz, natural_hz = 2048.0, 20.0
+    decay = damping_ratio * 2 * np.pi * natural_hz
+    time_s = np.arange(round(12 / decay * rate_hz)) / rate_hz
+    damped = 2 * np.pi * natural_hz * np.sqrt(1 - damping_ratio**2)
+    samples = np.exp(-decay * time_s) * np.sin(damped * time_s)
+    estimate = estimate_modes([TapRecord(samples, rate_hz, np.zeros(0))])
+    assert len(estimate.modes) == 1
+    mode = estimate.modes[0]
+    assert mode.frequency_hz == pytest.approx(natural_hz, rel=1e-7)
+    assert mode.damping_ratio == pytest.approx(damping_ratio, rel=1e-6)
+    assert by_log_decrement(samples) == pytest.approx(mode.damping_ratio, rel=2e-6)
+    reach_hz = 4 * damping_ratio * natural_hz
+    assert by_half_power(samples, rate_hz, natural_hz, reach_hz) == pytest.approx(
+        mode.damping_ratio, rel=5e-5
+    )
+
+
 @pytest.mark.parametrize("case", CASES[:3])
 def test_exponential_window_is_taken_out(case: Case) -> None:
     """zeta = zeta_measured - 1 / (tau omega), within 2 % (impact-testing practice)."""
