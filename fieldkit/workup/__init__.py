@@ -22,8 +22,12 @@ from fieldkit.workup.readings import (
     running_readings,
     tap_readings,
 )
+from fieldkit.workup.response import EffectiveMass, ResponseReading, response_reading
+from fieldkit.workup.response_notes import response_notes
 
 __all__ = [
+    "EffectiveMass",
+    "ResponseReading",
     "RunningReading",
     "StateModes",
     "StepRefusal",
@@ -38,6 +42,8 @@ __all__ = [
     "matching",
     "read_running_entry",
     "read_tap",
+    "response_notes",
+    "response_reading",
     "run",
     "running_readings",
     "state_modes",

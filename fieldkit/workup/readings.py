@@ -18,6 +18,7 @@ from fieldkit.signal.recording import Recording, channel_signal, load
 from fieldkit.signal.running import RunningPicture, read_running
 from fieldkit.signal.spectrum import Spectrum, tap_spectrum
 from fieldkit.signal.taps import TapSearch, cut, find_taps
+from fieldkit.workup.hammer import HammerReading, with_hammer
 
 
 @dataclass(frozen=True)
@@ -35,6 +36,8 @@ class TapReading:
     """Averaged over its usable taps; None when it has none."""
     entry: RecordingEntry
     notes: tuple[str, ...] = ()
+    hammer: HammerReading | None = None
+    """None where no force was recorded."""
 
 
 @dataclass(frozen=True)
@@ -62,11 +65,12 @@ def tap_readings(entries: Sequence[RecordingEntry], progress: Progress) -> tuple
 def read_tap(entry: RecordingEntry) -> TapReading:
     """One tap recording: its blows, which of them are usable, and their mean spectrum."""
     recording, signal = _channel(entry)
+    quantity, scale = _meaning(entry, recording)
     search = find_taps(signal, recording.rate_hz, full_scale=recording.full_scale)
+    search, hammer = with_hammer(entry, recording, signal, search, quantity, scale)
     records = cut(signal, recording.rate_hz, search, source=entry.path.name)
     spectrum = None
     if records:
-        quantity, scale = _meaning(entry, recording)
         spectrum = tap_spectrum(
             [record.samples for record in records],
             recording.rate_hz,
@@ -83,6 +87,7 @@ def read_tap(entry: RecordingEntry) -> TapReading:
         spectrum,
         entry,
         recording.notes,
+        hammer,
     )
 
 

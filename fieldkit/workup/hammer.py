@@ -1,0 +1,188 @@
+"""The hammer's channel of a tap recording: what it says of each blow, and the response it gives."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.errors import InputError, Refusal
+from fieldkit.job.document import HammerEntry, RecordingEntry
+from fieldkit.signal.blows import GUARD_S
+from fieldkit.signal.hammer import (
+    ForceSpectrum,
+    Pulse,
+    dips_hz,
+    force_alone,
+    force_spectrum,
+    read_pulse,
+)
+from fieldkit.signal.recording import Recording, channel_signal
+from fieldkit.signal.response import FrequencyResponse, Struck, frequency_response
+from fieldkit.signal.taps import Tap, TapSearch
+
+Real = NDArray[np.float64]
+
+HIGHEST_HZ = 5000.0
+"""No job looks at higher modes."""
+NYQUIST_SHARE = 0.4
+_BEFORE_S = 0.005
+_MOST_DIPS = 3
+_ENOUGH_SAMPLES = 8
+"""Of a half sine, fewer give the impulse more than 1.3 % wrong: 1 - pi^2 / (12 n^2)."""
+
+
+@dataclass(frozen=True)
+class HammerReading:
+    """What the force channel of one recording says."""
+
+    response: FrequencyResponse | None
+    """None where no usable blow has its force on record."""
+    force: ForceSpectrum | None
+    refused: str = ""
+    """Why there is no response."""
+    notes: tuple[str, ...] = ()
+
+
+def with_hammer(
+    entry: RecordingEntry,
+    recording: Recording,
+    signal: Real,
+    search: TapSearch,
+    quantity: str | None,
+    scale: float | None,
+) -> tuple[TapSearch, HammerReading | None]:
+    """The blows as the force shows them, and the response; both as before where there is no hammer.
+
+    Raises InputError where the recording lacks the hammer's channel.
+    """
+    hammer = entry.hammer
+    if hammer is None:
+        return search, None
+    force = force_of(hammer, recording, entry)
+    pulses = pulses_of(force, recording, search)
+    search = replace(
+        search,
+        taps=tuple(
+            judged(tap, pulse, recording.rate_hz)
+            for tap, pulse in zip(search.taps, pulses, strict=True)
+        ),
+    )
+    good = [(t, p) for t, p in zip(search.taps, pulses, strict=True) if t.usable and p is not None]
+    fit = [(tap, pulse) for tap, pulse in good if not pulse.clipped]
+    if not fit:
+        return search, HammerReading(None, None, nothing_struck(hammer, search, pulses))
+    spectrum = force_spectrum(force, recording.rate_hz, [pulse for _, pulse in fit])
+    quiet = signal[slice(*search.background)]
+    try:
+        response = frequency_response(
+            [struck(force, signal, quiet, t, p, recording.rate_hz) for t, p in fit],
+            recording.rate_hz,
+            high_hz=min(HIGHEST_HZ, NYQUIST_SHARE * recording.rate_hz),
+            quantity=quantity,
+            scale=scale,
+            force_scale=hammer.scale,
+        )
+    except Refusal as refusal:
+        return search, HammerReading(None, spectrum, str(refusal))
+    return search, HammerReading(response, spectrum, notes=tuple(remarks(search, pulses, fit)))
+
+
+def force_of(hammer: HammerEntry, recording: Recording, entry: RecordingEntry) -> Real:
+    """(n,) samples of the hammer's channel; InputError where there is none."""
+    try:
+        return channel_signal(recording, hammer.channel)
+    except InputError as error:
+        what = f"its hammer is said to be on channel {hammer.channel}: {error.what}"
+        raise InputError(what, error.remedy, error.place).at(file=entry.path) from error
+
+
+def pulses_of(force: Real, recording: Recording, search: TapSearch) -> list[Pulse | None]:
+    """The force of each blow, None where none stands out."""
+    starts = [tap.at_s for tap in search.taps]
+    limits = [*(at_s - GUARD_S for at_s in starts[1:]), recording.duration_s]
+    return [
+        read_pulse(force, recording.rate_hz, at_s, until_s, full_scale=recording.full_scale)
+        for at_s, until_s in zip(starts, limits, strict=False)
+    ]
+
+
+def judged(tap: Tap, pulse: Pulse | None, rate_hz: float) -> Tap:
+    """The tap with its free decay from where the force ends, refused where it struck twice."""
+    if pulse is None:
+        return tap
+    start = min(pulse.end, tap.end)
+    if len(pulse.hits) < 2:
+        return replace(tap, start=start)
+    known = [reason for reason in tap.reasons if not reason.startswith("struck twice")]
+    return replace(tap, start=start, usable=False, reasons=(*known, struck_twice(pulse)))
+
+
+def struck_twice(pulse: Pulse) -> str:
+    """What the force says of a double hit."""
+    first, second = pulse.hits[:2]
+    gap_s = second.after_s - first.after_s
+    dips = ", ".join(f"{hz:.3g}" for hz in dips_hz(gap_s, 2 * _MOST_DIPS / gap_s)[:_MOST_DIPS])
+    return (
+        f"struck twice: the hammer shows another hit {1000 * gap_s:.3g} ms after the first, "
+        f"{100 * second.share / first.share:.0f} % as hard, so its force has dips at {dips} Hz; "
+        "let the hammer rebound freely, or use a lighter one"
+    )
+
+
+def struck(
+    force: Real, signal: Real, quiet: Real, tap: Tap, pulse: Pulse, rate_hz: float
+) -> Struck:
+    """Force and response of one blow from just before its contact to the end of its decay."""
+    first = max(pulse.first - round(_BEFORE_S * rate_hz), 0)
+    whole = signal[first : tap.end]
+    rest = np.mean(quiet) if len(quiet) else np.mean(whole)
+    alone = force_alone(force, pulse, first, len(whole))
+    return Struck(alone, whole - rest, (tap.end - pulse.top) / rate_hz)
+
+
+def nothing_struck(hammer: HammerEntry, search: TapSearch, pulses: Sequence[Pulse | None]) -> str:
+    """Why no blow gives a response."""
+    if any(pulse is not None and pulse.clipped for pulse in pulses):
+        return (
+            "the force of every usable blow is clipped; lower the input gain of the hammer's "
+            "channel, or hit softer"
+        )
+    if search.taps and all(pulse is None for pulse in pulses):
+        return (
+            f"channel {hammer.channel} shows no force at the blows; check the hammer's cable and "
+            "supply, and which channel it is plugged into"
+        )
+    return "no usable blow has its force on record; tap again, each blow once and left to ring out"
+
+
+def remarks(
+    search: TapSearch,
+    pulses: Sequence[Pulse | None],
+    fit: Sequence[tuple[Tap, Pulse]],
+) -> list[str]:
+    """What to know about this response."""
+    out = []
+    if len(fit) == 1:
+        out.append("one blow only: coherence needs two or more, so nothing shows how good it is")
+    usable = [p for t, p in zip(search.taps, pulses, strict=True) if t.usable]
+    fewest = min(pulse.contact for _, pulse in fit)
+    if fewest < _ENOUGH_SAMPLES:
+        out.append(
+            f"the contact lasts {fewest} samples only, too few to read the force well; record at a "
+            "higher rate, or use a softer tip"
+        )
+    silent = sum(pulse is None for pulse in usable)
+    clipped = sum(pulse is not None and bool(pulse.clipped) for pulse in usable)
+    if silent:
+        out.append(f"{told(silent)} no force on the hammer's channel and is left out of it")
+    if clipped:
+        out.append(f"{told(clipped)} its force clipped and is left out; lower the hammer's gain")
+    return out
+
+
+def told(count: int) -> str:
+    """``1 usable blow has``; the verb serves both."""
+    return f"{count} usable blow has" if count == 1 else f"each of {count} usable blows has"
