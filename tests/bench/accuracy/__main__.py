@@ -1,0 +1,83 @@
+"""The accuracy table from fresh seeds: ``python -m tests.bench.accuracy --seed 12``."""
+
+from __future__ import annotations
+
+import os
+
+os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
+os.environ.setdefault("OMP_NUM_THREADS", "1")
+
+import argparse
+import sys
+from collections.abc import Iterator, Sequence
+from multiprocessing import get_context
+from pathlib import Path
+
+from tests.bench.accuracy import replay, tables
+from tests.bench.accuracy.kinds import KINDS
+from tests.bench.accuracy.trial import Trial, run
+
+_SEEDS_PER_RUN = 100_000
+
+
+def main() -> None:
+    """Run the recordings and print what came out."""
+    args = arguments().parse_args()
+    if args.replay is not None:
+        for kind in args.kind or KINDS:
+            print(replay.story(kind, args.replay))
+        return
+    trials = list(trials_of(planned(args.kind or list(KINDS), args.records, args.seed), args.jobs))
+    if args.verbose:
+        print("\n".join(line for trial in trials for line in replay.failings(trial)), "\n")
+    for way in (tables.AUTOMATIC, tables.KNOWN):
+        print(f"{way.title}\n{tables.aligned(tables.table(trials, way))}\n")
+    print("\n".join(tables.totals(trials)))
+    if args.plot:
+        from tests.bench.accuracy.coverage_plot import plot
+
+        plot(trials, args.plot)
+    if args.write:
+        from tests.bench.accuracy.report import report
+
+        args.write.write_text(report(trials, args.seed), "utf-8")
+
+
+def arguments() -> argparse.ArgumentParser:
+    """Words of the command line."""
+    parser = argparse.ArgumentParser(prog="python -m tests.bench.accuracy", description=__doc__)
+    parser.add_argument("--seed", type=int, default=1, help="start of the random numbers")
+    parser.add_argument("--records", type=int, default=220, help="recordings, shared by the kinds")
+    parser.add_argument("--kind", action="append", choices=KINDS, help="only this kind; repeatable")
+    parser.add_argument("--jobs", type=int, default=2, help="processes")
+    parser.add_argument("--verbose", action="store_true", help="name what failed, with its seed")
+    parser.add_argument("--replay", type=int, metavar="SEED", help="tell all about one recording")
+    parser.add_argument("--write", type=Path, metavar="FILE", help="write the tables as Markdown")
+    parser.add_argument("--plot", type=Path, metavar="FILE", help="draw stated against actual")
+    return parser
+
+
+def planned(kinds: Sequence[str], records: int, seed: int) -> list[tuple[str, int]]:
+    """(kind, seed) of each recording, kind after kind, equally many of each."""
+    each = -(-records // len(kinds))
+    return [(kind, seed * _SEEDS_PER_RUN + i) for kind in kinds for i in range(each)]
+
+
+def trials_of(plan: Sequence[tuple[str, int]], jobs: int) -> Iterator[Trial]:
+    """Trials in the order of the plan."""
+    if jobs < 2:
+        yield from (run(*one) for one in plan)
+        return
+    with get_context("spawn").Pool(jobs) as pool:
+        for i, trial in enumerate(pool.imap(run_one, plan, chunksize=1)):
+            print(f"\r{i + 1} of {len(plan)} ", end="", file=sys.stderr, flush=True)
+            yield trial
+    print(file=sys.stderr)
+
+
+def run_one(one: tuple[str, int]) -> Trial:
+    return run(*one)
+
+
+if __name__ == "__main__":
+    main()
