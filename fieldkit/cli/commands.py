@@ -107,11 +107,18 @@ def peaks(
     channel: Channel = 1,
     rate: Rate = None,
     up_to: Annotated[float, typer.Option(help="Highest frequency looked at, Hz.", min=5.0)] = 200.0,
+    response: Annotated[
+        Path | None,
+        typer.Option(
+            metavar="FILE.csv", help="Write the frequency response of recordings with a hammer."
+        ),
+    ] = None,
 ) -> None:
     """Find the taps in recordings, and natural frequencies and damping from them."""
     with output.answering(as_json=as_json):
         from fieldkit import workup
-        from fieldkit.sheet import documents, tables
+        from fieldkit.cli.response_files import write_responses
+        from fieldkit.sheet import documents, responses, tables
 
         progress = output.progress()
         job = _job_among(files)
@@ -122,9 +129,18 @@ def peaks(
         )
         readings = workup.tap_readings(entries, progress)
         evidence = workup.evidence_from(readings, job, progress, up_to)
+        highest_hz = job.goal.up_to_hz if job else up_to
+        found = [workup.response_reading(r, evidence, highest_hz) for r in readings]
+        inputs = [*files, *(entry.path for entry in entries)]
+        written = write_responses(response, found, highest_hz, inputs) if response else {}
         output.clear_progress()
         output.answer(
-            documents.peaks(readings, evidence), tables.peaks(readings, evidence), as_json=as_json
+            documents.peaks(readings, evidence, responses.documents(found, highest_hz, written)),
+            [
+                *tables.peaks(readings, evidence),
+                *responses.lines(found, highest_hz, job.units if job else "SI", written),
+            ],
+            as_json=as_json,
         )
 
 

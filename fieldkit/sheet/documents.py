@@ -17,10 +17,21 @@ from fieldkit.workup import RunningReading, StateModes, TapReading, excitation_o
 Document = dict[str, Any]
 
 
-def peaks(readings: Sequence[TapReading], evidence: Evidence) -> Document:
-    """Recordings with their taps, and the modes and tones found in them."""
+def peaks(
+    readings: Sequence[TapReading],
+    evidence: Evidence,
+    responses: Sequence[Document | None] = (),
+) -> Document:
+    """Recordings with their taps, and the modes and tones found in them.
+
+    ``responses`` has one document for each reading, None for those without a hammer.
+    """
+    told = list(responses) or [None] * len(readings)
     return {
-        "recordings": [_tap_recording(reading) for reading in readings],
+        "recordings": [
+            _tap_recording(reading) | ({"response": response} if response else {})
+            for reading, response in zip(readings, told, strict=True)
+        ],
         "modes": [_measured(mode) for mode in evidence.modes],
         "tones": [
             {"frequency_hz": tone.frequency_hz, "strength": tone.strength}
