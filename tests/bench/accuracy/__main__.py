@@ -15,7 +15,7 @@ from pathlib import Path
 
 from tests.bench.accuracy import replay, tables
 from tests.bench.accuracy.kinds import KINDS
-from tests.bench.accuracy.trial import Trial, run
+from tests.bench.accuracy.trial import Trial, run_planned
 
 _SEEDS_PER_RUN = 100_000
 
@@ -66,17 +66,13 @@ def planned(kinds: Sequence[str], records: int, seed: int) -> list[tuple[str, in
 def trials_of(plan: Sequence[tuple[str, int]], jobs: int) -> Iterator[Trial]:
     """Trials in the order of the plan."""
     if jobs < 2:
-        yield from (run(*one) for one in plan)
+        yield from map(run_planned, plan)
         return
     with get_context("spawn").Pool(jobs) as pool:
-        for i, trial in enumerate(pool.imap(run_one, plan, chunksize=1)):
+        for i, trial in enumerate(pool.imap(run_planned, plan)):
             print(f"\r{i + 1} of {len(plan)} ", end="", file=sys.stderr, flush=True)
             yield trial
     print(file=sys.stderr)
-
-
-def run_one(one: tuple[str, int]) -> Trial:
-    return run(*one)
 
 
 if __name__ == "__main__":

@@ -104,7 +104,7 @@ def scored(
         missed_hz=tuple(made.modes[j].frequency_hz for j in able if j not in pairs),
         false_hz=tuple(extra),
         false_at_mains_hz=tuple(mains),
-        **tap_counts(made.blows, taps),
+        **(tap_counts(made.blows, taps) if made.modes else {}),
         picked=sum(p is not None for p in picks.values()),
         cpu_s=cpu_s,
     )

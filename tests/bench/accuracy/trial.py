@@ -35,6 +35,11 @@ def run(kind: str, seed: int) -> Trial:
     )
 
 
+def run_planned(planned: tuple[str, int]) -> Trial:
+    """The same, for a pool of processes."""
+    return run(*planned)
+
+
 def bounds_of(made: Simulated) -> tuple[ModeBound, ...]:
     """One bound for every mode, none where no tap can be used."""
     return (
