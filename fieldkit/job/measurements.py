@@ -91,6 +91,7 @@ def measured_mode(table: MeasuredTable, index: int, span: Span) -> MeasuredMode:
         direction=table.direction,
         state=table.state,
         at_m=table.at,
+        source="typed",
     )
 
 

@@ -54,6 +54,8 @@ class MeasuredMode:
     state: str = "tapped"
     at_m: float | None = None
     """Station of the sensor."""
+    source: str = "tap"
+    """Where it comes from: ``tap``, ``running`` (force unknown: weaker) or ``typed``."""
 
 
 @dataclass(frozen=True)
