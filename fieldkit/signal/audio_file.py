@@ -2,16 +2,18 @@
 
 from __future__ import annotations
 
-import io
 import re
+from collections.abc import Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, BinaryIO
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.errors import InputError, Place
+from fieldkit.signal.mended_wav import PatchedFile, mended_wav
 
 MAX_SAMPLES = 2**28
 """Most samples, over all channels, that are held in memory at once: 2 GiB as float64."""
@@ -19,11 +21,13 @@ SHORTEST_RESCUE_S = 0.5
 """Of a damaged file at least this much must be readable."""
 
 _BLOCK_SAMPLES = 2**16
-_UNKNOWN_LENGTH_FRAMES = 2**35
+UNKNOWN_LENGTH_FRAMES = 2**35
+"""A header with as many frames leaves the length open."""
 _OPEN_ENDED_BYTES = 0x7FFFF000
 """Writers that cannot go back to the header leave a length at or above this one in it."""
 _EXACT_SUBTYPES = re.compile(r"PCM_|ALAC|ULAW|ALAW|DWVW|DPCM|ADPCM")
 _FLOAT_SUBTYPES = ("FLOAT", "DOUBLE")
+_MENDED = "the recorder never wrote the length into the file's header; read to the end of the file"
 _LYING_LENGTH = re.compile(r"^\s*(?:data|SSND|riff)\s*:\s*(\d+) \(should be (\d+)\)", re.MULTILINE)
 
 
@@ -45,19 +49,39 @@ def read_audio(path: Path) -> AudioSamples:
     A file that ends early is returned as far as it can be read, with a note, when that is at
     least SHORTEST_RESCUE_S. Raises InputError where it is not audio, empty, or too long.
     """
+    with open_audio(path) as (audio, mended):
+        samples, broke_off = _read_blocks(audio, path)
+        notes = (*mended, *ending_notes(audio, len(samples), broke_off, path))
+        if len(samples) == 0:
+            raise empty(path)
+        return AudioSamples(
+            samples, float(audio.samplerate), is_integer(audio), (*notes, *coding_notes(audio))
+        )
+
+
+@contextmanager
+def open_audio(path: Path) -> Iterator[tuple[Any, tuple[str, ...]]]:
+    """An open file that holds something, and a note where its header had to be mended.
+
+    Raises InputError where it is not audio or empty.
+    """
     with _opened(path, str(path)) as audio:
         if audio.frames > 0:
-            return _read_open(audio, path)
-    mended = _mended_wav(path)
-    if mended is None:
-        raise _empty(path)
-    with _opened(path, mended) as audio:
-        read = _read_open(audio, path)
-    note = "the recorder never wrote the length into the file's header; read to the end of the file"
-    return AudioSamples(read.samples, read.rate_hz, read.integer, (note, *read.notes))
+            yield audio, ()
+            return
+    with mended_wav(path) as mended:
+        if mended is None:
+            raise empty(path)
+        with _opened(path, mended) as audio:
+            yield audio, (_MENDED,)
 
 
-def _opened(path: Path, source: str | BinaryIO) -> Any:
+def is_integer(audio: Any) -> bool:
+    """Whether an open file stores whole numbers, or what is as exact."""
+    return bool(_EXACT_SUBTYPES.search(audio.subtype))
+
+
+def _opened(path: Path, source: str | PatchedFile) -> Any:
     import soundfile
 
     try:
@@ -70,17 +94,8 @@ def _opened(path: Path, source: str | BinaryIO) -> Any:
         ) from error
 
 
-def _read_open(audio: Any, path: Path) -> AudioSamples:
-    samples, broke_off = _read_blocks(audio, path)
-    rate_hz = float(audio.samplerate)
-    notes = [*_ending_notes(audio, len(samples), broke_off, path), *_coding_notes(audio)]
-    if len(samples) == 0:
-        raise _empty(path)
-    integer = bool(_EXACT_SUBTYPES.search(audio.subtype))
-    return AudioSamples(samples, rate_hz, integer, tuple(notes))
-
-
-def _empty(path: Path) -> InputError:
+def empty(path: Path) -> InputError:
+    """What is said of a file without samples."""
     return InputError("the recording is empty (0 samples)", "record it again", Place(path))
 
 
@@ -96,7 +111,7 @@ def _read_blocks(audio: Any, path: Path) -> tuple[NDArray[np.float64], bool]:
         try:
             frames = len(audio.read(out=block))
         except soundfile.SoundFileError:
-            broke_off, frames = True, _filled_frames(block)
+            broke_off, frames = True, filled_frames(block)
         if frames == 0:
             break
         if (count + frames) * audio.channels > MAX_SAMPLES:
@@ -109,7 +124,7 @@ def _read_blocks(audio: Any, path: Path) -> tuple[NDArray[np.float64], bool]:
     return samples, broke_off
 
 
-def _filled_frames(block: NDArray[np.float64]) -> int:
+def filled_frames(block: NDArray[np.float64]) -> int:
     """Frames that arrived in a block, pre-filled with NaN, before its decoding failed."""
     missing = np.isnan(block).any(axis=1)
     return int(np.argmax(missing)) if missing.any() else len(block)
@@ -125,24 +140,32 @@ def _too_long(audio: Any, path: Path) -> InputError:
     )
 
 
-def _ending_notes(audio: Any, frames: int, broke_off: bool, path: Path) -> list[str]:
+def ending_notes(audio: Any, frames: int, broke_off: bool, path: Path) -> list[str]:
+    """What became of the end of a file; InputError where too little of it is left."""
     promised = _promised_frames(audio, frames)
     if promised is not None and frames >= promised:
         return []
     readable_s = frames / audio.samplerate
-    if promised is None:
-        ending = "the file does not state its length" if broke_off else ""
-        whole = ""
-    else:
-        ending = "the file is damaged or ends early"
-        whole = f" of {promised / audio.samplerate:.2f} s"
-    if readable_s < SHORTEST_RESCUE_S and ending:
+    if promised is not None:
+        return [ended_early(readable_s, promised / audio.samplerate, path)]
+    if not broke_off:
+        return []
+    return [_rescued("the file does not state its length", readable_s, "", path)]
+
+
+def ended_early(readable_s: float, whole_s: float, path: Path) -> str:
+    """What is said of a file that is shorter than it says; InputError where too little is left."""
+    return _rescued("the file is damaged or ends early", readable_s, f" of {whole_s:.2f} s", path)
+
+
+def _rescued(ending: str, readable_s: float, whole: str, path: Path) -> str:
+    if readable_s < SHORTEST_RESCUE_S:
         raise InputError(
             f"{ending}: only {readable_s:.3f} s{whole} can be read",
             "copy it again from the recorder, or record it again",
             Place(path),
         )
-    return [f"{ending}: {readable_s:.2f} s{whole} could be read"] if ending else []
+    return f"{ending}: {readable_s:.2f} s{whole} could be read"
 
 
 def _promised_frames(audio: Any, frames: int) -> int | None:
@@ -154,34 +177,14 @@ def _promised_frames(audio: Any, frames: int) -> int | None:
     if claims:
         claimed, held = claims[-1]
         return max(frames + 1, round(frames * claimed / max(held, 1)))
-    return None if audio.frames >= _UNKNOWN_LENGTH_FRAMES else int(audio.frames)
+    return None if audio.frames >= UNKNOWN_LENGTH_FRAMES else int(audio.frames)
 
 
-def _coding_notes(audio: Any) -> list[str]:
+def coding_notes(audio: Any) -> list[str]:
+    """A caution where the audio is stored with loss."""
     if _EXACT_SUBTYPES.search(audio.subtype) or audio.subtype in _FLOAT_SUBTYPES:
         return []
     return [
         f"the audio is stored with loss ({audio.subtype}), which alters level and decay; "
         "record as WAV or FLAC"
     ]
-
-
-def _mended_wav(path: Path) -> BinaryIO | None:
-    """A WAV whose header still says zero length, as a recorder cut off from power leaves it.
-
-    None where that is not what is wrong, or nothing follows the header.
-    """
-    if path.stat().st_size > 4 * MAX_SAMPLES:
-        return None
-    data = bytearray(path.read_bytes())
-    if data[:4] != b"RIFF" or data[8:12] != b"WAVE":
-        return None
-    at = 12
-    while at + 8 <= len(data):
-        name, size = data[at : at + 4], int.from_bytes(data[at + 4 : at + 8], "little")
-        if name == b"data":
-            held = len(data) - at - 8
-            data[at + 4 : at + 8] = held.to_bytes(4, "little")
-            return io.BytesIO(bytes(data)) if size == 0 and held > 0 else None
-        at += 8 + size + size % 2
-    return None

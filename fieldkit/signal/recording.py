@@ -68,33 +68,39 @@ def load(path: Path, *, rate_hz: float | None = None) -> Recording:
     there is no recording in it: see ``read_audio`` and ``read_text``; and where the rate is out
     of range, a sample is not finite, or all channels are silent.
     """
-    _check_stated(rate_hz)
-    _check_readable(path)
-    recording = _from_text(path, rate_hz) if _is_text(path) else _from_audio(path, rate_hz)
-    _check_rate(recording.rate_hz, path)
-    _check_finite(recording, path)
+    check_stated(rate_hz)
+    check_readable(path)
+    recording = _from_text(path, rate_hz) if is_text(path) else _from_audio(path, rate_hz)
+    check_rate(recording.rate_hz, path)
+    check_finite(recording.samples, recording.rate_hz, path)
     return _without_silence(recording, path)
 
 
 def channel_signal(recording: Recording, channel: int) -> NDArray[np.float64]:
     """Samples (n,) of one channel; counts from 1, as printed on the box."""
-    count = len(recording.channels)
+    check_channel(channel, len(recording.channels), Path(recording.source))
+    return np.ascontiguousarray(recording.samples[:, channel - 1])
+
+
+def check_channel(channel: int, count: int, path: Path) -> None:
+    """InputError where a recording of ``count`` channels has no such one."""
     if not 1 <= channel <= count:
         has = "only channel 1" if count == 1 else f"channels 1 to {count}"
         raise InputError(
             f"there is no channel {channel}: the recording has {has}",
             "name one it has",
-            Place(Path(recording.source)),
+            Place(path),
         )
-    return np.ascontiguousarray(recording.samples[:, channel - 1])
 
 
-def _check_stated(rate_hz: float | None) -> None:
+def check_stated(rate_hz: float | None) -> None:
+    """InputError where a stated rate is impossible."""
     if rate_hz is not None and not (math.isfinite(rate_hz) and rate_hz > 0):
         raise InputError(f"a sampling rate of {rate_hz:g} Hz", "state a rate above zero")
 
 
-def _check_readable(path: Path) -> None:
+def check_readable(path: Path) -> None:
+    """InputError where there is no file that can be opened and holds something."""
     place = Place(path)
     if path.is_dir():
         raise InputError("this is a folder, not a recording", "name a file in it", place)
@@ -116,7 +122,8 @@ def _head(path: Path) -> bytes:
         return file.read(4096)
 
 
-def _is_text(path: Path) -> bool:
+def is_text(path: Path) -> bool:
+    """Whether a file is to be read as columns of numbers."""
     head, suffix = _head(path), path.suffix.lower()
     if suffix in _AUDIO_SUFFIXES or head.startswith(_AUDIO_MARKS):
         return False
@@ -125,17 +132,27 @@ def _is_text(path: Path) -> bool:
 
 def _from_audio(path: Path, rate_hz: float | None) -> Recording:
     audio = read_audio(path)
-    if rate_hz is not None and not math.isclose(rate_hz, audio.rate_hz, rel_tol=1e-3):
-        raise InputError(
-            f"the file is sampled at {audio.rate_hz:g} Hz, and {rate_hz:g} Hz was stated",
-            "leave the stated rate out",
-            Place(path),
-        )
-    channels = tuple(Channel(f"channel {i + 1}") for i in range(audio.samples.shape[1]))
+    check_agrees(rate_hz, audio.rate_hz, path)
+    channels = unnamed_channels(audio.samples.shape[1])
     full_scale = 1.0 if audio.integer else None
     return Recording(
         audio.samples, audio.rate_hz, channels, str(path), full_scale, tuple(audio.notes)
     )
+
+
+def check_agrees(stated_hz: float | None, rate_hz: float, path: Path) -> None:
+    """InputError where a stated rate is not that of an audio file."""
+    if stated_hz is not None and not math.isclose(stated_hz, rate_hz, rel_tol=1e-3):
+        raise InputError(
+            f"the file is sampled at {rate_hz:g} Hz, and {stated_hz:g} Hz was stated",
+            "leave the stated rate out",
+            Place(path),
+        )
+
+
+def unnamed_channels(count: int) -> tuple[Channel, ...]:
+    """Channels of an audio file, which does not say what they are."""
+    return tuple(Channel(f"channel {i + 1}") for i in range(count))
 
 
 def _from_text(path: Path, rate_hz: float | None) -> Recording:
@@ -147,7 +164,8 @@ def _from_text(path: Path, rate_hz: float | None) -> Recording:
     return Recording(text.samples, text.rate_hz, channels, str(path), None, text.notes)
 
 
-def _check_rate(rate_hz: float, path: Path) -> None:
+def check_rate(rate_hz: float, path: Path) -> None:
+    """InputError where no recording can be read at this rate."""
     if not LOWEST_RATE_HZ * (1 - 1e-9) <= rate_hz <= HIGHEST_RATE_HZ * (1 + 1e-9):
         raise InputError(
             f"a sampling rate of {rate_hz:.6g} Hz is out of range: "
@@ -157,14 +175,20 @@ def _check_rate(rate_hz: float, path: Path) -> None:
         )
 
 
-def _check_finite(recording: Recording, path: Path) -> None:
-    samples = recording.samples
+def check_finite(
+    samples: NDArray[np.float64], rate_hz: float, path: Path, *, first: int = 0, channel: int = 1
+) -> None:
+    """InputError where samples (n, channels) hold what is no measured value.
+
+    ``first`` and ``channel`` are the frame and the channel in the file at which they begin.
+    """
     if samples.min() >= -LARGEST_VALUE and samples.max() <= LARGEST_VALUE:
         return
     row, column = np.argwhere(~(np.abs(samples) <= LARGEST_VALUE))[0]
+    frame = first + int(row)
     raise InputError(
-        f"channel {column + 1} is {samples[row, column]:g}, not a measured value, at "
-        f"{row / recording.rate_hz:.6f} s (sample {row + 1})",
+        f"channel {channel + column} is {samples[row, column]:g}, not a measured value, at "
+        f"{frame / rate_hz:.6f} s (sample {frame + 1})",
         "export or record it again",
         Place(path),
     )
