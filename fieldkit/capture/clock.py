@@ -6,6 +6,9 @@ import time
 
 WINDOW_S = 1.0
 SETTLING_S = 1.0
+CATCH_UP_S = 0.5
+"""After a silence, the frames that waited somewhere get so long to arrive."""
+LONG_SILENCE_S = 0.2
 LEAST_LOSS_S = 0.05
 DRIFT = 5e-4
 """Most that a sound card's clock runs slow (common practice, no source: cards keep within 1e-4)."""
@@ -35,6 +38,7 @@ class FrameClock:
         """Forget everything; what lies before is no longer compared with."""
         self._frames = 0
         self._start_s: float | None = None
+        self._last_s = 0.0
         self._base_s: float | None = None
         self._least_s = float("inf")
         self._window_end_s = 0.0
@@ -55,6 +59,9 @@ class FrameClock:
         if self._start_s is None:
             self._start_s = at_s
             self._window_end_s = at_s + SETTLING_S
+        elif at_s - self._last_s > LONG_SILENCE_S:
+            self._window_end_s = max(self._window_end_s, at_s + CATCH_UP_S)
+        self._last_s = at_s
         self._frames += frames
         lag_s = at_s - self._start_s - self._frames / self._rate_hz
         self._least_s = min(self._least_s, lag_s)

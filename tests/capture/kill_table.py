@@ -1,0 +1,150 @@
+"""Kill recordings at random moments, and see how far each can be read.
+
+python -m tests.capture.kill_table --times 50
+"""
+
+from __future__ import annotations
+
+import argparse
+import os
+import subprocess
+import sys
+import tempfile
+from collections.abc import Iterator
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+import soundfile
+
+from fieldkit.capture.clock import now_s
+from fieldkit.capture.sidecar import read_info
+from fieldkit.signal.recording import load
+from tests.capture.rig import RATE_HZ, Bench, pulse_bench, until
+
+EARLIEST_S, LATEST_S = 0.7, 3.5
+
+RECORDER = """
+import sys, threading
+from pathlib import Path
+from fieldkit.capture.clock import now_s
+from fieldkit.capture.devices import find_input, list_inputs
+from fieldkit.capture.portaudio import PortAudioSource
+from fieldkit.capture.session import Session
+from fieldkit.capture.setup import ChannelSetup
+
+class First:
+    told = False
+    def feed(self, block):
+        if not self.told:
+            self.told = True
+            print(now_s(), len(block.samples), flush=True)
+
+source = PortAudioSource(
+    find_input("bench", list_inputs(check_rates=False)), rate_hz=48000, channels=2
+)
+session = Session(source)
+session.record(Path(sys.argv[1]), (ChannelSetup(), ChannelSetup()))
+session.add(First())
+session.start()
+threading.Event().wait()
+"""
+
+
+@dataclass(frozen=True)
+class Killed:
+    """One recording that was killed."""
+
+    at_s: float
+    """After its first frame."""
+    readable_s: float
+    """By libsndfile alone."""
+    loaded_s: float
+    """By fieldkit."""
+    whole: bool
+    """Whether all that can be read is what was played, bit for bit."""
+    described: bool
+    """Whether the sidecar can be read."""
+
+    @property
+    def lost_s(self) -> float:
+        """Before the kill, and not readable."""
+        return self.at_s - min(self.readable_s, self.loaded_s)
+
+
+def played_noise(seconds: float = 60.0) -> np.ndarray:
+    """Noise (n, 2) in which no stretch is like another."""
+    rng = np.random.default_rng(1)
+    return rng.integers(-20000, 20000, (round(seconds * RATE_HZ), 2)).astype(np.int16)
+
+
+def kills(bench: Bench, folder: Path, times: int, seed: int) -> Iterator[Killed]:
+    """Record what the bench plays, in another process that is killed, so many times."""
+    rng = np.random.default_rng(seed)
+    played = played_noise()
+    for number in range(times):
+        bench.play(played)
+        yield one_kill(bench, folder / f"killed-{number}.wav", rng.uniform(EARLIEST_S, LATEST_S))
+        bench.players[-1].kill()
+        bench.players[-1].wait()
+
+
+def one_kill(bench: Bench, path: Path, after_s: float) -> Killed:
+    """Record, and kill the recorder a while after its first frame."""
+    recorder = subprocess.Popen(
+        ["setpriv", "--pdeathsig", "KILL", sys.executable, "-c", RECORDER, str(path)],
+        env=os.environ | bench.environment,
+        stdout=subprocess.PIPE,
+        text=True,
+    )
+    try:
+        first_s, frames = recorder.stdout.readline().split()
+        began_s = float(first_s) - int(frames) / RATE_HZ
+        until(lambda: now_s() >= began_s + after_s)
+    finally:
+        killed_s = now_s()
+        recorder.kill()
+        recorder.wait()
+        recorder.stdout.close()
+    samples, _ = soundfile.read(path, dtype="int32", always_2d=True)
+    return Killed(
+        at_s=killed_s - began_s,
+        readable_s=len(samples) / RATE_HZ,
+        loaded_s=load(path).duration_s,
+        whole=is_whole(samples >> 16),
+        described=read_info(path) is not None,
+    )
+
+
+def is_whole(recorded: np.ndarray) -> bool:
+    """Whether it is silence, then an unbroken stretch of the noise."""
+    played = played_noise()
+    sounding = np.flatnonzero(recorded.any(axis=1))
+    if not len(sounding):
+        return True
+    heard = recorded[sounding[0] :]
+    starts = np.flatnonzero((played == heard[0]).all(axis=1))
+    return any(np.array_equal(played[i : i + len(heard)], heard) for i in starts)
+
+
+def main() -> None:
+    """Print the table."""
+    parser = argparse.ArgumentParser(description=__doc__)
+    parser.add_argument("--times", type=int, default=50)
+    parser.add_argument("--seed", type=int, default=0)
+    asked = parser.parse_args()
+    print("killed after   readable until   lost     bit-exact  sidecar")
+    lost = []
+    with tempfile.TemporaryDirectory() as name, pulse_bench(Path(name) / "bench") as bench:
+        for row in kills(bench, Path(name), asked.times, asked.seed):
+            lost.append(row.lost_s)
+            print(
+                f"{row.at_s:9.3f} s {row.readable_s:14.3f} s {row.lost_s:8.3f} s"
+                f"   {'yes' if row.whole else 'NO':9s}  {'yes' if row.described else 'NO'}",
+                flush=True,
+            )
+    print(f"{len(lost)} kills: lost {np.median(lost):.3f} s in the middle, {max(lost):.3f} s worst")
+
+
+if __name__ == "__main__":
+    main()
