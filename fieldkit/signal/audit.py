@@ -7,6 +7,7 @@ from collections.abc import Sequence
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.leftovers import MANY_OF_ITS_OWN, own_components
 from fieldkit.signal.polish import Fitted
 
 Real = NDArray[np.float64]
@@ -14,9 +15,6 @@ Real = NDArray[np.float64]
 _POOR = 4.0
 """Residual over expected noise variance of a tap that the others' modes do not explain."""
 _OVER_OTHERS = 4.0
-_MANY_OF_ITS_OWN = 3
-_ALMOST_ALL = 0.9
-_RINGS = 0.2
 
 
 def odd_taps(fitted: Sequence[Fitted], taps: int) -> NDArray[np.bool_]:
@@ -28,18 +26,8 @@ def odd_taps(fitted: Sequence[Fitted], taps: int) -> NDArray[np.bool_]:
         return np.zeros(taps, bool)
     misfit = tap_misfit(fitted, taps)
     odd = (misfit > _POOR) & (misfit > _OVER_OTHERS * np.median(misfit))
-    odd |= own_components(fitted, taps) >= _MANY_OF_ITS_OWN
+    odd |= own_components([f.part for f in fitted], taps) >= MANY_OF_ITS_OWN
     return np.asarray(odd & (np.count_nonzero(odd) <= taps - 2))
-
-
-def own_components(fitted: Sequence[Fitted], taps: int) -> NDArray[np.int64]:
-    """(K,) how many components ring in one tap almost alone."""
-    count = np.zeros(taps, int)
-    for part in (f.part for f in fitted if f.part.damping_ratio < _RINGS):
-        energy = np.abs(part.amplitudes) ** 2
-        top = int(np.argmax(energy))
-        count[top] += energy[top] > _ALMOST_ALL * energy.sum()
-    return count
 
 
 def tap_misfit(fitted: Sequence[Fitted], taps: int) -> Real:

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -28,25 +29,32 @@ class NoiseDensity:
 
     def at(self, frequency_hz: Real) -> Real:
         """Density at the given frequencies, interpolated on a log scale; flat beyond the ends."""
-        log = np.interp(np.abs(frequency_hz), self.frequency_hz, np.log(self.density))
-        return np.asarray(np.exp(log))
+        return np.asarray(np.exp(np.interp(np.abs(frequency_hz), self.frequency_hz, self.log)))
+
+    @cached_property
+    def log(self) -> Real:
+        """(m,) natural logarithm of the density."""
+        return np.asarray(np.log(self.density))
 
 
 def noise_density(
-    segments: Sequence[Real], rate_hz: float, *, whole: bool = False
+    segments: Sequence[Real], rate_hz: float, *, whole: bool = False, top_hz: float = np.inf
 ) -> NoiseDensity | None:
     """Density from quiet stretches by Welch's method, medians over time and over frequency.
 
     The median over a window of frequencies passes over lines, which are modelled on their own;
-    ``whole`` stretches, not parts of them, keep also the lines of modes narrow. None when all
-    stretches together are too short to say anything.
+    ``whole`` stretches, not parts of them, keep also the lines of modes narrow. What lies above
+    ``top_hz`` is not looked at. None when all stretches together are too short to say anything.
     """
+    from scipy.fft import prev_fast_len
+
     available = max((len(s) for s in segments), default=0)
     part = min(max(available // 6, int(0.5 * rate_hz)), int(_LONGEST_PART_S * rate_hz), available)
-    length = available if whole else part
+    length = prev_fast_len(available if whole else part, real=True) if available else 0
     if length < 32:
         return None
-    spectra = [p for s in segments for p in periodograms(s, length, rate_hz)]
+    used = max(int(min(top_hz / rate_hz, 0.5) * length) + 1, 16)
+    spectra = [p[:used] for s in segments for p in periodograms(s, length, rate_hz)]
     typical = np.median(np.array(spectra), axis=0)
     frequency_hz = np.arange(1, len(typical)) * rate_hz / length
     return NoiseDensity(frequency_hz, floor_over_frequency(typical[1:]))

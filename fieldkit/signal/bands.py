@@ -1,9 +1,14 @@
-"""The transform bins around some poles, for all taps, and the columns a model has there."""
+"""The transform bins around some poles, for all taps, and the columns a model has there.
+
+Every bin is divided by the standard deviation noise gives its real or imaginary part. Columns of a
+model are complex, (C, K, B); as rows of real data they are (K, C, 2 B).
+"""
 
 from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
@@ -20,40 +25,54 @@ class Band:
     """The bins of K taps used together; rows beyond a tap's own bins carry no weight."""
 
     turn: Complex
-    """(K, B) exp(-iw) with w the bin's angle per sample."""
+    """(K, B) exp(-iw) with w the bin's angle per sample; (1, B) where all taps have the same."""
+    count: Real
+    """(K, 1) samples transformed; (1, 1) where all taps have the same."""
+    rate_hz: Real
+    """(K, 1), or (1, 1) likewise."""
     frequency_hz: Real
     """(K, B)"""
-    count: Real
-    """(K, 1) samples transformed."""
-    rate_hz: Real
-    """(K, 1)"""
     weight: Real
     """(K, B) one over the standard deviation of a real or imaginary part; 0 outside."""
     data: Complex
-    """(K, B)"""
+    """(K, B) weighted transforms."""
+
+    @property
+    def taps(self) -> int:
+        """K."""
+        return len(self.weight)
 
     @property
     def rows(self) -> int:
         """Real data in use."""
         return 2 * int(np.count_nonzero(self.weight))
 
+    @cached_property
+    def edges_hz(self) -> tuple[float, float]:
+        """Frequencies between which a pole can be seen: a bin beyond the lowest and highest."""
+        used = self.frequency_hz[self.weight > 0]
+        spacing = float(np.max(self.rate_hz / self.count))
+        return float(used.min()) - spacing, float(used.max()) + spacing
+
 
 def band(traces: Sequence[Trace], low_hz: float, high_hz: float, duration_s: float) -> Band:
-    """Bins from low to high of the first ``duration_s`` of every tap."""
-    counts = [min(len(t.samples), max(int(duration_s * t.rate_hz), 16)) for t in traces]
+    """Bins from low to high of about the first ``duration_s`` of every tap."""
+    counts = [t.fast_count(duration_s) for t in traces]
     edges = [bin_edges(t, n, low_hz, high_hz) for t, n in zip(traces, counts, strict=True)]
     widest = max(b - a for a, b in edges)
     shape = (len(traces), widest)
     frequency, weight, data = np.zeros(shape), np.zeros(shape), np.zeros(shape, complex)
     for k, (trace, n, (a, b)) in enumerate(zip(traces, counts, edges, strict=True)):
         frequency[k] = (a + np.arange(widest)) * trace.rate_hz / n
-        data[k, : b - a] = trace.spectrum(n)[a:b]
         density = trace.noise.at(frequency[k, : b - a])
         weight[k, : b - a] = 1 / np.sqrt(density * trace.rate_hz * n / 4)
-    rate = np.array([[t.rate_hz] for t in traces])
-    count = np.array([[float(n)] for n in counts])
-    turn = np.exp(-2j * np.pi * frequency / rate)
-    return Band(turn, frequency, count, rate, weight, data)
+        data[k, : b - a] = trace.spectrum(n)[a:b] * weight[k, : b - a]
+    alike = len({(t.rate_hz, n) for t, n in zip(traces, counts, strict=True)}) == 1
+    used = slice(0, 1 if alike else None)
+    rate = np.array([[t.rate_hz] for t in traces])[used]
+    count = np.array([[float(n)] for n in counts])[used]
+    turn = np.exp(-2j * np.pi * frequency[used] / rate)
+    return Band(turn, count, rate, frequency, weight, data)
 
 
 def bin_edges(trace: Trace, count: int, low_hz: float, high_hz: float) -> tuple[int, int]:
@@ -66,77 +85,76 @@ def bin_edges(trace: Trace, count: int, low_hz: float, high_hz: float) -> tuple[
 
 def subtract(bins: Band, parts: Sequence[Component]) -> Band:
     """The band with components taken out at their present amplitudes."""
-    data = bins.data
-    for part in parts:
-        data = data - part_transform(bins, part)
-    return replace(bins, data=data)
+    if not parts:
+        return bins
+    plain, ramp = transforms(bins, pole_table(parts))
+    amplitudes = np.array([p.amplitudes for p in parts])[:, :, None]
+    total = combined(plain, amplitudes).sum(axis=0)
+    sloping = [i for i, p in enumerate(parts) if np.any(p.slopes)]
+    if sloping:
+        slopes = np.array([parts[i].slopes for i in sloping])[:, :, None]
+        total = total + combined(ramp[sloping], slopes).sum(axis=0)
+    return replace(bins, data=bins.data - total)
 
 
-def part_transform(bins: Band, part: Component) -> Complex:
-    """(K, B) transform of a component as it stands."""
-    plain, ramp = conjugate_pair(bins, part.poles)
-    total = weighted_pair(plain, part.amplitudes)
-    return total + weighted_pair(ramp, part.slopes) if np.any(part.slopes) else total
+def pole_table(parts: Sequence[Component]) -> Complex:
+    """(P, K) poles, or (P, 1) where all taps share them."""
+    poles = np.array([p.poles for p in parts])
+    return poles[:, :1] if np.all(poles == poles[:, :1]) else poles
 
 
-def conjugate_pair(bins: Band, poles: Complex) -> tuple[list[Complex], list[Complex]]:
-    """Transforms of exp(pt) / 2 and of its conjugate's, then the same times t; each (K, B)."""
-    plain, ramp = [], []
-    for pole in (poles, np.conj(poles)):
-        step = np.exp(pole[:, None] / bins.rate_hz)
-        last = np.exp(pole[:, None] / bins.rate_hz * bins.count)
-        sums = geometric(step * bins.turn, last, bins.count)
-        plain.append(sums[0] / 2)
-        ramp.append(sums[1] / (2 * bins.rate_hz))
-    return plain, ramp
+def transforms(bins: Band, poles: Complex) -> tuple[Complex, Complex]:
+    """Weighted transforms of exp(pt) / 2 and of its conjugate, and both times t; (P, 2, K, B).
+
+    ``poles`` are (P, K), or (P, 1) where the taps share them.
+    """
+    both = np.stack([poles, np.conj(poles)], axis=1)[..., None] / bins.rate_hz
+    plain, ramp = geometric(np.exp(both) * bins.turn, np.exp(both * bins.count), bins.count)
+    return plain * (bins.weight / 2), ramp * (bins.weight / (2 * bins.rate_hz))
 
 
-def weighted_pair(pair: Sequence[Complex], amplitudes: Complex) -> Complex:
-    """(K, B) transform of Re[a exp(pt)] from the transforms of both conjugates."""
-    return amplitudes[:, None] * pair[0] + np.conj(amplitudes)[:, None] * pair[1]
+def combined(pair: Complex, amplitudes: Complex) -> Complex:
+    """(P, K, B) transforms of Re[a exp(pt)] from both conjugates; amplitudes are (P, K, 1)."""
+    return np.asarray(amplitudes * pair[:, 0] + np.conj(amplitudes) * pair[:, 1])
 
 
-def cosine_sine(pair: Sequence[Complex]) -> list[Complex]:
-    """Transforms of Re[exp(pt)] and of Re[i exp(pt)]."""
-    return [pair[0] + pair[1], 1j * (pair[0] - pair[1])]
+def cosines_sines(pair: Complex) -> Complex:
+    """(2 P, K, B) transforms of Re[exp(pt)] and of Re[i exp(pt)] in turn."""
+    columns = np.empty_like(pair)
+    np.add(pair[:, 0], pair[:, 1], out=columns[:, 0])
+    np.subtract(pair[:, 0], pair[:, 1], out=columns[:, 1])
+    columns[:, 1] *= 1j
+    return columns.reshape(-1, *pair.shape[2:])
 
 
-def passive_columns(bins: Band, part: Component) -> list[Complex]:
-    """Columns of a component with a fixed pole; a tone has two more, times t, for its wander."""
-    plain, ramp = conjugate_pair(bins, part.poles)
-    return cosine_sine(plain) + (cosine_sine(ramp) if part.steady else [])
+def passive_columns(bins: Band, parts: Sequence[Component]) -> Complex:
+    """Columns of components with fixed poles; a tone has two more, times t, for its wander."""
+    if not parts:
+        return np.zeros((0, *bins.weight.shape), complex)
+    plain, ramp = transforms(bins, pole_table(parts))
+    each = [
+        columns
+        for i, part in enumerate(parts)
+        for columns in [plain[i : i + 1]] + ([ramp[i : i + 1]] if part.steady else [])
+    ]
+    return cosines_sines(np.concatenate(each))
 
 
-def pole_slopes(ramp: Sequence[Complex], part: Component, amplitudes: Complex) -> list[Complex]:
-    """(K, B) derivatives by angular frequency and, unless steady, by ln decay."""
-    by_frequency = weighted_pair(ramp, 1j * amplitudes)
-    by_decay = -part.decay_per_s * weighted_pair(ramp, amplitudes)
-    return [by_frequency] if part.steady else [by_frequency, by_decay]
+def real_rows(columns: Complex) -> Real:
+    """(K, C, 2 B) real and imaginary parts, in turn, of columns of (C, K, B)."""
+    return np.ascontiguousarray(columns.transpose(1, 0, 2)).view(np.float64)
 
 
-def real_rows(bins: Band, columns: Sequence[Complex]) -> Real:
-    """(K, 2 B, C) weighted real and imaginary parts of columns of (K, B)."""
-    stacked = np.stack(columns, axis=-1) * bins.weight[:, :, None]
-    return np.concatenate([stacked.real, stacked.imag], axis=1)
-
-
-def leftover_columns(bins: Band, terms: int) -> list[Complex]:
+def leftover_columns(bins: Band, terms: int) -> Complex:
     """Smooth complex background of the band: Legendre polynomials of frequency, and i times each.
 
     What is short in time, such as the foot of the contact pulse, is smooth in frequency.
     """
     if terms == 0:
-        return []
+        return np.zeros((0, *bins.weight.shape), complex)
     used = bins.frequency_hz[bins.weight > 0]
     middle, half = (used.max() + used.min()) / 2, max(np.ptp(used) / 2, 1e-12)
-    x = (bins.frequency_hz - middle) / half
-    legendre = np.polynomial.legendre.legvander(x, terms - 1)
+    legendre = np.polynomial.legendre.legvander((bins.frequency_hz - middle) / half, terms - 1)
     scale = np.abs(bins.weight).max(axis=1, initial=0.0)[:, None]
-    smooth = [legendre[:, :, i] / scale + 0j for i in range(terms)]
-    return smooth + [1j * column for column in smooth]
-
-
-def orthonormal(rows: Real) -> Real:
-    """(K, R, C) orthonormal basis of each tap's columns."""
-    size = np.linalg.norm(rows, axis=1, keepdims=True)
-    return np.asarray(np.linalg.qr(rows / np.where(size > 0, size, 1.0))[0])
+    smooth = np.moveaxis(legendre, -1, 0) * (bins.weight / scale)
+    return np.concatenate([smooth + 0j, 1j * smooth])

@@ -7,7 +7,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from fieldkit.signal.bands import Band, band, subtract
-from fieldkit.signal.likelihood import Fit, fit
+from fieldkit.signal.likelihood import Fit, Still, fit_before
 from fieldkit.signal.traces import Component, Trace
 
 DECAYS_USED = 8.0
@@ -70,15 +70,28 @@ def fit_together(
     *,
     leftover_terms: int = 2,
     over: Sequence[Component] | None = None,
-    steps: int = 25,
 ) -> Fit:
     """Fit active poles; others inside the band get new amplitudes, those outside are taken out.
 
     ``over`` sets the bins from other components than the active ones, so that costs compare.
     """
-    bins, passive = prepared(traces, over or active, others, top_hz)
+    around = over or active
+    still = surroundings(traces, around, others, top_hz, leftover_terms=leftover_terms)
+    return fit_before(still, active)
+
+
+def surroundings(
+    traces: Sequence[Trace],
+    around: Sequence[Component],
+    others: Sequence[Component],
+    top_hz: float,
+    *,
+    leftover_terms: int = 2,
+) -> Still:
+    """The band around some poles with everything in it that they are fitted beside."""
+    bins, passive = prepared(traces, around, others, top_hz)
     terms = leftover_terms if bins.rows > 24 * len(traces) else min(leftover_terms, 1)
-    return fit(bins, active, passive, leftover_terms=terms, steps=steps)
+    return Still(bins, passive, terms)
 
 
 def prepared(

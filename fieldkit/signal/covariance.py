@@ -112,7 +112,9 @@ def disagree(taps: Real, within: Real) -> bool:
 def agreed(taps: Real, within: Real) -> Estimate:
     """Random-effects mean of what the taps say, with Student's factor for few of them.
 
-    DerSimonian and Laird 1986 (from memory) for the variance between taps.
+    DerSimonian and Laird 1986 (from memory) for the variance between taps. Only that is read from
+    the taps themselves: how far Student's factor reaches follows from its share of the variance
+    (Satterthwaite 1946, from memory).
     """
     from scipy.special import stdtrit
 
@@ -122,5 +124,6 @@ def agreed(taps: Real, within: Real) -> Estimate:
     total = weight.sum() - weight @ weight / weight.sum()
     between = max((spread - (count - 1)) / float(total), 0.0)
     weight = 1 / (within + between)
-    student = float(stdtrit(count - 1, 0.975)) / 1.96
+    share = between / count * float(weight.sum())
+    student = float(stdtrit((count - 1) / max(share, 1e-3) ** 2, 0.975)) / 1.96
     return Estimate(float(np.average(taps, weights=weight)), student / float(np.sqrt(weight.sum())))

@@ -13,7 +13,7 @@ Complex = NDArray[np.complex128]
 Real = NDArray[np.float64]
 
 _BLOCK = 128
-_NEAR_ONE = 1e-4
+_NEAR_ONE = 1e-3
 """Of N |1 - q|: below it the geometric sums are taken from their series."""
 
 
@@ -23,15 +23,24 @@ def geometric(ratio: Complex, last: Complex, count: Real) -> tuple[Complex, Comp
     ``ratio`` is q, ``last`` q^N and ``count`` N, all of shapes that broadcast to that of q.
     """
     gap = 1 - ratio
+    if np.all((1 - np.abs(last)) > _NEAR_ONE):
+        return away_from_one(ratio, last, count, gap)
     near = np.abs(gap) * count < _NEAR_ONE
-    safe = np.where(near, 1.0, gap)
-    plain = (1 - last) / safe
-    ramp = (ratio * plain - count * last) / safe
+    plain, ramp = away_from_one(ratio, last, count, np.where(near, 1.0, gap))
     if not near.any():
         return plain, ramp
-    plain_near = count * (1 - gap * (count - 1) / 2)
-    ramp_near = count * (count - 1) / 2 * (1 - gap * (2 * count - 1) / 3)
+    plain_near = count * (1 - gap * (count - 1) / 2 * (1 - gap * (count - 2) / 3))
+    second = gap * (3 * count - 1) * (count - 2) / 12
+    ramp_near = count * (count - 1) / 2 * (1 - gap * ((2 * count - 1) / 3 - second))
     return np.where(near, plain_near, plain), np.where(near, ramp_near, ramp)
+
+
+def away_from_one(
+    ratio: Complex, last: Complex, count: Real, gap: Complex
+) -> tuple[Complex, Complex]:
+    """The sums by their closed forms; ``gap`` is 1 - q."""
+    plain = (1 - last) / gap
+    return plain, (ratio * plain - count * last) / gap
 
 
 def damped(exponent: complex, count: int) -> Complex:

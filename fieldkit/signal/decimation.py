@@ -25,11 +25,22 @@ def decimate(
     filter_taps = lowpass(rate_hz, keep_hz, rate_hz / step - keep_hz)
     if len(samples) < 4 * len(filter_taps):
         return samples, rate_hz
-    count = (len(samples) - len(filter_taps)) // step + 1
+    return by_phases(samples, filter_taps, step), rate_hz / step
+
+
+def by_phases(
+    samples: NDArray[np.float64], weights: NDArray[np.float64], step: int
+) -> NDArray[np.float64]:
+    """Every ``step``-th value of the samples weighted by a filter that lies wholly inside them."""
+    turns = -(-len(weights) // step)
+    phases = np.zeros(turns * step)
+    phases[: len(weights)] = weights
+    blocks = samples[: len(samples) // step * step].reshape(-1, step)
+    count = len(blocks) - turns + 1
     out = np.zeros(count)
-    for offset, weight in enumerate(filter_taps):
-        out += weight * samples[offset : offset + (count - 1) * step + 1 : step]
-    return out, rate_hz / step
+    for turn in range(turns):
+        out += blocks[turn : turn + count] @ phases[turn * step : (turn + 1) * step]
+    return out
 
 
 def lowpass(

@@ -15,13 +15,12 @@ from numpy.typing import NDArray
 
 from fieldkit.signal.bands import (
     Band,
-    conjugate_pair,
-    cosine_sine,
+    combined,
+    cosines_sines,
     leftover_columns,
-    orthonormal,
     passive_columns,
-    pole_slopes,
     real_rows,
+    transforms,
 )
 from fieldkit.signal.traces import Component
 
@@ -29,7 +28,15 @@ Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
 _MOST_STEPS = 25
-_CONVERGED = 1e-3
+CLOSELY = 1e-4
+"""Cost a further step would save, over the noise variance, at which a fit stops."""
+ROUGHLY = 0.02
+"""The same where only the cost matters."""
+_RIDGE = 1e-12
+_MOST_DECAY = 0.6
+"""Of the angular frequency: what decays faster is no vibration."""
+_LOWEST = 0.3
+"""Turns over the record below which a pole is no vibration but a drift."""
 
 
 @dataclass(frozen=True)
@@ -57,160 +64,177 @@ class Fit:
         return self.cost / max(self.freedom, 1)
 
 
+class Still:
+    """The columns that do not move during a fit, and the data with them projected out."""
+
+    def __init__(self, bins: Band, passive: Sequence[Component], leftover_terms: int) -> None:
+        self.bins = bins
+        self.passive = tuple(passive)
+        columns = [passive_columns(bins, passive), leftover_columns(bins, leftover_terms)]
+        self.rows = real_rows(np.concatenate(columns))
+        self.data = real_rows(bins.data[None])[:, 0]
+        self.basis = orthonormal(self.rows)[0] if self.rows.shape[1] else None
+        self.left = self.clear(self.data[:, None])[:, 0]
+
+    def clear(self, rows: Real) -> Real:
+        """(K, C, R) rows less their part in the still columns."""
+        return rows if self.basis is None else less_part_in(self.basis, rows)
+
+
 def fit(
     bins: Band,
     active: Sequence[Component],
     passive: Sequence[Component] = (),
     *,
     leftover_terms: int = 0,
-    steps: int = _MOST_STEPS,
 ) -> Fit:
     """Fit the active poles; passive ones keep their poles and get new amplitudes.
 
-    ``bins`` must already be free of every other component. The residual cost is a local minimum or,
-    after ``steps`` steps, close to one.
+    ``bins`` must already be free of every other component.
     """
-    still = Still(bins, passive, leftover_terms)
-    point = Point.at(still, tuple(active))
-    damping = 1e-3
-    for _ in range(steps if active else 0):
-        trial = point.step(still, damping)
+    return fit_before(Still(bins, passive, leftover_terms), active)
+
+
+def fit_before(still: Still, active: Sequence[Component], enough: float = CLOSELY) -> Fit:
+    """Fit the active poles, the same in every tap, before a still background.
+
+    The residual cost is a local minimum or, after many steps, close to one.
+    """
+    omega = np.array([p.pole.imag for p in active])
+    decay = np.array([p.decay_per_s for p in active])
+    point, damping = Point.at(still, omega, decay), 1e-3
+    for _ in range(_MOST_STEPS if len(active) else 0):
+        move, promise = point.step(damping)
+        if promise < enough * max(point.cost / max(still.bins.rows, 1), 1.0):
+            break
+        trial = Point.at(still, *moved(point.omega, point.decay, move, still.bins))
         if trial.cost < point.cost:
-            gain, point, damping = point.cost - trial.cost, trial, max(damping / 5, 1e-7)
-            if gain < _CONVERGED:
-                break
+            point, damping = trial, max(damping / 5, 1e-7)
         elif damping > 1e4:
             break
         else:
             damping *= 8
-    return point.finished(still)
-
-
-class Still:
-    """The columns that do not move during a fit, and the data with them projected out."""
-
-    def __init__(self, bins: Band, passive: Sequence[Component], leftover_terms: int) -> None:
-        columns: list[Complex] = []
-        for part in passive:
-            columns += passive_columns(bins, part)
-        self.bins = bins
-        self.passive = tuple(passive)
-        self.leftover = leftover_columns(bins, leftover_terms)
-        self.columns = columns
-        self.data = real_rows(bins, [bins.data])[:, :, 0]
-        every = columns + self.leftover
-        self.basis = orthonormal(real_rows(bins, every)) if every else None
-        self.left = self.clear(self.data[:, :, None])[:, :, 0]
-
-    def clear(self, rows: Real) -> Real:
-        """Rows less their part in the still columns."""
-        if self.basis is None:
-            return rows
-        return np.asarray(rows - self.basis @ (self.basis.transpose(0, 2, 1) @ rows))
+    return point.finished(still, active)
 
 
 @dataclass(frozen=True)
 class Point:
     """The model at one set of active poles: amplitudes, residual, Jacobian."""
 
-    active: tuple[Component, ...]
+    omega: Real
+    """(A,) damped angular frequencies."""
+    decay: Real
+    """(A,)"""
+    amplitudes: Complex
+    """(A, K)"""
     cost: float
     residual: Real
     """(K, R) with every linear parameter fitted."""
     jacobian: Real
-    """(K, R, P) derivative of the model by the pole parameters, linear parameters projected out."""
-    columns: int
-    """Linear parameters of one tap that belong to the active poles."""
+    """(K, 2 A, R) derivative of the model by (omega, ln decay), linear parameters projected out."""
 
     @classmethod
-    def at(cls, still: Still, active: tuple[Component, ...]) -> Point:
+    def at(cls, still: Still, omega: Real, decay: Real) -> Point:
         """Solve for the amplitudes at these poles."""
-        bins = still.bins
-        if not active:
-            return cls(
-                (), float(np.sum(still.left**2)), still.left, np.zeros((*still.left.shape, 0)), 0
-            )
-        pairs = [conjugate_pair(bins, p.poles) for p in active]
-        columns = [c for plain, _ in pairs for c in cosine_sine(plain)]
-        numbers, basis = solve(still.clear(real_rows(bins, columns)), still.left)
-        left = still.left - (basis @ (basis.transpose(0, 2, 1) @ still.left[:, :, None]))[:, :, 0]
-        active = tuple(
-            replace(p, amplitudes=numbers[:, 2 * i] + 1j * numbers[:, 2 * i + 1])
-            for i, p in enumerate(active)
-        )
-        slopes = [
-            s
-            for part, (_, ramp) in zip(active, pairs, strict=True)
-            for s in pole_slopes(ramp, part, part.amplitudes)
-        ]
-        tangent = still.clear(real_rows(bins, slopes))
-        tangent = tangent - basis @ (basis.transpose(0, 2, 1) @ tangent)
-        return cls(active, float(np.sum(left**2)), left, tangent, len(columns))
+        if not len(omega):
+            nothing = np.zeros((len(still.left), 0, still.left.shape[1]))
+            amplitudes = np.zeros((0, len(still.left)), complex)
+            return cls(omega, decay, amplitudes, float(np.sum(still.left**2)), still.left, nothing)
+        plain, ramp = transforms(still.bins, poles_of(omega, decay)[:, None])
+        basis, to_numbers = orthonormal(still.clear(real_rows(cosines_sines(plain))))
+        shares = np.matmul(basis, still.left[:, :, None])[:, :, 0]
+        left = less_part_in(basis, still.left[:, None] - shares[:, None] @ basis)
+        numbers = np.matmul(to_numbers, shares[:, :, None])[:, :, 0].T
+        amplitudes = numbers[::2] + 1j * numbers[1::2]
+        tangent = still.clear(real_rows(pole_slopes(ramp, amplitudes, decay)))
+        tangent = less_part_in(basis, tangent)
+        return cls(omega, decay, amplitudes, float(np.sum(left**2)), left[:, 0], tangent)
 
-    def step(self, still: Still, damping: float) -> Point:
-        """The point one damped Gauss-Newton step away."""
-        normal = np.einsum("krp,krq->pq", self.jacobian, self.jacobian)
-        slope = np.einsum("krp,kr->p", self.jacobian, self.residual)
+    def step(self, damping: float) -> tuple[Real, float]:
+        """A damped Gauss-Newton step, and the cost it promises to save."""
+        normal = np.matmul(self.jacobian, self.jacobian.transpose(0, 2, 1)).sum(axis=0)
+        slope = np.matmul(self.jacobian, self.residual[:, :, None]).sum(axis=0)[:, 0]
         scale = np.diag(normal) + 1e-30
         move = np.linalg.solve(normal + np.diag(damping * scale + 1e-30), slope)
-        return Point.at(still, moved(self.active, move, still.bins))
+        return move, float(move @ slope)
 
-    def finished(self, still: Still) -> Fit:
+    def finished(self, still: Still, active: Sequence[Component]) -> Fit:
         """The fit at this point, with the amplitudes of the passive components."""
-        information = np.einsum("krp,krq->kpq", self.jacobian, self.jacobian)
-        bins = still.bins
-        parameters = self.jacobian.shape[2] + len(bins.count) * (
-            self.columns + len(still.columns) + len(still.leftover)
+        information = np.matmul(self.jacobian, self.jacobian.transpose(0, 2, 1))
+        poles = poles_of(self.omega, self.decay)
+        fitted = tuple(
+            replace(part, poles=np.full(still.bins.taps, pole), amplitudes=own)
+            for part, pole, own in zip(active, poles, self.amplitudes, strict=True)
         )
+        linear = still.bins.taps * (2 * len(poles) + still.rows.shape[1])
         return Fit(
-            self.active,
-            passive_amplitudes(still, self.active),
+            fitted,
+            passive_amplitudes(still, self),
             self.cost,
             np.sum(self.residual**2, axis=1),
-            bins.rows - parameters,
+            still.bins.rows - linear - 2 * len(poles),
             information.sum(axis=0),
             information,
-            np.einsum("krp,kr->kp", self.jacobian, self.residual),
+            np.matmul(self.jacobian, self.residual[:, :, None])[:, :, 0],
         )
 
 
-def solve(columns: Real, target: Real) -> tuple[Real, Real]:
-    """(K, C) least-squares numbers and the (K, R, C) orthonormal basis of the columns."""
-    size = np.linalg.norm(columns, axis=1, keepdims=True)
-    size = np.where(size > 0, size, 1.0)
-    basis, triangle = np.linalg.qr(columns / size)
-    ridge = 1e-13 * np.eye(triangle.shape[-1])
-    numbers = np.linalg.solve(triangle + ridge, basis.transpose(0, 2, 1) @ target[:, :, None])
-    return numbers[:, :, 0] / size[:, 0, :], basis
+def poles_of(omega: Real, decay: Real) -> Complex:
+    """(A,) complex poles."""
+    return np.asarray(1j * omega - decay, complex)
 
 
-def moved(active: Sequence[Component], move: Real, bins: Band) -> tuple[Component, ...]:
-    """Components with their poles moved, each step held within sense and the band."""
-    out, at = [], 0
+def pole_slopes(ramp: Complex, amplitudes: Complex, decay: Real) -> Complex:
+    """(2 A, K, B) derivatives of the components by angular frequency and by ln decay, in turn."""
+    turned = 1j * amplitudes[:, :, None]
+    shrunk = (-decay[:, None] * amplitudes)[:, :, None]
+    slopes = np.stack([combined(ramp, turned), combined(ramp, shrunk)], axis=1)
+    return slopes.reshape(-1, *ramp.shape[2:])
+
+
+def orthonormal(rows: Real) -> tuple[Real, Real]:
+    """(K, C, R) orthonormal basis of each tap's rows, and (K, C, C) from shares to numbers.
+
+    By Cholesky's factor of the normalised products; rows that are nearly alike share one direction.
+    """
+    size = np.sqrt(np.einsum("kcr,kcr->kc", rows, rows))
+    scaled = rows / np.where(size > 0, size, 1.0)[:, :, None]
+    count = rows.shape[1]
+    products = np.matmul(scaled, scaled.transpose(0, 2, 1)) + _RIDGE * np.eye(count)
+    inverse_factor = np.linalg.inv(np.linalg.cholesky(products))
+    basis = np.matmul(inverse_factor, scaled)
+    to_numbers = inverse_factor.transpose(0, 2, 1) / np.where(size > 0, size, 1.0)[:, :, None]
+    return basis, to_numbers
+
+
+def less_part_in(basis: Real, rows: Real) -> Real:
+    """(K, C, R) rows less their part in an orthonormal basis."""
+    return np.asarray(rows - np.matmul(np.matmul(rows, basis.transpose(0, 2, 1)), basis))
+
+
+def moved(omega: Real, decay: Real, move: Real, bins: Band) -> tuple[Real, Real]:
+    """Poles one step further, each step held within sense and the band."""
     spacing = float(np.max(bins.rate_hz / bins.count)) * 2 * np.pi
-    top = float(np.min(bins.rate_hz)) * np.pi
-    for part in active:
-        pole = part.pole
-        limit = max(3 * part.decay_per_s, spacing)
-        omega = pole.imag + float(np.clip(move[at], -limit, limit))
-        omega = float(np.clip(omega, 0.02 * spacing, 0.999 * top))
-        decay = part.decay_per_s
-        if not part.steady:
-            decay *= float(np.exp(np.clip(move[at + 1], -1.0, 1.0)))
-            decay = float(np.clip(decay, 1e-4 * spacing, 3 * omega))
-        at += 1 if part.steady else 2
-        out.append(part.with_pole(complex(-decay, omega)))
-    return tuple(out)
+    low, high = (2 * np.pi * edge for edge in bins.edges_hz)
+    limit = np.maximum(3 * decay, spacing)
+    turned = omega + np.minimum(np.maximum(move[::2], -limit), limit)
+    turned = np.minimum(np.maximum(turned, max(low, _LOWEST * spacing)), high)
+    grown = decay * np.exp(np.minimum(np.maximum(move[1::2], -1.0), 1.0))
+    return turned, np.minimum(np.maximum(grown, 1e-4 * spacing), _MOST_DECAY * turned)
 
 
-def passive_amplitudes(still: Still, active: Sequence[Component]) -> tuple[Component, ...]:
+def passive_amplitudes(still: Still, point: Point) -> tuple[Component, ...]:
     """Passive components with the amplitudes that go with the active ones."""
     if not still.passive:
         return ()
-    bins = still.bins
-    columns = still.columns + still.leftover
-    own = [c for p in active for c in cosine_sine(conjugate_pair(bins, p.poles)[0])]
-    numbers, _ = solve(real_rows(bins, columns + own), still.data)
+    poles = poles_of(point.omega, point.decay)[:, None]
+    data = still.data
+    if len(poles):
+        pair = transforms(still.bins, poles)[0]
+        own = combined(pair, point.amplitudes[:, :, None]).sum(axis=0)
+        data = data - real_rows(own[None])[:, 0]
+    basis, to_numbers = orthonormal(still.rows)
+    numbers = (to_numbers @ (basis @ data[:, :, None]))[:, :, 0]
     out, at = [], 0
     for part in still.passive:
         width = 4 if part.steady else 2

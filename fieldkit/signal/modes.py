@@ -100,11 +100,12 @@ def estimate_modes(
             "no usable tap in these recordings",
             "record at least three taps with a quiet second before the first and let each ring out",
         )
-    ready, found, fitted = fitted_modes(long_enough, high_hz)
+    ready, found, fitted = fitted_modes(long_enough, low_hz, high_hz)
     odd = odd_taps(fitted, len(long_enough))
+    odd[list(found.odd)] = True
     if odd.any():
         kept = [r for r, left_out in zip(long_enough, odd, strict=True) if not left_out]
-        ready, found, fitted = fitted_modes(kept, high_hz)
+        ready, found, fitted = fitted_modes(kept, low_hz, high_hz)
     verdicts = judged(fitted, ready.traces, ready.lines, found.unresolved)
     estimate = told(verdicts, found, ready, low_hz, high_hz)
     left_out = tuple(without_tap(int(i) + 1, len(long_enough)) for i in np.flatnonzero(odd))
@@ -112,11 +113,13 @@ def estimate_modes(
 
 
 def fitted_modes(
-    records: Sequence[TapRecord], high_hz: float
+    records: Sequence[TapRecord], low_hz: float, high_hz: float
 ) -> tuple[Prepared, Found, tuple[Fitted, ...]]:
     """Search, elimination and last fits of all records together."""
-    ready = prepare(records, high_hz)
+    ready = prepare(records, low_hz, high_hz)
     found = resolved(ready)
+    if found.odd:
+        return ready, found, ()
     if not ready.has_background:
         ready = ready.with_noise_from(found.parts)
         found = resolved(ready, found)
@@ -135,7 +138,8 @@ def without_tap(number: int, count: int) -> str:
 def resolved(ready: Prepared, known: Found | None = None) -> Found:
     """Search, then backward elimination."""
     start = known.parts if known else tone_components(ready.lines, ready.traces)
-    return pruned(ready.traces, search(ready.traces, start, ready.region), ready.region)
+    found = search(ready.traces, start, ready.region)
+    return found if found.odd else pruned(ready.traces, found, ready.region)
 
 
 def told(

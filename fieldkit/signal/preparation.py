@@ -19,6 +19,8 @@ Real = NDArray[np.float64]
 
 _RATE_OVER_REPORTED = 24.0
 _ANALYSED_OVER_REPORTED = 3.0
+_SEARCHED_BELOW = 0.5
+_SLOW_OVER_REPORTED = 1.25
 _USABLE_OF_RATE = 0.45
 _LEAST_BACKGROUND_S = 0.5
 _LONGEST_BACKGROUND_S = 30.0
@@ -57,14 +59,14 @@ class Prepared:
         traces = []
         for tap, trace in enumerate(self.traces):
             left = residual(trace, tap, parts)
-            noise = noise_density([left], trace.rate_hz, whole=True)
+            noise = noise_density([left], trace.rate_hz, whole=True, top_hz=self.region.high_hz)
             fresh = floored(noise, trace.samples, trace.rate_hz)
             traces.append(replace(trace, noise=fresh))
         return replace(self, traces=tuple(traces))
 
 
-def prepare(records: Sequence[Record], high_hz: float) -> Prepared:
-    """Traces at the analysis rate; the region reaches to three times the reported range.
+def prepare(records: Sequence[Record], low_hz: float, high_hz: float) -> Prepared:
+    """Traces at the analysis rate; the region reaches from half to three times the reported range.
 
     A strong mode just above the range would spoil the fit of those inside it.
     """
@@ -73,14 +75,21 @@ def prepare(records: Sequence[Record], high_hz: float) -> Prepared:
     )
     lowered = [lower(r.samples - rest(r), r.rate_hz, high_hz, top_hz) for r in records]
     quiet = {id(r.background): quiet_stretch(r, high_hz, top_hz) for r in records}
-    noises = {key: noise_density([s], rate_hz) for key, (s, rate_hz) in quiet.items()}
+    noises = {
+        key: noise_density([s], rate_hz, top_hz=top_hz) for key, (s, rate_hz) in quiet.items()
+    }
     has_background = all(n is not None for n in noises.values())
     traces = tuple(
-        Trace(samples, rate_hz, trace_noise(noises[id(r.background)], samples, rate_hz))
+        Trace(samples, rate_hz, trace_noise(noises[id(r.background)], samples, rate_hz, top_hz))
         for r, (samples, rate_hz) in zip(records, lowered, strict=True)
     )
     longest = max(t.duration_s for t in traces)
-    region = Region(1 / longest, top_hz, 1 / longest)
+    region = Region(
+        max(1 / longest, _SEARCHED_BELOW * low_hz),
+        top_hz,
+        1.5 / longest,
+        min(_SLOW_OVER_REPORTED * high_hz, top_hz),
+    )
     lines = distinct([lines_of(quiet[key], noises[key], top_hz) for key in quiet])
     return Prepared(traces, lines, region, has_background)
 
@@ -109,12 +118,14 @@ def quiet_stretch(record: Record, high_hz: float, top_hz: float) -> tuple[Real, 
     return lower(samples, record.rate_hz, high_hz, top_hz)
 
 
-def trace_noise(known: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:
+def trace_noise(
+    known: NoiseDensity | None, samples: Real, rate_hz: float, top_hz: float
+) -> NoiseDensity:
     """The background's density; where that between the lines of the trace is far lower, this one.
 
     A background that still rings from an earlier blow would hide the very modes that ring in it.
     """
-    own = noise_density([samples], rate_hz, whole=True)
+    own = noise_density([samples], rate_hz, whole=True, top_hz=top_hz)
     if known is None or own is None:
         return floored(known or own, samples, rate_hz)
     density = known.at(own.frequency_hz)

@@ -7,7 +7,8 @@ from dataclasses import replace
 
 import numpy as np
 
-from fieldkit.signal.clusters import alike, fit_together, needed_gain, overlapping, span_s
+from fieldkit.signal.clusters import alike, needed_gain, overlapping, span_s, surroundings
+from fieldkit.signal.likelihood import ROUGHLY, fit_before
 from fieldkit.signal.scan import Region, threshold
 from fieldkit.signal.scatter import freedom_price, looser, scattered
 from fieldkit.signal.search import Found, updated, without
@@ -78,10 +79,14 @@ def without_if_idle(
     firm = [p for p in (*near, current) if not scattered(p)]
     held = [*rest, *(n for n in (*near, current) if scattered(n))]
     around, top_hz = [*near, current], region.high_hz
-    with_it = fit_together(traces, firm, held, top_hz, over=around)
+    still = surroundings(traces, around, held, top_hz)
+    with_it = fit_before(still, firm, ROUGHLY)
     left = [p for p in firm if p is not current]
-    alone = fit_together(traces, left, without(held, [current]), top_hz, over=around)
-    loose = looser(traces, near, rest, top_hz, alone, around)
+    if scattered(current):
+        still = surroundings(traces, around, without(held, [current]), top_hz)
+    alone = fit_before(still, left, ROUGHLY)
+    saved = alone.cost - with_it.cost
+    loose = looser(traces, near, rest, top_hz, alone, around, least=saved)
     noise = max(min(with_it.variance, loose.variance if loose else np.inf), 1.0)
     worth = needed_gain(alone.freedom, len(traces), threshold(len(traces), 100)) * noise
     if scattered(current):

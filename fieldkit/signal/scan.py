@@ -13,12 +13,16 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.decays import damped
+from fieldkit.signal.decimation import decimate
 from fieldkit.signal.traces import Trace
 
 Real = NDArray[np.float64]
 
 FALSE_PER_SCAN = 1e-3
 GREATEST_DAMPING = 0.25
+SLOW_DAMPING = 3e-3
+"""At the end of the reported range: decays below this one's are the slow ones."""
 _SETTLE_S = 0.003
 _LEVEL_BLOCK = 96
 _LEVEL_QUANTILE = 0.25
@@ -43,25 +47,39 @@ class Region:
     high_hz: float
     slowest_per_s: float
     """Smallest decay in the bank."""
+    slow_high_hz: float
+    """Up to where what decays slowly is searched."""
 
 
 def scan(leftovers: Sequence[Trace], region: Region, most: int = 8) -> list[Candidate]:
     """Candidates above the threshold, strongest first, none in the skirt of a stronger one.
 
-    ``leftovers`` are the taps with what is known already taken out.
+    ``leftovers`` are the taps with what is known already taken out. What decays slowly is looked
+    for in and just above the reported range only: farther up it spoils nothing there.
     """
     found: list[Candidate] = []
     cells = 0
     decay = region.slowest_per_s
+    lowered = [at_lower_rate(t, region.slow_high_hz) for t in leftovers]
     while decay <= GREATEST_DAMPING * 2 * np.pi * region.high_hz:
-        frequency_hz, gain, clear = gain_over_frequency(leftovers, decay)
+        slow = decay < SLOW_DAMPING * 2 * np.pi * region.slow_high_hz
+        traces, top_hz = (lowered, region.slow_high_hz) if slow else (leftovers, region.high_hz)
+        frequency_hz, gain, clear = gain_over_frequency(traces, decay, top_hz)
         lowest = max(region.low_hz, decay / (2 * np.pi * GREATEST_DAMPING))
-        keep = (frequency_hz >= lowest) & (frequency_hz <= region.high_hz)
+        keep = (frequency_hz >= lowest) & (frequency_hz <= top_hz)
         cells += int(np.count_nonzero(keep))
         found += peaks(frequency_hz[keep], gain[keep], clear[keep], decay)
         decay *= 2
     least = threshold(len(leftovers), cells)
     return apart([c for c in found if c.clear > least], most)
+
+
+def at_lower_rate(trace: Trace, high_hz: float) -> Trace:
+    """The trace at a rate just high enough for what lies below ``high_hz``."""
+    samples, rate_hz = decimate(
+        trace.samples, trace.rate_hz, keep_hz=high_hz, wanted_rate_hz=3 * high_hz
+    )
+    return trace if samples is trace.samples else Trace(samples, rate_hz, trace.noise)
 
 
 def threshold(taps: int, cells: int) -> float:
@@ -71,13 +89,15 @@ def threshold(taps: int, cells: int) -> float:
     return float(chdtri(2 * taps, FALSE_PER_SCAN / max(cells, 1)))
 
 
-def gain_over_frequency(traces: Sequence[Trace], decay: float) -> tuple[Real, Real, Real]:
-    """(m,) frequencies, gains, and gains over their surroundings, for one decay."""
+def gain_over_frequency(
+    traces: Sequence[Trace], decay: float, top_hz: float
+) -> tuple[Real, Real, Real]:
+    """(m,) frequencies up to top, gains, and gains over their surroundings, for one decay."""
     longest = max(t.duration_s for t in traces)
     span_s = fast_span_s(8 / decay if 8 / decay < longest else 2 * longest, traces[0].rate_hz)
-    gains = [tap_gain(t, decay, span_s) for t in traces]
-    count = min(len(g) for g in gains)
-    total = np.sum([g[:count] for g in gains], axis=0)
+    count = int(min(top_hz * span_s + 2, min(round(span_s * t.rate_hz) // 2 + 1 for t in traces)))
+    gains = [tap_gain(t, decay, span_s, count) for t in traces]
+    total = np.sum(gains, axis=0)
     return np.arange(count) / span_s, total, total / excess(total, 2.0 * len(traces))
 
 
@@ -88,20 +108,25 @@ def fast_span_s(span_s: float, rate_hz: float) -> float:
     return next_fast_len(max(int(np.ceil(span_s * rate_hz)), 8), real=True) / rate_hz
 
 
-def tap_gain(trace: Trace, decay: float, span_s: float) -> Real:
-    """(m,) gain of one tap on frequencies 1 / span_s apart."""
+def tap_gain(trace: Trace, decay: float, span_s: float, count: int) -> Real:
+    """(count,) gain of one tap on frequencies 1 / span_s apart."""
     points = round(span_s * trace.rate_hz)
-    time_s = np.arange(min(points, len(trace.samples))) / trace.rate_hz
-    window = np.exp(-decay * time_s) * settling(time_s, decay)
-    power = np.abs(np.fft.rfft(window * trace.samples[: len(time_s)], points)) ** 2
-    density = trace.noise.at(np.arange(len(power)) / span_s)
-    return np.asarray(4 * power / (trace.rate_hz * density * np.sum(window**2)))
+    window = decay_window(min(points, len(trace.samples)), decay, trace.rate_hz)
+    power = np.abs(np.fft.rfft(window * trace.samples[: len(window)], points)[:count]) ** 2
+    density = trace.noise.at(np.arange(count) / span_s)
+    return np.asarray(4 * power / (trace.rate_hz * (window @ window) * density))
 
 
-def settling(time_s: Real, decay: float) -> Real:
-    """Half-cosine rise over the first moments, where leftovers of the contact may stand."""
+def decay_window(count: int, decay: float, rate_hz: float) -> Real:
+    """(count,) exp(-decay t) with a half-cosine rise over its first moments.
+
+    There leftovers of the contact may stand.
+    """
+    window = damped(-decay / rate_hz, count).real
     rise_s = min(_SETTLE_S, 0.1 / decay)
-    return np.asarray(0.5 - 0.5 * np.cos(np.pi * np.minimum(time_s / rise_s, 1.0)))
+    time_s = np.arange(min(int(rise_s * rate_hz) + 1, count)) / rate_hz
+    window[: len(time_s)] *= 0.5 - 0.5 * np.cos(np.pi * np.minimum(time_s / rise_s, 1.0))
+    return np.asarray(window)
 
 
 def excess(gain: Real, degrees: float) -> Real:

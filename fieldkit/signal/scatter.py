@@ -11,6 +11,9 @@ from fieldkit.signal.clusters import fit_together
 from fieldkit.signal.likelihood import Fit, inverse
 from fieldkit.signal.traces import Component, Trace
 
+_FORESEEN = 0.3
+"""Share of what poles of their own save that is seen to first order, at least."""
+
 
 @dataclass(frozen=True)
 class Loose:
@@ -66,12 +69,17 @@ def looser(
     top_hz: float,
     shared: Fit,
     around: Sequence[Component],
+    least: float = 0.0,
 ) -> Loose | None:
-    """Near modes with poles of their own in every tap; None where the taps agree."""
+    """Near modes with poles of their own in every tap.
+
+    None where the taps agree, or where that would not save ``least`` of the cost by far.
+    """
     if not near or len(traces) < 2:
         return None
     already = any(scattered(n) for n in near)
-    if not already and disagreement(shared) < freedom_price(near, len(traces), shared.freedom):
+    price = freedom_price(near, len(traces), shared.freedom)
+    if not already and disagreement(shared) < max(price, _FORESEEN * least):
         return None
     return loosened(traces, near, rest, top_hz, around)
 

@@ -7,13 +7,15 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from fieldkit.signal.clusters import fit_together, needed_gain, overlapping, span_s
-from fieldkit.signal.decimation import decimate
+from fieldkit.signal.clusters import needed_gain, overlapping, span_s, surroundings
+from fieldkit.signal.leftovers import leftovers, stand_out
+from fieldkit.signal.likelihood import ROUGHLY, fit_before
 from fieldkit.signal.scan import Candidate, Region, scan, threshold
 from fieldkit.signal.scatter import freedom_price, looser, scattered
-from fieldkit.signal.traces import Component, Trace, component, residual
+from fieldkit.signal.traces import Component, Trace, component
 
 _MOST_ROUNDS = 14
+_LOOKED_FOR_ODD_TAPS = (2, 3, 4)
 _MOST_PARTS = 60
 
 
@@ -25,33 +27,24 @@ class Found:
     vain: tuple[complex, ...] = ()
     unresolved: tuple[tuple[complex, complex], ...] = ()
     """Pairs of poles too near each other to be told apart; one component stands for both."""
+    odd: tuple[int, ...] = ()
+    """Taps that cannot be explained together with the others; the search ended there."""
 
 
 def search(traces: Sequence[Trace], tones: Sequence[Component], region: Region) -> Found:
     """Add components until nothing significant is left."""
     found = Found(tuple(tones))
-    for _ in range(_MOST_ROUNDS):
+    for number in range(_MOST_ROUNDS):
         coarse = leftovers(traces, found.parts, region)
+        odd = stand_out(coarse, traces, found.parts) if number in _LOOKED_FOR_ODD_TAPS else ()
+        if odd:
+            return replace(found, odd=odd)
         fresh = [c for c in scan(coarse, region) if not tried(c, found.vain, traces)]
         if not fresh or len(found.parts) > _MOST_PARTS:
             break
         for candidate in fresh:
             found = add(traces, found, candidate, region)
     return found
-
-
-def leftovers(traces: Sequence[Trace], parts: Sequence[Component], region: Region) -> list[Trace]:
-    """What the components leave, at a rate just high enough for the region."""
-    out = []
-    for tap, trace in enumerate(traces):
-        left, rate_hz = decimate(
-            residual(trace, tap, parts),
-            trace.rate_hz,
-            keep_hz=region.high_hz,
-            wanted_rate_hz=3 * region.high_hz,
-        )
-        out.append(Trace(left, rate_hz, trace.noise))
-    return out
 
 
 def tried(candidate: Candidate, vain: Sequence[complex], traces: Sequence[Trace]) -> bool:
@@ -76,14 +69,16 @@ def add(traces: Sequence[Trace], found: Found, candidate: Candidate, region: Reg
     firm = [n for n in near if not scattered(n)]
     held = [*rest, *(n for n in near if scattered(n))]
     around = [*near, new]
-    before = fit_together(traces, firm, held, region.high_hz, over=around)
+    still = surroundings(traces, around, held, region.high_hz)
+    before = fit_before(still, firm, ROUGHLY)
     starts = [[*before.active, new], *split(before.active, new, traces)]
-    tried = [fit_together(traces, s, held, region.high_hz, over=around) for s in starts]
+    tried = [fit_before(still, start, ROUGHLY) for start in starts]
     after = min(tried, key=lambda fit: fit.cost)
-    loose = looser(traces, near, rest, region.high_hz, before, around)
+    saved = before.cost - after.cost
+    loose = looser(traces, near, rest, region.high_hz, before, around, least=saved)
     noise = max(min(after.variance, loose.variance if loose else np.inf), 1.0)
     needed = needed_gain(before.freedom, len(traces), threshold(len(traces), 100))
-    gain = before.cost - after.cost - needed * noise
+    gain = saved - needed * noise
     if loose is not None:
         price = freedom_price(near, len(traces), before.freedom)
         if before.cost - loose.cost - price * noise > max(gain, 0.0):

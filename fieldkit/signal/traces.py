@@ -16,6 +16,19 @@ Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
 
+_WHOLE = 0.9
+"""Of a trace: whoever asks for more of it gets all."""
+_STEPS_PER_OCTAVE = 4
+
+
+def fast_length(wanted: float) -> int:
+    """A number near to but not below ``wanted`` that has a fast transform."""
+    from scipy.fft import next_fast_len
+
+    step = np.ceil(np.log2(wanted) * _STEPS_PER_OCTAVE) / _STEPS_PER_OCTAVE
+    return int(next_fast_len(int(np.ceil(2.0**step)), real=True))
+
+
 @dataclass(frozen=True)
 class Trace:
     """One tap's free decay at the analysis rate."""
@@ -31,6 +44,21 @@ class Trace:
     def duration_s(self) -> float:
         """Length in time."""
         return len(self.samples) / self.rate_hz
+
+    @cached_property
+    def fast_whole(self) -> int:
+        """The largest number of samples up to all that is fast to transform."""
+        from scipy.fft import prev_fast_len
+
+        return int(prev_fast_len(len(self.samples), real=True))
+
+    def fast_count(self, duration_s: float) -> int:
+        """Samples of about a duration: few different numbers, and fast to transform."""
+        most = self.fast_whole
+        wanted = max(duration_s * self.rate_hz, 16)
+        if wanted >= _WHOLE * most:
+            return most
+        return min(fast_length(float(wanted)), most)
 
     def spectrum(self, count: int) -> Complex:
         """(count // 2 + 1,) transform of the first ``count`` samples."""
