@@ -11,7 +11,13 @@ from numpy.typing import NDArray
 from fieldkit.errors import InputError, Refusal
 from fieldkit.signal.integration import CORNER_HZ, frequency_factor, integrals_between
 from fieldkit.signal.recording import SI_UNIT
-from fieldkit.signal.welch import line_frequencies, one_sided, segment_length, segment_power
+from fieldkit.signal.welch import (
+    SegmentPower,
+    line_frequencies,
+    one_sided,
+    segment_length,
+    segment_power,
+)
 from fieldkit.signal.windows import HANN, HFT90D
 
 SAMPLE_UNITS = "sample units"
@@ -63,15 +69,14 @@ def tap_spectrum(
     strengths = np.array([np.sqrt(np.sum(decay**2) * step_s) for decay in centred])
     if not np.all(strengths > 0):
         raise Refusal("a tap holds no signal", "check the channel, then tap again")
-    shapes = [
-        np.abs(np.fft.rfft(decay, length)) * step_s / strength
-        for decay, strength in zip(centred, strengths, strict=True)
-    ]
+    total = np.zeros(length // 2 + 1)
+    for decay, strength in zip(centred, strengths, strict=True):
+        total += np.abs(np.fft.rfft(decay, length)) * step_s / strength
     factor, unit = _calibration(quantity, scale)
     level = float(np.exp(np.mean(np.log(strengths))))
     return Spectrum(
         frequency_hz=line_frequencies(length, rate_hz),
-        amplitude=factor * level * np.mean(shapes, axis=0),
+        amplitude=factor * level * total / len(centred),
         scaling="decay",
         quantity=quantity,
         unit=unit,
@@ -93,11 +98,20 @@ def running_spectrum(
     segments chosen from the length of the record and the lowest frequency of interest.
     """
     length = segment_length(len(signal), rate_hz, low_hz)
-    power = segment_power(signal, HFT90D, length, FLAT_TOP_OVERLAP).mean
+    power = segment_power(signal, HFT90D, length, FLAT_TOP_OVERLAP)
+    return flat_top_spectrum(power, rate_hz, quantity=quantity, scale=scale)
+
+
+def flat_top_spectrum(
+    power: SegmentPower, rate_hz: float, *, quantity: str | None = None, scale: float | None = None
+) -> Spectrum:
+    """The running spectrum out of the mean power of segments windowed by HFT90D."""
+    length = power.length
     factor, unit = _calibration(quantity, scale)
+    counts = one_sided(length)
     return Spectrum(
         frequency_hz=line_frequencies(length, rate_hz),
-        amplitude=factor * np.sqrt(one_sided(length) * power) / HFT90D.samples(length).sum(),
+        amplitude=factor * np.sqrt(counts * power.mean) / HFT90D.samples(length).sum(),
         scaling="rms",
         quantity=quantity,
         unit=unit,
@@ -117,10 +131,17 @@ def power_density(
     Welch's method with a Hann window and half overlap.
     """
     length = segment_length(len(signal), rate_hz, low_hz)
-    power = segment_power(signal, HANN, length, HANN_OVERLAP).mean
-    weights = HANN.samples(length)
-    density = (scale or 1.0) ** 2 * one_sided(length) * power / (rate_hz * (weights @ weights))
-    return line_frequencies(length, rate_hz), density
+    return hann_density(segment_power(signal, HANN, length, HANN_OVERLAP), rate_hz, scale=scale)
+
+
+def hann_density(
+    power: SegmentPower, rate_hz: float, *, scale: float | None = None
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """The power density out of the mean power of Hann-windowed segments."""
+    weights = HANN.samples(power.length)
+    per_line = rate_hz * (weights @ weights)
+    density = (scale or 1.0) ** 2 * one_sided(power.length) * power.mean / per_line
+    return line_frequencies(power.length, rate_hz), density
 
 
 def convert(spectrum: Spectrum, to_quantity: str, corner_hz: float = CORNER_HZ) -> Spectrum:

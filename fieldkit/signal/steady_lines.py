@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from itertools import islice
 
 import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.signal.spectrum import HANN_OVERLAP, Spectrum
-from fieldkit.signal.steadiness import is_steady
-from fieldkit.signal.welch import one_sided, segment_power
+from fieldkit.signal.steadiness import can_tell, is_steady
+from fieldkit.signal.welch import SegmentPower, one_sided, segment_power
 from fieldkit.signal.windows import HANN, HFT90D
 
 MOST_LINES = 20
@@ -71,14 +71,39 @@ def find_lines(
     """
     length = round(rate_hz / spectrum.frequency_hz[1])
     power = segment_power(signal, HANN, length, HANN_OVERLAP)
+    found = clear_lines(power, spectrum, scale=scale, low_hz=low_hz, high_hz=high_hz)
+    duration_s = len(signal) / rate_hz
+    return tuple(
+        replace(line, steady=is_steady(signal, rate_hz, line.frequency_hz, apart_hz))
+        if tells(line, apart_hz, duration_s)
+        else line
+        for line, apart_hz in found
+    )
+
+
+def clear_lines(
+    power: SegmentPower, spectrum: Spectrum, *, scale: float, low_hz: float, high_hz: float
+) -> tuple[tuple[RunningLine, float], ...]:
+    """Lines, strongest first, each with the distance to the next one in hertz.
+
+    ``power`` is that of Hann-windowed segments as long as those of the spectrum. Whether they are
+    steady is left open.
+    """
+    length = power.length
+    line_hz = float(spectrum.frequency_hz[1])
     mean_square = one_sided(length) * power.mean * (scale / HANN.samples(length).sum()) ** 2
-    line_hz = rate_hz / length
     inside = slice(max(2, int(np.ceil(low_hz / line_hz))), int(high_hz / line_hz) + 1)
     candidates = _candidates(mean_square, inside, power.segments)
     peaks = _distinct([_peak(mean_square, k) for k in candidates], mean_square)
-    lines = (_line(peak, peaks, spectrum, signal, rate_hz) for peak in peaks)
-    clear = islice((line for line in lines if line.prominence >= LEAST_PROMINENCE), MOST_LINES)
-    return tuple(sorted(clear, key=lambda line: -line.rms))
+    lines = (_line(peak, peaks, spectrum) for peak in peaks)
+    clear = islice((f for f in lines if f[0].prominence >= LEAST_PROMINENCE), MOST_LINES)
+    return tuple(sorted(clear, key=lambda found: -found[0].rms))
+
+
+def tells(line: RunningLine, apart_hz: float, duration_s: float) -> bool:
+    """Whether a line stands clear enough of noise and other lines to be called steady or not."""
+    clear = line.prominence >= _TELLING_PROMINENCE
+    return clear and can_tell(duration_s, line.frequency_hz, apart_hz)
 
 
 def _candidates(mean_square: NDArray[np.float64], inside: slice, segments: int) -> NDArray[np.intp]:
@@ -138,26 +163,14 @@ def _belongs(peak: _Peak, higher: _Peak, mean_square: NDArray[np.float64]) -> bo
     return float(np.sqrt(mean_square[low : high + 1].min())) > _VALLEY * peak.height
 
 
-def _line(
-    peak: _Peak,
-    peaks: Sequence[_Peak],
-    spectrum: Spectrum,
-    signal: NDArray[np.float64],
-    rate_hz: float,
-) -> RunningLine:
+def _line(peak: _Peak, peaks: Sequence[_Peak], spectrum: Spectrum) -> tuple[RunningLine, float]:
     line_hz = float(spectrum.frequency_hz[1])
     apart = min((abs(peak.bin - other.bin) for other in peaks if other is not peak), default=np.inf)
     k = round(peak.bin)
     flat_top = float(spectrum.amplitude[max(0, k - 1) : k + 2].max())
     rms = flat_top if apart >= _FLAT_TOP_CLEAR_BINS else peak.height
     prominence = rms / max(_around(spectrum.amplitude, k), _ROUNDING * rms)
-    tells = prominence >= _TELLING_PROMINENCE
-    return RunningLine(
-        frequency_hz=peak.bin * line_hz,
-        rms=rms,
-        prominence=prominence,
-        steady=is_steady(signal, rate_hz, peak.bin * line_hz, apart * line_hz) if tells else None,
-    )
+    return RunningLine(peak.bin * line_hz, rms, prominence), apart * line_hz
 
 
 def _around(amplitude: NDArray[np.float64], k: int) -> float:

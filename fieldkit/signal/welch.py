@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterator
 from dataclasses import dataclass
 
 import numpy as np
@@ -27,6 +28,8 @@ class SegmentPower:
     mean: NDArray[np.float64]
     """(n // 2 + 1,) mean of the squared magnitude of the windowed transform."""
     segments: int
+    length: int
+    """n, samples of a segment."""
 
 
 def segment_length(n: int, rate_hz: float, low_hz: float) -> int:
@@ -56,12 +59,68 @@ def segment_power(
     """
     count = 1 + int(np.ceil((len(signal) - length) / ((1 - overlap) * length)))
     starts = np.linspace(0, len(signal) - length, count).round().astype(int)
-    weights = window.samples(length)
-    total = np.zeros(length // 2 + 1)
+    total = PowerSum(window, length)
     for start in starts:
-        segment = signal[start : start + length]
-        total += np.abs(np.fft.rfft((segment - segment.mean()) * weights)) ** 2
-    return SegmentPower(total / count, count)
+        total.add(signal[start : start + length])
+    return total.mean()
+
+
+class PowerSum:
+    """Sum of the power of segments as they come; its work space is made once."""
+
+    def __init__(self, window: Window, length: int) -> None:
+        self._weights = window.samples(length)
+        self._weighted = np.empty(length)
+        self._lines = np.empty(length // 2 + 1, dtype=np.complex128)
+        self._squares = np.zeros(2 * len(self._lines))
+        self._count = 0
+
+    def add(self, segment: NDArray[np.float64]) -> None:
+        """Add the power of one segment (n,), its mean removed."""
+        np.subtract(segment, segment.mean(), out=self._weighted)
+        self._weighted *= self._weights
+        np.fft.rfft(self._weighted, out=self._lines)
+        parts = self._lines.view(np.float64)
+        np.multiply(parts, parts, out=parts)
+        self._squares += parts
+        self._count += 1
+
+    def mean(self) -> SegmentPower:
+        """What has been added, over the number of segments."""
+        total = self._squares[0::2] + self._squares[1::2]
+        return SegmentPower(total / max(self._count, 1), self._count, len(self._weights))
+
+
+class Segments:
+    """Segments cut at a constant hop out of a record that arrives in blocks of any length.
+
+    Segment i begins at sample i times the hop; what is left at the end is in none, as in
+    ``scipy.signal.welch``.
+    """
+
+    def __init__(self, length: int, hop: int) -> None:
+        self._length, self._hop = length, hop
+        self._waiting = np.empty(2 * length)
+        self._count = 0
+
+    def of(self, block: NDArray[np.float64]) -> Iterator[NDArray[np.float64]]:
+        """Segments (n,) that the block completes; each holds until the next one is asked for."""
+        taken = 0
+        while taken < len(block):
+            piece = block[taken : taken + len(self._waiting) - self._count]
+            self._waiting[self._count : self._count + len(piece)] = piece
+            self._count += len(piece)
+            taken += len(piece)
+            yield from self._complete()
+
+    def _complete(self) -> Iterator[NDArray[np.float64]]:
+        first = 0
+        while first + self._length <= self._count:
+            yield self._waiting[first : first + self._length]
+            first += self._hop
+        if first:
+            self._waiting[: self._count - first] = self._waiting[first : self._count].copy()
+            self._count -= first
 
 
 def one_sided(length: int) -> NDArray[np.float64]:
