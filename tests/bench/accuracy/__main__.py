@@ -27,9 +27,12 @@ def main() -> None:
         for kind in args.kind or KINDS:
             print(replay.story(kind, args.replay))
         return
-    trials = list(trials_of(planned(args.kind or list(KINDS), args.records, args.seed), args.jobs))
-    if args.verbose:
-        print("\n".join(line for trial in trials for line in replay.failings(trial)), "\n")
+    trials = []
+    for trial in trials_of(planned(args.kind or list(KINDS), args.records, args.seed), args.jobs):
+        trials.append(trial)
+        for line in replay.failings(trial) if args.verbose else ():
+            print(line, flush=True)
+    print()
     for way in (tables.AUTOMATIC, tables.KNOWN):
         print(f"{way.title}\n{tables.aligned(tables.table(trials, way))}\n")
     print("\n".join(tables.totals(trials)))
