@@ -60,7 +60,7 @@ def read_running(
     over 2.56; ``full_scale`` is where the recording clips, in sample units. Raises InputError for
     an impossible band or samples that are not finite, Refusal for a silent or too short record.
     """
-    high_hz, warnings = _upper_limit(rate_hz, low_hz, high_hz)
+    high_hz, warnings = upper_limit(rate_hz, low_hz, high_hz)
     _check_signal(signal)
     vibration, drift_warnings = offset_and_drift(signal)
     spectrum = running_spectrum(vibration, rate_hz, quantity=quantity, scale=scale, low_hz=low_hz)
@@ -76,7 +76,7 @@ def read_running(
             *clipping(signal, full_scale),
             *drift_warnings,
             *unsteady_level(vibration),
-            *_short_record(len(signal) / rate_hz, low_hz),
+            *short_record(len(signal) / rate_hz, low_hz),
         ),
         velocity_rms_m_per_s=_velocity_rms(vibration, rate_hz, quantity, scale, **band),
     )
@@ -90,19 +90,36 @@ def _velocity_rms(
     low_hz: float,
     high_hz: float,
 ) -> float | None:
-    """Velocity between two frequencies, from the power density divided by (2 pi f)^2 as needed."""
     if scale is None or quantity not in _INTEGRALS_TO_VELOCITY:
         return None
-    frequency_hz, density = power_density(vibration, rate_hz, scale=scale, low_hz=low_hz)
+    density = power_density(vibration, rate_hz, scale=scale, low_hz=low_hz)
+    return velocity_rms(*density, quantity, low_hz=low_hz, high_hz=high_hz)
+
+
+def velocity_rms(
+    frequency_hz: NDArray[np.float64],
+    density: NDArray[np.float64],
+    quantity: str,
+    *,
+    low_hz: float,
+    high_hz: float,
+) -> float | None:
+    """Velocity between two frequencies, from a power density in SI divided by (2 pi f)^2 as needed.
+
+    None where the quantity is not one of motion.
+    """
+    if quantity not in _INTEGRALS_TO_VELOCITY:
+        return None
     kept = (frequency_hz >= low_hz) & (frequency_hz <= high_hz)
     factor = frequency_factor(frequency_hz[kept], _INTEGRALS_TO_VELOCITY[quantity], low_hz)
     step_hz = frequency_hz[1] - frequency_hz[0]
     return float(np.sqrt(np.sum(density[kept] * factor**2) * step_hz))
 
 
-def _upper_limit(
+def upper_limit(
     rate_hz: float, low_hz: float, high_hz: float | None
 ) -> tuple[float, tuple[str, ...]]:
+    """The upper end of the band, and what is said where less can be had than was wanted."""
     limit_hz = rate_hz / 2
     wanted_hz = HIGHEST_SHARE_OF_RATE * rate_hz if high_hz is None else high_hz
     if not 0 < low_hz < min(wanted_hz, limit_hz):
@@ -120,12 +137,18 @@ def _check_signal(signal: NDArray[np.float64]) -> None:
     if not np.isfinite(signal).all():
         raise InputError("the recording holds samples that are not finite", "export it again")
     if len(signal) == 0 or np.ptp(signal) == 0.0:
-        raise Refusal(
-            "the channel is silent", "check cable, sensor supply and input level, then record again"
-        )
+        raise silent()
 
 
-def _short_record(duration_s: float, low_hz: float) -> tuple[str, ...]:
+def silent() -> Refusal:
+    """What is said of a channel without any signal."""
+    return Refusal(
+        "the channel is silent", "check cable, sensor supply and input level, then record again"
+    )
+
+
+def short_record(duration_s: float, low_hz: float) -> tuple[str, ...]:
+    """What is said of a record that is short for its lowest frequency."""
     needed_s = LOWEST_LINE / low_hz
     if duration_s >= needed_s:
         return ()
