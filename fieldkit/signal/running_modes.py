@@ -54,6 +54,7 @@ def estimate_running_modes(
     _check(signal, rate_hz, low_hz, high_hz)
     vibration, _ = offset_and_drift(signal)
     slow, slow_rate = _at_low_rate(vibration, rate_hz, high_hz)
+    slow = slow / max(float(np.std(slow)), 1e-300)
     cleaned, removed = without_lines(slow, slow_rate, [line.frequency_hz for line in lines])
     _require_broadband(slow, cleaned, removed)
     record = Record.of(cleaned, slow_rate, removed)

@@ -11,7 +11,15 @@ from numpy.typing import NDArray
 from fieldkit.signal.periodogram import Periodogram
 from fieldkit.signal.stabilisation import StablePole, distinct, stabilised
 from fieldkit.signal.subspace import bands, poles_by_order
-from fieldkit.signal.whittle import EXACT, ROUGH, SpectralFit, Zone, fit_zone, mode_columns
+from fieldkit.signal.whittle import (
+    EXACT,
+    ROUGH,
+    SpectralFit,
+    Zone,
+    covariance_of,
+    fit_zone,
+    mode_columns,
+)
 
 Real = NDArray[np.float64]
 
@@ -234,7 +242,7 @@ def _gain(zone: Zone, fit: SpectralFit, i: int, less: SpectralFit) -> float:
 
 def stirred(fit: SpectralFit, gains: Sequence[float]) -> list[Stirred]:
     """The modes of a fit with their covariances."""
-    covariance: Real = np.asarray(np.linalg.pinv(fit.information, hermitian=True))
+    covariance = covariance_of(fit.information)
     found = []
     for i, pole in enumerate(fit.poles):
         at = slice(4 * i, 4 * i + 2)

@@ -12,7 +12,7 @@ from fieldkit.signal.covariance import Estimate, values_by_parameters
 from fieldkit.signal.machine_lines import PROMINENT, MachineLine, height, quarter_coherence
 from fieldkit.signal.periodogram import Periodogram
 from fieldkit.signal.running_search import Stirred, spectrum_of, split, zone_of
-from fieldkit.signal.whittle import ROUGH, fit_zone
+from fieldkit.signal.whittle import ROUGH, covariance_of, fit_zone
 
 Real = NDArray[np.float64]
 
@@ -138,7 +138,7 @@ def _in_half(half: Periodogram, mode: Stirred, others: Sequence[Stirred]) -> _Ha
     without = fit_zone(zone, [], held, finished=ROUGH)
     pole = complex(fit.poles[0])
     to_values = values_by_parameters(-pole.real, pole.imag)
-    covariance = np.linalg.pinv(fit.information, hermitian=True)[:2, :2]
+    covariance = covariance_of(fit.information)[:2, :2]
     return _Half(
         np.array([abs(pole) / (2 * np.pi), -pole.real / abs(pole)]),
         np.diag(to_values @ covariance @ to_values.T),

@@ -208,6 +208,13 @@ def _step(information: Real, gradient: Real, damping: float) -> Real:
     return np.asarray(scale * np.linalg.solve(scaled, scale * gradient))
 
 
+def covariance_of(information: Real) -> Real:
+    """Inverse of a Fisher information whose parameters may differ by any power of ten."""
+    scale = 1 / np.sqrt(np.maximum(np.diag(information), 1e-300))
+    scaled = information * np.outer(scale, scale)
+    return np.asarray(np.linalg.pinv(scaled, hermitian=True) * np.outer(scale, scale))
+
+
 def _moved(state: State, step: Real) -> State:
     """Parameters after a step; a decay rate changes by no more than a factor of two at once."""
     poles, amplitudes, background = state

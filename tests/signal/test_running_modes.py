@@ -156,6 +156,15 @@ def test_rate_does_not_matter() -> None:
         assert abs(a.frequency_hz - b.frequency_hz) < 0.7 * a.frequency_sd_hz
 
 
+@pytest.mark.parametrize("factor", [1e-9, 1e6])
+def test_level_does_not_matter(factor: float) -> None:
+    """Sample units or metres per second squared give the same modes and the same doubt."""
+    signal = stirred(FOUR, seed=33, duration_s=40.0)
+    for a, b in zip(estimate(signal).modes, estimate(factor * signal).modes, strict=True):
+        assert b.frequency_hz == pytest.approx(a.frequency_hz, rel=1e-6)
+        assert b.damping_sd == pytest.approx(a.damping_sd, rel=1e-3)
+
+
 def test_modes_say_where_they_come_from() -> None:
     """Running modes are seen in no tap, and marked."""
     mode = estimate(stirred(((30.0, 0.01),), seed=1)).modes[0]
