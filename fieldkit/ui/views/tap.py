@@ -63,6 +63,8 @@ class TapView(View):
                 tooltip="Show the signal instead of the spectrum, or back"),
         Binding("x", "refused", "Refused", id="tap.refused",
                 tooltip="Tones, and the peaks and blows that were not accepted, with reasons"),
+        Binding("h", "response", "Hammer", show=False, id="tap.response",
+                tooltip="Frequency response and coherence, where the hammer is on record"),
         Binding("c", "caution", "Caution", id="tap.caution", tooltip="Before you strike a pipe"),
     ]  # fmt: skip
 
@@ -170,6 +172,12 @@ class TapView(View):
         """What was looked at and not accepted."""
         self.app.push_screen(TextScreen("Not accepted as modes", "\n".join(self._refused())))
 
+    def action_response(self) -> None:
+        """The frequency response of the recording under the cursor, or what it lacks."""
+        from fieldkit.ui.response_screen import response_window
+
+        self.app.push_screen(response_window(self.desk, self.reading))
+
     def action_caution(self) -> None:
         """The cautions in full."""
         self.app.push_screen(TextScreen("Caution", CAUTION))
@@ -212,7 +220,9 @@ def _blow_rows(readings: tuple[TapReading, ...]) -> list[Row]:
     rows: list[Row] = []
     for number, reading in enumerate(readings):
         usable = f"{len(reading.records)} of {len(reading.search.taps)} usable"
-        rows.append((str(number), (reading.file, f"{usable}, {seconds(reading.duration_s)}")))
+        struck = ", h response" if reading.hammer else ""
+        length = seconds(reading.duration_s)
+        rows.append((str(number), (reading.file, f"{usable}{struck}, {length}")))
         rows += [
             (f"{number}.{i}", (f"{blow.at_s:9.2f} s", _judged(blow)))
             for i, blow in enumerate(reading.search.taps)
