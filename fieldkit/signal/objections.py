@@ -2,10 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 
 from fieldkit.signal.blows import DOUBLE_SHARE, Blow
 from fieldkit.signal.ringing import RINGS, Ringing
+
+Missing = tuple[int, int]
+"""Frames are missing directly before a sample from the first to the second."""
 
 _SHORTEST_RECORD_S = 0.2
 _ENOUGH_DROP_DB = 9.0
@@ -77,3 +82,14 @@ def weak_reason(picture: Ringing, start_s: float, end_s: float) -> list[str]:
         else ("nothing rings above the background after it")
     )
     return [f"too weak: {height}; hit harder, move the sensor nearer, or stop what makes the noise"]
+
+
+def gap_reason(first: int, end: int, gaps: Sequence[Missing], rate_hz: float) -> list[str]:
+    """Are frames missing between the samples first and end?"""
+    inside = [gap for gap in gaps if gap[1] > first and gap[0] < end]
+    if not inside:
+        return []
+    return [
+        f"frames are missing inside it, at {inside[0][1] / rate_hz:.2f} s: the decay is not whole; "
+        "tap again"
+    ]

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -19,7 +19,7 @@ from fieldkit.signal.blows import (
 )
 from fieldkit.signal.innovation import Level, levels
 from fieldkit.signal.modes import TapRecord
-from fieldkit.signal.objections import objections
+from fieldkit.signal.objections import Missing, gap_reason, objections
 from fieldkit.signal.ringing import Ringing, ringing
 
 Real = NDArray[np.float64]
@@ -58,12 +58,17 @@ class TapSearch:
 
 
 def find_taps(
-    signal: NDArray[np.floating], rate_hz: float, *, full_scale: float | None = 1.0
+    signal: NDArray[np.floating],
+    rate_hz: float,
+    *,
+    full_scale: float | None = 1.0,
+    gaps: Sequence[Missing] = (),
 ) -> TapSearch:
     """Blows of a (n,) signal, each with why it cannot be used, and the background without any.
 
     ``full_scale`` is the sample value at which the input clips; None where it has no known rail (a
-    rail is then told from flat tops). Rates from 100 Hz to 192 kHz.
+    rail is then told from flat tops). A blow with one of ``gaps`` in it cannot be used. Rates from
+    100 Hz to 192 kHz.
     """
     samples = np.asarray(signal, float)
     if len(samples) < 16 or not np.any(samples != samples[0]):
@@ -78,7 +83,27 @@ def find_taps(
     blows = without_rattle(blows, samples, rate_hz, full_scale)
     taps = tuple(read_blow(b, samples, rate_hz, scales, picture, full_scale) for b in blows)
     background = (int(background_s[0] * rate_hz), int(background_s[1] * rate_hz))
+    if gaps:
+        taps = tuple(without_gaps(tap, gaps, rate_hz) for tap in taps)
+        background = longest_whole(background, gaps)
     return TapSearch(taps, background, noise_level(samples, rate_hz, background))
+
+
+def without_gaps(tap: Tap, gaps: Sequence[Missing], rate_hz: float) -> Tap:
+    """The tap, unusable where frames are missing from just before the blow to its end."""
+    first = max(int((tap.at_s - GUARD_S) * rate_hz), 0)
+    reasons = (*gap_reason(first, tap.end, gaps, rate_hz), *tap.reasons)
+    return replace(tap, usable=not reasons, reasons=reasons)
+
+
+def longest_whole(span: tuple[int, int], gaps: Sequence[Missing]) -> tuple[int, int]:
+    """The longest part of a range of samples in which none are missing."""
+    first, end = span
+    inside = [gap for gap in gaps if gap[1] > first and gap[0] < end]
+    starts = [first, *(gap[1] for gap in inside)]
+    ends = [*(gap[0] for gap in inside), end]
+    parts = [(a, max(a, b)) for a, b in zip(starts, ends, strict=True)]
+    return max(parts, key=lambda part: part[1] - part[0])
 
 
 def cut(

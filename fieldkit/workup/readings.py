@@ -17,7 +17,8 @@ from fieldkit.signal.modes import TapRecord
 from fieldkit.signal.recording import Recording, channel_signal, load
 from fieldkit.signal.running import RunningPicture, read_running
 from fieldkit.signal.spectrum import Spectrum, tap_spectrum
-from fieldkit.signal.taps import TapSearch, cut, find_taps
+from fieldkit.signal.taps import TapSearch, cut, find_taps, longest_whole
+from fieldkit.workup.beside import beside, described
 from fieldkit.workup.hammer import HammerReading, with_hammer
 
 
@@ -66,7 +67,8 @@ def read_tap(entry: RecordingEntry) -> TapReading:
     """One tap recording: its blows, which of them are usable, and their mean spectrum."""
     recording, signal = _channel(entry)
     quantity, scale = _meaning(entry, recording)
-    search = find_taps(signal, recording.rate_hz, full_scale=recording.full_scale)
+    known = beside(entry.path, recording)
+    search = find_taps(signal, recording.rate_hz, full_scale=recording.full_scale, gaps=known.gaps)
     search, hammer = with_hammer(entry, recording, signal, search, quantity, scale)
     records = cut(signal, recording.rate_hz, search, source=entry.path.name)
     spectrum = None
@@ -86,7 +88,7 @@ def read_tap(entry: RecordingEntry) -> TapReading:
         records,
         spectrum,
         entry,
-        recording.notes,
+        (*recording.notes, *known.notes),
         hammer,
     )
 
@@ -105,8 +107,10 @@ def read_running_entry(entry: RecordingEntry) -> RunningReading:
     """One running recording: its lines and its level."""
     recording, signal = _channel(entry)
     quantity, scale = _meaning(entry, recording)
+    known = beside(entry.path, recording)
+    first, end = longest_whole((0, len(signal)), known.gaps)
     picture = read_running(
-        signal,
+        signal[first:end],
         recording.rate_hz,
         quantity=quantity,
         scale=scale,
@@ -119,21 +123,29 @@ def read_running_entry(entry: RecordingEntry) -> RunningReading:
         recording.duration_s,
         picture,
         entry,
-        recording.notes,
+        (*recording.notes, *known.notes, *_shortened(first, end, recording)),
     )
 
 
 def entry_for(
     path: Path, kind: str, channel: int = 1, rate_hz: float | None = None
 ) -> RecordingEntry:
-    """A recording that no job describes: uncalibrated, direction unknown."""
-    return RecordingEntry(path, kind, kind.replace("tap", "tapped"), channel, rate_hz=rate_hz)
+    """A recording that no job describes: its set-up is what stands beside it, or unknown."""
+    state = kind.replace("tap", "tapped")
+    return described(RecordingEntry(path, kind, state, channel, rate_hz=rate_hz))
 
 
 def excitation_of(frequency_hz: float, excitations: Sequence[Excitation]) -> str | None:
     """Name of the excitation a running line belongs to."""
     found = excitation_band(frequency_hz, bands(excitations, 0.0))
     return found.name if found else None
+
+
+def _shortened(first: int, end: int, recording: Recording) -> tuple[str, ...]:
+    if end - first == len(recording.samples):
+        return ()
+    from_s, to_s = first / recording.rate_hz, end / recording.rate_hz
+    return (f"read from {from_s:.2f} s to {to_s:.2f} s, the longest stretch without a gap",)
 
 
 def _channel(entry: RecordingEntry) -> tuple[Recording, NDArray[np.float64]]:
