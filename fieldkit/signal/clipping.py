@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -24,11 +26,8 @@ def clipped_at(samples: Real, full_scale: float | None) -> Indices:
     if peak == 0:
         return np.zeros(0, np.intp)
     step = quantum(samples, peak)
-    found = [
-        flat_top(sign * samples, max(share * peak, 1.01 * step), step)
-        for sign in (1.0, -1.0)
-        for share in _TOLERANCES
-    ]
+    tolerances = [max(share * peak, 1.01 * step) for share in _TOLERANCES]
+    found = [*flat_tops(samples, tolerances, step), *flat_tops(-samples, tolerances, step)]
     if full_scale is not None and peak >= _AT_FULL_SCALE * full_scale:
         found.append(lone_rail(samples, full_scale))
     return max(found, key=len)
@@ -42,30 +41,42 @@ def quantum(samples: Real, peak: float) -> float:
     return max(smallest if np.isfinite(smallest) else 0.0, 1e-7 * peak)
 
 
-def flat_top(samples: Real, tolerance: float, step: float) -> Indices:
-    """Samples of runs within a tolerance of the highest value that are entered by a jump.
+def flat_tops(samples: Real, tolerances: Sequence[float], step: float) -> list[Indices]:
+    """For each tolerance the samples of runs within it of the highest value."""
+    top = float(samples.max())
+    if top <= 0:
+        return []
+    near = np.flatnonzero(samples >= top - max(tolerances))
+    return [
+        flat_top(samples, near[samples[near] >= top - tolerance], tolerance, step)
+        for tolerance in tolerances
+    ]
+
+
+def flat_top(samples: Real, at: Indices, tolerance: float, step: float) -> Indices:
+    """Those of the samples ``at`` the top that are in long runs entered by a jump.
 
     Where the tolerance is wider than the converter's step, chance makes short runs: more is asked.
     """
-    top = float(samples.max())
-    if top <= 0:
-        return np.zeros(0, np.intp)
     exact = tolerance < 1.5 * step
     shortest = _SHORTEST_RUN if exact else _SHORTEST_ROUGH_RUN
-    at = samples >= top - tolerance
-    edges = np.flatnonzero(np.diff(np.concatenate([[0], at.astype(np.int8), [0]])))
-    runs = [
-        np.arange(first, past)
-        for first, past in zip(edges[::2], edges[1::2], strict=True)
-        if past - first >= shortest
-        and top - lowest_beside(samples, first, past) > _JUMP * tolerance
-    ]
+    new_run = np.diff(at, prepend=-2) > 1
+    first = at[new_run]
+    past = at[np.append(np.flatnonzero(new_run)[1:], len(at)) - 1] + 1
+    long_enough = past - first >= shortest
+    first, past = first[long_enough], past[long_enough]
+    depth = float(samples.max()) - lowest_beside(samples, first, past)
+    flat = depth > _JUMP * tolerance
+    runs = [np.arange(i, j) for i, j in zip(first[flat], past[flat], strict=True)]
     return np.concatenate(runs) if runs else np.zeros(0, np.intp)
 
 
-def lowest_beside(samples: Real, first: int, past: int) -> float:
-    """The lower of the samples just before and just after a run."""
-    return min((float(samples[i]) for i in (first - 1, past) if 0 <= i < len(samples)), default=0.0)
+def lowest_beside(samples: Real, first: Indices, past: Indices) -> Real:
+    """(r,) the lower of the samples just before and just after each run."""
+    before = np.where(first > 0, samples[first - 1], np.inf)
+    after = np.where(past < len(samples), samples[np.minimum(past, len(samples) - 1)], np.inf)
+    lowest = np.minimum(before, after)
+    return np.where(np.isfinite(lowest), lowest, 0.0)
 
 
 def lone_rail(samples: Real, full_scale: float) -> Indices:
