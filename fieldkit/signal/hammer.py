@@ -65,21 +65,24 @@ class Pulse:
         return max(2, round(_MARGIN * self.contact))
 
 
-def read_pulse(
-    force: Real,
-    rate_hz: float,
-    at_s: float,
-    until_s: float,
-    *,
-    full_scale: float | None = None,
-) -> Pulse | None:
-    """The force of the blow that the sensor shows at ``at_s``; None where none stands out.
+def around(at_s: float, until_s: float, rate_hz: float) -> tuple[int, int]:
+    """Range of samples that holds the force of the blow that the sensor shows at ``at_s``.
 
-    ``force`` (n,) is the hammer's channel; ``until_s`` is where the next blow may begin. The
-    blow may reach the sensor a little after the hammer.
+    ``until_s`` is where the next blow may begin. A blow may reach the sensor a little after the
+    hammer, and a second hit may follow it.
     """
-    begin = max(int((at_s - _BEFORE_S) * rate_hz), 0)
-    near = force[begin : int(min(at_s + _AFTER_S, until_s) * rate_hz)]
+    first = max(int((at_s - _BEFORE_S) * rate_hz), 0)
+    return first, max(int(min(at_s + _AFTER_S, until_s) * rate_hz), first)
+
+
+def read_pulse(
+    near: Real, rate_hz: float, begin: int = 0, *, full_scale: float | None = None
+) -> Pulse | None:
+    """The force among the samples around a blow; None where none stands out.
+
+    ``near`` (n,) are samples of the hammer's channel, ``begin`` the number of the first one in
+    the recording; ``full_scale`` is where the channel clips, None where it has no known rail.
+    """
     if len(near) < 8:
         return None
     rest = float(np.median(near))
@@ -104,8 +107,8 @@ def read_pulse(
         contact=contact_samples(push, top, floor),
         clipped=len(clipped_at(push, rail)),
     )
-    first, end = max(pulse.first - pulse.margin, 0), min(pulse.end + pulse.margin, len(force))
-    return replace(pulse, first=first, end=end)
+    first, end = pulse.first - pulse.margin, pulse.end + pulse.margin
+    return replace(pulse, first=max(first, begin), end=min(end, begin + len(near)))
 
 
 def contact_samples(push: Real, top: int, floor: float) -> int:
@@ -144,17 +147,17 @@ def hits_of(push: Real, acting: NDArray[np.intp], rate_hz: float) -> tuple[Hit, 
     return tuple(Hit((i - strong[0]) / rate_hz, float(push[i]) / peak) for i in strong)
 
 
-def force_alone(force: Real, pulse: Pulse, first: int, count: int) -> Real:
-    """(count,) force from sample ``first`` on, less its rest, nothing outside the contact.
+def force_alone(stretch: Real, pulse: Pulse, first: int) -> Real:
+    """(n,) the stretch that begins at sample ``first``, less its rest, without all but the contact.
 
     The margin behind the contact sinks to zero by half a cosine, so that no step is left.
     """
-    out = np.zeros(count)
-    begin, end = max(pulse.first, first), min(pulse.end, first + count)
-    kept = force[begin:end] - pulse.rest
+    out = np.zeros(len(stretch))
+    begin, end = max(pulse.first - first, 0), min(pulse.end - first, len(stretch))
+    kept = stretch[begin:end] - pulse.rest
     fade = min(pulse.margin, len(kept))
     kept[-fade:] *= 0.5 + 0.5 * np.cos(np.pi * np.arange(1, fade + 1) / (fade + 1))
-    out[begin - first : end - first] = kept
+    out[begin:end] = kept
     return out
 
 
@@ -170,14 +173,13 @@ class ForceSpectrum:
     """Where it has fallen 20 dB below its maximum; None where it nowhere does."""
 
 
-def force_spectrum(force: Real, rate_hz: float, pulses: Sequence[Pulse]) -> ForceSpectrum:
-    """Spectrum of the contacts alone, padded to some dozens of lines to the width of one."""
-    longest = max(pulse.end - pulse.first for pulse in pulses)
-    count = 2 ** int(np.ceil(np.log2(_LINES_PER_CONTACT * longest)))
-    lines = [
-        np.abs(np.fft.rfft(force_alone(force, p, p.first, p.end - p.first), count)) / rate_hz
-        for p in pulses
-    ]
+def force_spectrum(contacts: Sequence[Real], rate_hz: float) -> ForceSpectrum:
+    """Spectrum of contacts, each (n_k,) as ``force_alone`` leaves it and no longer.
+
+    Padded with zeros to some dozens of lines to the width of one.
+    """
+    count = 2 ** int(np.ceil(np.log2(_LINES_PER_CONTACT * max(map(len, contacts)))))
+    lines = [np.abs(np.fft.rfft(contact, count)) / rate_hz for contact in contacts]
     amplitude = np.sqrt(np.mean(np.square(lines), axis=0))
     frequency_hz = np.arange(len(amplitude)) * rate_hz / count
     return ForceSpectrum(frequency_hz, amplitude, fallen_at(frequency_hz, amplitude))

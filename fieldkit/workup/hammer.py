@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -14,6 +14,7 @@ from fieldkit.signal.blows import GUARD_S
 from fieldkit.signal.hammer import (
     ForceSpectrum,
     Pulse,
+    around,
     dips_hz,
     force_alone,
     force_spectrum,
@@ -24,11 +25,14 @@ from fieldkit.signal.response import FrequencyResponse, Struck, frequency_respon
 from fieldkit.signal.taps import Tap, TapSearch
 
 Real = NDArray[np.float64]
+Read = Callable[[int, int], Real]
+"""Samples from one number up to another, cut at the ends of the recording."""
 
 HIGHEST_HZ = 5000.0
 """No job looks at higher modes."""
 NYQUIST_SHARE = 0.4
 _BEFORE_S = 0.005
+_LONGEST_QUIET_S = 30.0
 _MOST_DIPS = 3
 _ENOUGH_SAMPLES = 8
 """Of a half sine, fewer give the impulse more than 1.3 % wrong: 1 - pi^2 / (12 n^2)."""
@@ -46,6 +50,17 @@ class HammerReading:
     notes: tuple[str, ...] = ()
 
 
+@dataclass(frozen=True)
+class TwoChannels:
+    """Sensor and hammer of one recording, read by the stretch."""
+
+    sensor: Read
+    hammer: Read
+    rate_hz: float
+    full_scale: float | None
+    """Where the hammer's channel clips; None where it has no known rail."""
+
+
 def with_hammer(
     entry: RecordingEntry,
     recording: Recording,
@@ -54,40 +69,20 @@ def with_hammer(
     quantity: str | None,
     scale: float | None,
 ) -> tuple[TapSearch, HammerReading | None]:
-    """The blows as the force shows them, and the response; both as before where there is no hammer.
+    """``read_hammer`` for a recording that is loaded whole; nothing changes without a hammer.
 
     Raises InputError where the recording lacks the hammer's channel.
     """
-    hammer = entry.hammer
-    if hammer is None:
+    if entry.hammer is None:
         return search, None
-    force = force_of(hammer, recording, entry)
-    pulses = pulses_of(force, recording, search)
-    search = replace(
-        search,
-        taps=tuple(
-            judged(tap, pulse, recording.rate_hz)
-            for tap, pulse in zip(search.taps, pulses, strict=True)
-        ),
+    force = force_of(entry.hammer, recording, entry)
+    read = TwoChannels(
+        lambda first, past: signal[first:past],
+        lambda first, past: force[first:past],
+        recording.rate_hz,
+        recording.full_scale,
     )
-    good = [(t, p) for t, p in zip(search.taps, pulses, strict=True) if t.usable and p is not None]
-    fit = [(tap, pulse) for tap, pulse in good if not pulse.clipped]
-    if not fit:
-        return search, HammerReading(None, None, nothing_struck(hammer, search, pulses))
-    spectrum = force_spectrum(force, recording.rate_hz, [pulse for _, pulse in fit])
-    quiet = signal[slice(*search.background)]
-    try:
-        response = frequency_response(
-            [struck(force, signal, quiet, t, p, recording.rate_hz) for t, p in fit],
-            recording.rate_hz,
-            high_hz=min(HIGHEST_HZ, NYQUIST_SHARE * recording.rate_hz),
-            quantity=quantity,
-            scale=scale,
-            force_scale=hammer.scale,
-        )
-    except Refusal as refusal:
-        return search, HammerReading(None, spectrum, str(refusal))
-    return search, HammerReading(response, spectrum, notes=tuple(remarks(search, pulses, fit)))
+    return read_hammer(search, read, entry.hammer, quantity, scale)
 
 
 def force_of(hammer: HammerEntry, recording: Recording, entry: RecordingEntry) -> Real:
@@ -99,13 +94,48 @@ def force_of(hammer: HammerEntry, recording: Recording, entry: RecordingEntry) -
         raise InputError(what, error.remedy, error.place).at(file=entry.path) from error
 
 
-def pulses_of(force: Real, recording: Recording, search: TapSearch) -> list[Pulse | None]:
+def read_hammer(
+    search: TapSearch,
+    read: TwoChannels,
+    hammer: HammerEntry,
+    quantity: str | None,
+    scale: float | None,
+) -> tuple[TapSearch, HammerReading]:
+    """The blows as the force shows them, and the response.
+
+    ``quantity`` and ``scale`` are those of the sensor.
+    """
+    pulses = pulses_of(read, search)
+    taps = (judged(t, p, read.rate_hz) for t, p in zip(search.taps, pulses, strict=True))
+    search = replace(search, taps=tuple(taps))
+    good = [(t, p) for t, p in zip(search.taps, pulses, strict=True) if t.usable and p is not None]
+    fit = [(tap, pulse) for tap, pulse in good if not pulse.clipped]
+    if not fit:
+        return search, HammerReading(None, None, nothing_struck(hammer, search, pulses))
+    contacts = [force_alone(read.hammer(p.first, p.end), p, p.first) for _, p in fit]
+    spectrum = force_spectrum(contacts, read.rate_hz)
+    try:
+        response = frequency_response(
+            [struck(read, search, tap, pulse) for tap, pulse in fit],
+            read.rate_hz,
+            high_hz=min(HIGHEST_HZ, NYQUIST_SHARE * read.rate_hz),
+            quantity=quantity,
+            scale=scale,
+            force_scale=hammer.scale,
+        )
+    except Refusal as refusal:
+        return search, HammerReading(None, spectrum, str(refusal))
+    return search, HammerReading(response, spectrum, notes=tuple(remarks(search, pulses, fit)))
+
+
+def pulses_of(read: TwoChannels, search: TapSearch) -> list[Pulse | None]:
     """The force of each blow, None where none stands out."""
     starts = [tap.at_s for tap in search.taps]
-    limits = [*(at_s - GUARD_S for at_s in starts[1:]), recording.duration_s]
+    limits = [*(at_s - GUARD_S for at_s in starts[1:]), np.inf]
+    ranges = [around(*blow, read.rate_hz) for blow in zip(starts, limits, strict=False)]
     return [
-        read_pulse(force, recording.rate_hz, at_s, until_s, full_scale=recording.full_scale)
-        for at_s, until_s in zip(starts, limits, strict=False)
+        read_pulse(read.hammer(first, past), read.rate_hz, first, full_scale=read.full_scale)
+        for first, past in ranges
     ]
 
 
@@ -132,15 +162,19 @@ def struck_twice(pulse: Pulse) -> str:
     )
 
 
-def struck(
-    force: Real, signal: Real, quiet: Real, tap: Tap, pulse: Pulse, rate_hz: float
-) -> Struck:
+def struck(read: TwoChannels, search: TapSearch, tap: Tap, pulse: Pulse) -> Struck:
     """Force and response of one blow from just before its contact to the end of its decay."""
-    first = max(pulse.first - round(_BEFORE_S * rate_hz), 0)
-    whole = signal[first : tap.end]
-    rest = np.mean(quiet) if len(quiet) else np.mean(whole)
-    alone = force_alone(force, pulse, first, len(whole))
-    return Struck(alone, whole - rest, (tap.end - pulse.top) / rate_hz)
+    first = max(pulse.first - round(_BEFORE_S * read.rate_hz), 0)
+    whole = read.sensor(first, tap.end)
+    alone = force_alone(read.hammer(first, tap.end), pulse, first)
+    return Struck(alone, whole - rest_of(read, search, whole), (tap.end - pulse.top) / read.rate_hz)
+
+
+def rest_of(read: TwoChannels, search: TapSearch, whole: Real) -> float:
+    """What the sensor reads at rest."""
+    first, past = search.background
+    quiet = read.sensor(max(first, past - round(_LONGEST_QUIET_S * read.rate_hz)), past)
+    return float(np.mean(quiet if len(quiet) else whole))
 
 
 def nothing_struck(hammer: HammerEntry, search: TapSearch, pulses: Sequence[Pulse | None]) -> str:
