@@ -51,6 +51,16 @@ class HammerReading:
 
 
 @dataclass(frozen=True)
+class Good:
+    """A blow that can be used, with its force."""
+
+    tap: Tap
+    pulse: Pulse
+    until_s: float
+    """Where the next one may begin."""
+
+
+@dataclass(frozen=True)
 class TwoChannels:
     """Sensor and hammer of one recording, read by the stretch."""
 
@@ -108,15 +118,19 @@ def read_hammer(
     pulses = pulses_of(read, search)
     taps = (judged(t, p, read.rate_hz) for t, p in zip(search.taps, pulses, strict=True))
     search = replace(search, taps=tuple(taps))
-    good = [(t, p) for t, p in zip(search.taps, pulses, strict=True) if t.usable and p is not None]
-    fit = [(tap, pulse) for tap, pulse in good if not pulse.clipped]
+    fit = [
+        Good(tap, pulse, until_s)
+        for tap, pulse, until_s in zip(search.taps, pulses, limits_s(search), strict=True)
+        if tap.usable and pulse is not None and not pulse.clipped
+    ]
     if not fit:
         return search, HammerReading(None, None, nothing_struck(hammer, search, pulses))
-    contacts = [force_alone(read.hammer(p.first, p.end), p, p.first) for _, p in fit]
+    found = [good.pulse for good in fit]
+    contacts = [force_alone(read.hammer(p.first, p.end), p, p.first) for p in found]
     spectrum = force_spectrum(contacts, read.rate_hz)
     try:
         response = frequency_response(
-            [struck(read, search, tap, pulse) for tap, pulse in fit],
+            [struck(read, search, good) for good in fit],
             read.rate_hz,
             high_hz=min(HIGHEST_HZ, NYQUIST_SHARE * read.rate_hz),
             quantity=quantity,
@@ -125,18 +139,25 @@ def read_hammer(
         )
     except Refusal as refusal:
         return search, HammerReading(None, spectrum, str(refusal))
-    return search, HammerReading(response, spectrum, notes=tuple(remarks(search, pulses, fit)))
+    return search, HammerReading(response, spectrum, notes=tuple(remarks(search, pulses, found)))
 
 
 def pulses_of(read: TwoChannels, search: TapSearch) -> list[Pulse | None]:
     """The force of each blow, None where none stands out."""
-    starts = [tap.at_s for tap in search.taps]
-    limits = [*(at_s - GUARD_S for at_s in starts[1:]), np.inf]
-    ranges = [around(*blow, read.rate_hz) for blow in zip(starts, limits, strict=False)]
+    ranges = [
+        around(tap.at_s, until_s, read.rate_hz)
+        for tap, until_s in zip(search.taps, limits_s(search), strict=True)
+    ]
     return [
         read_pulse(read.hammer(first, past), read.rate_hz, first, full_scale=read.full_scale)
         for first, past in ranges
     ]
+
+
+def limits_s(search: TapSearch) -> list[float]:
+    """Where the blow after each one may begin; infinite for the last."""
+    later = [tap.at_s - GUARD_S for tap in search.taps[1:]]
+    return [*later, np.inf][: len(search.taps)]
 
 
 def judged(tap: Tap, pulse: Pulse | None, rate_hz: float) -> Tap:
@@ -162,12 +183,20 @@ def struck_twice(pulse: Pulse) -> str:
     )
 
 
-def struck(read: TwoChannels, search: TapSearch, tap: Tap, pulse: Pulse) -> Struck:
-    """Force and response of one blow from just before its contact to the end of its decay."""
+def struck(read: TwoChannels, search: TapSearch, good: Good) -> Struck:
+    """Force and response of one blow from just before its contact until it has died away.
+
+    Twice as long as it is heard over the noise where the next blow leaves room: what the noise
+    hides of a decay still belongs to its peak.
+    """
+    pulse = good.pulse
     first = max(pulse.first - round(_BEFORE_S * read.rate_hz), 0)
-    whole = read.sensor(first, tap.end)
-    alone = force_alone(read.hammer(first, tap.end), pulse, first)
-    return Struck(alone, whole - rest_of(read, search, whole), (tap.end - pulse.top) / read.rate_hz)
+    heard = good.tap.end - first
+    past = max(int(min(first + 2 * heard, good.until_s * read.rate_hz)), good.tap.end)
+    whole = read.sensor(first, past)
+    alone = force_alone(read.hammer(first, past), pulse, first)
+    ring_s = (first + len(whole) - pulse.top) / read.rate_hz
+    return Struck(alone, whole - rest_of(read, search, whole), ring_s)
 
 
 def rest_of(read: TwoChannels, search: TapSearch, whole: Real) -> float:
@@ -195,14 +224,14 @@ def nothing_struck(hammer: HammerEntry, search: TapSearch, pulses: Sequence[Puls
 def remarks(
     search: TapSearch,
     pulses: Sequence[Pulse | None],
-    fit: Sequence[tuple[Tap, Pulse]],
+    found: Sequence[Pulse],
 ) -> list[str]:
-    """What to know about this response."""
+    """What to know about a response made of the pulses that were ``found`` good."""
     out = []
-    if len(fit) == 1:
+    if len(found) == 1:
         out.append("one blow only: coherence needs two or more, so nothing shows how good it is")
     usable = [p for t, p in zip(search.taps, pulses, strict=True) if t.usable]
-    fewest = min(pulse.contact for _, pulse in fit)
+    fewest = min(pulse.contact for pulse in found)
     if fewest < _ENOUGH_SAMPLES:
         out.append(
             f"the contact lasts {fewest} samples only, too few to read the force well; record at a "

@@ -193,6 +193,14 @@ def test_a_decay_cut_short_is_told(tmp_path: Path) -> None:
     assert "let each blow ring for 4.4 s" in told(found)
 
 
+def test_what_the_noise_hides_of_a_decay_is_kept(tmp_path: Path) -> None:
+    """Heard for half of its six time constants, followed for all of them."""
+    found = answered(read_tap(entry(write(tmp_path / "tap.wav", noise_m_per_s2=0.1))))
+    assert found.response is not None
+    assert min(found.response.rings_s) > 4.35
+    assert "too short" not in told(found)
+
+
 def test_noise_shows_in_the_coherence(tmp_path: Path) -> None:
     """A mode that hardly rings above the noise is doubted by name."""
     faint = (MODES[0], replace(MODES[1], constant=2e-5))
