@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -72,3 +73,8 @@ class Meter:
             )
             for i in range(self._channels)
         )
+
+
+def decibels(share: float, least: float = -99.0) -> float:
+    """A share of full scale as dB below it."""
+    return max(least, 20 * math.log10(share)) if share > 0 else least

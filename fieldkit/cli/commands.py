@@ -10,7 +10,7 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import output
+from fieldkit.cli import capturing, output
 
 OPEN = "open"
 
@@ -79,9 +79,11 @@ def open_(
             output.reject(
                 "the app needs a terminal; name a job file to get its advice as text", as_json=False
             )
+        from fieldkit.capture.quiet import libraries_kept_quiet
         from fieldkit.ui.app import FieldkitApp
 
-        FieldkitApp(job).run()
+        with libraries_kept_quiet():
+            FieldkitApp(job).run()
 
 
 @app.command(epilog="Example: fieldkit sample my-samples")
@@ -168,6 +170,9 @@ def running(
         output.answer(
             documents.running(readings, job), tables.running(readings, job), as_json=as_json
         )
+
+
+capturing.register(app)
 
 
 @app.command(epilog="Example: fieldkit span samples/riser/job.toml")

@@ -64,6 +64,11 @@ def reject(sentence: str, *, as_json: bool) -> NoReturn:
     _leave(sentence, BAD_INPUT)
 
 
+def unanswered(sentence: str) -> NoReturn:
+    """Leave with a reason, the answer as far as there is one being printed."""
+    _leave(sentence, UNANSWERED)
+
+
 def progress() -> Progress:
     """Steps on one line of standard error, where that is a terminal."""
     if not sys.stderr.isatty():
