@@ -15,7 +15,7 @@ from pathlib import Path
 
 from tests.bench.accuracy import replay, tables
 from tests.bench.accuracy.kinds import KINDS
-from tests.bench.accuracy.trial import Trial, run_planned
+from tests.bench.accuracy.trial import WAYS, Plan, Trial, run
 
 _SEEDS_PER_RUN = 100_000
 
@@ -28,14 +28,15 @@ def main() -> None:
             print(replay.story(kind, args.replay))
         return
     trials = []
-    for trial in trials_of(planned(args.kind or list(KINDS), args.records, args.seed), args.jobs):
+    ways = (args.way,) if args.way else tuple(WAYS)
+    plans = planned(args.kind or list(KINDS), args.records, args.seed, ways)
+    for trial in trials_of(plans, args.jobs):
         trials.append(trial)
         for line in replay.failings(trial) if args.verbose else ():
             print(line, flush=True)
-    print()
-    for way in (tables.AUTOMATIC, tables.KNOWN):
-        print(f"{way.title}\n{tables.aligned(tables.table(trials, way))}\n")
-    print("\n".join(tables.totals(trials)))
+    for way in ways:
+        print(f"\n{way.capitalize()}\n{tables.aligned(tables.table(trials, way))}")
+        print("\n".join(tables.totals(trials, way)))
     if args.plot:
         from tests.bench.accuracy.coverage_plot import plot
 
@@ -52,6 +53,7 @@ def arguments() -> argparse.ArgumentParser:
     parser.add_argument("--seed", type=int, default=1, help="start of the random numbers")
     parser.add_argument("--records", type=int, default=220, help="recordings, shared by the kinds")
     parser.add_argument("--kind", action="append", choices=KINDS, help="only this kind; repeatable")
+    parser.add_argument("--way", choices=WAYS, help="only this way (default: both)")
     parser.add_argument("--jobs", type=int, default=2, help="processes")
     parser.add_argument("--verbose", action="store_true", help="name what failed, with its seed")
     parser.add_argument("--replay", type=int, metavar="SEED", help="tell all about one recording")
@@ -60,20 +62,20 @@ def arguments() -> argparse.ArgumentParser:
     return parser
 
 
-def planned(kinds: Sequence[str], records: int, seed: int) -> list[tuple[str, int]]:
-    """(kind, seed) of each recording, kind after kind, equally many of each."""
+def planned(kinds: Sequence[str], records: int, seed: int, ways: tuple[str, ...]) -> list[Plan]:
+    """Kind after kind, equally many recordings of each."""
     each = -(-records // len(kinds))
-    return [(kind, seed * _SEEDS_PER_RUN + i) for kind in kinds for i in range(each)]
+    return [Plan(kind, seed * _SEEDS_PER_RUN + i, ways) for kind in kinds for i in range(each)]
 
 
-def trials_of(plan: Sequence[tuple[str, int]], jobs: int) -> Iterator[Trial]:
+def trials_of(plans: Sequence[Plan], jobs: int) -> Iterator[Trial]:
     """Trials in the order of the plan."""
     if jobs < 2:
-        yield from map(run_planned, plan)
+        yield from map(run, plans)
         return
     with get_context("spawn").Pool(jobs) as pool:
-        for i, trial in enumerate(pool.imap(run_planned, plan)):
-            print(f"\r{i + 1} of {len(plan)} ", end="", file=sys.stderr, flush=True)
+        for i, trial in enumerate(pool.imap(run, plans)):
+            print(f"\r{i + 1} of {len(plans)} ", end="", file=sys.stderr, flush=True)
             yield trial
     print(file=sys.stderr)
 

@@ -8,9 +8,8 @@ from pathlib import Path
 import numpy as np
 from numpy.typing import NDArray
 
-from tests.bench.accuracy.tables import AUTOMATIC, KNOWN, Way
 from tests.bench.accuracy.tally import Tally
-from tests.bench.accuracy.trial import Trial
+from tests.bench.accuracy.trial import WAYS, Trial
 
 Real = NDArray[np.float64]
 
@@ -31,8 +30,8 @@ def plot(trials: Sequence[Trial], path: Path) -> None:
     figure, panels = pyplot.subplots(1, 2, figsize=(10, 5.2), sharey=True, layout="constrained")
     for panel, name in zip(panels, ("frequency", "damping"), strict=True):
         panel.plot([0, 1], [0, 1], color="0.4", linewidth=1)
-        for way, colour in ((AUTOMATIC, "#0b5fa5"), (KNOWN, "#c2571a")):
-            draw(panel, scores(trials, way, name), way.title.lower(), colour)
+        for way, colour in zip(WAYS, ("#0b5fa5", "#c2571a"), strict=True):
+            draw(panel, scores(trials, way, name), way, colour)
         panel.set(title=name, xlabel="stated probability of an interval", xlim=(0, 1), ylim=(0, 1))
         panel.set_aspect("equal")
         panel.grid(alpha=0.3)
@@ -52,9 +51,9 @@ def draw(panel, values: Real, label: str, colour: str) -> None:  # type: ignore[
     panel.plot([0.95], [at_95], "o", color=colour)
 
 
-def scores(trials: Sequence[Trial], way: Way, name: str) -> Real:
+def scores(trials: Sequence[Trial], way: str, name: str) -> Real:
     """Errors in stated standard deviations."""
-    found = Tally(tuple(way.score(trial) for trial in trials)).found
+    found = Tally(tuple(trial.scores[way] for trial in trials if way in trial.scores)).found
     return np.array(
         [m.frequency_score if name == "frequency" else m.damping_score for m in found], float
     )

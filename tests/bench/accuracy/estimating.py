@@ -19,7 +19,8 @@ class Estimated:
     """What was said about one recording."""
 
     estimate: ModeEstimate
-    taps: tuple[Tap, ...]
+    taps: tuple[Tap, ...] | None
+    """None where they were known before."""
     cpu_s: float
 
 
@@ -41,7 +42,7 @@ def with_taps_known(made: Simulated) -> Estimated:
     )
     start = time.process_time()
     estimate = modes_of(records, made.high_hz)
-    return Estimated(estimate, (), time.process_time() - start)
+    return Estimated(estimate, None, time.process_time() - start)
 
 
 def modes_of(records: tuple[TapRecord, ...], high_hz: float) -> ModeEstimate:

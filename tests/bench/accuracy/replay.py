@@ -5,11 +5,11 @@ from __future__ import annotations
 from collections.abc import Iterator
 from math import log10
 
-from tests.bench.accuracy.estimating import Estimated, automatic, with_taps_known
+from tests.bench.accuracy.estimating import Estimated
 from tests.bench.accuracy.kinds import recording
 from tests.bench.accuracy.recordings import Simulated
 from tests.bench.accuracy.scoring import Score, estimable
-from tests.bench.accuracy.trial import Trial, bounds_of
+from tests.bench.accuracy.trial import WAYS, Trial, bounds_of
 
 _FAR_SDS = 3.3
 _SLOW_S = 2.0
@@ -17,13 +17,13 @@ _SLOW_S = 2.0
 
 def failings(trial: Trial) -> Iterator[str]:
     """One line for each way in which a recording failed."""
-    for way, score in (("alone", trial.automatic), ("known", trial.known)):
-        said = list(complaints(score, alone=way == "alone"))
+    for way, score in trial.scores.items():
+        said = list(complaints(score))
         if said:
-            yield f"{trial.kind:13} {way} --replay {trial.seed}: {'; '.join(said)}"
+            yield f"{trial.kind:13} {way:13} --replay {trial.seed}: {'; '.join(said)}"
 
 
-def complaints(score: Score, alone: bool) -> Iterator[str]:
+def complaints(score: Score) -> Iterator[str]:
     """What is wrong with a score."""
     if score.missed_hz:
         yield f"missed {hertz(score.missed_hz)}"
@@ -38,11 +38,11 @@ def complaints(score: Score, alone: bool) -> Iterator[str]:
                 f" {mode.damping_score:.1f} in damping ({mode.frequency_ratio:.1f} and"
                 f" {mode.damping_ratio:.1f} bounds)"
             )
-    if alone and score.doubles_told < score.doubles:
+    if score.doubles_told < score.doubles:
         yield f"doubles told {score.doubles_told} of {score.doubles}"
-    if alone and score.clipped_told < score.clipped:
+    if score.clipped_told < score.clipped:
         yield f"clipped told {score.clipped_told} of {score.clipped}"
-    if alone and score.good_taps_used < score.good_taps:
+    if score.good_taps_used < score.good_taps:
         yield f"good taps used {score.good_taps_used} of {score.good_taps}"
     if score.cpu_s > _SLOW_S:
         yield f"{score.cpu_s:.1f} s"
@@ -56,7 +56,7 @@ def story(kind: str, seed: int) -> str:
     """Truth and estimates of one recording."""
     made = recording(kind, seed)
     lines = [f"{kind} {seed}", *truth(made)]
-    for title, way in (("from the samples alone", automatic), ("taps known", with_taps_known)):
+    for title, way in WAYS.items():
         said = way(made)
         lines += ["", f"{title} ({said.cpu_s:.2f} s)", *told(said)]
     return "\n".join(lines)
@@ -91,7 +91,7 @@ def truth(made: Simulated) -> Iterator[str]:
 
 def told(said: Estimated) -> Iterator[str]:
     """What the estimator said."""
-    for tap in said.taps:
+    for tap in said.taps or ():
         reasons = f": {'; '.join(tap.reasons)}" if tap.reasons else ""
         yield f"  tap {tap.at_s:8.4f} s, {'usable' if tap.usable else 'unusable'}{reasons}"
     for mode in said.estimate.modes:

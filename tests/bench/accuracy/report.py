@@ -6,7 +6,7 @@ from collections.abc import Sequence
 
 from tests.bench.accuracy import tables
 from tests.bench.accuracy.kinds import KINDS
-from tests.bench.accuracy.trial import Trial
+from tests.bench.accuracy.trial import WAYS, Trial
 
 _COMPARED = (
     "kind", "estimable", "found", "f error ppm", "ζ error",
@@ -47,13 +47,13 @@ def report(trials: Sequence[Trial], seed: int) -> str:
     """The document, Markdown."""
     head = _HEAD.format(seed=seed, records=len(trials), kinds=len({t.kind for t in trials}))
     parts = [head, "## The kinds\n", kinds(trials)]
-    for way in (tables.AUTOMATIC, tables.KNOWN):
+    for way in WAYS:
         rows = tables.table(trials, way)
-        parts += [f"\n## {way.title}\n", tables.markdown(chosen(rows, _AGAINST_BOUND))]
+        parts += [f"\n## {way.capitalize()}\n", tables.markdown(chosen(rows, _AGAINST_BOUND))]
         parts += ["\nBeside peak picking:\n", tables.markdown(chosen(rows, _COMPARED))]
-    totals = "\n".join(f"- {line}" for line in tables.totals(trials))
+        parts += ["", *(f"- {line}" for line in tables.totals(trials, way))]
     picture = "![Stated probability against actual share, frequency and damping](coverage.svg)"
-    return "\n".join([*parts, f"\n## All recordings together\n\n{totals}\n\n{picture}\n"])
+    return "\n".join([*parts, f"\n## Stated against actual\n\n{picture}\n"])
 
 
 def kinds(trials: Sequence[Trial]) -> str:

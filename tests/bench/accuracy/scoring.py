@@ -83,7 +83,7 @@ def scored(
     made: Simulated,
     bounds: Sequence[ModeBound],
     estimate: ModeEstimate,
-    taps: Sequence[Tap],
+    taps: Sequence[Tap] | None,
     peaks: Sequence[Peak],
     cpu_s: float,
 ) -> Score:
@@ -104,7 +104,7 @@ def scored(
         missed_hz=tuple(made.modes[j].frequency_hz for j in able if j not in pairs),
         false_hz=tuple(extra),
         false_at_mains_hz=tuple(mains),
-        **(tap_counts(made.blows, taps) if made.modes else {}),
+        **(tap_counts(made.blows, taps) if made.modes and taps is not None else {}),
         picked=sum(p is not None for p in picks.values()),
         cpu_s=cpu_s,
     )

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
 
 import numpy as np
 
@@ -56,24 +55,12 @@ COLUMNS: tuple[Column, ...] = (
 )
 
 
-@dataclass(frozen=True)
-class Way:
-    """One way to come to the modes, and the scores it got."""
-
-    title: str
-    score: Callable[[Trial], Score]
-
-
-AUTOMATIC = Way("From the samples alone", lambda trial: trial.automatic)
-KNOWN = Way("With the taps known", lambda trial: trial.known)
-
-
-def table(trials: Sequence[Trial], way: Way) -> list[list[str]]:
+def table(trials: Sequence[Trial], way: str) -> list[list[str]]:
     """Head, one row per kind, and all together."""
     kinds = list(dict.fromkeys(trial.kind for trial in trials))
     head = ["kind", *(name for name, _ in COLUMNS)]
-    rows = [row(kind, [way.score(t) for t in trials if t.kind == kind]) for kind in kinds]
-    return [head, *rows, row("all", [way.score(t) for t in trials])]
+    rows = [row(kind, [t.scores[way] for t in trials if t.kind == kind]) for kind in kinds]
+    return [head, *rows, row("all", [t.scores[way] for t in trials])]
 
 
 def row(name: str, scores: Sequence[Score]) -> list[str]:
@@ -81,23 +68,22 @@ def row(name: str, scores: Sequence[Score]) -> list[str]:
     return [name, *(show(tally) for _, show in COLUMNS)]
 
 
-def totals(trials: Sequence[Trial]) -> list[str]:
+def totals(trials: Sequence[Trial], way: str) -> list[str]:
     """What is counted over all recordings, in sentences."""
-    tally = Tally(tuple(t.automatic for t in trials))
-    known = Tally(tuple(t.known for t in trials))
-    empty = Tally(tuple(t.automatic for t in trials if t.automatic.estimable == 0))
-    return [
+    tally = Tally(tuple(t.scores[way] for t in trials))
+    empty = Tally(tuple(s for s in tally.scores if s.estimable == 0))
+    blows = (
         f"doubles told {counted(tally, 'doubles_told', 'doubles')},"
         f" clipped told {counted(tally, 'clipped_told', 'clipped')},"
-        f" good taps used {counted(tally, 'good_taps_used', 'good_taps')}",
+        f" good taps used {counted(tally, 'good_taps_used', 'good_taps')}"
+    )
+    return [
+        *([blows] if tally.sum(lambda s: s.good_taps) else []),
         f"false modes {tally.sum(lambda s: len(s.false_hz))} in {len(trials)} records,"
         f" {tally.sum(lambda s: len(s.false_at_mains_hz))} of them at mains multiples,"
-        f" {empty.sum(lambda s: len(s.false_hz))} in {len(empty.scores)} without an estimable mode"
-        f" (taps known: {known.sum(lambda s: len(s.false_hz))},"
-        f" {known.sum(lambda s: len(s.false_at_mains_hz))} at mains)",
-        f"rms error / bound without the worst twentieth: f {ratio(tally.frequency_trimmed)},"
-        f" ζ {ratio(tally.damping_trimmed)}"
-        f" (taps known: {ratio(known.frequency_trimmed)}, {ratio(known.damping_trimmed)})",
+        f" {empty.sum(lambda s: len(s.false_hz))} in {len(empty.scores)} without an estimable mode",
+        "rms error / bound without the worst twentieth:"
+        f" f {ratio(tally.frequency_trimmed)}, ζ {ratio(tally.damping_trimmed)}",
     ]
 
 

@@ -1,7 +1,8 @@
-"""One recording of one kind and seed, worked through in both ways."""
+"""One recording of one kind and seed, worked through."""
 
 from __future__ import annotations
 
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 
 from tests.bench.accuracy.bound import ModeBound, recording_bound
@@ -11,42 +12,47 @@ from tests.bench.accuracy.peak_picking import Peak, pick
 from tests.bench.accuracy.recordings import Simulated
 from tests.bench.accuracy.scoring import Score, scored
 
+WAYS: Mapping[str, Callable[[Simulated], Estimated]] = {
+    "samples alone": automatic,
+    "taps known": with_taps_known,
+}
+"""How the modes are come by."""
+
+_NOTHING_KNOWN = ModeBound(1e9, 1e9, -99.0)
+
 
 @dataclass(frozen=True)
-class Trial:
-    """How one recording went, from the file alone and with the taps known."""
+class Plan:
+    """A recording to make, and how to work through it."""
 
     kind: str
     seed: int
-    automatic: Score
-    known: Score
+    ways: tuple[str, ...] = tuple(WAYS)
 
 
-def run(kind: str, seed: int) -> Trial:
+@dataclass(frozen=True)
+class Trial:
+    """How one recording went, by way."""
+
+    kind: str
+    seed: int
+    scores: Mapping[str, Score]
+
+
+def run(plan: Plan) -> Trial:
     """Simulate, estimate, compare."""
-    made = recording(kind, seed)
-    bounds = bounds_of(made)
-    peaks = picked(made)
-    return Trial(
-        kind,
-        seed,
-        score(made, bounds, automatic(made), peaks),
-        score(made, bounds, with_taps_known(made), peaks),
-    )
+    made = recording(plan.kind, plan.seed)
+    bounds, peaks = bounds_of(made), picked(made)
+    scores = {}
+    for way in plan.ways:
+        said = WAYS[way](made)
+        scores[way] = scored(made, bounds, said.estimate, said.taps, peaks, said.cpu_s)
+    return Trial(plan.kind, plan.seed, scores)
 
 
-def run_planned(planned: tuple[str, int]) -> Trial:
-    """The same, for a pool of processes."""
-    return run(*planned)
-
-
-def bounds_of(made: Simulated) -> tuple[ModeBound, ...]:
-    """One bound for every mode, none where no tap can be used."""
-    return (
-        recording_bound(made)
-        if made.usable
-        else tuple(ModeBound(1e9, 1e9, -99.0) for _ in made.modes)
-    )
+def bounds_of(made: Simulated) -> Sequence[ModeBound]:
+    """One bound for every mode, as good as none where no tap can be used."""
+    return recording_bound(made) if made.usable else [_NOTHING_KNOWN for _ in made.modes]
 
 
 def picked(made: Simulated) -> tuple[Peak, ...]:
@@ -55,9 +61,3 @@ def picked(made: Simulated) -> tuple[Peak, ...]:
     if not records or not made.modes:
         return ()
     return pick(records, made.rate_hz, LOW_HZ, made.high_hz, len(made.modes))
-
-
-def score(
-    made: Simulated, bounds: tuple[ModeBound, ...], said: Estimated, peaks: tuple[Peak, ...]
-) -> Score:
-    return scored(made, bounds, said.estimate, said.taps, peaks, said.cpu_s)
