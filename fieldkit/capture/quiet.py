@@ -101,7 +101,8 @@ def caught_messages() -> str:
         if _redirection is None:
             return ""
         file = _redirection.messages
-        size = os.fstat(file.fileno()).st_size
-        text = os.pread(file.fileno(), _MOST_BYTES, max(0, size - _MOST_BYTES)) if size else b""
-        os.ftruncate(file.fileno(), 0)
+        size = file.seek(0, io.SEEK_END)
+        file.seek(max(0, size - _MOST_BYTES))
+        text = file.read()
+        file.truncate(0)
     return text.decode("utf-8", "replace")

@@ -68,7 +68,8 @@ class Session:
         self._recording: _Recording | None = None
         self._run = 0
         self._frames = self._lost = self._gaps = 0
-        self._skipped = 0
+        self._paused = False
+        self._skipped, self._skipped_exact = 0, True
         self._away: SourceEnd | None = None
         self._away_since_s = self._tried_s = self._last_block_s = 0.0
         self._trying = False
@@ -101,11 +102,11 @@ class Session:
 
     def pause(self) -> None:
         """Let recording and listeners miss what comes; the meter goes on."""
-        self._inbox.put(lambda: self._change(RUNNING, PAUSED))
+        self._inbox.put(lambda: self._set_paused(True))
 
     def resume(self) -> None:
         """Go on, with the gap marked."""
-        self._inbox.put(lambda: self._change(PAUSED, RUNNING))
+        self._inbox.put(lambda: self._set_paused(False))
 
     def reset_meter(self) -> None:
         """Turn the clip lamps off."""
@@ -161,17 +162,23 @@ class Session:
     def _work(self) -> None:
         self._open()
         while self._state != ENDED:
-            item = self._inbox.take(_TICK_S)
-            if isinstance(item, Arrived):
-                self._arrived(item)
-            elif isinstance(item, Gone):
-                self._gone(item)
-            elif isinstance(item, NotOpened):
-                self._not_opened(item)
-            elif item is not None:
-                item()
-            self._look_after()
+            try:
+                self._step()
+            except Exception as error:
+                self._end(f"capture failed ({type(error).__name__}: {error})", failed=True)
             self._snapshot = self._published()
+
+    def _step(self) -> None:
+        item = self._inbox.take(_TICK_S)
+        if isinstance(item, Arrived):
+            self._arrived(item)
+        elif isinstance(item, Gone):
+            self._gone(item)
+        elif isinstance(item, NotOpened):
+            self._not_opened(item)
+        elif item is not None:
+            item()
+        self._look_after()
 
     def _open(self) -> None:
         self._run += 1
@@ -200,16 +207,18 @@ class Session:
         elif block.lost_frames != 0 and self._frames:
             self._message = f"{block.cause}: the gap is marked"
         if self._state in (OPENING, WAITING):
-            self._state = RUNNING
+            self._state = PAUSED if self._paused else RUNNING
         self._last_block_s = item.at_s
         self._meter.feed(block)
-        if self._state == PAUSED:
+        if self._paused:
             self._skipped += len(block.samples) + (block.lost_frames or 0)
+            self._skipped_exact &= block.lost_frames is not None and block.exact
             return
         if self._skipped:
             lost = self._skipped + (block.lost_frames or 0)
-            block = replace(block, lost_frames=lost, cause=_PAUSED)
-            self._skipped = 0
+            exact = self._skipped_exact and block.exact
+            block = replace(block, lost_frames=lost, cause=_PAUSED, exact=exact)
+            self._skipped, self._skipped_exact = 0, True
         self._hand_on(replace(block, first_frame=self._frames))
 
     def _after_absence(self, block: Block, at_s: float) -> Block:
@@ -290,9 +299,10 @@ class Session:
         if self._recording.writer.failure:
             self._message = self._recording.writer.failure
 
-    def _change(self, state: str, to: str) -> None:
-        if self._state == state:
-            self._state = to
+    def _set_paused(self, paused: bool) -> None:
+        self._paused = paused
+        if self._state in (RUNNING, PAUSED):
+            self._state = PAUSED if paused else RUNNING
 
     def _set_listeners(self, listeners: tuple[Listener, ...]) -> None:
         self._listeners = listeners

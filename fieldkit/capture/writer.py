@@ -96,7 +96,7 @@ class RecordingWriter:
     def _guarded(self, block: Block) -> None:
         try:
             self._write(block)
-        except OSError as error:
+        except Exception as error:
             self._fail(error)
 
     def _write(self, block: Block) -> None:
@@ -139,13 +139,10 @@ class RecordingWriter:
         write_info(last, replace(self._info, ended=f"goes on in {path.name}"))
         self._info = following
 
-    def _fail(self, error: OSError) -> None:
+    def _fail(self, error: Exception) -> None:
         file, seconds = self.paths[-1].name, self.frames_written / self._info.rate_hz
-        why = (
-            "the disk is full"
-            if error.errno in _NO_SPACE
-            else f"the disk refused ({error.strerror or error})"
-        )
+        full = isinstance(error, OSError) and error.errno in _NO_SPACE
+        why = "the disk is full" if full else f"it could not be written ({error})"
         self.failure = f"{why}: the recording ended after {seconds:.1f} s, all of it is in {file}"
 
     def _finish(self, ended: str) -> None:

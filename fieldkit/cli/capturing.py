@@ -61,7 +61,7 @@ def record(
     ] = 30.0,
     as_json: AsJson = False,
 ) -> None:
-    """Record until Enter, Ctrl-C or a stated length; what was recorded is never lost."""
+    """Record until Enter, Ctrl-C or a stated length, straight to disk."""
     with output.answering(as_json=as_json):
         from fieldkit.cli.capture_tables import recorded_document, recorded_lines
         from fieldkit.cli.recording import Plan, made

@@ -2,8 +2,12 @@
 
 from __future__ import annotations
 
+import os
 import subprocess
 import sys
+from contextlib import suppress
+
+import pytest
 
 CODE = """
 import os, sys
@@ -45,3 +49,41 @@ with libraries_kept_quiet():
     print("fine")
 """
     assert run(code).stdout == "fine\n"
+
+
+SCREEN = """
+import os
+from textual.app import App
+from textual.widgets import Static
+from fieldkit.capture.quiet import libraries_kept_quiet
+
+class Small(App):
+    def compose(self):
+        yield Static("drawn by the app")
+
+    def on_mount(self):
+        os.write(2, b"printed by a library")
+        self.set_timer(0.3, self.exit)
+
+with libraries_kept_quiet():
+    Small().run()
+"""
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="the app draws on standard output there")
+def test_a_library_cannot_print_on_the_screen_of_the_app():
+    import pty
+
+    ours, theirs = pty.openpty()
+    process = subprocess.Popen(
+        [sys.executable, "-c", SCREEN], stdin=theirs, stdout=theirs, stderr=theirs
+    )
+    os.close(theirs)
+    screen = b""
+    with suppress(OSError):
+        while chunk := os.read(ours, 65536):
+            screen += chunk
+    os.close(ours)
+    assert process.wait(60.0) == 0
+    assert b"drawn by the app" in screen
+    assert b"library" not in screen

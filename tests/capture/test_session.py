@@ -114,6 +114,30 @@ def test_a_pause_leaves_a_marked_gap_and_the_meter_running(tmp_path):
     assert len(recorded(tmp_path / "x.wav")) == 200
 
 
+def test_a_pause_outlasts_an_absence_of_the_source(tmp_path):
+    paused, resumed = threading.Event(), threading.Event()
+    gone = SourceEnd("vanished", "made up is gone")
+    steps = [block(100), paused.wait, gone, block(50), resumed.wait, block(100)]
+    session = Session(MadeSource(steps), retry_every_s=0.0)
+    listener = Gathering()
+    session.add(listener)
+    session.start()
+    until(lambda: session.snapshot().frames == 100)
+    session.pause()
+    until(lambda: session.snapshot().state == PAUSED)
+    paused.set()
+    until(lambda: "is back" in session.snapshot().message)
+    assert session.snapshot().state == PAUSED
+    session.resume()
+    until(lambda: session.snapshot().state == RUNNING)
+    resumed.set()
+    finished(session)
+    last = listener.blocks[-1]
+    assert len(listener.blocks) == 2
+    assert (last.first_frame, last.cause, last.exact) == (100, "paused", False)
+    assert last.lost_frames > 50
+
+
 def test_a_source_that_was_away_goes_on_behind_a_marked_gap(tmp_path):
     begun = threading.Event()
     gone = SourceEnd("vanished", "made up is gone")
