@@ -59,6 +59,8 @@ def test_labels_tell_neighbours_apart_and_carry_no_spare_digit():
     assert tick_labels(np.array([0.0, 0.05, 0.1])) == ["0.00", "0.05", "0.10"]
     assert tick_labels(np.array([0.0, 50.0, 100.0])) == ["0", "50", "100"]
     assert tick_labels(np.array([0.01, 0.1, 1, 10])) == ["0.01", "0.1", "1", "10"]
+    assert tick_labels(np.array([0.01, 1])) == ["0.01", "1"]
+    assert tick_labels(np.array([0.0, 0.5])) == ["0.0", "0.5"]
     assert tick_labels(np.array([1e-6, 1e-4, 1e-2])) == ["1e-6", "1e-4", "0.01"]
     assert tick_labels(np.array([0.0, 2e5, 4e5])) == ["0", "2e5", "4e5"]
     assert tick_labels(np.array([])) == []

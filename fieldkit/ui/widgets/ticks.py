@@ -76,7 +76,10 @@ def tick_labels(ticks: Floats) -> list[str]:
 
 def _evenly_spaced(ticks: Floats) -> bool:
     gaps = np.diff(ticks)
-    return len(gaps) < 2 or bool(np.allclose(gaps, gaps[0]))
+    if len(gaps) == 1:
+        # Neighbouring multiples of one step are at most a factor of two apart, unless one is 0.
+        return not 0 < 2.5 * ticks[0] < ticks[1]
+    return len(gaps) == 0 or bool(np.allclose(gaps, gaps[0]))
 
 
 def _exponent(value: float) -> str:
