@@ -15,6 +15,8 @@ from tests.bench.accuracy.surroundings import Density
 
 Kind = Callable[[Rng], Scene]
 
+_SLOWEST_SHAFT_HZ = 5.0
+
 
 def quiet(rng: Rng) -> Scene:
     """A few modes, strong taps, little noise."""
@@ -125,7 +127,7 @@ def running_machine(rng: Rng) -> Scene:
     near = made.modes[int(rng.integers(len(made.modes)))]
     side = float(rng.choice([-1.0, 1.0])) * rng.uniform(1.0, 4.0)
     line_hz = max(near.frequency_hz + side * near.bandwidth_hz, 0.8 * near.frequency_hz)
-    shaft_hz = line_hz / int(rng.integers(1, 4))
+    shaft_hz = line_hz / min(int(rng.integers(1, 4)), max(int(line_hz / _SLOWEST_SHAFT_HZ), 1))
     amplitude = drawing.amplitude_over(made.density, line_hz, rng.uniform(25, 50))
     orders = sorted({*range(1, 5), *(int(o) for o in rng.integers(5, 12, 2))})
     wander = log_uniform(rng, 1e-4, 1e-3)
