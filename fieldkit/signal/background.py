@@ -31,6 +31,18 @@ class NoiseDensity:
         """Density at the given frequencies, interpolated on a log scale; flat beyond the ends."""
         return np.asarray(np.exp(np.interp(np.abs(frequency_hz), self.frequency_hz, self.log)))
 
+    def with_lines(self, lines: NoiseDensity | None) -> NoiseDensity:
+        """The density with that of narrow lines, 0 between them, added on its finer grid."""
+        if lines is None:
+            return self
+        here = np.flatnonzero(lines.density > 0)
+        grid = np.unique(np.concatenate([here - 1, here, here + 1]))
+        grid = grid[(grid >= 0) & (grid < len(lines.density))]
+        fine_hz = np.union1d(self.frequency_hz, lines.frequency_hz[grid])
+        added = np.interp(fine_hz, lines.frequency_hz, lines.density)
+        inside = np.isin(fine_hz, lines.frequency_hz[grid])
+        return NoiseDensity(fine_hz, self.at(fine_hz) + np.where(inside, added, 0.0))
+
     @cached_property
     def log(self) -> Real:
         """(m,) natural logarithm of the density."""

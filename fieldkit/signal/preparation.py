@@ -12,7 +12,7 @@ from numpy.typing import NDArray
 from fieldkit.signal.background import NoiseDensity, noise_density
 from fieldkit.signal.decimation import decimate
 from fieldkit.signal.scan import Region
-from fieldkit.signal.tones import Line, background_lines, dies_away
+from fieldkit.signal.tones import Line, background_lines, dies_away, wandering_density, wanders
 from fieldkit.signal.traces import Component, Trace, residual
 
 Real = NDArray[np.float64]
@@ -74,13 +74,12 @@ def prepare(records: Sequence[Record], low_hz: float, high_hz: float) -> Prepare
         _ANALYSED_OVER_REPORTED * high_hz, min(_USABLE_OF_RATE * r.rate_hz for r in records)
     )
     lowered = [lower(r.samples - rest(r), r.rate_hz, high_hz, top_hz) for r in records]
-    quiet = {id(r.background): quiet_stretch(r, high_hz, top_hz) for r in records}
-    noises = {
-        key: noise_density([s], rate_hz, top_hz=top_hz) for key, (s, rate_hz) in quiet.items()
+    grounds = {
+        key: ground(*quiet_stretch(record, high_hz, top_hz), top_hz)
+        for key, record in {id(r.background): r for r in records}.items()
     }
-    has_background = all(n is not None for n in noises.values())
     traces = tuple(
-        Trace(samples, rate_hz, trace_noise(noises[id(r.background)], samples, rate_hz, top_hz))
+        Trace(samples, rate_hz, trace_noise(grounds[id(r.background)], samples, rate_hz, top_hz))
         for r, (samples, rate_hz) in zip(records, lowered, strict=True)
     )
     longest = max(t.duration_s for t in traces)
@@ -90,8 +89,31 @@ def prepare(records: Sequence[Record], low_hz: float, high_hz: float) -> Prepare
         1.5 / longest,
         min(_SLOW_OVER_REPORTED * high_hz, top_hz),
     )
-    lines = distinct([lines_of(quiet[key], noises[key], top_hz) for key in quiet])
+    lines = distinct([g.lines for g in grounds.values()])
+    has_background = all(g.noise is not None for g in grounds.values())
     return Prepared(traces, lines, region, has_background)
+
+
+@dataclass(frozen=True)
+class Ground:
+    """What a stretch without a blow says: its noise and the lines in it."""
+
+    noise: NoiseDensity | None
+    lines: tuple[Line, ...] = ()
+    wandering: NoiseDensity | None = None
+    """Density of the lines that wander."""
+
+
+def ground(samples: Real, rate_hz: float, top_hz: float) -> Ground:
+    """Noise and lines of a background; nothing where it is too short."""
+    noise = noise_density([samples], rate_hz, top_hz=top_hz)
+    if noise is None:
+        return Ground(None)
+    trace = Trace(samples, rate_hz, floored(noise, samples, rate_hz))
+    found = background_lines(samples, rate_hz, noise, top_hz)
+    lasting = [line for line in found if not dies_away(line, trace)]
+    lines = tuple(replace(line, wanders=wanders(line, trace)) for line in lasting)
+    return Ground(noise, lines, wandering_density(lines, trace))
 
 
 def rest(record: Record) -> float:
@@ -118,19 +140,17 @@ def quiet_stretch(record: Record, high_hz: float, top_hz: float) -> tuple[Real, 
     return lower(samples, record.rate_hz, high_hz, top_hz)
 
 
-def trace_noise(
-    known: NoiseDensity | None, samples: Real, rate_hz: float, top_hz: float
-) -> NoiseDensity:
+def trace_noise(quiet: Ground, samples: Real, rate_hz: float, top_hz: float) -> NoiseDensity:
     """The background's density; where that between the lines of the trace is far lower, this one.
 
     A background that still rings from an earlier blow would hide the very modes that ring in it.
     """
-    own = noise_density([samples], rate_hz, whole=True, top_hz=top_hz)
+    known, own = quiet.noise, noise_density([samples], rate_hz, whole=True, top_hz=top_hz)
     if known is None or own is None:
         return floored(known or own, samples, rate_hz)
     density = known.at(own.frequency_hz)
     lower = np.where(own.density < _FAR_LOWER * density, own.density, density)
-    return floored(replace(own, density=lower), samples, rate_hz)
+    return floored(replace(own, density=lower), samples, rate_hz).with_lines(quiet.wandering)
 
 
 def floored(noise: NoiseDensity | None, samples: Real, rate_hz: float) -> NoiseDensity:
@@ -149,15 +169,3 @@ def distinct(found: Sequence[Sequence[Line]]) -> tuple[Line, ...]:
         if all(abs(line.frequency_hz - o.frequency_hz) > line.resolution_hz for o in out):
             out.append(line)
     return tuple(out)
-
-
-def lines_of(
-    quiet: tuple[Real, float], noise: NoiseDensity | None, top_hz: float
-) -> tuple[Line, ...]:
-    """Steady lines of a background, none where there is no background."""
-    samples, rate_hz = quiet
-    if noise is None:
-        return ()
-    trace = Trace(samples, rate_hz, floored(noise, samples, rate_hz))
-    lines = background_lines(samples, rate_hz, noise, top_hz)
-    return tuple(line for line in lines if not dies_away(line, trace))

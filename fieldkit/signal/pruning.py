@@ -31,8 +31,19 @@ def pruned(traces: Sequence[Trace], found: Found, region: Region) -> Found:
         twin = next((p for p in parts if twins(p, current)), None)
         parts, poor = without_if_idle(traces, parts, current, region, must_go=twin is not None)
         unresolved += [(current.pole, twin.pole)] if twin is not None and poor else []
-    settled = tuple(still(p, traces) for p in parts)
+    settled = apart([still(p, traces) for p in parts], traces)
     return replace(found, parts=settled, unresolved=tuple(unresolved))
+
+
+def apart(parts: Sequence[Component], traces: Sequence[Trace]) -> tuple[Component, ...]:
+    """Parts less the weaker ones of tones too near each other to be two."""
+    least_hz = 0.5 / max(t.duration_s for t in traces)
+    kept: list[Component] = []
+    for part in sorted(parts, key=peak_amplitude, reverse=True):
+        tones = [k for k in kept if k.steady and part.steady]
+        if all(abs(part.frequency_hz - k.frequency_hz) > least_hz for k in tones):
+            kept.append(part)
+    return tuple(kept)
 
 
 def still(part: Component, traces: Sequence[Trace]) -> Component:

@@ -3,15 +3,15 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.background import NoiseDensity, detrended
+from fieldkit.signal.background import NoiseDensity, detrended, periodograms
 from fieldkit.signal.bands import band, subtract
 from fieldkit.signal.likelihood import fit, inverse
-from fieldkit.signal.traces import Component, Trace, component
+from fieldkit.signal.traces import Component, Trace, component, residual
 
 Real = NDArray[np.float64]
 
@@ -21,6 +21,12 @@ _MOST_TONES = 40
 _DIES_AWAY = 0.15
 """Decays over the background, and the relative standard deviation it must be known with."""
 _SURELY = 0.12
+_WANDERS = 2.5
+_TURNS_AWAY = 0.3
+"""Phase, in radians over a tap, by which a tone has to run off before its frequency follows."""
+_UNEXPLAINED = 1e-3
+_STANDS_OVER = 6.0
+_FARTHEST_WANDER = 6e-3
 
 
 @dataclass(frozen=True)
@@ -31,6 +37,8 @@ class Line:
     amplitude: float
     resolution_hz: float
     """One over the length of background it was read from."""
+    wanders: bool = False
+    """True where no steady line explains it: its frequency or level moves."""
 
 
 def background_lines(
@@ -90,6 +98,46 @@ def dies_away(line: Line, background: Trace) -> bool:
     return bool(decay * background.duration_s > _DIES_AWAY and sd_of_log < _SURELY)
 
 
+def wanders(line: Line, background: Trace) -> bool:
+    """True where a steady line, slowly changing at most, leaves far more than noise.
+
+    It must also leave a good part of the line itself, as no strong steady one does.
+    """
+    tone = component(2j * np.pi * line.frequency_hz, 1, steady=True)
+    reach = 12 * line.resolution_hz
+    low, high = max(line.frequency_hz - reach, 0.0), line.frequency_hz + reach
+    bins = band([background], low, high, background.duration_s)
+    whole = float(np.sum(np.abs(bins.data) ** 2))
+    result = fit(bins, [], [tone], leftover_terms=1)
+    return result.variance > _WANDERS and result.cost > _UNEXPLAINED * whole
+
+
+def wandering_density(lines: Sequence[Line], background: Trace) -> NoiseDensity | None:
+    """Density of what the lines that wander leave beside steady ones, 0 between them.
+
+    None where no line wanders.
+    """
+    moving = [line for line in lines if line.wanders]
+    if not moving:
+        return None
+    left = residual(background, 0, tone_components(lines, [background]))
+    count = background.fast_whole
+    power = periodograms(left[-count:], count, background.rate_hz)[0]
+    frequency_hz = np.arange(len(power)) * background.rate_hz / count
+    floor = background.noise.at(frequency_hz)
+    widened = np.maximum(np.maximum(power, np.roll(power, 1)), np.roll(power, -1))
+    near = np.zeros(len(power), bool)
+    for line in moving:
+        near |= np.abs(frequency_hz - line.frequency_hz) < reach_hz(line)
+    out = np.where(near & (widened > _STANDS_OVER * floor), widened, 0.0)
+    return NoiseDensity(frequency_hz[1:], out[1:])
+
+
+def reach_hz(line: Line) -> float:
+    """How far from its top a line that wanders may stand at another time."""
+    return max(_FARTHEST_WANDER * line.frequency_hz, 6 * line.resolution_hz)
+
+
 def tone_components(lines: Sequence[Line], traces: Sequence[Trace]) -> list[Component]:
     """The lines as steady components, their amplitudes fitted to each tap."""
     parts = [component(2j * np.pi * line.frequency_hz, len(traces), steady=True) for line in lines]
@@ -104,4 +152,17 @@ def refitted(tone: Component, others: Sequence[Component], traces: Sequence[Trac
     reach = 16 / duration_s
     bins = band(traces, max(tone.frequency_hz - reach, 0), tone.frequency_hz + reach, duration_s)
     result = fit(subtract(bins, others), [], [tone], leftover_terms=2)
-    return result.passive[0]
+    return centred(result.passive[0], np.array([t.duration_s for t in traces]))
+
+
+def centred(tone: Component, duration_s: Real) -> Component:
+    """The tone at the frequency it has amid each tap, as far as its slope tells."""
+    half = duration_s / 2
+    middle = tone.amplitudes + tone.slopes * half
+    strong = np.abs(middle) > np.abs(tone.slopes * half)
+    turn = np.where(strong, (tone.slopes / np.where(strong, middle, 1)).imag, 0.0)
+    turn = np.where(np.abs(turn) * duration_s > _TURNS_AWAY, turn, 0.0)
+    back = np.exp(-1j * turn * half)
+    slopes = (tone.slopes - 1j * turn * middle) * back
+    amplitudes = middle * back - slopes * half
+    return replace(tone, poles=tone.poles + 1j * turn, amplitudes=amplitudes, slopes=slopes)

@@ -21,6 +21,8 @@ _SEEN = 15.0
 _WELL_EXPECTED = 60.0
 _OVER_LINE = 3.0
 _LINE_WANDER = 2e-3
+_FAR_WANDER = 6e-3
+"""Of a line that was seen to wander, or that is stronger than what stands beside it."""
 _MAINS_HZ = (50.0, 60.0)
 _HARDLY_DECAYS = 0.5
 _SURE = 0.1
@@ -66,7 +68,8 @@ def judged(
             estimate = spanning(estimate, pair)
         steady = steadiness(one.part, estimate, traces, lines)
         energy = decay_energy(one.part, traces)
-        reason = steady or objection(estimate) or lonely(gain, strength - energy)
+        doubtful = "" if twins and one.part.damping_ratio < LARGEST_DAMPING else objection(estimate)
+        reason = steady or doubtful or lonely(gain, strength - energy)
         out.append(Judged(one.part, estimate, energy, gain, reason, bool(steady), bool(twins)))
     return out
 
@@ -111,6 +114,8 @@ def steadiness(
     peak = float(np.abs(part.amplitudes).max())
     for line in lines:
         reach = max(1 / duration_s, line.resolution_hz / 2, _LINE_WANDER * line.frequency_hz)
+        if line.wanders or peak < line.amplitude:
+            reach = max(reach, _FAR_WANDER * line.frequency_hz)
         near = abs(line.frequency_hz - part.frequency_hz) < reach
         if near and peak < _OVER_LINE * line.amplitude and not surely_decays(decays, estimate):
             return f"a steady line at {line.frequency_hz:.2f} Hz is there before the blow"
