@@ -3,7 +3,10 @@
 from __future__ import annotations
 
 import time
+import traceback
+from collections.abc import Callable
 from dataclasses import dataclass
+from pathlib import Path
 
 from fieldkit.errors import Refusal
 from fieldkit.signal.modes import ModeEstimate, TapRecord, estimate_modes
@@ -22,15 +25,19 @@ class Estimated:
     taps: tuple[Tap, ...] | None
     """None where they were known before."""
     cpu_s: float
+    crash: str = ""
+    """What broke, if anything did: nothing is estimated then."""
 
 
 def automatic(made: Simulated) -> Estimated:
     """As a file is read: taps found, cut and estimated."""
-    start = time.process_time()
-    search = find_taps(made.samples, made.rate_hz, full_scale=FULL_SCALE)
-    records = cut(made.samples, made.rate_hz, search)
-    estimate = modes_of(records, made.high_hz)
-    return Estimated(estimate, search.taps, time.process_time() - start)
+
+    def read() -> tuple[ModeEstimate, tuple[Tap, ...]]:
+        search = find_taps(made.samples, made.rate_hz, full_scale=FULL_SCALE)
+        records = cut(made.samples, made.rate_hz, search)
+        return modes_of(records, made.high_hz), search.taps
+
+    return watched(read)
 
 
 def with_taps_known(made: Simulated) -> Estimated:
@@ -40,9 +47,7 @@ def with_taps_known(made: Simulated) -> Estimated:
         TapRecord(made.samples[blow.start : blow.end], made.rate_hz, background)
         for blow in made.usable
     )
-    start = time.process_time()
-    estimate = modes_of(records, made.high_hz)
-    return Estimated(estimate, None, time.process_time() - start)
+    return watched(lambda: (modes_of(records, made.high_hz), None))
 
 
 def modes_of(records: tuple[TapRecord, ...], high_hz: float) -> ModeEstimate:
@@ -53,3 +58,16 @@ def modes_of(records: tuple[TapRecord, ...], high_hz: float) -> ModeEstimate:
         return estimate_modes(records, low_hz=LOW_HZ, high_hz=high_hz)
     except Refusal:
         return NOTHING
+
+
+def watched(way: Callable[[], tuple[ModeEstimate, tuple[Tap, ...] | None]]) -> Estimated:
+    """Processor time of a way; one that breaks has found nothing, and the bench goes on."""
+    start = time.process_time()
+    try:
+        estimate, taps = way()
+    except Exception as broken:
+        frame = traceback.extract_tb(broken.__traceback__)[-1]
+        where = f"{Path(frame.filename).name}:{frame.lineno}"
+        crash = f"{type(broken).__name__} in {where}: {broken}"
+        return Estimated(NOTHING, None, time.process_time() - start, crash)
+    return Estimated(estimate, taps, time.process_time() - start)

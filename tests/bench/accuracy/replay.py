@@ -25,6 +25,8 @@ def failings(trial: Trial) -> Iterator[str]:
 
 def complaints(score: Score) -> Iterator[str]:
     """What is wrong with a score."""
+    if score.crash:
+        yield score.crash
     if score.missed_hz:
         yield f"missed {hertz(score.missed_hz)}"
     if score.false_hz:
@@ -91,6 +93,8 @@ def truth(made: Simulated) -> Iterator[str]:
 
 def told(said: Estimated) -> Iterator[str]:
     """What the estimator said."""
+    if said.crash:
+        yield f"  {said.crash}"
     for tap in said.taps or ():
         reasons = f": {'; '.join(tap.reasons)}" if tap.reasons else ""
         yield f"  tap {tap.at_s:8.4f} s, {'usable' if tap.usable else 'unusable'}{reasons}"

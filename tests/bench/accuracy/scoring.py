@@ -8,10 +8,10 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.modes import MeasuredMode, ModeEstimate
+from fieldkit.signal.modes import MeasuredMode
 from fieldkit.signal.taps import Tap
 from tests.bench.accuracy.bound import ModeBound
-from tests.bench.accuracy.estimating import LOW_HZ
+from tests.bench.accuracy.estimating import LOW_HZ, Estimated
 from tests.bench.accuracy.peak_picking import Peak
 from tests.bench.accuracy.recordings import Simulated, TrueBlow, TrueMode
 
@@ -77,17 +77,17 @@ class Score:
     picked: int = 0
     """Estimable modes that peak picking has within half a bandwidth."""
     cpu_s: float = 0.0
+    crash: str = ""
 
 
 def scored(
     made: Simulated,
     bounds: Sequence[ModeBound],
-    estimate: ModeEstimate,
-    taps: Sequence[Tap] | None,
+    said: Estimated,
     peaks: Sequence[Peak],
-    cpu_s: float,
 ) -> Score:
     """Everything that is counted about one recording."""
+    estimate, taps = said.estimate, said.taps
     pairs = matched(made.modes, bounds, estimate.modes)
     able = estimable(made, bounds)
     picks = {j: nearest_peak(made.modes[j], peaks) for j in able}
@@ -106,7 +106,8 @@ def scored(
         false_at_mains_hz=tuple(mains),
         **(tap_counts(made.blows, taps) if made.modes and taps is not None else {}),
         picked=sum(p is not None for p in picks.values()),
-        cpu_s=cpu_s,
+        cpu_s=said.cpu_s,
+        crash=said.crash,
     )
 
 

@@ -77,7 +77,9 @@ def totals(trials: Sequence[Trial], way: str) -> list[str]:
         f" clipped told {counted(tally, 'clipped_told', 'clipped')},"
         f" good taps used {counted(tally, 'good_taps_used', 'good_taps')}"
     )
+    crashes = tally.sum(lambda s: bool(s.crash))
     return [
+        *([f"broke on {crashes}"] if crashes else []),
         *([blows] if tally.sum(lambda s: s.good_taps) else []),
         f"false modes {tally.sum(lambda s: len(s.false_hz))} in {len(trials)} records,"
         f" {tally.sum(lambda s: len(s.false_at_mains_hz))} of them at mains multiples,"

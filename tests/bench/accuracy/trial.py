@@ -43,10 +43,7 @@ def run(plan: Plan) -> Trial:
     """Simulate, estimate, compare."""
     made = recording(plan.kind, plan.seed)
     bounds, peaks = bounds_of(made), picked(made)
-    scores = {}
-    for way in plan.ways:
-        said = WAYS[way](made)
-        scores[way] = scored(made, bounds, said.estimate, said.taps, peaks, said.cpu_s)
+    scores = {way: scored(made, bounds, WAYS[way](made), peaks) for way in plan.ways}
     return Trial(plan.kind, plan.seed, scores)
 
 
