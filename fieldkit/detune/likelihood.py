@@ -22,6 +22,13 @@ FALSE_PEAK_RATE = 0.06
 """How often a clear peak belongs to no mode of the span."""
 DOUBTFUL_PEAK_RATE = 0.5
 """The same for a faint or heavily damped one: leftovers of hum and contact look like that."""
+RUNNING_MODEL_ERROR = 0.02
+"""The same as MODEL_ERROR for a peak found while running: how full and how warm the line was then,
+and which way a support with play was pressed, is known less well (common practice, no source)."""
+RUNNING_FALSE_RATE = 0.25
+"""A peak found while running is more often none of the span: neighbours and flow shake it too."""
+RUNNING_DETECTION = 0.6
+"""Share of the modes that a tap would show which the forces of running show too."""
 LEAST_DETECTION = 0.06
 """A mode of the other plane still shows this often: no sensor is perfectly aligned."""
 MOST_DETECTION = 0.95
@@ -41,6 +48,12 @@ class Peaks:
     """Modes above were not looked for."""
     false_rate: Array
     """(peaks,) how often such a peak belongs to no mode."""
+    model_error: float = MODEL_ERROR
+    """Relative, what no parameter accounts for."""
+    shown: float = 1.0
+    """How often a mode shows that a tap would show."""
+    weight: float = 1.0
+    """Power to which the likelihood of these peaks is taken: below one where others say more."""
 
 
 @dataclass(frozen=True)
@@ -51,16 +64,21 @@ class Alignment:
     responsibility: Array
 
 
-def detection(seen_share: Array, frequency_hz: Array, highest_hz: float) -> Array:
-    """Chance that a mode shows as a peak, from the share of its motion the sensor can see."""
+def detection(
+    seen_share: Array, frequency_hz: Array, highest_hz: float, shown: float = 1.0
+) -> Array:
+    """Chance that a mode shows as a peak, from the share of its motion the sensor can see.
+
+    ``shown`` is the chance with which it is shaken at all.
+    """
     visible = LEAST_DETECTION + (MOST_DETECTION - LEAST_DETECTION) * np.clip(seen_share, 0, 1)
     looked_for = 1 / (1 + np.exp(np.clip((frequency_hz / highest_hz - 1) / 0.02, -50, 50)))
-    return np.asarray(np.clip(visible * looked_for, 1e-6, MOST_DETECTION))
+    return np.asarray(np.clip(shown * visible * looked_for, 1e-6, MOST_DETECTION))
 
 
 def peak_variance(peaks: Peaks, frequency_hz: Array, widening: float) -> Array:
     """(members, peaks, modes) variance of a peak about a computed mode."""
-    model = (MODEL_ERROR * frequency_hz[:, None, :]) ** 2
+    model = (peaks.model_error * frequency_hz[:, None, :]) ** 2
     return np.asarray(widening**2 * (peaks.sd_hz[None, :, None] ** 2 + model))
 
 

@@ -10,9 +10,17 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.detune import posterior
-from fieldkit.detune.evidence import Evidence
+from fieldkit.detune.evidence import RUNNING, Evidence
 from fieldkit.detune.field import AXES, Field, field
-from fieldkit.detune.likelihood import DOUBTFUL_PEAK_RATE, FALSE_PEAK_RATE, Peaks
+from fieldkit.detune.likelihood import (
+    DOUBTFUL_PEAK_RATE,
+    FALSE_PEAK_RATE,
+    MODEL_ERROR,
+    RUNNING_DETECTION,
+    RUNNING_FALSE_RATE,
+    RUNNING_MODEL_ERROR,
+    Peaks,
+)
 from fieldkit.detune.matched import Ensemble, Match, ModelMode, Pair, ParameterReading
 from fieldkit.detune.posterior import Population, Problem, Seen
 from fieldkit.detune.reduced import ReducedModel, build
@@ -30,6 +38,8 @@ INFORMED_SD = 0.75
 """A parameter counts as informed when the tap cut its doubt to this share of the prior."""
 BELONGS = 0.5
 """A peak is paired when it belongs to some mode with at least this probability."""
+RUNNING_SHARE = 0.5
+"""Running peaks weigh at most this share of as many peaks of taps (common practice, no source)."""
 FREE_HZ = 0.2
 MOST_MODES = 12
 FAINT = 0.02
@@ -78,27 +88,46 @@ class Group:
 
 
 def grouped(modes: Sequence[MeasuredMode], up_to_hz: float) -> tuple[Group, ...]:
-    """Peaks by state, direction and station, each in rising frequency."""
-    keys = dict.fromkeys((m.state, m.direction, m.at_m) for m in modes)
+    """Peaks by state, direction, station and source, each in rising frequency."""
+    weight = running_weight(modes)
+    keys = dict.fromkeys(_group_key(m) for m in modes)
     groups = []
     for key in keys:
-        own = sorted(
-            (m for m in modes if (m.state, m.direction, m.at_m) == key),
-            key=lambda m: m.frequency_hz,
-        )
+        own = sorted((m for m in modes if _group_key(m) == key), key=lambda m: m.frequency_hz)
         frequency = np.array([m.frequency_hz for m in own])
-        recorded = any(m.taps for m in own)
+        running = own[0].source == RUNNING
+        recorded = running or any(m.taps for m in own)
         highest = up_to_hz if recorded else MARGIN_ABOVE_TYPED * float(frequency.max())
         peaks = Peaks(
             frequency,
             np.array([max(m.frequency_sd_hz, 1e-4 * m.frequency_hz) for m in own]),
-            key[1],
-            key[0],
+            own[0].direction,
+            own[0].state,
             max(highest, 1.02 * float(frequency.max())),
-            np.array([DOUBTFUL_PEAK_RATE if _doubtful(m) else FALSE_PEAK_RATE for m in own]),
+            np.array([_false_rate(m) for m in own]),
+            model_error=RUNNING_MODEL_ERROR if running else MODEL_ERROR,
+            shown=RUNNING_DETECTION if running else 1.0,
+            weight=weight if running else 1.0,
         )
         groups.append(Group(tuple(own), peaks))
     return tuple(groups)
+
+
+def _group_key(mode: MeasuredMode) -> tuple[str, str | None, float | None, bool]:
+    return mode.state, mode.direction, mode.at_m, mode.source == RUNNING
+
+
+def running_weight(modes: Sequence[MeasuredMode]) -> float:
+    """Weight of peaks found while running: all of them together stay below those of taps."""
+    running = sum(m.source == RUNNING for m in modes)
+    firm = len(modes) - running
+    return min(1.0, RUNNING_SHARE * firm / running) if firm and running else 1.0
+
+
+def _false_rate(mode: MeasuredMode) -> float:
+    """How often such a peak belongs to no mode of the span."""
+    usual = RUNNING_FALSE_RATE if mode.source == RUNNING else FALSE_PEAK_RATE
+    return max(usual, DOUBTFUL_PEAK_RATE) if _doubtful(mode) else usual
 
 
 def _doubtful(mode: MeasuredMode) -> bool:
@@ -158,15 +187,17 @@ class _Reading:
 
 
 def _require_plausible(reading: _Reading) -> None:
-    """Refuse when most peaks belong to no computed mode for any member."""
+    """Refuse when most peaks belong to no computed mode for any member; taps decide, where any."""
+    firm = [n for n, group in enumerate(reading.groups) if group.modes[0].source != RUNNING]
+    numbers = firm or list(range(len(reading.groups)))
     explained = [
         float(share)
-        for number in range(len(reading.groups))
+        for number in numbers
         for share in reading.belonging(number).sum(axis=2).mean(axis=0)
     ]
     if sum(share >= BELONGS for share in explained) >= max(1, (len(explained) + 1) // 2):
         return
-    peaks = [m.frequency_hz for group in reading.groups for m in group.modes]
+    peaks = [m.frequency_hz for number in numbers for m in reading.groups[number].modes]
     lost = [f"{f:.1f}" for f, share in zip(peaks, explained, strict=True) if share < BELONGS]
     raise Refusal(
         "no plausible model of this span explains the measured frequencies "
@@ -324,7 +355,13 @@ def _warnings(
         f"the peak at {mode.frequency_hz:.2f} Hz belongs to no computed mode: another line, a "
         "loose part, the wall itself or the contents may ring there; check before relying on it"
         for mode in unpaired
+        if mode.source != RUNNING
     ]
+    if pairs and all(pair.measured.source == RUNNING for pair in pairs):
+        found.append(
+            "nothing was tapped: the match rests on running vibration alone, whose peaks may "
+            "belong to a neighbour or to the flow; tap the pipe before anything is built on it"
+        )
     if len(pairs) == 1:
         found.append(
             "one measured mode fixes one unknown only; a second one, best in the other direction, "

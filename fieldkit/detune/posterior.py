@@ -10,6 +10,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -102,7 +103,7 @@ def alignments(
         count = counts[seen.model]
         frequency = modes[seen.model].frequency_hz[:, :count]
         share = seen_share(seen, modes[seen.model], count)
-        detected = detection(share, frequency, seen.peaks.highest_hz)
+        detected = detection(share, frequency, seen.peaks.highest_hz, seen.peaks.shown)
         found.append(align(seen.peaks, frequency, detected, widening=widening))
     return found, modes, counts
 
@@ -110,7 +111,13 @@ def alignments(
 def log_likelihood(problem: Problem, z: Array) -> Array:
     """(members,) log-likelihood of all peaks."""
     found, _, _ = alignments(problem, z)
-    return np.asarray(np.sum([a.log_likelihood for a in found], axis=0))
+    return weighted(problem, found)
+
+
+def weighted(problem: Problem, found: Sequence[Alignment]) -> Array:
+    """(members,) log-likelihood of all groups of peaks, each with its weight."""
+    each = [s.peaks.weight * a.log_likelihood for s, a in zip(problem.seen, found, strict=True)]
+    return np.asarray(np.sum(each, axis=0))
 
 
 def sample(problem: Problem, rng: np.random.Generator, progress: Progress) -> Population:
@@ -191,14 +198,14 @@ def _expected(problem: Problem, z: Array, widening: float) -> tuple[Array, Array
     for seen, alignment in zip(problem.seen, found, strict=True):
         slope = slopes[seen.model]
         frequency = modes[seen.model].frequency_hz[:, : counts[seen.model]]
-        precision = alignment.responsibility / peak_variance(seen.peaks, frequency, widening)
+        share = seen.peaks.weight * alignment.responsibility
+        precision = share / peak_variance(seen.peaks, frequency, widening)
         misfit = seen.peaks.frequency_hz[None, :, None] - frequency[:, None, :]
         pull = np.sum(precision * misfit, axis=1)
         weight = np.sum(precision, axis=1)
         gradient += (slope @ pull[:, :, None])[:, :, 0]
         curvature += (slope * weight[:, None, :]) @ np.swapaxes(slope, 1, 2)
-    total = np.sum([a.log_likelihood for a in found], axis=0)
-    return gradient, curvature, np.asarray(total)
+    return gradient, curvature, weighted(problem, found)
 
 
 def _mixture(optima: _Optima) -> _Mixture:
