@@ -22,6 +22,8 @@ Rate = Annotated[
     typer.Option("--rate", help="Sampling rate in Hz of text files without a time column."),
 ]
 
+UpTo = Annotated[float, typer.Option(help="Highest frequency modes are looked for, Hz.", min=5.0)]
+
 
 class _OpensJobs(TyperGroup):
     """A first word that is no command is a job file to open."""
@@ -108,7 +110,7 @@ def peaks(
     as_json: AsJson = False,
     channel: Channel = 1,
     rate: Rate = None,
-    up_to: Annotated[float, typer.Option(help="Highest frequency looked at, Hz.", min=5.0)] = 200.0,
+    up_to: UpTo = 200.0,
     response: Annotated[
         Path | None,
         typer.Option(
@@ -154,8 +156,9 @@ def running(
     as_json: AsJson = False,
     channel: Channel = 1,
     rate: Rate = None,
+    up_to: UpTo = 200.0,
 ) -> None:
-    """Read the lines and the overall level of running recordings."""
+    """Read the lines, the level and the natural frequencies of running recordings."""
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
@@ -166,7 +169,8 @@ def running(
             if job
             else [workup.entry_for(path, "running", channel, rate) for path in files]
         )
-        readings = tuple(workup.read_running_entry(entry) for entry in entries)
+        highest_hz = job.goal.up_to_hz if job else up_to
+        readings = tuple(workup.read_running_entry(entry, highest_hz) for entry in entries)
         output.answer(
             documents.running(readings, job), tables.running(readings, job), as_json=as_json
         )
@@ -203,7 +207,7 @@ def match(job_file: JobFile, as_json: AsJson = False) -> None:
 
         progress = output.progress()
         job = _load(job_file)
-        _, evidence = workup.gather(job, progress)
+        evidence = workup.measured(job, progress)
         states = workup.state_modes(job, progress)
         found = workup.matching(job, evidence, states, progress)
         output.clear_progress()

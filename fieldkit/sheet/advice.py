@@ -103,18 +103,22 @@ def _cure(workup: Workup) -> list[str]:
 
 def _evidence(workup: Workup) -> list[str]:
     said: list[str] = []
-    measured = workup.evidence.modes
+    measured, running = workup.evidence.firm, workup.evidence.running
     usable = sum(len(reading.records) for reading in workup.taps)
     if measured:
         listed = ", ".join(f"{mode.frequency_hz:.2f}" for mode in measured)
         said += paragraph(f"Measured: {listed} Hz, from {usable} usable taps.", 2)
     else:
-        said += _reasons(workup, "tap", "nothing was measured")
+        said += _reasons(workup, "tap", "nothing was tapped" if running else "nothing was measured")
+    if running:
+        seen = ", ".join(f"{mode.frequency_hz:.2f}" for mode in running)
+        said += paragraph(f"Seen running: {seen} Hz; {tables.RUNNING_CAUTION}.", 2)
     if workup.match is not None:
         learnt = [p.name for p in workup.match.parameters if p.informed]
+        source = "tap" if measured else "running record"
         said += paragraph(
-            f"Matched: {len(workup.match.pairs)} of {len(measured)} measured modes; the tap "
-            f"informed {', '.join(learnt) if learnt else 'none of the unknowns'}.",
+            f"Matched: {len(workup.match.pairs)} of {len(workup.evidence.modes)} measured modes; "
+            f"the {source} informed {', '.join(learnt) if learnt else 'none of the unknowns'}.",
             2,
         )
         said += paragraph(f"Next: {workup.match.next_measurement}.", 2)

@@ -9,7 +9,7 @@ from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.matched import Match, Pair, ParameterReading
 from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.job.document import Job
-from fieldkit.signal.modes import MeasuredMode
+from fieldkit.signal.modes import MeasuredMode, RefusedMode
 from fieldkit.signal.taps import Tap
 from fieldkit.span.static import WeightAnswer
 from fieldkit.workup import RunningReading, StateModes, TapReading, excitation_of
@@ -37,20 +37,23 @@ def peaks(
             {"frequency_hz": tone.frequency_hz, "strength": tone.strength}
             for tone in evidence.tones
         ],
-        "refused_modes": [
-            {"frequency_hz": refused.frequency_hz, "reason": refused.reason}
-            for refused in evidence.refused
-        ],
+        "refused_modes": [_refused_mode(peak) for peak in evidence.refused],
         "warnings": [*evidence.warnings, *_notes(readings)],
     }
 
 
 def running(readings: Sequence[RunningReading], job: Job | None) -> Document:
-    """Recordings with their overall level and lines, each with the order it sits on."""
+    """Recordings with level, lines and the order each sits on, and the modes of all of them."""
+    found = [reading.modes for reading in readings if reading.modes]
+    modes = sorted((m for f in found for m in f.modes), key=lambda mode: mode.frequency_hz)
+    lost = sorted((r for f in found for r in f.refused), key=lambda peak: peak.frequency_hz)
     return {
         "recordings": [_running_recording(reading, job) for reading in readings],
+        "modes": [_measured(mode) for mode in modes],
+        "refused_modes": [_refused_mode(peak) for peak in lost],
         "warnings": [
             *(f"{r.file}: {text}" for r in readings for text in r.picture.warnings),
+            *(f"{r.file}: {text}" for r in readings if r.modes for text in r.modes.warnings),
             *_notes(readings),
         ],
     }
@@ -136,7 +139,12 @@ def _measured(mode: MeasuredMode) -> Document:
         "state": mode.state,
         "taps": mode.taps,
         "strength": mode.strength,
+        "source": mode.source,
     }
+
+
+def _refused_mode(peak: RefusedMode) -> Document:
+    return {"frequency_hz": peak.frequency_hz, "reason": peak.reason}
 
 
 def _running_recording(reading: RunningReading, job: Job | None) -> Document:
@@ -164,6 +172,7 @@ def _running_recording(reading: RunningReading, job: Job | None) -> Document:
             }
             for line in picture.lines
         ],
+        "no_modes": reading.no_modes or None,
     }
 
 

@@ -10,7 +10,7 @@ from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.job.document import Job
 from fieldkit.quantity import show
 from fieldkit.sheet.plain import clean, paragraph, percent, table, with_doubt
-from fieldkit.signal.modes import MeasuredMode
+from fieldkit.signal.modes import MeasuredMode, RefusedMode
 from fieldkit.span.static import WeightAnswer
 from fieldkit.workup import RunningReading, StateModes, TapReading, excitation_of
 
@@ -30,13 +30,7 @@ def peaks(readings: Sequence[TapReading], evidence: Evidence) -> list[str]:
     if evidence.tones:
         tones = ", ".join(f"{tone.frequency_hz:.2f} Hz" for tone in evidence.tones)
         lines += ["", *paragraph(f"Steady tones, not modes: {tones}", 0)]
-    if evidence.refused:
-        lines += ["", "Not accepted as modes"]
-        lines += [
-            line
-            for refused in evidence.refused
-            for line in paragraph(f"{refused.frequency_hz:.2f} Hz: {refused.reason}", 2, "- ")
-        ]
+    lines += _not_accepted(evidence.refused)
     return lines + warnings(evidence.warnings)
 
 
@@ -64,10 +58,49 @@ def running(readings: Sequence[RunningReading], job: Job | None) -> list[str]:
                     for line in picture.lines
                 ],
             ),
-            *warnings((*reading.notes, *picture.warnings)),
+            *_running_modes(reading),
+            *warnings((*reading.notes, *picture.warnings, *_remarks(reading))),
             "",
         ]
     return lines[:-1] if lines else ["No running recording."]
+
+
+RUNNING_CAUTION = "weaker evidence than a tap: nobody knows the forces that stir them"
+
+
+def _running_modes(reading: RunningReading) -> list[str]:
+    """Natural frequencies in a running recording, or why there are none."""
+    found = reading.modes
+    if found is None or not found.modes:
+        return ["", *paragraph(f"No natural frequencies from it: {reading.no_modes}", 0)]
+    return [
+        "",
+        *paragraph(f"Natural frequencies seen running; {RUNNING_CAUTION}", 0),
+        *table(
+            ("Hz", "± Hz", "damping %", "± %", "strength"),
+            [
+                (
+                    *with_doubt(mode.frequency_hz, mode.frequency_sd_hz),
+                    *_damping(mode),
+                    f"{mode.strength:.2f}",
+                )
+                for mode in found.modes
+            ],
+        ),
+        *_not_accepted(found.refused),
+    ]
+
+
+def _remarks(reading: RunningReading) -> tuple[str, ...]:
+    return reading.modes.warnings if reading.modes else ()
+
+
+def _not_accepted(refused: Sequence[RefusedMode]) -> list[str]:
+    """Peaks that are no modes, each with its reason."""
+    if not refused:
+        return []
+    said = [f"{peak.frequency_hz:.2f} Hz: {peak.reason}" for peak in refused]
+    return ["", "Not accepted as modes", *(p for t in said for p in paragraph(t, 2, "- "))]
 
 
 def _as_velocity(rms_m_per_s: float | None, job: Job | None) -> str:
@@ -112,7 +145,7 @@ def match(found: Match, units: str) -> list[str]:
             (
                 str(pair.mode),
                 pair.direction,
-                f"{pair.measured.frequency_hz:.2f}",
+                f"{pair.measured.frequency_hz:.2f}{_seen_running(pair.measured)}",
                 f"{pair.model_hz:.2f}",
                 f"{pair.low_hz:.2f} to {pair.high_hz:.2f}",
                 f"{pair.prior_hz:.2f}",
@@ -139,6 +172,10 @@ def match(found: Match, units: str) -> list[str]:
     )
     lines += ["", *paragraph(f"Next: {found.next_measurement}.", 0)]
     return lines + warnings(found.warnings)
+
+
+def _seen_running(mode: MeasuredMode) -> str:
+    return " running" if mode.source == "running" else ""
 
 
 def detune(found: Detuning, units: str) -> list[str]:
@@ -212,7 +249,7 @@ def _modes_table(modes: Sequence[MeasuredMode]) -> list[str]:
                     *_damping(mode),
                     mode.direction or "unknown",
                     mode.state,
-                    str(mode.taps) if mode.taps else "typed",
+                    str(mode.taps) if mode.taps else mode.source,
                     f"{mode.strength:.2f}",
                 )
                 for mode in modes

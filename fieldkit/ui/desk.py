@@ -165,7 +165,7 @@ def _answered(step: str, desk: Desk) -> bool:
     if desk.workup is None:
         return False
     done = {
-        "tap": bool(desk.workup.evidence.modes),
+        "tap": bool(desk.workup.evidence.firm),
         "running": bool(desk.workup.running),
         "match": desk.workup.match is not None,
         "detune": desk.workup.detuning is not None,

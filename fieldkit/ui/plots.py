@@ -70,7 +70,7 @@ def tap_marks(desk: Desk) -> tuple[Mark, ...]:
     evidence = desk.workup.evidence
     tones = tuple(Mark(tone.frequency_hz, "tone", "tone") for tone in evidence.tones)
     refused = tuple(Mark(peak.frequency_hz, "", "refused") for peak in evidence.refused)
-    return (*mode_marks(evidence.modes), *tones, *refused)
+    return (*mode_marks(evidence.firm), *tones, *refused)
 
 
 def running_marks(lines: Iterable[RunningLine], desk: Desk) -> tuple[Mark, ...]:

@@ -66,7 +66,7 @@ def _tap(desk: Desk) -> Reading:
             "Nothing tapped yet: frequencies below come from the description alone",
             next="record four or more soft taps, then name the file with a",
         )
-    modes = desk.workup.evidence.modes if desk.workup else ()
+    modes = desk.workup.evidence.firm if desk.workup else ()
     if not modes:
         return waiting(
             desk,

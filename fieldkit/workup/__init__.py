@@ -8,10 +8,11 @@ from fieldkit.workup.chain import (
     detuning,
     gather,
     matching,
+    measured,
     run,
     state_modes,
 )
-from fieldkit.workup.evidence import evidence_from
+from fieldkit.workup.evidence import evidence_from, with_running_modes
 from fieldkit.workup.readings import (
     RunningReading,
     TapReading,
@@ -40,6 +41,7 @@ __all__ = [
     "excitation_of",
     "gather",
     "matching",
+    "measured",
     "read_running_entry",
     "read_tap",
     "response_notes",
@@ -48,4 +50,5 @@ __all__ = [
     "running_readings",
     "state_modes",
     "tap_readings",
+    "with_running_modes",
 ]

@@ -18,7 +18,7 @@ from fieldkit.span.handbook import HandbookEstimate, estimate
 from fieldkit.span.layout import Span, State
 from fieldkit.span.modes import Mode, free_directions, span_modes
 from fieldkit.span.static import WeightAnswer, weight_answer
-from fieldkit.workup.evidence import evidence_from
+from fieldkit.workup.evidence import evidence_from, with_running_modes
 from fieldkit.workup.readings import RunningReading, TapReading, running_readings, tap_readings
 
 
@@ -96,7 +96,8 @@ def _with_taps(work: Workup, progress: Progress) -> Workup:
 
 
 def _with_running(work: Workup, progress: Progress) -> Workup:
-    return replace(work, running=running_readings(work.job, progress))
+    running = running_readings(work.job, progress)
+    return replace(work, running=running, evidence=with_running_modes(work.evidence, running))
 
 
 def _with_states(work: Workup, progress: Progress) -> Workup:
@@ -125,6 +126,26 @@ def gather(job: Job, progress: Progress) -> tuple[tuple[TapReading, ...], Eviden
     """All tap recordings of a job, and the measured modes in them and typed by hand."""
     readings = tap_readings(job.recordings_of("tap"), progress)
     return readings, evidence_from(readings, job, progress)
+
+
+def measured(job: Job, progress: Progress) -> Evidence:
+    """Everything measured on a job: taps, typed peaks, and what running recordings add.
+
+    A running recording that cannot be read is left out and named in the warnings. Raises Refusal
+    where taps cannot be used and nothing else was measured.
+    """
+    try:
+        evidence, refusal = gather(job, progress)[1], None
+    except Refusal as error:
+        evidence, refusal = Evidence(job.measured), error
+    try:
+        evidence = with_running_modes(evidence, running_readings(job, progress))
+    except (Refusal, InputError) as error:
+        left_out = f"a running recording was left out: {error}"
+        evidence = replace(evidence, warnings=(*evidence.warnings, left_out))
+    if refusal is not None and not evidence.modes:
+        raise refusal
+    return evidence
 
 
 def state_modes(job: Job, progress: Progress) -> tuple[StateModes, ...]:
@@ -164,11 +185,12 @@ def matching(
 def detuning(job: Job, evidence: Evidence, matched: Match | None, progress: Progress) -> Detuning:
     """Ranked changes; InputError where the job names no excitation.
 
-    Without any measured mode the ranking rests on the prior and says so; a measurement that the
-    model cannot explain is a Refusal, since no promise can be built on either of them.
+    Without any tapped or typed mode that the model explains the ranking rests on the prior and
+    says so; a tap that the model cannot explain is a Refusal, since no promise can be built on
+    either of them.
     """
     require_excitation(job)
-    if matched is None and evidence.modes:
+    if matched is None and evidence.firm:
         raise Refusal(
             "no change can be promised while the model does not explain the measurement",
             "settle the match first",

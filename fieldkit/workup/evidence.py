@@ -11,16 +11,12 @@ from fieldkit.errors import Refusal
 from fieldkit.job.document import Job
 from fieldkit.progress import Progress
 from fieldkit.signal.modes import MeasuredMode, ModeEstimate, Tone, estimate_modes
-from fieldkit.workup.readings import TapReading
-
-LEAST_HZ = 2.0
-
-NYQUIST_SHARE = 0.4
-"""Highest frequency analysed, as a share of the sampling rate."""
+from fieldkit.workup.limits import LEAST_HZ, NYQUIST_SHARE, UP_TO_HZ
+from fieldkit.workup.readings import RunningReading, TapReading
 
 
 def evidence_from(
-    readings: Sequence[TapReading], job: Job | None, progress: Progress, up_to_hz: float = 200.0
+    readings: Sequence[TapReading], job: Job | None, progress: Progress, up_to_hz: float = UP_TO_HZ
 ) -> Evidence:
     """Measured modes of all usable taps, direction by direction, and the typed ones.
 
@@ -87,6 +83,16 @@ def _combined(
         ),
         warnings=tuple(dict.fromkeys(w for _, found in estimates for w in found.warnings)),
     )
+
+
+def with_running_modes(evidence: Evidence, readings: Sequence[RunningReading]) -> Evidence:
+    """The evidence with the modes of running recordings, each marked with source and state.
+
+    Tones, refused peaks and warnings stay those of the taps: the readings keep their own.
+    """
+    running = [mode for reading in readings if reading.modes for mode in reading.modes.modes]
+    together = (*evidence.modes, *running)
+    return replace(evidence, modes=tuple(sorted(together, key=lambda mode: mode.frequency_hz)))
 
 
 def _merged_tones(tones: Sequence[Tone]) -> tuple[Tone, ...]:

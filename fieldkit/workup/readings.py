@@ -13,13 +13,15 @@ from fieldkit.detune.excitation import Excitation, bands, excitation_band
 from fieldkit.errors import InputError
 from fieldkit.job.document import Job, RecordingEntry
 from fieldkit.progress import Progress
-from fieldkit.signal.modes import TapRecord
+from fieldkit.signal.modes import ModeEstimate, TapRecord
 from fieldkit.signal.recording import Recording, channel_signal, load
 from fieldkit.signal.running import RunningPicture, read_running
 from fieldkit.signal.spectrum import Spectrum, tap_spectrum
 from fieldkit.signal.taps import TapSearch, cut, find_taps, longest_whole
 from fieldkit.workup.beside import beside, described
 from fieldkit.workup.hammer import HammerReading, with_hammer
+from fieldkit.workup.limits import UP_TO_HZ
+from fieldkit.workup.running_modes import running_modes
 
 
 @dataclass(frozen=True)
@@ -52,6 +54,10 @@ class RunningReading:
     picture: RunningPicture
     entry: RecordingEntry
     notes: tuple[str, ...] = ()
+    modes: ModeEstimate | None = None
+    """Modes that random forces keep stirring; None where the record cannot tell."""
+    no_modes: str = ""
+    """Why no mode was found."""
 
 
 def tap_readings(entries: Sequence[RecordingEntry], progress: Progress) -> tuple[TapReading, ...]:
@@ -99,12 +105,12 @@ def running_readings(job: Job, progress: Progress) -> tuple[RunningReading, ...]
     found = []
     for i, entry in enumerate(entries):
         progress.step(f"reading {entry.path.name}", i / len(entries))
-        found.append(read_running_entry(entry))
+        found.append(read_running_entry(entry, job.goal.up_to_hz))
     return tuple(found)
 
 
-def read_running_entry(entry: RecordingEntry) -> RunningReading:
-    """One running recording: its lines and its level."""
+def read_running_entry(entry: RecordingEntry, up_to_hz: float = UP_TO_HZ) -> RunningReading:
+    """One running recording: its lines, its level, and the modes up to a frequency."""
     recording, signal = _channel(entry)
     quantity, scale = _meaning(entry, recording)
     known = beside(entry.path, recording)
@@ -116,6 +122,9 @@ def read_running_entry(entry: RecordingEntry) -> RunningReading:
         scale=scale,
         full_scale=recording.full_scale,
     )
+    modes, no_modes = running_modes(
+        signal[first:end], recording.rate_hz, picture.lines, entry, up_to_hz
+    )
     return RunningReading(
         entry.path.name,
         recording.rate_hz,
@@ -124,6 +133,8 @@ def read_running_entry(entry: RecordingEntry) -> RunningReading:
         picture,
         entry,
         (*recording.notes, *known.notes, *_shortened(first, end, recording)),
+        modes,
+        no_modes,
     )
 
 

@@ -86,7 +86,7 @@ class TapView(View):
     def draw(self) -> None:
         """Tables first: the cursor in them says what the plots show."""
         found = self.desk.workup
-        self.table("#modes").fill(_mode_rows(found.evidence.modes) if found else [])
+        self.table("#modes").fill(_mode_rows(found.evidence.firm) if found else [])
         self.table("#blows").fill(_blow_rows(found.taps) if found else [])
         self._draw_plots()
 
