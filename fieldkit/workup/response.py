@@ -91,8 +91,8 @@ def point_of(reading: TapReading) -> str:
 def modes_of(reading: TapReading, evidence: Evidence) -> list[MeasuredMode]:
     """The modes that the taps of this direction, sensor and state gave."""
     entry = reading.entry
-    here = entry.state, entry.direction, entry.at_m
-    return [m for m in evidence.modes if m.taps and (m.state, m.direction, m.at_m) == here]
+    here = "tap", entry.state, entry.direction, entry.at_m
+    return [m for m in evidence.modes if (m.source, m.state, m.direction, m.at_m) == here]
 
 
 def fitted_to(

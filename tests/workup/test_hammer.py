@@ -219,6 +219,22 @@ def test_a_slow_rate_is_told(tmp_path: Path) -> None:
     assert "samples only, too few to read the force well" in told(found)
 
 
+def test_only_modes_of_its_own_taps_are_fitted(reading: TapReading) -> None:
+    """Not what was typed in, heard while running, or tapped elsewhere."""
+    evidence = evidence_from([reading], None, Progress())
+    strangers = [
+        replace(evidence.modes[0], frequency_hz=30.0, **changes)
+        for changes in (
+            {"source": "typed"}, {"source": "running"}, {"direction": "lateral"}, {"at_m": 0.5},
+        )
+    ]  # fmt: skip
+    more = replace(evidence, modes=(*evidence.modes, *strangers))
+    found = response_reading(reading, more, 200.0)
+    assert found is not None
+    assert found.fitted is not None
+    assert [round(mode.frequency_hz, 1) for mode in found.fitted.modes] == [18.3, 55.0]
+
+
 def test_another_quantity_gives_the_same_masses(clean: Path) -> None:
     """What is said of the sensor decides the response's name and unit."""
     spoken = entry(clean, quantity="velocity", scale=SENSOR)
