@@ -191,7 +191,7 @@ def end_portaudio() -> None:
 @contextmanager
 def jack_bench() -> Iterator[dict[str, str]]:
     """The environment of a JACK server with a dummy driver, ended whatever happens."""
-    require("jackd", "jack_lsp" if shutil.which("jack_lsp") else "jackd", "setpriv")
+    require("jackd", "setpriv")
     name = f"rig{os.getpid()}"
     environment = {
         "JACK_DEFAULT_SERVER": name,

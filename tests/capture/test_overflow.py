@@ -10,14 +10,17 @@ import sys
 from tests.capture.rig import GENEROUS_S, RATE_HZ, jack_bench, until
 
 STALL_S = 0.3
+STALLED = (200, 400, 600)
 LISTENER = """
 import json, sys, threading, time
+from fieldkit.capture.clock import now_s
 from fieldkit.capture.devices import find_input, list_inputs
 from fieldkit.capture.portaudio import PortAudioSource
 
-blocks, done = [], threading.Event()
+blocks, at_s, done = [], [], threading.Event()
 
 def deliver(block):
+    at_s.append(now_s())
     blocks.append(block)
     if len(blocks) in (200, 400, 600):
         time.sleep(float(sys.argv[1]))
@@ -31,11 +34,9 @@ source = PortAudioSource(
 source.start(deliver, lambda end: print(end, file=sys.stderr))
 assert done.wait(60)
 source.stop()
-first_lost = [
-    (i, block.first_frame, block.lost_frames, block.cause)
-    for i, block in enumerate(blocks) if block.lost_frames != 0
-]
-print(json.dumps(first_lost))
+print(json.dumps([
+    (at, len(block.samples), block.lost_frames, block.cause) for at, block in zip(at_s, blocks)
+]))
 """
 ALSA = """
 pcm.rig {
@@ -47,16 +48,26 @@ pcm.default "rig"
 """
 
 
-def test_every_overflow_is_flagged_with_about_what_was_lost(tmp_path):
+def test_every_overflow_is_flagged_and_nothing_is_lost_untold(tmp_path):
     (tmp_path / "asound.conf").write_text(ALSA)
     with jack_bench() as environment:
         ran = until(lambda: listened(environment | {"ALSA_CONFIG_PATH": f"{tmp_path}/asound.conf"}))
-    lost = json.loads(ran)
-    by_block = {index: (frames, cause) for index, _, frames, cause in lost}
-    for stalled in (200, 400, 600):
-        frames, cause = by_block[stalled]
+    blocks = json.loads(ran)
+    for stalled in STALLED:
+        _, _, lost, cause = blocks[stalled]
         assert cause == "the input overflowed"
-        assert 0.5 * STALL_S * RATE_HZ < frames < 1.5 * STALL_S * RATE_HZ
+        assert lost > 0.5 * STALL_S * RATE_HZ
+    before, after = lag_s(blocks, 50, STALLED[0]), lag_s(blocks, STALLED[-1], len(blocks))
+    assert abs(after - before) < 0.1
+
+
+def lag_s(blocks, first, end):
+    """The least that the frames, those told as lost among them, are behind the clock."""
+    began_s, accounted, lags_s = blocks[0][0], 0, []
+    for at_s, frames, lost, _ in blocks:
+        accounted += frames + (lost or 0)
+        lags_s.append(at_s - began_s - accounted / RATE_HZ)
+    return min(lags_s[first:end])
 
 
 def listened(environment):
