@@ -334,7 +334,12 @@ KINDS: dict[str, Kind] = {
 }
 
 
+def scene_of(kind: str, seed: int) -> tuple[Scene, Rng]:
+    """What a recording of this kind and seed is made from, and where its noise comes from."""
+    rng = np.random.default_rng([crc32(kind.encode()), seed])
+    return KINDS[kind](rng), rng
+
+
 def recording(kind: str, seed: int) -> Simulated:
     """The recording of this kind and seed, always the same."""
-    rng = np.random.default_rng([crc32(kind.encode()), seed])
-    return simulate(KINDS[kind](rng), rng)
+    return simulate(*scene_of(kind, seed))
