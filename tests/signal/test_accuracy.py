@@ -11,6 +11,8 @@ from tests.bench.accuracy.kinds import KINDS, scene_of
 from tests.bench.accuracy.tally import Tally
 from tests.bench.accuracy.trial import Plan, run
 
+pytestmark = pytest.mark.timeout(1200)
+
 WAY = "samples alone"
 MOST_SAMPLES = 90_000
 EACH = 2
