@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 from fieldkit.detune.excitation import excitation_band
 from fieldkit.ui.units import AMPLITUDES
 from fieldkit.ui.widgets import BandShade, Curve, Mark, TapMark
-from fieldkit.ui.words import safe
+from fieldkit.ui.words import DASH, plus_minus, safe
 
 if TYPE_CHECKING:
     from fieldkit.signal.modes import MeasuredMode
@@ -20,6 +20,8 @@ if TYPE_CHECKING:
 SHORT = {"vertical": "vert", "lateral": "lat", "axial": "ax", "vertical+lateral": "v+l"}
 """Directions where there is little room."""
 MOST_MARKS = 8
+SAME = 0.02
+"""A computed mode this near to one that was seen needs no mark of its own."""
 
 
 def shaded(desk: Desk) -> tuple[BandShade, ...]:
@@ -73,9 +75,22 @@ def tap_marks(desk: Desk) -> tuple[Mark, ...]:
     return (*mode_marks(evidence.firm), *tones, *refused)
 
 
-def running_marks(lines: Iterable[RunningLine], desk: Desk) -> tuple[Mark, ...]:
-    """The strongest lines with their order, and the modes beside them."""
+def running_marks(
+    lines: Iterable[RunningLine], seen: Iterable[MeasuredMode], desk: Desk
+) -> tuple[Mark, ...]:
+    """The strongest lines with their order, the modes seen, and the computed ones beside them."""
     strongest = sorted(lines, key=lambda line: -line.rms)[:MOST_MARKS]
     orders = [(line, excitation_band(line.frequency_hz, desk.bands)) for line in strongest]
     marks = tuple(Mark(line.frequency_hz, o.name if o else "", "tone") for line, o in orders)
-    return (*marks, *(Mark(hz, "mode", "mode") for hz in desk.mode_hz))
+    found = tuple(Mark(mode.frequency_hz, "seen", "mode") for mode in seen)
+    others = [hz for hz in desk.mode_hz if all(abs(hz / m.frequency_hz - 1) > SAME for m in found)]
+    return (*marks, *found, *(Mark(hz, "mode", "mode") for hz in others))
+
+
+def mode_cells(mode: MeasuredMode) -> tuple[str, str]:
+    """Frequency and damping of a measured mode with their doubt."""
+    frequency = plus_minus(mode.frequency_hz, mode.frequency_sd_hz)
+    if mode.damping_ratio is None:
+        return frequency, DASH
+    doubt = 100 * (mode.damping_sd or 0.0)
+    return frequency, plus_minus(100 * mode.damping_ratio, doubt, most=2)

@@ -1,4 +1,4 @@
-"""Running: which lines shake the pipe, on which order of which machine, and which mode is near."""
+"""Running: which lines shake the pipe, on which order of which machine, and which modes answer."""
 
 from __future__ import annotations
 
@@ -6,11 +6,13 @@ from typing import TYPE_CHECKING, ClassVar
 
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
+from textual.containers import Horizontal
 from textual.widgets import DataTable
 
 from fieldkit.detune.excitation import excitation_band
+from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.messages import AddWanted, EditWanted
-from fieldkit.ui.plots import running_marks, shaded, spectrum_curve, unit_of
+from fieldkit.ui.plots import mode_cells, running_marks, shaded, spectrum_curve, unit_of
 from fieldkit.ui.readings import nearest_mode
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import level
@@ -19,6 +21,7 @@ from fieldkit.ui.widgets import SpectrumPlot
 from fieldkit.ui.words import DASH, hertz, ratio_percent, seconds, sentence
 
 if TYPE_CHECKING:
+    from fieldkit.signal.modes import MeasuredMode
     from fieldkit.signal.running import RunningPicture
     from fieldkit.workup import RunningReading
 
@@ -27,7 +30,7 @@ NO_RECORDING = "No running recording yet: press a to name one"
 
 
 class RunningView(View):
-    """Spectrum above, its lines below, levels beside."""
+    """Spectrum above; levels, lines and the modes seen in them below."""
 
     NAME = "running"
     HOME = "#lines"
@@ -36,6 +39,8 @@ class RunningView(View):
         Binding("e", "edit", "Edit", id="running.edit", tooltip="Change the recording on screen"),
         Binding("v", "next", "Next recording", show=False, id="running.next",
                 tooltip="Show the next running recording"),
+        Binding("x", "refused", "Refused", show=False, id="running.refused",
+                tooltip="Peaks that were not accepted as modes, with reasons"),
     ]  # fmt: skip
 
     def __init__(self) -> None:
@@ -47,7 +52,9 @@ class RunningView(View):
         """Plot, text, table."""
         yield SpectrumPlot(id="running-spectrum", classes="plot")
         yield plain("running-text")
-        yield Table("Hz", "RMS", "order", "nearest mode", "apart", id="lines")
+        with Horizontal(classes="lower"):
+            yield Table("Hz", "RMS", "order", "nearest mode", "apart", id="lines")
+            yield Table("mode seen, Hz", "damping %", id="seen")
 
     @property
     def reading(self) -> RunningReading | None:
@@ -63,13 +70,22 @@ class RunningView(View):
         plot.empty_sentence = self._missing
         plot.show(
             (spectrum_curve(spectrum, found.file),) if found and spectrum else (),
-            running_marks(found.picture.lines, self.desk) if found else (),
+            running_marks(found.picture.lines, self._seen, self.desk) if found else (),
             shaded(self.desk),
             amplitude_unit=unit_of(spectrum),
             up_to_hz=self.desk.up_to_hz,
         )
         self.table("#lines").fill(self._rows(found) if found else [])
+        seen = self.table("#seen")
+        seen.display = bool(self._seen)
+        seen.fill([(str(i), mode_cells(mode)) for i, mode in enumerate(self._seen)])
         self.write("#running-text", "\n".join(self._words(found)))
+
+    @property
+    def _seen(self) -> tuple[MeasuredMode, ...]:
+        """Natural frequencies found in the recording on screen."""
+        estimate = self.reading.modes if self.reading else None
+        return estimate.modes if estimate else ()
 
     @property
     def _missing(self) -> str:
@@ -109,7 +125,15 @@ class RunningView(View):
             f"{self._as_velocity(picture)}, "
             f"{picture.low_hz:g} to {picture.high_hz:g} Hz"
         )
-        return [heading, *refused, *map(sentence, (*found.notes, *picture.warnings))]
+        notes = (*found.notes, *picture.warnings)
+        modes = self._modes_in_words(found)
+        return [line for line in (heading, *refused, *map(sentence, notes), modes) if line]
+
+    def _modes_in_words(self, found: RunningReading) -> str:
+        """What the second table holds, or why there is none."""
+        if not self._seen:
+            return f"No mode seen: {sentence(found.no_modes)}" if found.no_modes else ""
+        return "Modes seen running are weaker evidence than a tap; what was not accepted: x."
 
     @staticmethod
     def _as_velocity(picture: RunningPicture) -> str:
@@ -134,6 +158,22 @@ class RunningView(View):
         """Show the next recording."""
         self.number += 1
         self.draw()
+
+    def action_refused(self) -> None:
+        """What looked like a mode and is none."""
+        self.app.push_screen(TextScreen("Not accepted as modes", "\n".join(self._refused())))
+
+    def _refused(self) -> list[str]:
+        found = self.reading
+        if found is None or found.modes is None:
+            reason = found.no_modes if found else ""
+            return [sentence(reason or "Nothing has been read yet")]
+        peaks = [f"{p.frequency_hz:8.2f} Hz  {sentence(p.reason)}" for p in found.modes.refused]
+        tones = [
+            f"{t.frequency_hz:8.2f} Hz  A machine line, not a mode." for t in found.modes.tones
+        ]
+        words = [sentence(text) for text in found.modes.warnings]
+        return [*peaks, *tones, *words] or ["Everything was accepted."]
 
     def on_data_table_row_selected(self, _event: DataTable.RowSelected) -> None:
         """Enter on a line does what ``e`` does."""

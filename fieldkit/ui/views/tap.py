@@ -11,11 +11,11 @@ from textual.widgets import DataTable
 
 from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.messages import AddWanted, EditWanted, RemoveWanted, TraceWanted
-from fieldkit.ui.plots import blow_marks, shaded, spectrum_curve, tap_marks, unit_of
+from fieldkit.ui.plots import blow_marks, mode_cells, shaded, spectrum_curve, tap_marks, unit_of
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.views.base import View, plain
 from fieldkit.ui.widgets import SpectrumPlot, TimePlot
-from fieldkit.ui.words import DASH, plus_minus, seconds, sentence
+from fieldkit.ui.words import seconds, sentence
 
 if TYPE_CHECKING:
     from fieldkit.signal.modes import MeasuredMode
@@ -205,12 +205,8 @@ def _mode_rows(modes: tuple[MeasuredMode, ...]) -> list[Row]:
 
 
 def _mode_cells(mode: MeasuredMode) -> tuple[str, ...]:
-    damping = DASH
-    if mode.damping_ratio is not None:
-        damping = plus_minus(100 * mode.damping_ratio, 100 * (mode.damping_sd or 0.0), most=2)
     return (
-        plus_minus(mode.frequency_hz, mode.frequency_sd_hz),
-        damping,
+        *mode_cells(mode),
         mode.direction or "not said",
         str(mode.taps) if mode.taps else "typed",
     )
