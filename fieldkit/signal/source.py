@@ -56,6 +56,8 @@ class RecordingSource:
     stored: Stored
     notes: tuple[str, ...] = ()
     """What was found while opening it, such as a missing end, in words for the user."""
+    begin: int = 0
+    """Which of the stored frames is its first."""
 
     @property
     def duration_s(self) -> float:
@@ -81,6 +83,7 @@ class RecordingSource:
                 first, past = max(first, 0), min(past, self.frames)
                 if past <= first:
                     return np.zeros(0)
+                first, past = self.begin + first, self.begin + past
                 samples = read(first, past)
                 if self.full_scale is None:
                     check_finite(
@@ -89,6 +92,10 @@ class RecordingSource:
                 return samples
 
             yield checked
+
+    def part(self, first: int, past: int) -> RecordingSource:
+        """A stretch of it, to be read as a recording of its own."""
+        return replace(self, begin=self.begin + first, frames=past - first)
 
     def stretch(self, channel: int, first: int, past: int) -> Real:
         """Samples (past - first,) of one channel, cut at the ends of the recording."""
@@ -173,5 +180,6 @@ def as_far_as_readable(
 
 def _cut(source: RecordingSource, frame: int) -> RecordingSource:
     """The source up to a frame, with a note; InputError where too little is left."""
-    note = ended_early(frame / source.rate_hz, source.duration_s, source.path)
-    return replace(source, frames=frame, notes=(*source.notes, note))
+    frames = frame - source.begin
+    note = ended_early(frames / source.rate_hz, source.duration_s, source.path)
+    return replace(source, frames=frames, notes=(*source.notes, note))
