@@ -30,7 +30,7 @@ from fieldkit.capture.snapshot import (
 )
 from fieldkit.capture.source import Block, Samples, Source, SourceEnd
 from fieldkit.capture.writer import RecordingWriter
-from fieldkit.errors import FieldkitError, InputError
+from fieldkit.errors import FieldkitError, InputError, Refusal
 
 KEEP_S = 10.0
 RETRY_EVERY_S = 1.0
@@ -133,8 +133,11 @@ class Session:
         """Record from now on, or from what was kept of the last ``before_s``.
 
         ``seconds`` is its length; without it, it lasts until ``end_recording``. Creates the files
-        at once and raises InputError where they cannot be, or the channels are not the source's.
+        at once and raises InputError where they cannot be, or the channels are not the source's;
+        Refusal where the session has ended.
         """
+        if self._snapshot.state == ENDED:
+            raise Refusal(f"{self._source.name} is closed", "open it again")
         if len(channels) != self._source.channels:
             raise InputError(
                 f"{len(channels)} channel(s) are described, and {self._source.name} delivers "
@@ -167,6 +170,9 @@ class Session:
             except Exception as error:
                 self._end(f"capture failed ({type(error).__name__}: {error})", failed=True)
             self._snapshot = self._published()
+        while (left := self._inbox.take(0.0)) is not None:
+            if callable(left):
+                left()
 
     def _step(self) -> None:
         item = self._inbox.take(_TICK_S)
@@ -285,6 +291,9 @@ class Session:
             self._open()
 
     def _begin(self, writer: RecordingWriter, before_s: float) -> None:
+        if self._state == ENDED:
+            writer.close("the input was closed")
+            return
         self._close_recording("another recording began")
         first, samples = self.latest(before_s)
         self._recording = _Recording(writer, first)

@@ -10,6 +10,10 @@ from fieldkit.errors import InputError, Place
 from fieldkit.quantity import chosen, parse, scale_of
 from fieldkit.signal.recording import DIRECTIONS, QUANTITIES
 
+FORCE = "force"
+"""What the channel of an instrumented hammer measures."""
+CAPTURED = (*QUANTITIES, FORCE)
+
 
 @dataclass(frozen=True)
 class ChannelSetup:
@@ -19,7 +23,7 @@ class ChannelSetup:
     """
 
     quantity: str = "acceleration"
-    """One of QUANTITIES."""
+    """One of CAPTURED."""
     sensitivity: str | None = None
     """Of the sensor, such as ``100 mV/g``."""
     full_scale: str | None = None
@@ -33,7 +37,7 @@ class ChannelSetup:
 
     def __post_init__(self) -> None:
         with _naming("quantity"):
-            chosen(self.quantity, "measured quantity", QUANTITIES)
+            chosen(self.quantity, "measured quantity", CAPTURED)
         if self.direction is not None:
             with _naming("direction"):
                 chosen(self.direction, "direction", DIRECTIONS)

@@ -51,7 +51,6 @@ class RecordingInfo:
     started: str
     """Local date and time with offset from UTC, ISO 8601."""
     simulated: bool = False
-    host_api: str = ""
     gaps: tuple[Gap, ...] = ()
     ended: str = ""
     """Why it ended; empty while it goes on, and after the program was killed."""
@@ -129,7 +128,6 @@ def _info(table: Mapping[str, Any]) -> RecordingInfo:
         channels=tuple(_channel(entry, i) for i, entry in enumerate(table["channel"])),
         started=str(table["started"]),
         simulated=bool(table["simulated"]),
-        host_api=str(table.get("host_api", "")),
         gaps=tuple(_gap(entry) for entry in table.get("gap", ())),
         ended=str(table.get("ended", "")),
         continues=str(table.get("continues", "")),

@@ -6,9 +6,10 @@ from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 
+from fieldkit.capture.setup import FORCE
 from fieldkit.capture.sidecar import Gap, RecordingInfo, read_info, sidecar_path
 from fieldkit.errors import InputError, Place
-from fieldkit.job.document import RecordingEntry
+from fieldkit.job.document import HammerEntry, RecordingEntry
 from fieldkit.signal.recording import Recording
 
 _SHOWN = 3
@@ -37,18 +38,33 @@ def beside(path: Path, recording: Recording) -> Beside:
 
 
 def described(entry: RecordingEntry) -> RecordingEntry:
-    """An entry that no job describes, with the set-up it was recorded with, where that is known."""
-    info = read_info(entry.path)
+    """An entry that no job describes, with the set-up it was recorded with, where that is known.
+
+    Raises InputError where its channel is the hammer's.
+    """
+    path = entry.path
+    info = read_info(path)
     if info is None or not entry.channel <= len(info.channels):
         return entry
     setup = info.channels[entry.channel - 1]
+    hammers = [n for n, channel in enumerate(info.channels, 1) if channel.quantity == FORCE]
+    if entry.channel in hammers:
+        raise InputError(
+            f"channel {entry.channel} is the hammer's", "name a channel with a sensor", Place(path)
+        )
     return replace(
         entry,
+        hammer=_hammer(info, hammers[0]) if hammers and entry.kind == "tap" else None,
         quantity=setup.quantity,
         scale=setup.si_per_unit,
         direction=setup.direction,
         at_m=setup.at_m,
     )
+
+
+def _hammer(info: RecordingInfo, channel: int) -> HammerEntry:
+    setup = info.channels[channel - 1]
+    return HammerEntry(channel, setup.si_per_unit, setup.at_m)
 
 
 def _check_belongs(info: RecordingInfo, path: Path, recording: Recording) -> None:

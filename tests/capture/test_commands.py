@@ -13,8 +13,10 @@ import pytest
 import soundfile
 
 from fieldkit.capture.sidecar import read_info
+from fieldkit.errors import InputError
 from fieldkit.job.schema import load_job
 from fieldkit.job.store import new_job_text
+from fieldkit.workup import entry_for
 from tests.capture.kill_table import played_noise
 from tests.capture.rig import GENEROUS_S, until
 from tests.cli.running import fieldkit
@@ -83,9 +85,27 @@ def test_record_adds_to_a_job_what_it_recorded(bench, job):
     assert first.path.exists()
 
 
+def test_a_hammer_is_recorded_beside_the_sensor(bench, job, tmp_path):
+    words = (
+        "--device", "bench", "--seconds", 0.3, "--quantity", "acceleration", "--quantity", "force",
+        "--sensitivity", "100 mV/g", "--sensitivity", "2.3 mV/N", "--full-scale", "1 V",
+        "--at", "1.9 m", "--at", "2.1 m",
+    )  # fmt: skip
+    assert fieldkit("record", job, *words).status == 0
+    (entry,) = load_job(job).recordings
+    assert (entry.channel, entry.quantity, entry.at_m) == (1, "acceleration", 1.9)
+    assert (entry.hammer.channel, entry.hammer.at_m) == (2, 2.1)
+    assert entry.hammer.scale == pytest.approx(1 / 2.3e-3)
+    alone = entry_for(tmp_path / "tap-1.wav", "tap")
+    assert (alone.hammer, alone.scale) == (entry.hammer, entry.scale)
+    with pytest.raises(InputError, match="channel 2 is the hammer's"):
+        entry_for(tmp_path / "tap-1.wav", "tap", channel=2)
+
+
 @pytest.mark.parametrize(
     ("words", "says"),
     [
+        (("job.toml", "--quantity", "force"), "no channel has a sensor"),
         (("x.flac",), "WAV"),
         (("x.wav", "--kind", "nap"), "not a kind of recording"),
         (("x.wav", "--sensitivity", "3 kg"), "sensitivity"),

@@ -261,11 +261,14 @@ def test_recording_needs_a_description_of_every_channel(tmp_path):
         session.record(tmp_path / "x.wav", ONE)
 
 
-def test_a_session_may_be_stopped_at_any_time():
+def test_a_session_may_be_stopped_at_any_time_and_records_no_more(tmp_path):
     session = Session(MadeSource(iter(lambda: block(10), None)))
     session.start()
     session.stop()
     assert finished(session).state == ENDED
+    with pytest.raises(Refusal, match="made up is closed"):
+        session.record(tmp_path / "x.wav", ONE)
+    assert not list(tmp_path.iterdir())
 
 
 def test_twenty_minutes_are_recorded_with_memory_flat(tmp_path):
