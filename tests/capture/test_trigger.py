@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
 import numpy as np
 import pytest
 from hypothesis import given, settings
@@ -35,8 +37,7 @@ def struck(*at: int, count: int = 20000, size: float = 0.3, decay_per_s: float =
 def events(samples: np.ndarray, cuts: list[int], trigger: Trigger | None = None) -> list[Event]:
     trigger = trigger or Trigger(rate_hz=RATE_HZ)
     edges = [0, *sorted(cuts), len(samples)]
-    pairs = zip(edges, edges[1:], strict=False)
-    return [e for a, b in pairs for e in trigger.feed(a, samples[a:b])]
+    return [e for a, b in pairwise(edges) for e in trigger.feed(a, samples[a:b])]
 
 
 def test_a_blow_is_seen_at_its_sample_and_the_record_holds_the_quiet_before() -> None:
