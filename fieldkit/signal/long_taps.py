@@ -77,7 +77,7 @@ def cut_from(
     Where there are more than MOST_TAPS, or they are longer than MOST_SAMPLES together, some that
     are spread evenly over the recording.
     """
-    chosen = _spread([tap for tap in search.taps if tap.usable])
+    chosen = spread([tap for tap in search.taps if tap.usable])
     background = search.background
     longest = int(LONGEST_BACKGROUND_S * source.rate_hz)
     quiet = source.stretch(channel, max(background[0], background[1] - longest), background[1])
@@ -214,7 +214,7 @@ def _background(taps: Sequence[Tap], source: RecordingSource) -> tuple[int, int]
     return max(first, past - int(LONGEST_BACKGROUND_S * rate_hz)), past
 
 
-def _spread(taps: Sequence[Tap]) -> list[Tap]:
+def spread(taps: Sequence[Tap]) -> list[Tap]:
     """As many taps, evenly spread over all, as are to be held in memory; all where they fit."""
     for count in range(min(len(taps), MOST_TAPS), 0, -1):
         chosen = [taps[round(i)] for i in np.linspace(0, len(taps) - 1, count)]

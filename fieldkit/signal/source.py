@@ -93,6 +93,19 @@ class RecordingSource:
 
             yield checked
 
+    def loaded(self) -> Recording:
+        """All of it, in memory, as ``load`` reads it."""
+        if isinstance(self.stored, _Held):
+            return self.stored.recording
+        return load(self.path, rate_hz=self.rate_hz)
+
+    def without_samples(self) -> Recording:
+        """What is known of it without reading any sample."""
+        nothing = np.zeros((0, len(self.channels)))
+        return Recording(
+            nothing, self.rate_hz, self.channels, str(self.path), self.full_scale, self.notes
+        )
+
     def part(self, first: int, past: int) -> RecordingSource:
         """A stretch of it, to be read as a recording of its own."""
         return replace(self, begin=self.begin + first, frames=past - first)
