@@ -9,6 +9,7 @@ from numpy.typing import NDArray
 from tests.bench.accuracy.bound import Line, Stretch, mode_bounds
 from tests.bench.accuracy.recordings import TrueMode
 from tests.bench.accuracy.sums import power_sums
+from tests.bench.accuracy.surroundings import Density
 
 RATE_HZ = 1024.0
 
@@ -90,6 +91,28 @@ def test_pair_beside_a_tone_agrees_with_derivatives_taken_by_differences(coheren
     for j, bound in enumerate(bounds):
         assert bound.frequency_sd_hz == pytest.approx(direct[2 * j], rel=1e-4)
         assert bound.damping_sd == pytest.approx(direct[2 * j + 1], rel=1e-4)
+
+
+@pytest.mark.parametrize(("frequency_hz", "damping"), [(8.0, 0.02), (30.0, 0.01), (90.0, 0.03)])
+def test_density_at_the_mode_does_for_coloured_noise(frequency_hz: float, damping: float) -> None:
+    """Within six per cent of weighing every transform bin, even where the density is steep."""
+    mode, noise = TrueMode(frequency_hz, damping), Density(((1e-6, 1.5), (1e-7, 0.0)))
+    count = round(8 * RATE_HZ)
+    tap = Stretch(0, count, np.array([1.0 + 0.5j]))
+    (bound,) = mode_bounds([mode], [tap], RATE_HZ, noise.at(np.array([frequency_hz])))
+    t = np.arange(count) / RATE_HZ
+    wave = np.exp(mode.pole * t)
+    step = 1e-6
+    moved = [
+        np.real((1 + 0.5j) * (np.exp(TrueMode(*p).pole * t) - wave)) / step
+        for p in ((frequency_hz + step, damping), (frequency_hz, damping + step))
+    ]
+    spectra = np.fft.rfft(np.array([*moved, wave.real, -wave.imag]), axis=1)[:, 1:]
+    density = noise.at(np.fft.rfftfreq(count, 1 / RATE_HZ)[1:])
+    weighted = spectra * np.sqrt(4 / (density * RATE_HZ * count))
+    sd = np.sqrt(np.diag(np.linalg.inv(np.real(weighted @ weighted.conj().T))))
+    assert bound.frequency_sd_hz == pytest.approx(sd[0], rel=0.06)
+    assert bound.damping_sd == pytest.approx(sd[1], rel=0.06)
 
 
 def by_differences(

@@ -40,23 +40,24 @@ def damped(rng: Rng, frequency_hz: float, low: float = 0.002, high: float = 0.03
     return TrueMode(frequency_hz, max(log_uniform(rng, low, high), least))
 
 
-def apart(rng: Rng, count: int, high_hz: float, low_hz: float = _LOWEST_HZ) -> list[TrueMode]:
-    """Modes of usual damping that lie well apart, lowest first."""
+def apart(
+    rng: Rng, count: int, high_hz: float, low_hz: float = _LOWEST_HZ, bandwidths: float = 6.0
+) -> list[TrueMode]:
+    """Modes of usual damping with so many bandwidths between them, lowest first."""
     modes: list[TrueMode] = []
     for _ in range(400):
         if len(modes) == count:
             break
         fresh = damped(rng, log_uniform(rng, low_hz, 0.9 * high_hz))
-        if all(clear(fresh, mode) for mode in modes):
+        if all(clear(fresh, mode, bandwidths) for mode in modes):
             modes.append(fresh)
     return sorted(modes, key=lambda mode: mode.frequency_hz)
 
 
-def clear(one: TrueMode, other: TrueMode) -> bool:
-    """Six bandwidths and three per cent between them."""
+def clear(one: TrueMode, other: TrueMode, bandwidths: float = 6.0) -> bool:
+    """So many half-power bandwidths between them."""
     gap = abs(one.frequency_hz - other.frequency_hz)
-    wide = max(one.bandwidth_hz, other.bandwidth_hz)
-    return gap > max(6 * wide, 0.03 * one.frequency_hz)
+    return gap > bandwidths * max(one.bandwidth_hz, other.bandwidth_hz)
 
 
 def spacing(modes: Sequence[TrueMode], least_s: float = 2.0, most_s: float = 9.0) -> float:
@@ -167,8 +168,9 @@ def machine(
 
 
 def mains(rng: Rng, line_hz: float, amplitude: float, orders: int = 5) -> tuple[SteadyTone, ...]:
-    """Hum at a mains frequency and some of its multiples, steady over the recording."""
-    return machine(rng, line_hz, [1, *range(2, orders + 1)], amplitude, 0.0)
+    """Hum at a mains frequency and its multiples, as steady as the grid or quite."""
+    wander = float(rng.choice([0.0, log_uniform(rng, 1e-5, 1e-4)]))
+    return machine(rng, line_hz, range(1, orders + 1), amplitude, wander)
 
 
 def amplitude_over(density: Density, frequency_hz: float, level_db: float) -> float:

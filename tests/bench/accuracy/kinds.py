@@ -117,7 +117,7 @@ def hum(rng: Rng) -> Scene:
     other = drawing.damped(rng, log_uniform(rng, 3.0, 0.85 * high_hz))
     modes += [other] if drawing.clear(other, modes[0]) else []
     made = struck(rng, modes, rate_hz, high_hz, (42, 70))
-    amplitude = drawing.amplitude_over(made.density, line_hz, rng.uniform(25, 55))
+    amplitude = drawing.amplitude_over(made.density, line_hz, rng.uniform(25, 62))
     return replace(made, tones=drawing.mains(rng, line_hz, amplitude), mains_hz=line_hz)
 
 
@@ -220,11 +220,10 @@ def clipped(rng: Rng) -> Scene:
 
 
 def many(rng: Rng) -> Scene:
-    """Eight to fifteen modes, some of them neighbours."""
+    """Eight to fifteen modes, many of them neighbours."""
     rate_hz = drawing.rate(rng, 2000.0)
     high_hz = float(rng.choice([200.0, 400.0]))
-    modes = drawing.apart(rng, int(rng.integers(8, 16)), high_hz)
-    modes = [TrueMode(m.frequency_hz, min(m.damping_ratio, 0.015)) for m in modes]
+    modes = drawing.apart(rng, int(rng.integers(8, 16)), high_hz, bandwidths=2.0)
     return struck(rng, modes, rate_hz, high_hz, (42, 74))
 
 
@@ -299,10 +298,10 @@ def only_machine(rng: Rng) -> Scene:
 
 
 def dull(rng: Rng) -> Scene:
-    """Blows on something that does not ring: contact pulses and nothing after them."""
+    """Blows on something that does not ring, or clicks of the input: pulses and nothing after."""
     made = only_noise(rng)
     count = int(rng.integers(2, 6))
-    blows = drawing.hits(rng, count, rng.uniform(2, 4), log_uniform(rng, 1e-3, 8e-3))
+    blows = drawing.hits(rng, count, rng.uniform(2, 4), log_uniform(rng, 2e-5, 8e-3))
     amplitude = drawing.amplitude_over(made.density, 50.0, 0.0) * np.sqrt(made.rate_hz)
     loud = tuple(replace(hit, strength=hit.strength * amplitude * 20) for hit in blows)
     return replace(made, hits=loud, thump=1.0, above=(), duration_s=blows[-1].at_s + 4.0)

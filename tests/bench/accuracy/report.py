@@ -30,9 +30,10 @@ simulated, so that its modes are known: {kinds} kinds, rates from 1 to 48 kHz, m
   the next mode.
 - **Bound**: Cramér-Rao, from the Fisher information of all modes, usable taps and steady tones of
   the recording together. Nothing unbiased can do better. Where poles differ from tap to tap, that
-  scatter is part of it.
-- **Error / bound**: 1.4826 times the median of |error| / bound, which is 1 for normal errors at
-  the bound.
+  scatter is part of it. Coloured noise counts with its density at the mode, which is within a few
+  per cent of weighing every bin of the spectrum.
+- **Error / bound**: rms of error / bound without the largest twentieth, over what that is for
+  normal errors at the bound; below each table the same from the median of |error| / bound.
 - **Covered**: share of the stated 95 % intervals that hold the truth; log-normal for damping.
 - **False**: a stated mode that is none of the recording's.
 - **Peaks**: the usual way on the same records, its taps known: averaged spectrum, zero-padded

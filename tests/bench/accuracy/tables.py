@@ -40,8 +40,8 @@ COLUMNS: tuple[Column, ...] = (
     ("estimable", lambda t: str(t.sum(estimable))),
     ("found", lambda t: percent(t.share(lambda s: len(s.found), estimable))),
     ("false a record", lambda t: ratio(t.false_per_record, 3)),
-    ("f error / bound", lambda t: ratio(t.frequency_ratio)),
-    ("ζ error / bound", lambda t: ratio(t.damping_ratio)),
+    ("f error / bound", lambda t: ratio(t.frequency_trimmed)),
+    ("ζ error / bound", lambda t: ratio(t.damping_trimmed)),
     ("f covered", lambda t: percent(t.frequency_coverage)),
     ("ζ covered", lambda t: percent(t.damping_coverage)),
     ("f error ppm", lambda t: error(t.frequency_error)),
@@ -84,8 +84,8 @@ def totals(trials: Sequence[Trial], way: str) -> list[str]:
         f"false modes {tally.sum(lambda s: len(s.false_hz))} in {len(trials)} records,"
         f" {tally.sum(lambda s: len(s.false_at_mains_hz))} of them at mains multiples,"
         f" {empty.sum(lambda s: len(s.false_hz))} in {len(empty.scores)} without an estimable mode",
-        "rms error / bound without the worst twentieth:"
-        f" f {ratio(tally.frequency_trimmed)}, ζ {ratio(tally.damping_trimmed)}",
+        "error / bound from the median:"
+        f" f {ratio(tally.frequency_ratio)}, ζ {ratio(tally.damping_ratio)}",
     ]
 
 

@@ -56,20 +56,22 @@ class Tally:
 
     @property
     def frequency_ratio(self) -> float:
-        """Robust error over bound."""
+        """Error over bound, from the median."""
         return robust(m.frequency_ratio for m in self.found)
 
     @property
     def damping_ratio(self) -> float:
-        """Robust error over bound."""
+        """Error over bound, from the median."""
         return robust(m.damping_ratio for m in self.found)
 
     @property
     def frequency_trimmed(self) -> float:
+        """RMS error over bound without the largest twentieth."""
         return trimmed(m.frequency_ratio for m in self.found)
 
     @property
     def damping_trimmed(self) -> float:
+        """RMS error over bound without the largest twentieth."""
         return trimmed(m.damping_ratio for m in self.found)
 
     @property
