@@ -9,7 +9,7 @@ from fieldkit.progress import Progress
 from fieldkit.signal.decimation import decimate, lowpass
 from fieldkit.signal.source import RecordingSource
 
-_BLOCK_SAMPLES = 2**18
+BLOCK_SAMPLES = 2**18
 
 
 def decimated(
@@ -30,9 +30,10 @@ def decimated(
     if step < 2:
         return source.stretch(channel, 0, source.frames), rate_hz
     filter_taps = len(lowpass(rate_hz, keep_hz, rate_hz / step - keep_hz))
-    hop = max(_BLOCK_SAMPLES, 4 * filter_taps) // step * step
+    overlap = -(-filter_taps // step) * step - step
+    hop = max(BLOCK_SAMPLES, 4 * filter_taps) // step * step
     pieces: list[NDArray[np.float64]] = []
-    for i, block in enumerate(source.blocks(channel, hop + filter_taps - step, filter_taps - step)):
+    for i, block in enumerate(source.blocks(channel, hop + overlap, overlap)):
         progress.step("lowering the rate", min(i * hop / source.frames, 1.0))
         if i == 0 or len(block) >= 4 * filter_taps:
             lowered, slow_hz = decimate(
