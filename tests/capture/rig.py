@@ -25,6 +25,9 @@ RATE_HZ = 48000
 LEAD_S = 0.5
 """Silence at the start of what is played: the first frames of a player may be cut."""
 GENEROUS_S = 60.0
+JACK_NAME = "fieldkit-rig"
+"""Always the same: JACK knows eight servers at most, and forgets one that was killed only when
+another of its name starts."""
 
 
 def require(*programs: str) -> None:
@@ -139,10 +142,12 @@ class Bench:
             put_down(process)
 
 
-def dying_with_us(command: list[str], environment: dict[str, str]) -> subprocess.Popen:
-    """A process that is killed when this one ends."""
+def dying_with_us(
+    command: list[str], environment: dict[str, str], *, signal_name: str = "KILL"
+) -> subprocess.Popen:
+    """A process that gets a signal when this one ends."""
     return subprocess.Popen(
-        ["setpriv", "--pdeathsig", "KILL", *command],
+        ["setpriv", "--pdeathsig", signal_name, *command],
         env=os.environ | environment,
         stdin=subprocess.DEVNULL,
         stdout=subprocess.DEVNULL,
@@ -157,7 +162,7 @@ def put_down(process: subprocess.Popen | None) -> None:
     process.send_signal(signal.SIGCONT)
     process.terminate()
     try:
-        process.wait(5.0)
+        process.wait(20.0)
     except subprocess.TimeoutExpired:
         process.kill()
         process.wait()
@@ -192,18 +197,24 @@ def end_portaudio() -> None:
 def jack_bench() -> Iterator[dict[str, str]]:
     """The environment of a JACK server with a dummy driver, ended whatever happens."""
     require("jackd", "setpriv")
-    name = f"rig{os.getpid()}"
     environment = {
-        "JACK_DEFAULT_SERVER": name,
+        "JACK_DEFAULT_SERVER": JACK_NAME,
         "JACK_NO_START_SERVER": "1",
         "JACK_NO_AUDIO_RESERVATION": "1",
     }
+    driver = ["-d", "dummy", "-r", str(RATE_HZ), "-p", "512", "-C", "2", "-P", "2"]
     server = dying_with_us(
-        ["jackd", "-n", name, "-r", "-d", "dummy", "-r", str(RATE_HZ), "-p", "512", "-C", "2",
-         "-P", "2"],
-        environment,
-    )  # fmt: skip
+        ["jackd", "-n", JACK_NAME, "-r", "-t", "20000", *driver], environment, signal_name="TERM"
+    )
     try:
+        until(lambda: jack_answers(environment) or server.poll() is not None, why="JACK answers")
         yield environment
     finally:
         put_down(server)
+
+
+def jack_answers(environment: dict[str, str]) -> bool:
+    """Whether the server takes clients."""
+    waiting = ["jack_wait", "-s", environment["JACK_DEFAULT_SERVER"], "-c"]
+    ran = subprocess.run(waiting, env=os.environ | environment, capture_output=True, check=False)
+    return b"running" in ran.stdout and b"not" not in ran.stdout
