@@ -14,7 +14,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.signal.decays import geometric
-from fieldkit.signal.traces import Component, Trace
+from fieldkit.signal.traces import Component, Trace, unbent
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
@@ -87,6 +87,7 @@ def subtract(bins: Band, parts: Sequence[Component]) -> Band:
     """The band with components taken out at their present amplitudes."""
     if not parts:
         return bins
+    parts = [plain for part in parts for plain in unbent(part)]
     plain, ramp = transforms(bins, pole_table(parts))
     amplitudes = np.array([p.amplitudes for p in parts])[:, :, None]
     total = combined(plain, amplitudes).sum(axis=0)

@@ -51,7 +51,7 @@ def overlapping(part: Component, others: Sequence[Component], duration_s: float)
         width = part.half_power_hz + other.half_power_hz + 1 / duration_s
         return abs(other.frequency_hz - part.frequency_hz) / width
 
-    modes = [o for o in others if o is not part and not o.steady]
+    modes = [o for o in others if o is not part and not o.steady and not o.bend]
     near = [o for o in modes if closeness(o) < _TOGETHER and alike(part, o, _ALIKE, duration_s)]
     return sorted(near, key=closeness)[: _MOST_TOGETHER - 1]
 
@@ -106,7 +106,7 @@ def prepared(
     bins = band(traces, low, high, duration_s)
     longest = max(t.duration_s for t in traces)
     free = [o for o in others if not o.steady or duration_s > _TONE_SHARE * longest]
-    inside = [o for o in free if low <= o.frequency_hz <= high]
+    inside = [o for o in free if low <= o.frequency_hz <= high and not o.bend]
     if _ROWS_PER_PART * (len(inside) + len(around)) * len(traces) > bins.rows:
         inside = []
     kept = {id(o) for o in inside}

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from fieldkit.errors import Refusal
 from fieldkit.signal.audit import odd_taps
+from fieldkit.signal.bending import with_drift
 from fieldkit.signal.polish import Fitted, polished
 from fieldkit.signal.preparation import Prepared, prepare
 from fieldkit.signal.pruning import pruned
@@ -123,6 +124,7 @@ def fitted_modes(
     if not ready.has_background:
         ready = ready.with_noise_from(found.parts)
         found = resolved(ready, found)
+    found = with_drift(ready.traces, found, ready.region)
     found, fitted = polished(ready.traces, found, ready.region)
     return ready, found, fitted
 
@@ -203,7 +205,9 @@ def warnings(modes: Sequence[Judged], ready: Prepared) -> list[str]:
             "leave two quiet seconds before the first tap"
         )
     out += [unresolved(v) for v in modes if v.two]
-    return out + [drift(v) for v in modes if v.estimate.scattered and spread(v) > WORTH_SAYING]
+    out += [drift_within(v) for v in modes if v.part.bend]
+    apart = [v for v in modes if v.estimate.scattered and not v.part.bend]
+    return out + [drift(v) for v in apart if spread(v) > WORTH_SAYING]
 
 
 def spread(verdict: Judged) -> float:
@@ -217,6 +221,17 @@ def unresolved(verdict: Judged) -> str:
     return (
         f"the mode at {verdict.estimate.frequency_hz.value:.4g} Hz may be two that lie nearer than "
         "half their bandwidth; tap in another direction to tell them apart"
+    )
+
+
+def drift_within(verdict: Judged) -> str:
+    """How the frequency of one mode moves while it dies away."""
+    part = verdict.part
+    return (
+        f"the frequency of the mode at {verdict.estimate.frequency_hz.value:.4g} Hz drifts inside "
+        f"each decay, from {part.natural_hz + part.drift_hz:.2f} Hz right after the blow to "
+        f"{part.natural_hz:.2f} Hz at the end, as where a support has play: its uncertainty is "
+        "widened; tap softly, near the running amplitude"
     )
 
 

@@ -7,7 +7,8 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from fieldkit.signal.clusters import fit_together, overlapping, span_s
+from fieldkit.signal.bending import bent_fit
+from fieldkit.signal.clusters import fit_together, overlapping, span_s, surroundings
 from fieldkit.signal.likelihood import Fit
 from fieldkit.signal.scan import Region
 from fieldkit.signal.scatter import loosened, scattered
@@ -55,6 +56,12 @@ def swept(
     """One pass over all groups of overlapping modes, strongest group first."""
     parts = list(found.parts)
     fitted: list[Fitted] = []
+    for i, part in enumerate(parts):
+        if part.bend:
+            still = surroundings(traces, [part], without(parts, [part]), region.high_hz)
+            result = bent_fit(still, part).fit
+            parts[i] = result.active[0]
+            fitted.append(Fitted(parts[i], result, 0))
     for group in groups(traces, parts):
         members = [parts[i] for i in group]
         rest = without(parts, members)
@@ -84,7 +91,7 @@ def in_place(
 
 def groups(traces: Sequence[Trace], parts: Sequence[Component]) -> list[list[int]]:
     """Indices of modes that overlap, directly or through others, strongest first."""
-    order = [i for i, p in enumerate(parts) if not p.steady]
+    order = [i for i, p in enumerate(parts) if not p.steady and not p.bend]
     order.sort(key=lambda i: -float(np.abs(parts[i].amplitudes).max()))
     left, out = set(order), []
     for i in order:

@@ -17,6 +17,9 @@ from fieldkit.signal.traces import Component, Trace, component
 _MOST_ROUNDS = 14
 _LOOKED_FOR_ODD_TAPS = (2, 3, 4)
 _MOST_PARTS = 60
+_MOST_AT_A_TONE = 3
+WANDER_REACH = 6e-3
+"""Relative, how far from its typical frequency a machine's line is looked for."""
 
 
 @dataclass(frozen=True)
@@ -39,7 +42,11 @@ def search(traces: Sequence[Trace], tones: Sequence[Component], region: Region) 
         odd = stand_out(coarse, traces, found.parts) if number in _LOOKED_FOR_ODD_TAPS else ()
         if odd:
             return replace(found, odd=odd)
-        fresh = [c for c in scan(coarse, region) if not tried(c, found.vain, traces)]
+        fresh = [
+            c
+            for c in scan(coarse, region)
+            if not tried(c, found.vain, traces) and not crowded(c, found.parts)
+        ]
         if not fresh or len(found.parts) > _MOST_PARTS:
             break
         for candidate in fresh:
@@ -55,6 +62,14 @@ def tried(candidate: Candidate, vain: Sequence[complex], traces: Sequence[Trace]
         abs(candidate.pole.imag - v.imag) < max(decay, spacing) and 0.3 < -v.real / decay < 3.3
         for v in vain
     )
+
+
+def crowded(candidate: Candidate, parts: Sequence[Component]) -> bool:
+    """True beside a tone that has drawn several components already: it is that tone's wander."""
+    frequency_hz = candidate.pole.imag / (2 * np.pi)
+    reach_hz = WANDER_REACH * frequency_hz
+    near = [p for p in parts if abs(p.frequency_hz - frequency_hz) < reach_hz]
+    return any(p.steady for p in near) and len(near) > _MOST_AT_A_TONE
 
 
 def add(traces: Sequence[Trace], found: Found, candidate: Candidate, region: Region) -> Found:

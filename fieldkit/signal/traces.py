@@ -19,6 +19,8 @@ Complex = NDArray[np.complex128]
 _WHOLE = 0.9
 """Of a trace: whoever asks for more of it gets all."""
 _STEPS_PER_OCTAVE = 4
+_LEAST_TERMS = 4
+_MOST_RAD = 8.0
 
 
 def fast_length(wanted: float) -> int:
@@ -79,6 +81,9 @@ class Component:
     """(K,) unit per second; 0 except for tones that wander."""
     steady: bool = False
     """True for a tone: no decay, in the fit at a fixed frequency."""
+    bend: float = 0.0
+    """Radians per unit amplitude by which the phase has run ahead when the decay is over: not 0
+    for a mode whose frequency drifts with its amplitude."""
 
     @cached_property
     def pole(self) -> complex:
@@ -106,6 +111,17 @@ class Component:
         return self.decay_per_s / abs(self.pole)
 
     @property
+    def drift_hz(self) -> float:
+        """Frequency right after the strongest blow less that at small amplitude."""
+        farthest = self.leads[np.argmax(np.abs(self.leads))]
+        return float(farthest * self.decay_per_s / (2 * np.pi))
+
+    @property
+    def leads(self) -> Real:
+        """(K,) radians by which the phase runs ahead in each tap; more than a turn is not meant."""
+        return np.asarray(np.clip(self.bend * np.abs(self.amplitudes), -_MOST_RAD, _MOST_RAD))
+
+    @property
     def half_power_hz(self) -> float:
         """Half-power bandwidth."""
         return self.decay_per_s / np.pi
@@ -121,6 +137,34 @@ def component(pole: complex, taps: int, *, steady: bool = False) -> Component:
     return Component(np.full(taps, pole), nothing, nothing, steady)
 
 
+def bent_weights(part: Component) -> Complex:
+    """(N, K) weights of exponentials of once, twice, ... the decay that make a drifting one.
+
+    exp(i b (1 - exp(-s t))) by its power series in exp(-s t).
+    """
+    lead = part.leads
+    most = float(np.abs(lead).max(initial=0.0))
+    order = np.arange(int(_LEAST_TERMS + 8 * min(most, 1.0) + 4 * most))[:, None]
+    factors = np.where(order > 0, -1j * lead / np.maximum(order, 1), 1.0)
+    return np.asarray(np.exp(1j * lead) * np.cumprod(factors, axis=0))
+
+
+def unbent(part: Component) -> list[Component]:
+    """A component whose frequency drifts as a sum of some whose frequencies do not."""
+    if not part.bend:
+        return [part]
+    weights = bent_weights(part)
+    return [
+        replace(
+            part,
+            poles=part.poles + n * part.poles.real,
+            amplitudes=part.amplitudes * own,
+            bend=0.0,
+        )
+        for n, own in enumerate(weights)
+    ]
+
+
 def residual(trace: Trace, tap: int, components: Sequence[Component]) -> Real:
     """(n,) what the components leave of tap number ``tap``."""
     left = trace.samples.copy()
@@ -132,6 +176,10 @@ def residual(trace: Trace, tap: int, components: Sequence[Component]) -> Real:
 def sampled(part: Component, tap: int, count: int, rate_hz: float) -> Real:
     """(count,) samples of a component in one tap."""
     wave = damped(part.poles[tap] / rate_hz, count)
+    if part.bend:
+        lead = part.leads[tap]
+        envelope = damped(part.poles[tap].real / rate_hz, count).real
+        wave = wave * np.exp(1j * lead * (1 - envelope))
     if part.slopes[tap] == 0:
         return np.asarray((part.amplitudes[tap] * wave).real)
     time_s = np.arange(count) / rate_hz

@@ -8,6 +8,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.bending import stands_for
 from fieldkit.signal.covariance import Estimate, PoleEstimate, pole_estimate
 from fieldkit.signal.polish import Fitted
 from fieldkit.signal.tones import Line
@@ -24,6 +25,7 @@ _LINE_WANDER = 2e-3
 _FAR_WANDER = 6e-3
 """Of a line that was seen to wander, or that is stronger than what stands beside it."""
 _MAINS_HZ = (50.0, 60.0)
+_TO_SPARE = 1.15
 _HARDLY_DECAYS = 0.5
 _SURE = 0.1
 
@@ -63,21 +65,16 @@ def judged(
     out = []
     for one, gain in zip(fitted, gains, strict=True):
         estimate = pole_estimate(one, (gain > _SEEN).astype(float))
-        twins = [pair for pair in unresolved if stands_for(one.part, pair)]
+        twins = [pair for pair in unresolved if stands_for(one.part, pair) and not one.part.bend]
         for pair in twins:
             estimate = spanning(estimate, pair)
+        estimate = drifting(estimate, one.part.drift_hz)
         steady = steadiness(one.part, estimate, traces, lines)
         energy = decay_energy(one.part, traces)
         doubtful = "" if twins and one.part.damping_ratio < LARGEST_DAMPING else objection(estimate)
         reason = steady or doubtful or lonely(gain, strength - energy)
         out.append(Judged(one.part, estimate, energy, gain, reason, bool(steady), bool(twins)))
     return out
-
-
-def stands_for(part: Component, pair: tuple[complex, complex]) -> bool:
-    """True for the component that stands for two unresolved ones."""
-    nearest = min(abs(pole - part.pole) for pole in pair)
-    return nearest < 2 * np.pi * part.half_power_hz
 
 
 def spanning(estimate: PoleEstimate, pair: tuple[complex, complex]) -> PoleEstimate:
@@ -89,6 +86,16 @@ def spanning(estimate: PoleEstimate, pair: tuple[complex, complex]) -> PoleEstim
         frequency_hz=reaching(estimate.frequency_hz, natural_hz),
         damping_ratio=reaching(estimate.damping_ratio, damping),
     )
+
+
+def drifting(estimate: PoleEstimate, drift_hz: float) -> PoleEstimate:
+    """Amid the frequencies a mode has from its blow to the end, with an interval that holds all."""
+    if drift_hz == 0:
+        return estimate
+    middle = estimate.frequency_hz.value + drift_hz / 2
+    ends = [middle - _TO_SPARE * drift_hz / 2, middle + _TO_SPARE * drift_hz / 2]
+    amid = replace(estimate.frequency_hz, value=middle)
+    return replace(estimate, frequency_hz=reaching(amid, ends))
 
 
 def reaching(estimate: Estimate, values: Sequence[float]) -> Estimate:

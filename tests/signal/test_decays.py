@@ -7,9 +7,12 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
-from fieldkit.signal.background import noise_density
+from fieldkit.signal.background import NoiseDensity, noise_density
+from fieldkit.signal.bands import band, subtract
 from fieldkit.signal.decays import damped, damping_without_window, geometric
 from fieldkit.signal.decimation import decimate
+from fieldkit.signal.tones import centred
+from fieldkit.signal.traces import Component, Trace, fast_length, sampled
 from tests.signal.made_taps import coloured, hum
 
 
@@ -73,6 +76,42 @@ def test_noise_density_is_read_past_steady_lines(exponent: float) -> None:
     frequency_hz = np.array([10.0, 20.0, 50.0, 100.0, 300.0, 800.0])
     expected = 1e-6 * (frequency_hz / 20.0) ** -exponent
     assert np.abs(10 * np.log10(found.at(frequency_hz) / expected)).max() < 1.5
+
+
+@pytest.mark.parametrize("bend", [-3.0, 0.4, 6.0])
+def test_drifting_decay_has_the_transform_of_its_samples(bend: float) -> None:
+    """Taken out in the band, nothing is left of its own samples."""
+    poles = np.full(2, complex(-1.3, 2 * np.pi * 21.0))
+    part = Component(poles, np.array([1.0 + 0.2j, -0.5j]), np.zeros(2, complex), bend=bend)
+    noise = NoiseDensity(np.array([1.0, 200.0]), np.ones(2))
+    traces = [Trace(sampled(part, k, 4000, 400.0), 400.0, noise) for k in range(2)]
+    whole = band(traces, 5.0, 40.0, 10.0)
+    left = subtract(whole, [part])
+    assert np.abs(left.data).max() < 1e-8 * np.abs(whole.data).max()
+
+
+def test_tone_takes_the_frequency_it_has_in_each_tap() -> None:
+    """A fitted line that was 0.02 Hz off follows to where it is, its samples unchanged at first."""
+    poles = np.full(1, 2j * np.pi * 30.0)
+    off = Component(poles, np.array([1.0 + 0j]), np.array([2j * np.pi * 0.02]), steady=True)
+    moved = centred(off, np.array([5.0]))
+    assert moved.frequency_hz == pytest.approx(30.02, abs=0.002)
+    middle = slice(900, 1100)
+    assert sampled(moved, 0, 2000, 400.0)[middle] == pytest.approx(
+        sampled(off, 0, 2000, 400.0)[middle], abs=0.01
+    )
+
+
+@settings(max_examples=40, deadline=None)
+@given(wanted=st.floats(16.0, 1e6))
+def test_lengths_are_few_and_hardly_longer_than_asked(wanted: float) -> None:
+    """Four an octave, with a fast transform: every prime factor is 5 at most."""
+    length = fast_length(wanted)
+    assert wanted - 1e-6 < length < 1.3 * wanted + 2
+    for prime in (2, 3, 5):
+        while length % prime == 0:
+            length //= prime
+    assert length == 1
 
 
 def test_too_short_a_background_has_no_density() -> None:

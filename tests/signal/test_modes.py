@@ -144,6 +144,7 @@ def test_unresolved_pair_is_one_mode_and_says_so() -> None:
         assert abs(mode.frequency_hz - made.frequency_hz) < 2.5 * mode.frequency_sd_hz
     assert mode.frequency_sd_hz < 0.4
     assert any("may be two" in w for w in estimate.warnings)
+    assert not any("drifts" in w for w in estimate.warnings)
 
 
 @pytest.mark.parametrize("mains_hz", [50.0, 60.0])
@@ -233,6 +234,7 @@ def test_tap_struck_again_unnoticed_is_left_out() -> None:
     estimate = estimate_modes(taps)
     assert_found(estimate, MODES)
     assert estimate.warnings[0].startswith("usable tap 3 of 4 was left out")
+    assert len([w for w in estimate.warnings if "left out" in w]) == 1
 
 
 def test_taps_that_disagree_widen_the_uncertainty_and_are_named() -> None:
@@ -247,6 +249,65 @@ def test_taps_that_disagree_widen_the_uncertainty_and_are_named() -> None:
     assert 30.85 < mode.frequency_hz < 30.95
     assert 0.01 < mode.frequency_sd_hz < 0.06
     assert any("falls with the strength of the blow" in w for w in estimate.warnings)
+
+
+def drifting(
+    made: Made, drift: float, strengths: Sequence[float], seed: int = 0, density: float = 3e-4
+) -> list[TapRecord]:
+    """Decays whose frequency departs by ``drift`` times the amplitude, relative."""
+    rng = np.random.default_rng(seed)
+    background = coloured(rng, 7200, RATE_HZ, density)
+    time_s = np.arange(round(5 * RATE_HZ)) / RATE_HZ
+    natural = 2 * np.pi * made.frequency_hz
+    turn = np.sqrt(1 - made.damping_ratio**2)
+    out = []
+    for strength in strengths:
+        size = strength * np.exp(-made.damping_ratio * natural * time_s)
+        lead = drift * (strength - size) / made.damping_ratio
+        free = made.amplitude * size * np.cos(turn * (natural * time_s + lead) + made.phase)
+        noise = coloured(rng, len(free), RATE_HZ, density)
+        out.append(TapRecord(free + noise, RATE_HZ, background))
+    return out
+
+
+@pytest.mark.parametrize("drift", [-0.02, -0.006, 0.01])
+def test_frequency_that_drifts_inside_each_decay_is_said(drift: float) -> None:
+    """A support with play: one mode with its true damping, its interval from blow to end."""
+    made = Made(24.0, 0.01)
+    estimate = estimate_modes(drifting(made, drift, [1.0, 0.6, 0.8]))
+    assert len(estimate.modes) == 1
+    mode = estimate.modes[0]
+    assert mode.damping_ratio is not None
+    assert mode.damping_sd is not None
+    for frequency_hz in (24.0, 24.0 * (1 + drift)):
+        assert abs(mode.frequency_hz - frequency_hz) < 2.2 * mode.frequency_sd_hz
+    assert abs(mode.damping_ratio - 0.01) < 4 * mode.damping_sd
+    assert mode.damping_sd < 0.001
+    assert any("drifts inside each decay" in w for w in estimate.warnings)
+
+
+def test_frequency_that_does_not_drift_is_not_said_to() -> None:
+    for seed in range(6):
+        estimate = estimate_modes(records(MODES, seed=seed))
+        assert not any("drifts" in w for w in estimate.warnings)
+
+
+@pytest.mark.parametrize("seed", range(3))
+def test_machine_whose_speed_wanders_is_no_mode(seed: int) -> None:
+    """Lines that move by a thousandth, one a few bandwidths from a mode."""
+    rng = np.random.default_rng(seed)
+    count, quiet = round(6 * RATE_HZ), round(4 * RATE_HZ)
+    time_s = np.arange(quiet + 4 * count) / RATE_HZ
+    slow = np.cumsum(np.cos(2 * np.pi * 0.13 * time_s + seed) * np.sqrt(2e-6)) / RATE_HZ
+    around = coloured(rng, len(time_s), RATE_HZ, 1e-3)
+    for order, size in enumerate([0.1, 0.06, 0.03], start=1):
+        around += size * np.cos(2 * np.pi * 29.3 * order * (time_s + slow) + order)
+    taps = []
+    for k, strength in enumerate(STRENGTHS):
+        decay = tap_recording(MODES, [Blow(0.0, strength, 0.002)], 6.0, RATE_HZ)
+        own = decay + around[quiet + k * count : quiet + (k + 1) * count]
+        taps.append(TapRecord(own[10:], RATE_HZ, around[:quiet]))
+    assert_found(estimate_modes(taps), MODES, deviations=5.0)
 
 
 def test_one_tap_is_warned_about() -> None:
