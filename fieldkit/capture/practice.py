@@ -80,7 +80,7 @@ class Surroundings:
     """Of the sensor, m/s^2 per root hertz."""
     hum: float = 0.01
     """Amplitude at 50 Hz, m/s^2."""
-    flow: float = 0.3
+    flow: float = 0.1
     """Force of the flow while the machine runs, N per root hertz."""
 
 

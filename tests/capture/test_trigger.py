@@ -35,7 +35,7 @@ def struck(*at: int, count: int = 20000, size: float = 0.3, decay_per_s: float =
 
 
 def events(samples: np.ndarray, cuts: list[int], trigger: Trigger | None = None) -> list[Event]:
-    trigger = trigger or Trigger(rate_hz=RATE_HZ)
+    trigger = trigger or Trigger(rate_hz=RATE_HZ, quiet_s=2.0)
     edges = [0, *sorted(cuts), len(samples)]
     return [e for a, b in pairwise(edges) for e in trigger.feed(a, samples[a:b])]
 

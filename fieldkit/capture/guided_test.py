@@ -1,0 +1,213 @@
+"""A guided tap test beside a session: hears every block, judges in a thread of its own."""
+
+from __future__ import annotations
+
+import threading
+from collections.abc import Callable, Sequence
+from contextlib import suppress
+from dataclasses import dataclass, replace
+from queue import SimpleQueue
+
+import numpy as np
+from numpy.typing import NDArray
+
+from fieldkit.capture.blow import read_blow
+from fieldkit.capture.enough import Expected
+from fieldkit.capture.guide import Guide, GuideSnapshot, Place, snapshot_of
+from fieldkit.capture.ring import Ring
+from fieldkit.capture.source import Block
+from fieldkit.capture.trigger import (
+    LONGEST_S,
+    PRE_TRIGGER_S,
+    QUIET_S,
+    BlowSeen,
+    RecordBroken,
+    RecordDone,
+    Trigger,
+)
+from fieldkit.errors import FieldkitError
+from fieldkit.signal.modes import ModeEstimate, estimate_modes
+
+LOWEST_HZ = 2.0
+_OF_RATE = 0.4
+_PUBLISH_S = 0.1
+_RING_S = LONGEST_S + PRE_TRIGGER_S + QUIET_S + 1.0
+
+Mark = Callable[[int, bool], None]
+"""Gets the frame of a blow that the user sets aside (True), or takes in again (False)."""
+
+
+@dataclass(frozen=True, eq=False)
+class _Record:
+    """A record that waits to be judged."""
+
+    samples: NDArray[np.float32]
+    event: RecordDone
+    place: Place
+
+
+class GuidedTest:
+    """A listener of a session; every method returns at once, ``snapshot`` says how things are."""
+
+    def __init__(
+        self,
+        *,
+        rate_hz: float,
+        place: Place,
+        channel: int = 0,
+        directions: Sequence[str] = ("vertical", "lateral"),
+        up_to_hz: float = 200.0,
+        expected: Sequence[Expected] = (),
+        mark: Mark | None = None,
+    ) -> None:
+        """``channel`` (from 0) is the one that is judged; ``expected`` are modes of a model."""
+        self._rate_hz = rate_hz
+        self._channel = channel
+        self._expected = tuple(expected)
+        self._mark = mark
+        self._trigger = Trigger(rate_hz=rate_hz)
+        self._ring = Ring(frames=round(_RING_S * rate_hz), channels=1)
+        self._listen_anew = False
+        self._frame = 0
+        self._published_frame = 0
+        self._lock = threading.Lock()
+        up_to_hz = min(up_to_hz, _OF_RATE * rate_hz)
+        self._guide = Guide(place=place, directions=tuple(directions), up_to_hz=up_to_hz)
+        self._snapshot = snapshot_of(self._guide, 0, rate_hz, self._expected)
+        self._queue: SimpleQueue[_Record | str] = SimpleQueue()
+        self._thread = threading.Thread(target=self._work, name="guided test", daemon=True)
+        self._thread.start()
+
+    def feed(self, block: Block) -> None:
+        """Take a block of the session."""
+        samples = block.samples[:, self._channel : self._channel + 1]
+        if self._listen_anew:
+            self._listen_anew = False
+            self._trigger.listen_anew()
+        lost = block.cause or "frames went missing" if block.lost_frames != 0 else ""
+        self._ring.feed(replace(block, samples=samples))
+        events = self._trigger.feed(block.first_frame, samples[:, 0].astype(float), lost)
+        self._frame = block.first_frame + len(samples)
+        for event in events:
+            self._take(event)
+        due = self._frame - self._published_frame >= _PUBLISH_S * self._rate_hz
+        if events or due or self._guide.phase != self._trigger.phase:
+            phase, threshold = self._trigger.phase, self._trigger.threshold
+            self._change(lambda guide: guide.heard(phase, threshold))
+
+    def snapshot(self) -> GuideSnapshot:
+        """How things are."""
+        return self._snapshot
+
+    def set_aside(self, number: int | None = None) -> None:
+        """Take a blow out of the estimate, the latest that counts where no number is given.
+
+        It stays in the recording, marked.
+        """
+        self._put_aside(number, aside=True)
+
+    def take_in(self, number: int) -> None:
+        """Take a blow that was set aside in again."""
+        self._put_aside(number, aside=False)
+
+    def move_to(self, place: Place) -> None:
+        """Go on at another place or in another direction."""
+        self._change(lambda guide: guide.moved_to(place))
+        self._queue.put("")
+
+    def listen_anew(self) -> None:
+        """Measure the background again."""
+        self._listen_anew = True
+
+    def stop(self) -> None:
+        """End the thread; what was found stays."""
+        self._queue.put("stop")
+
+    def _take(self, event: BlowSeen | RecordDone | RecordBroken) -> None:
+        if isinstance(event, BlowSeen):
+            self._change(lambda guide: guide.seen(event.frame))
+        elif self._guide.seen_frame != event.blow:
+            return
+        elif isinstance(event, RecordBroken):
+            self._change(lambda guide: guide.broken(event))
+        else:
+            self._change(lambda guide: guide.rung_out(event))
+            self._queue.put(_Record(self._slice(event), event, self._guide.place))
+
+    def _slice(self, event: RecordDone) -> NDArray[np.float32]:
+        first, samples = self._ring.latest(self._frame - event.first)
+        return samples[max(event.first - first, 0) : event.end - first, 0]
+
+    def _put_aside(self, number: int | None, *, aside: bool) -> None:
+        counted = [b.number for b in self._guide.blows if b.counts]
+        number = number if number is not None else (counted[-1] if counted else None)
+        found = [b for b in self._guide.blows if b.number == number]
+        if not found or number is None:
+            return
+        wanted = number
+        self._change(lambda guide: guide.with_set_aside(wanted, aside))
+        if self._mark is not None:
+            self._mark(found[0].frame, aside)
+        self._queue.put("")
+
+    def _change(self, step: Callable[[Guide], Guide]) -> None:
+        with self._lock:
+            self._guide = step(self._guide)
+            self._trigger.record_s = self._guide.record_s
+            self._published_frame = self._frame
+            self._snapshot = snapshot_of(self._guide, self._frame, self._rate_hz, self._expected)
+
+    def _work(self) -> None:
+        warm_up(self._rate_hz)
+        while (item := self._queue.get()) != "stop":
+            try:
+                if isinstance(item, _Record):
+                    self._judge(item)
+                if self._queue.empty():
+                    self._estimate()
+            except Exception as error:
+                told = f"a blow could not be read ({type(error).__name__}: {error})"
+                self._change(lambda guide, told=told: replace(guide, notice=told))  # type: ignore[misc]
+
+    def _judge(self, record: _Record) -> None:
+        event, longest = record.event, self._guide.quiet()
+        reading = read_blow(
+            record.samples,
+            self._rate_hz,
+            event.blow - event.first,
+            frame=event.blow,
+            up_to_hz=self._guide.up_to_hz,
+            quiet=longest.background if longest is not None else None,
+        )
+        self._change(lambda guide: guide.read(reading, record.place))
+
+    def _estimate(self) -> None:
+        while (place := self._guide.outdated()) is not None and self._queue.empty():
+            guide = self._guide
+            numbers = tuple(blow.number for blow in guide.counted(place))
+            estimate = estimate_of(guide, place)
+            self._change(lambda g, p=place, n=numbers, e=estimate: g.estimated(p, n, e))  # type: ignore[misc]
+
+
+def estimate_of(guide: Guide, place: Place) -> ModeEstimate | None:
+    """Modes of the blows that count at a place; None where there is none."""
+    records = guide.records(place)
+    if not records:
+        return None
+    try:
+        found = estimate_modes(records, low_hz=LOWEST_HZ, high_hz=guide.up_to_hz)
+    except FieldkitError as error:
+        return ModeEstimate((), (), (), (str(error),))
+    modes = tuple(replace(m, direction=place.direction, at_m=place.at_m) for m in found.modes)
+    return replace(found, modes=modes)
+
+
+def warm_up(rate_hz: float) -> None:
+    """Have what the first verdict needs imported before it is asked for."""
+    time_s = np.arange(round(3.5 * rate_hz)) / rate_hz - 1.0
+    noise = 1e-4 * np.random.default_rng(1).standard_normal(len(time_s))
+    decay = np.exp(-5 * np.maximum(time_s, 0.0)) * np.sin(2 * np.pi * 0.02 * rate_hz * time_s)
+    with suppress(FieldkitError):
+        reading = read_blow(noise + decay * (time_s >= 0), rate_hz, round(rate_hz))
+        if reading.record is not None:
+            estimate_modes([reading.record], high_hz=min(100.0, _OF_RATE * rate_hz))
