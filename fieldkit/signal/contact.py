@@ -1,38 +1,38 @@
 """What happens within a blow: when the contact ends, and whether a second blow follows.
 
-A short linear predictor fitted to the ringing after the blow foresees free decay down to the noise.
-Run backwards it fails up to the end of the contact and not after it; run forwards it fails from the
-moment of a second blow on.
+A short linear predictor fitted to the ringing foresees free decay down to the noise. Run backwards
+it fails up to the end of the contact and not after it; run forwards it fails from the moment of a
+second blow on.
 """
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.signal.innovation import Level
-from fieldkit.signal.prediction import ORDERS, SHORTEST_GAP_S, Errors, prediction_errors
+from fieldkit.signal.prediction import SHARP, SHORTEST_GAP_S, Errors, Predictor
+from fieldkit.signal.restrikes import LONGEST_GAP_S, Restrike
 
 Real = NDArray[np.float64]
 
-SHARP = 8.0
-"""Error over its typical size: above it at a blow, below 7 where there is none."""
-LONGEST_GAP_S = 0.31
 _SHARP_ENOUGH = 30.0
 _OVER_TYPICAL = 6.5
 _OVER_FORCE = 0.03
 _FOOT = 0.1
-_STRIDE_S = 0.25
-_SAME_S = 0.015
+_SAME_S = 0.012
+_CHANGES = 3
+_LIKE = 2.0
 _CLEAR = 20.0
 _CLEAR_SOON = 13.0
 _SOON_S = 0.03
 _OVER_PRECEDING = 2.5
 _LEAST_SHARE = 0.12
 _LONGEST_CONTACT_S = 0.015
+_QUIET_AFTER_S = 0.1
 
 
 @dataclass(frozen=True)
@@ -42,6 +42,8 @@ class Place:
     at_s: float
     sharpness: float
     """Error over its typical size nearby."""
+    rate_hz: float
+    """Of the finest level that shows it."""
 
 
 @dataclass(frozen=True)
@@ -53,22 +55,22 @@ class Later:
     share: float
     """Of the first one's strength, roughly."""
     sharpness: float
-    """Error over its typical size."""
+    """Error over its typical size; 0 where no prediction failed but all lines changed."""
+    shown_by: tuple[float, int]
+    """Rate of the level, and samples looked at before it (0 for a prediction)."""
 
 
-def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place | None:
+def sharpest(scales: Sequence[Errors], about_s: float, slack_s: float) -> Place | None:
     """Where, within a slack of a supposed blow, prediction fails most; None where nowhere.
 
     All levels are asked: the finest shows hard blows in quiet, the others soft ones and those in
     noise. The time is that of the finest level that shows it.
     """
     best: Place | None = None
-    for level in levels:
-        errors = prediction_errors(level, about_s, np.inf, slack_s=slack_s)
-        place = first_failure(errors, about_s, slack_s) if errors is not None else None
+    for errors in scales:
+        place = first_failure(errors, about_s, slack_s)
         if place is not None and (best is None or place.sharpness > best.sharpness):
-            at_s = best.at_s if best is not None else place.at_s
-            best = Place(at_s, place.sharpness)
+            best = place if best is None else replace(best, sharpness=place.sharpness)
         if best is not None and best.sharpness > _SHARP_ENOUGH:
             break
     return best
@@ -77,92 +79,127 @@ def sharpest(levels: Sequence[Level], about_s: float, slack_s: float) -> Place |
 def first_failure(errors: Errors, about_s: float, slack_s: float) -> Place | None:
     """Where the error first nears its peak, within a slack of the time asked about."""
     slack_s += 4 / errors.rate_hz
-    near = (errors.time_s > -slack_s) & (errors.time_s < slack_s + SHORTEST_GAP_S)
-    size = np.where(near, errors.size, 0.0)
+    near = errors.between(about_s - slack_s, about_s + slack_s + SHORTEST_GAP_S)
+    size = errors.size[near]
     peak = float(size.max(initial=0.0))
     if peak < SHARP:
         return None
     first = int(np.argmax(size > max(_OVER_TYPICAL, _FOOT * peak)))
-    return Place(about_s + float(errors.time_s[first]), peak)
+    return Place((near.start + first) / errors.rate_hz, peak, errors.rate_hz)
 
 
-def overlooked(level: Level, ringing_s: Real, known_s: Sequence[float]) -> list[float]:
+def overlooked(
+    scales: Sequence[Errors], rings: Callable[[float], bool], known_s: Sequence[float]
+) -> list[tuple[float, int]]:
     """Times of blows amid loud ringing that no comparison with the whole recording shows.
 
-    ``ringing_s`` (f,) are the moments that ring. Every quarter of a second is compared with a
-    predictor fitted to it alone.
+    Two levels show them, or one clearly; each comes with the index of the level. ``rings`` tells
+    whether it rings loudly at a time.
     """
-    found: list[float] = []
-    for about_s in np.arange(0.0, len(level.samples) / level.rate_hz, _STRIDE_S):
-        if not np.any(np.abs(ringing_s - about_s) < _STRIDE_S):
+    found: list[tuple[float, int]] = []
+    shown = sorted(
+        (float(i / errors.rate_hz), k) for k, errors in enumerate(scales) for i in errors.sharp
+    )
+    for at_s, k in shown:
+        errors = scales[k]
+        if not rings(at_s) or not far_from(
+            at_s, [*known_s, *(f for f, _ in found)], errors.smeared_s
+        ):
             continue
-        errors = prediction_errors(level, float(about_s), np.inf, orders=ORDERS[-1:])
-        if errors is None:
-            continue
-        inside = (errors.time_s > 0) & (errors.time_s <= _STRIDE_S)
-        first = int(np.argmax(inside & (errors.size > SHARP)))
-        at_s = float(about_s + errors.time_s[first])
-        if inside[first] and errors.size[first] > SHARP and far_from(at_s, [*known_s, *found]):
-            found.append(at_s)
+        near_s = 6 / errors.rate_hz
+        agree = any(abs(at_s - other_s) < near_s for other_s, j in shown if j != k)
+        if agree or errors.size[round(at_s * errors.rate_hz)] > _CLEAR_SOON:
+            found.append((at_s, k))
     return found
 
 
-def far_from(at_s: float, known_s: Sequence[float]) -> bool:
+def far_from(at_s: float, known_s: Sequence[float], smeared_s: float) -> bool:
     """True where no known blow is so near that this is part of it."""
-    return all(not -0.05 < at_s - known < LONGEST_GAP_S for known in known_s)
+    gap_s = max(LONGEST_GAP_S, smeared_s)
+    return all(not -0.05 < at_s - known < gap_s for known in known_s)
 
 
-def contact_end_s(level: Level, onset_s: float, until_s: float) -> float:
+def contact_end_s(
+    level: Level, predictor: Predictor | None, onset_s: float, until_s: float
+) -> float:
     """How long after the onset the force acts, by the finest level."""
-    errors = prediction_errors(level, onset_s, until_s, backwards=True)
-    if errors is None:
+    if predictor is None:
         return 2 / level.rate_hz
-    within = (errors.time_s > -0.002) & (errors.time_s < _LONGEST_CONTACT_S)
-    size = np.where(within, errors.size, 0.0)
+    first = max(int((onset_s - 0.002) * level.rate_hz), 0)
+    reach_s = min(onset_s + _LONGEST_CONTACT_S + _QUIET_AFTER_S, until_s)
+    last = min(int(reach_s * level.rate_hz) + predictor.order, len(level.samples))
+    raw = predictor.errors(level.samples[first:last][::-1])[::-1]
+    time_s = (first + np.arange(len(raw))) / level.rate_hz - onset_s
+    usual = float(np.median(raw[: max(len(raw) - predictor.order, 1)])) if len(raw) else 0.0
+    size = np.where(time_s < _LONGEST_CONTACT_S, raw, 0.0) / max(usual, 1e-280)
     acting = np.flatnonzero(size > max(_OVER_TYPICAL, _OVER_FORCE * float(size.max(initial=0.0))))
-    last_s = float(errors.time_s[acting[-1]]) if len(acting) else 0.0
+    last_s = float(time_s[acting[-1]]) if len(acting) else 0.0
     return max(last_s, 0.0) + 2 / level.rate_hz
 
 
-def later_blows(levels: Sequence[Level], onset_s: float, until_s: float) -> list[Later]:
-    """Second blows in order of time: what two levels show, or one clearly."""
-    tried = [prediction_errors(level, onset_s, until_s) for level in levels]
-    shown = sorted(
-        (one for errors in tried if errors is not None for one in jumps(errors)),
-        key=lambda one: one.after_s,
-    )
+def later_blows(
+    scales: Sequence[Errors], onset_s: float, until_s: float, changes: Sequence[Restrike]
+) -> list[Later]:
+    """Second blows in order of time, by failures of prediction and changes of all lines."""
+    sudden = [one for errors in scales for one in jumps(errors, onset_s, until_s)]
+    changed = [Later(c.after_s, c.share, 0.0, (c.rate_hz, c.left)) for c in changes]
+    shown = sorted([*sudden, *changed], key=lambda one: one.after_s)
     groups: list[list[Later]] = []
     for one in shown:
         if groups and one.after_s - groups[-1][-1].after_s < _SAME_S:
             groups[-1].append(one)
         else:
             groups.append([one])
-    return [max(group, key=lambda one: one.share) for group in groups if sure(group)]
+    return [
+        max(group, key=lambda one: (one.sharpness > 0, one.share))
+        for group in groups
+        if sure(group)
+    ]
 
 
 def sure(seen: Sequence[Later]) -> bool:
-    """True for what two levels show, or one clearly; soon after the first few levels can tell."""
+    """True for what two levels show, or one clearly; soon after the first few levels can tell.
+
+    Changes of all lines alone must be three, at two levels and of like strength.
+    """
     needed = _CLEAR_SOON if seen[0].after_s < _SOON_S else _CLEAR
-    return len(seen) > 1 or seen[0].sharpness > needed
+    if max(one.sharpness for one in seen) > needed:
+        return True
+    sudden = {one.shown_by for one in seen if one.sharpness > 0}
+    changes = [one for one in seen if one.sharpness == 0]
+    if len(sudden) > 1 or (sudden and changes):
+        return True
+    return alike(changes)
 
 
-def jumps(errors: Errors) -> list[Later]:
+def alike(changes: Sequence[Later]) -> bool:
+    """True for changes at two levels or more, at least three in all, of like strength."""
+    if len(changes) < _CHANGES:
+        return False
+    middle = float(np.median([one.share for one in changes]))
+    near = [one for one in changes if 1 / _LIKE < one.share / middle < _LIKE]
+    return len(near) >= _CHANGES and len({one.shown_by[0] for one in near}) > 1
+
+
+def jumps(errors: Errors, onset_s: float, until_s: float) -> list[Later]:
     """Sudden rises of the forward error after the first blow, each against the first."""
-    first = errors.first
     near = max(int(0.0015 * errors.rate_hz), 1)
     wide = max(int(0.006 * errors.rate_hz), 3)
-    ahead = np.lib.stride_tricks.sliding_window_view(np.pad(errors.size, (0, wide)), wide + 1)
-    peak = ahead.max(axis=1)
-    loud = peak > max(SHARP, _LEAST_SHARE * first)
-    inside = (errors.time_s > errors.smeared_s) & (errors.time_s < LONGEST_GAP_S)
+    stretch = errors.between(
+        onset_s - errors.smeared_s, min(onset_s + LONGEST_GAP_S, until_s - 0.01) + 0.006
+    )
+    size, raw = errors.size[stretch], errors.raw[stretch]
+    time_s = (stretch.start + np.arange(len(size))) / errors.rate_hz - onset_s
+    first = float(raw[np.abs(time_s) < errors.smeared_s].max(initial=0.0))
     found: list[Later] = []
-    for i in np.flatnonzero(loud & inside):
-        preceding = float(errors.size[max(i - near - wide, 0) : max(i - near + 1, 1)].max())
-        top = min(int(i) + int(np.argmax(ahead[i])), len(peak) - 1)
-        after_s = float(errors.time_s[top])
-        if peak[i] > _OVER_PRECEDING * preceding and not (
-            found and after_s - found[-1].after_s < 0.01
-        ):
-            size = float(peak[i])
-            found.append(Later(after_s, size / max(first, 1e-300), size))
+    for i in np.flatnonzero(
+        (size > SHARP) & (raw > _LEAST_SHARE * first) & (time_s > errors.smeared_s)
+    ):
+        preceding = float(raw[max(i - near - wide, 0) : max(i - near, 1)].max())
+        if raw[i] > _OVER_PRECEDING * preceding:
+            top = i + int(np.argmax(raw[i : i + wide + 1]))
+            if found and time_s[top] - found[-1].after_s < 0.01:
+                continue
+            share = float(raw[top]) / max(first, 1e-300)
+            found.append(Later(float(time_s[top]), share, float(size[top]), (errors.rate_hz, 0)))
     return found

@@ -44,7 +44,8 @@ class Innovation:
 
 def levels(signal: Real, rate_hz: float) -> list[Level]:
     """The recording at about 4 kHz (or its own lower rate), half of that, and so on to 60 Hz."""
-    level = lowered(Level(signal - np.median(signal), rate_hz), _FINEST_RATE_HZ)
+    level = lowered(Level(signal, rate_hz), _FINEST_RATE_HZ)
+    level = Level(level.samples - np.median(level.samples), level.rate_hz)
     out = [level]
     while level.rate_hz / _SCALE >= _COARSEST_RATE_HZ and len(level.samples) > 40 * _SCALE:
         level = lowered(level, level.rate_hz / _SCALE)
@@ -63,15 +64,28 @@ def lowered(level: Level, wanted_hz: float) -> Level:
     step = int(level.rate_hz // wanted_hz)
     if step < 2:
         return level
-    kernel = lowpass(
-        level.rate_hz, 0.35 * level.rate_hz / step, 0.65 * level.rate_hz / step, _STOPBAND_DB
-    )
-    padded = np.pad(level.samples, len(kernel) // 2, mode="edge")
-    count = (len(level.samples) - 1) // step + 1
+    rate = level.rate_hz
+    kernel = lowpass(rate, 0.35 * rate / step, 0.65 * rate / step, _STOPBAND_DB)
+    return Level(every(step, level.samples, kernel), rate / step)
+
+
+def every(step: int, samples: Real, kernel: Real) -> Real:
+    """(ceil(n / step),) every so-manieth sample of a signal (n,) filtered without delay.
+
+    Both are cut into pieces of one step, so that one product of matrices does the work: the sum
+    over each piece of the kernel, at each piece of the signal.
+    """
+    count = (len(samples) - 1) // step + 1
+    pieces = -(-len(kernel) // step)
+    half = len(kernel) // 2
+    past = (count + pieces) * step - half - len(samples)
+    padded = np.pad(samples, (half, max(past, 0)), mode="edge")
+    weights = np.pad(kernel, (0, pieces * step - len(kernel))).reshape(pieces, step)
+    sums = weights @ padded[: (count + pieces) * step].reshape(-1, step).T
     out = np.zeros(count)
-    for offset, weight in enumerate(kernel):
-        out += weight * padded[offset : offset + (count - 1) * step + 1 : step]
-    return Level(out, level.rate_hz / step)
+    for piece in range(pieces):
+        out += sums[piece, piece : piece + count]
+    return out
 
 
 def innovation(signal: Real, rate_hz: float, order: int) -> Innovation:
@@ -89,17 +103,26 @@ def innovation(signal: Real, rate_hz: float, order: int) -> Innovation:
 def levelled(signal: Real, rate_hz: float) -> Real:
     """The signal over its short-time level, so that a loud decay does not rule the predictor."""
     width = min(max(int(0.03 * rate_hz), 8), len(signal))
-    power = np.convolve(signal**2, np.ones(width) / width, mode="same")
+    power = smooth(signal**2, width)
     floor = max(float(np.median(power)) * 1e-3, float(power.max(initial=0.0)) * 1e-12, 1e-300)
     return np.asarray(signal / np.sqrt(power + floor))
+
+
+def smooth(values: Real, width: int) -> Real:
+    """(n,) running mean, over fewer values at the ends."""
+    total = np.concatenate([[0.0], np.cumsum(values)])
+    first = np.arange(len(values)) - width // 2
+    past = np.minimum(first + width, len(values))
+    first = np.maximum(first, 0)
+    return np.asarray(np.maximum(total[past] - total[first], 0.0) / (past - first))
 
 
 def predictor(signal: Real, order: int) -> Real:
     """(order + 1,) prediction-error filter by the autocorrelation method."""
     from scipy.linalg import solve_toeplitz
 
-    spectrum = np.abs(np.fft.rfft(signal, 2 * len(signal))) ** 2
-    lags = np.fft.irfft(spectrum)[: order + 1]
+    count = len(signal)
+    lags = np.array([signal[lag:] @ signal[: count - lag] for lag in range(order + 1)])
     if lags[0] <= 0:
         return np.array([1.0])
     column = lags[:-1].copy()

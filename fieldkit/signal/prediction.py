@@ -1,6 +1,7 @@
-"""A short linear predictor fitted near a blow, and where it fails.
+"""A short linear predictor fitted to the ringing after all blows together, and where it fails.
 
-Fitted to the ringing it foresees free decay down to the noise, forwards and backwards in time.
+The structure rings at the same frequencies after every blow, so one predictor serves them all: it
+foresees free decay down to the noise, forwards and backwards in time, and fails while a force acts.
 """
 
 from __future__ import annotations
@@ -15,6 +16,8 @@ from fieldkit.signal.innovation import Level
 
 Real = NDArray[np.float64]
 
+SHARP = 8.0
+"""Error over its typical size: above it at a blow, below 7 where there is none."""
 SHORTEST_GAP_S = 0.0075
 """Between two blows that can be told apart."""
 ORDERS = (12, 24, 40)
@@ -23,60 +26,109 @@ _BEFORE_S = 0.03
 _LOOK_S = 0.42
 _LEAST_LOOK = 200
 """Samples a predictor is fitted to at the coarse levels."""
-_TRIMS = 4
+_MOST_STRETCHES = 12
+_TRIMS = 3
 _KEEP = 0.9
+_RIDGE = 1e-10
 _BLOCK_S = 0.02
 _OVER_QUIET = 4.0
 _SMEARED = 6
 """Samples over which lowering the rate spreads a contact."""
+_TYPICAL_S = 0.025
+_TYPICAL = 16
+"""Samples at least whose median error is typical of their time."""
+_AROUND = 5
+
+
+@dataclass(frozen=True)
+class Predictor:
+    """Weights of the past samples, the latest first."""
+
+    weights: Real
+    """(p,)"""
+
+    @property
+    def order(self) -> int:
+        """Samples of the past it looks at."""
+        return len(self.weights)
+
+    def errors(self, samples: Real) -> Real:
+        """(n,) absolute errors; 0 for the first samples, which have no past."""
+        filtered = np.convolve(samples, np.concatenate([[1.0], -self.weights]))[: len(samples)]
+        filtered[: self.order] = 0.0
+        return np.abs(filtered)
 
 
 @dataclass(frozen=True)
 class Errors:
-    """Prediction error around a blow over its typical size, forwards or backwards."""
+    """Prediction error of a whole recording at one level, over what is typical of its time."""
 
-    time_s: Real
-    """(n,) from the blow."""
     size: Real
     """(n,)"""
+    raw: Real
+    """(n,) in the samples' unit."""
     rate_hz: float
     order: int
     """Of the predictor: for so many samples after a blow it errs still."""
+
+    @property
+    def sharp(self) -> NDArray[np.intp]:
+        """Where it is far above the typical size, the first and last samples left out."""
+        where = np.flatnonzero(self.size > SHARP)
+        edge = self.order + _SMEARED
+        return where[(where > edge) & (where < len(self.size) - edge)]
 
     @property
     def smeared_s(self) -> float:
         """How long after a blow no second one can be told."""
         return max(SHORTEST_GAP_S, (self.order + _SMEARED) / self.rate_hz)
 
-    @property
-    def first(self) -> float:
-        """Largest error at the blow itself."""
-        near = np.abs(self.time_s) < self.smeared_s
-        return float(self.size[near].max(initial=0.0))
+    def between(self, first_s: float, past_s: float) -> slice:
+        """Samples of a stretch of time."""
+        first = max(int(np.ceil(first_s * self.rate_hz)), 0)
+        return slice(first, max(int(np.ceil(past_s * self.rate_hz)), first))
 
 
-def prediction_errors(
-    level: Level,
-    onset_s: float,
-    until_s: float,
-    *,
-    backwards: bool = False,
-    slack_s: float = 0.0,
-    orders: Sequence[int] = ORDERS,
-) -> Errors | None:
-    """Errors from a little before the blow on; None where the stretch is too short to tell."""
-    rate = level.rate_hz
-    look_s = max(_LOOK_S, _LEAST_LOOK / rate) + slack_s
-    first = max(int((onset_s - _BEFORE_S - slack_s) * rate) - ORDERS[-1], 0)
-    last = min(int(min(onset_s + look_s, until_s) * rate), len(level.samples))
-    last = first + ringing_part(level.samples[first:last], rate)
-    stretch = level.samples[first:last]
-    usable = [order for order in orders if order <= len(stretch) // 6]
-    if not usable:
+def errors_of(level: Level, anchors_s: Sequence[float]) -> Errors | None:
+    """Forward errors by what was learnt after the anchors; None where that is too little."""
+    predictor = learnt(ringing_stretches(level, anchors_s))
+    if predictor is None:
         return None
-    size, order = sparing_errors(stretch[::-1] if backwards else stretch, usable)
-    time_s = (first + np.arange(len(size))) / rate - onset_s
-    return Errors(time_s, size[::-1] if backwards else size, rate, order)
+    raw = predictor.errors(level.samples)
+    least = max(float(np.abs(level.samples).max()) * 1e-7, 1e-280)
+    size = raw / np.maximum(typical(raw, level.rate_hz), least)
+    return Errors(size, raw, level.rate_hz, predictor.order)
+
+
+def backward_predictor(level: Level, anchors_s: Sequence[float]) -> Predictor | None:
+    """The predictor of the past from the future, for samples turned round."""
+    return learnt([stretch[::-1] for stretch in ringing_stretches(level, anchors_s)])
+
+
+def typical(raw: Real, rate_hz: float) -> Real:
+    """(n,) running median of the medians of short blocks."""
+    block = min(max(int(_TYPICAL_S * rate_hz), _TYPICAL), len(raw))
+    count = len(raw) // block
+    medians = np.median(raw[: count * block].reshape(count, block), axis=1)
+    padded = np.pad(medians, _AROUND // 2, mode="reflect" if count > _AROUND else "edge")
+    around = np.median(np.lib.stride_tricks.sliding_window_view(padded, _AROUND), axis=1)
+    return np.concatenate([np.repeat(around, block), np.full(len(raw) - count * block, around[-1])])
+
+
+def ringing_stretches(level: Level, anchors_s: Sequence[float]) -> list[Real]:
+    """What rings from a little before each anchor on, each of unit power."""
+    rate = level.rate_hz
+    look_s = max(_LOOK_S, _LEAST_LOOK / rate)
+    chosen = np.unique(np.linspace(0, len(anchors_s) - 1, _MOST_STRETCHES).astype(int))
+    stretches = []
+    for at_s in (anchors_s[i] for i in chosen if anchors_s):
+        first = max(int((at_s - _BEFORE_S) * rate) - ORDERS[-1], 0)
+        last = min(int((at_s + look_s) * rate), len(level.samples))
+        stretch = level.samples[first : first + ringing_part(level.samples[first:last], rate)]
+        power = float(np.mean(stretch**2)) if len(stretch) else 0.0
+        if power > 0:
+            stretches.append(stretch / np.sqrt(power))
+    return stretches
 
 
 def ringing_part(stretch: Real, rate_hz: float) -> int:
@@ -94,34 +146,50 @@ def ringing_part(stretch: Real, rate_hz: float) -> int:
     return min(max(last, len(stretch) // 4), len(stretch))
 
 
-def sparing_errors(stretch: Real, orders: Sequence[int]) -> tuple[Real, int]:
-    """(n,) errors over their typical size by the lowest order nearly as good as the highest.
+def learnt(stretches: Sequence[Real]) -> Predictor | None:
+    """The predictor of the lowest order nearly as good as the highest, by trimmed least squares.
 
-    A low order forgets a blow soon; many modes need a high one.
+    The samples it predicts worst, which hold the blows, are left out (Rousseeuw 1984). A low order
+    forgets a blow soon; many modes need a high one.
     """
-    tried = [robust_errors(stretch, order) for order in orders]
-    best = min(typical for _, typical in tried)
-    chosen = next(i for i, (_, typical) in enumerate(tried) if typical <= _NEARLY * best)
-    error, typical = tried[chosen]
-    least = max(typical, float(np.abs(stretch).max()) * 1e-7, 1e-280)
-    return error / least, orders[chosen]
-
-
-def robust_errors(stretch: Real, order: int) -> tuple[Real, float]:
-    """(n,) error of the least-squares predictor fitted where it works, and its median there.
-
-    Trimmed least squares: the samples it predicts worst, which hold the blows, are left out. The
-    first ``order`` samples have no past and get 0.
-    """
-    rows = np.lib.stride_tricks.sliding_window_view(stretch, order + 1)
-    past, now = rows[:, :-1], rows[:, -1]
-    ridge = (1e-10 * float(np.sum(stretch**2)) + 1e-280) * np.eye(order)
-    kept = np.ones(len(now), bool)
-    error = now
-    for _ in range(_TRIMS):
-        a = past[kept]
-        weights = np.linalg.solve(a.T @ a + ridge, a.T @ now[kept])
+    total = sum(len(stretch) for stretch in stretches)
+    orders = [order for order in ORDERS if order <= total // 6]
+    rows = [past_and_now(stretch, orders[-1]) for stretch in stretches] if orders else []
+    if sum(len(r) for r in rows) <= 3 * (orders[-1] if orders else 1):
+        return None
+    data = np.concatenate(rows)
+    past, now = data[:, 1:], data[:, 0]
+    products = data.T @ data
+    kept = products
+    weights = solved(kept, orders[-1])
+    for _ in range(_TRIMS - 1):
         error = np.abs(now - past @ weights)
-        kept = error <= np.quantile(error, _KEEP)
-    freedom = max(1 - order / np.count_nonzero(kept), 0.1)
-    return np.concatenate([np.zeros(order), error]), float(np.median(error)) / np.sqrt(freedom)
+        bad = data[error > quantile(error, _KEEP)]
+        kept = products - bad.T @ bad
+        weights = solved(kept, orders[-1])
+    best = float(np.median(np.abs(now - past @ weights)))
+    for order in orders[:-1]:
+        fewer = solved(kept, order)
+        if float(np.median(np.abs(now - past[:, :order] @ fewer))) <= _NEARLY * best:
+            return Predictor(fewer)
+    return Predictor(weights)
+
+
+def past_and_now(stretch: Real, order: int) -> Real:
+    """(n - order, order + 1) each sample and those before it, the latest first."""
+    if len(stretch) <= order:
+        return np.zeros((0, order + 1))
+    return np.lib.stride_tricks.sliding_window_view(stretch, order + 1)[:, ::-1]
+
+
+def solved(products: Real, order: int) -> Real:
+    """(order,) least-squares weights from the sums of products of samples and their past."""
+    square = products[1 : order + 1, 1 : order + 1]
+    ridge = (_RIDGE * float(np.trace(products)) + 1e-280) * np.eye(order)
+    return np.asarray(np.linalg.solve(square + ridge, products[1 : order + 1, 0]))
+
+
+def quantile(values: Real, share: float) -> float:
+    """The value that a share of them does not exceed."""
+    at = min(int(share * len(values)), len(values) - 1)
+    return float(np.partition(values, at)[at])

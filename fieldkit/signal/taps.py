@@ -9,15 +9,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.signal.blows import (
-    DOUBLE_SHARE,
     GUARD_S,
+    SOFT_GUARD_S,
     Blow,
-    contact_s,
     find_blows,
     spectral_level,
     without_rattle,
 )
-from fieldkit.signal.innovation import Level, levels
+from fieldkit.signal.innovation import levels
 from fieldkit.signal.modes import TapRecord
 from fieldkit.signal.objections import Missing, gap_reason, objections
 from fieldkit.signal.ringing import Ringing, ringing
@@ -81,7 +80,7 @@ def find_taps(
     if background_s[1] - background_s[0] < _LEAST_QUIET_S:
         background_s = longest_quiet(blows, picture, background_s)
     blows = without_rattle(blows, samples, rate_hz, full_scale)
-    taps = tuple(read_blow(b, samples, rate_hz, scales, picture, full_scale) for b in blows)
+    taps = tuple(read_blow(b, samples, rate_hz, picture, full_scale) for b in blows)
     background = (int(background_s[0] * rate_hz), int(background_s[1] * rate_hz))
     if gaps:
         taps = tuple(without_gaps(tap, gaps, rate_hz) for tap in taps)
@@ -121,7 +120,11 @@ def cut(
 
 def quiet_before(blows: Sequence[Blow], duration_s: float) -> tuple[float, float]:
     """What lies before the first blow."""
-    return (0.0, max(blows[0].onset.at_s - GUARD_S, 0.0)) if blows else (0.0, duration_s)
+    if not blows:
+        return (0.0, duration_s)
+    first = blows[0].onset
+    guard_s = GUARD_S if first.rise_s == 0 else SOFT_GUARD_S
+    return (0.0, max(first.at_s - guard_s, 0.0))
 
 
 def longest_quiet(
@@ -150,15 +153,12 @@ def read_blow(
     blow: Blow,
     samples: Real,
     rate_hz: float,
-    scales: Sequence[Level],
     picture: Ringing,
     full_scale: float | None,
 ) -> Tap:
     """One blow as a tap: its free decay, and what speaks against it."""
     at_s = blow.onset.at_s
-    weak = [x for x in blow.later if x.share < DOUBLE_SHARE]
-    begin_s = at_s + (weak[-1].after_s if weak else 0.0)
-    start_s = begin_s + contact_s(blow, begin_s, scales)
+    start_s = at_s + blow.contact_s
     limit_s = blow.limit_s - (0.0 if blow.last else GUARD_S / 2)
     end_s = max(picture.end_s(start_s, limit_s) + _MORE_S, start_s + _LEAST_RECORD_S)
     end_s = max(min(end_s, limit_s), start_s)
