@@ -23,6 +23,11 @@ def percent(chance: float) -> str:
     return "<1 %" if chance < 0.005 else f"{100 * chance:.0f} %"
 
 
+def share(part: float) -> str:
+    """A share from 0 to 1 to two decimals; never nothing."""
+    return "<0.01" if 0 < part < 0.005 else f"{part:.2f}"
+
+
 def with_doubt(value: float, sd: float | None, most_decimals: int = 4) -> tuple[str, str]:
     """A value and its standard deviation to the digits the deviation leaves standing."""
     if sd is None:

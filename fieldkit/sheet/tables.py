@@ -9,7 +9,7 @@ from fieldkit.detune.matched import Match
 from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.job.document import Job
 from fieldkit.quantity import show
-from fieldkit.sheet.plain import clean, paragraph, percent, table, with_doubt
+from fieldkit.sheet.plain import clean, paragraph, percent, share, table, with_doubt
 from fieldkit.signal.modes import MeasuredMode, RefusedMode
 from fieldkit.span.static import WeightAnswer
 from fieldkit.workup import RunningReading, StateModes, TapReading, excitation_of
@@ -82,7 +82,7 @@ def _running_modes(reading: RunningReading) -> list[str]:
                 (
                     *with_doubt(mode.frequency_hz, mode.frequency_sd_hz),
                     *_damping(mode),
-                    f"{mode.strength:.2f}",
+                    share(mode.strength),
                 )
                 for mode in found.modes
             ],
@@ -231,11 +231,11 @@ def _tap_recording(reading: TapReading) -> list[str]:
     usable = sum(tap.usable for tap in taps)
     lines = [
         f"{clean(reading.file)}: {reading.duration_s:.1f} s at {reading.rate_hz:g} Hz, "
-        f"{len(taps)} taps, {usable} usable"
+        f"{len(taps)} tap{'' if len(taps) == 1 else 's'}, {usable} usable"
     ]
     for i, tap in enumerate(taps, start=1):
         verdict = "usable" if tap.usable else "; ".join(tap.reasons)
-        lines += paragraph(f"{i:2d}  at {tap.at_s:7.3f} s  {verdict}", 2)
+        lines += paragraph(verdict, 2, f"{i:2d}  at {tap.at_s:7.3f} s  ")
     return lines + [line for note in reading.notes for line in paragraph(note, 2, "! ")]
 
 
@@ -250,7 +250,7 @@ def _modes_table(modes: Sequence[MeasuredMode]) -> list[str]:
                     mode.direction or "unknown",
                     mode.state,
                     str(mode.taps) if mode.taps else mode.source,
-                    f"{mode.strength:.2f}",
+                    share(mode.strength),
                 )
                 for mode in modes
             ],

@@ -6,7 +6,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from fieldkit.sheet.plain import WIDTH, clean, paragraph, table, with_doubt
+from fieldkit.sheet.plain import WIDTH, clean, paragraph, share, table, with_doubt
 
 
 @given(st.text())
@@ -41,3 +41,10 @@ def test_paragraphs_keep_to_the_page(text):
 )
 def test_digits_follow_the_doubt(value, sd, shown):
     assert with_doubt(value, sd) == shown
+
+
+@pytest.mark.parametrize(
+    ("part", "shown"), [(1.0, "1.00"), (0.25, "0.25"), (0.004, "<0.01"), (0.0, "0.00")]
+)
+def test_a_small_share_is_not_shown_as_nothing(part, shown):
+    assert share(part) == shown
