@@ -66,6 +66,7 @@ class Session:
         self._meter = Meter(rate_hz=source.rate_hz, channels=source.channels)
         self._listeners: tuple[Listener, ...] = (self._ring,)
         self._recording: _Recording | None = None
+        self._earlier: list[_Recording] = []
         self._run = 0
         self._frames = self._lost = self._gaps = 0
         self._paused = False
@@ -151,6 +152,11 @@ class Session:
     def end_recording(self) -> None:
         """End the recording; the session goes on."""
         self._inbox.put(lambda: self._close_recording("stopped by the user"))
+
+    def set_aside(self, frame: int, aside: bool = True) -> None:
+        """Mark the blow at a frame of the session in the recording that holds it, or take the mark
+        away; without a recording of it nothing is done."""
+        self._inbox.put(lambda: self._mark_aside(frame, aside))
 
     def _info(self, channels: Sequence[ChannelSetup]) -> RecordingInfo:
         source = self._source
@@ -295,6 +301,8 @@ class Session:
             writer.close("the input was closed")
             return
         self._close_recording("another recording began")
+        if self._recording is not None:
+            self._earlier.append(self._recording)
         first, samples = self.latest(before_s)
         self._recording = _Recording(writer, first)
         if len(samples):
@@ -307,6 +315,13 @@ class Session:
         self._recording.done = True
         if self._recording.writer.failure:
             self._message = self._recording.writer.failure
+
+    def _mark_aside(self, frame: int, aside: bool) -> None:
+        held = [r for r in (*self._earlier, self._recording) if r is not None]
+        holding = [r for r in held if r.first_frame <= frame]
+        if holding:
+            holding[-1].writer.set_aside(frame, aside)
+            self._message = holding[-1].writer.trouble or self._message
 
     def _set_paused(self, paused: bool) -> None:
         self._paused = paused

@@ -56,10 +56,17 @@ class RecordingInfo:
     """Why it ended; empty while it goes on, and after the program was killed."""
     continues: str = ""
     """File that this one goes on from."""
+    set_aside: tuple[int, ...] = ()
+    """Frames of blows that the user does not want to count; their samples stay."""
 
     def with_gap(self, gap: Gap) -> RecordingInfo:
         """With one more gap, later than the others."""
         return replace(self, gaps=(*self.gaps, gap))
+
+    def with_set_aside(self, frame: int, aside: bool) -> RecordingInfo:
+        """With the blow at a frame set aside, or taken in again."""
+        others = set(self.set_aside) - {frame}
+        return replace(self, set_aside=tuple(sorted(others | ({frame} if aside else set()))))
 
 
 def sidecar_path(recording: Path) -> Path:
@@ -101,7 +108,7 @@ def _text(info: RecordingInfo) -> str:
 
     document = tomlkit.document()
     document.add(tomlkit.comment("What the recording beside this file measured."))
-    head = {key: value for key, value in asdict(info).items() if value != ""}
+    head = {key: value for key, value in asdict(info).items() if value not in ("", ())}
     document.update({"fieldkit_recording": FORMAT} | _without(head, "channels", "gaps"))
     document["channel"] = [setup.as_table() for setup in info.channels]
     if info.gaps:
@@ -131,6 +138,7 @@ def _info(table: Mapping[str, Any]) -> RecordingInfo:
         gaps=tuple(_gap(entry) for entry in table.get("gap", ())),
         ended=str(table.get("ended", "")),
         continues=str(table.get("continues", "")),
+        set_aside=tuple(int(frame) for frame in table.get("set_aside", ())),
     )
 
 

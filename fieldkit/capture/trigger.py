@@ -18,8 +18,8 @@ Real = NDArray[np.float64]
 HOP_S = 0.01
 PRE_TRIGGER_S = 0.25
 QUIET_S = 4.0
-"""Before the pre-trigger, where the record before leaves as much: in less, what noise stirs passes for
-steady lines."""
+"""Before the pre-trigger, where the record before leaves as much: where less is heard, what noise
+stirs passes for steady lines."""
 SHORTEST_S = 2.0
 LONGEST_S = 30.0
 TIME_CONSTANTS = 6.0

@@ -6,12 +6,12 @@ import errno
 import os
 import threading
 from contextlib import suppress
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from pathlib import Path
 from queue import SimpleQueue
 
 from fieldkit.capture.clock import now_s
-from fieldkit.capture.sidecar import Gap, RecordingInfo, sidecar_path, write_info
+from fieldkit.capture.sidecar import Gap, RecordingInfo, read_info, sidecar_path, write_info
 from fieldkit.capture.source import Block
 from fieldkit.capture.wav_file import WavFile
 from fieldkit.errors import InputError, Place
@@ -21,6 +21,14 @@ SYNC_EVERY_S = 1.0
 MOST_WAITING_S = 20.0
 """So much may wait for a slow disk; beyond it frames are lost, and marked."""
 _NO_SPACE = (errno.ENOSPC, errno.EDQUOT, errno.EFBIG)
+
+
+@dataclass(frozen=True, slots=True)
+class _Aside:
+    """A wish about the blow at a frame, counted as the blocks are."""
+
+    frame: int
+    aside: bool
 
 
 class RecordingWriter:
@@ -46,12 +54,15 @@ class RecordingWriter:
         self.frames_written = 0
         self.gaps = 0
         """In all parts."""
+        self.trouble = ""
+        """What could not be noted beside the samples, as a sentence; they are safe."""
         self._most_frames = most_frames
         self._part_frames = part_frames or MAX_SAMPLES // len(info.channels)
         self._most_waiting = round(waiting_s * info.rate_hz)
         self._fed = self._taken = 0
         self._dropped = 0
-        self._queue: SimpleQueue[Block | str] = SimpleQueue()
+        self._queue: SimpleQueue[Block | _Aside | str] = SimpleQueue()
+        self._offsets: list[tuple[int, int]] = []
         self._info = info
         self._file = self._create(path, info)
         self._synced_s = now_s()
@@ -81,6 +92,13 @@ class RecordingWriter:
         self._fed += len(block.samples)
         self._queue.put(block)
 
+    def set_aside(self, frame: int, aside: bool) -> None:
+        """Mark the blow at a frame, counted as the blocks are, or take the mark away."""
+        if self._thread.is_alive():
+            self._queue.put(_Aside(frame, aside))
+        else:
+            self._note_aside(_Aside(frame, aside))
+
     def close(self, ended: str, *, within_s: float = 30.0) -> None:
         """Write what waits, note why the recording ended, close; waits for the disk."""
         self._queue.put(ended)
@@ -88,6 +106,9 @@ class RecordingWriter:
 
     def _run(self) -> None:
         while not isinstance(item := self._queue.get(), str):
+            if isinstance(item, _Aside):
+                self._note_aside(item)
+                continue
             self._taken += len(item.samples)
             if not self.finished:
                 self._guarded(item)
@@ -102,6 +123,9 @@ class RecordingWriter:
     def _write(self, block: Block) -> None:
         if self._file.frames >= self._part_frames:
             self._next_part()
+        offset = block.first_frame - self.frames_written
+        if not self._offsets or self._offsets[-1][1] != offset:
+            self._offsets.append((block.first_frame, offset))
         if block.lost_frames != 0 and self.frames_written:
             self._mark(block)
         samples = block.samples
@@ -127,10 +151,24 @@ class RecordingWriter:
         write_info(self.paths[-1], self._info)
         self.gaps += 1
 
+    def _note_aside(self, wish: _Aside) -> None:
+        offsets = [offset for first, offset in self._offsets if first <= wish.frame]
+        if not offsets:
+            return
+        part, frame = divmod(wish.frame - offsets[-1], self._part_frames)
+        try:
+            if part == len(self.paths) - 1:
+                self._info = self._info.with_set_aside(frame, wish.aside)
+                write_info(self.paths[-1], self._info)
+            elif (info := read_info(self.paths[part])) is not None:
+                write_info(self.paths[part], info.with_set_aside(frame, wish.aside))
+        except (OSError, InputError) as error:
+            self.trouble = f"the mark of a blow could not be written ({error})"
+
     def _next_part(self) -> None:
         first, last = self.paths[0], self.paths[-1]
         path = first.with_stem(f"{first.stem}-part{len(self.paths) + 1}")
-        following = replace(self._info, gaps=(), continues=last.name)
+        following = replace(self._info, gaps=(), set_aside=(), continues=last.name)
         file = WavFile(path, rate_hz=following.rate_hz, channels=len(following.channels))
         write_info(path, following)
         done, self._file = self._file, file

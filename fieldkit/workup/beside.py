@@ -11,8 +11,10 @@ from fieldkit.capture.sidecar import Gap, RecordingInfo, read_info, sidecar_path
 from fieldkit.errors import InputError, Place
 from fieldkit.job.document import HammerEntry, RecordingEntry
 from fieldkit.signal.recording import Recording
+from fieldkit.signal.taps import Tap, TapSearch
 
 _SHOWN = 3
+_SAME_BLOW_S = 0.1
 
 
 @dataclass(frozen=True)
@@ -22,6 +24,8 @@ class Beside:
     gaps: tuple[tuple[int, int], ...] = ()
     """Frames are missing directly before a sample from the first to the second."""
     notes: tuple[str, ...] = ()
+    set_aside: tuple[int, ...] = ()
+    """Samples at which a blow begins that the user does not want to count."""
 
 
 def beside(path: Path, recording: Recording) -> Beside:
@@ -34,7 +38,21 @@ def beside(path: Path, recording: Recording) -> Beside:
         return Beside()
     _check_belongs(info, path, recording)
     notes = [*_origin(info), *_gap_notes(info.gaps, info.rate_hz)]
-    return Beside(tuple(gap.range for gap in info.gaps), tuple(notes))
+    return Beside(tuple(gap.range for gap in info.gaps), tuple(notes), info.set_aside)
+
+
+def without_set_aside(search: TapSearch, set_aside: Sequence[int], rate_hz: float) -> TapSearch:
+    """The search with those taps unusable that the user set aside."""
+    times_s = [sample / rate_hz for sample in set_aside]
+    if not times_s:
+        return search
+
+    def judged(tap: Tap) -> Tap:
+        if min(abs(tap.at_s - at_s) for at_s in times_s) > _SAME_BLOW_S:
+            return tap
+        return replace(tap, usable=False, reasons=("set aside by the user", *tap.reasons))
+
+    return replace(search, taps=tuple(judged(tap) for tap in search.taps))
 
 
 def described(entry: RecordingEntry) -> RecordingEntry:

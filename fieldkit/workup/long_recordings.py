@@ -18,6 +18,7 @@ from fieldkit.signal.running import RunningPicture
 from fieldkit.signal.source import RecordingSource
 from fieldkit.signal.steady_lines import RunningLine
 from fieldkit.signal.taps import TapSearch, longest_whole
+from fieldkit.workup.beside import Beside, without_set_aside
 from fieldkit.workup.hammer import HammerReading, TwoChannels, read_hammer
 from fieldkit.workup.running_modes import LONGEST_S, running_modes
 
@@ -53,12 +54,13 @@ class FoundRunning:
 def taps_of_long(
     source: RecordingSource,
     entry: RecordingEntry,
-    gaps: Sequence[Missing],
+    known: Beside,
     meaning: Meaning,
     progress: Progress,
 ) -> FoundTaps:
     """All blows of a long recording, and the decays that modes are estimated from."""
-    search = find_taps_in(source, entry.channel, gaps=gaps, progress=progress)
+    search = find_taps_in(source, entry.channel, gaps=known.gaps, progress=progress)
+    search = without_set_aside(search, known.set_aside, source.rate_hz)
     search, hammer = _with_hammer(source, entry, search, meaning)
     records = cut_from(source, entry.channel, search, entry.path.name)
     return FoundTaps(search, records, hammer, what_was_cut(search, records))

@@ -18,7 +18,7 @@ from fieldkit.signal.running import RunningPicture, read_running
 from fieldkit.signal.source import RecordingSource, as_far_as_readable, held, open_recording
 from fieldkit.signal.spectrum import Spectrum, tap_spectrum
 from fieldkit.signal.taps import TapSearch, cut, find_taps, longest_whole
-from fieldkit.workup.beside import beside, described
+from fieldkit.workup.beside import Beside, beside, described, without_set_aside
 from fieldkit.workup.hammer import HammerReading, with_hammer
 from fieldkit.workup.limits import UP_TO_HZ
 from fieldkit.workup.long_recordings import (
@@ -86,14 +86,14 @@ def read_tap(entry: RecordingEntry, progress: Progress | None = None) -> TapRead
         work = partial(
             taps_of_long,
             entry=entry,
-            gaps=known.gaps,
+            known=known,
             meaning=meaning,
             progress=progress or Progress(),
         )
         found, source = as_far_as_readable(source, work)
     else:
         source = held(source.loaded())
-        found = _taps_of_short(source.loaded(), entry, known.gaps, meaning)
+        found = _taps_of_short(source.loaded(), entry, known, meaning)
     spectrum = None
     if found.records:
         spectrum = tap_spectrum(
@@ -117,13 +117,15 @@ def read_tap(entry: RecordingEntry, progress: Progress | None = None) -> TapRead
 
 
 def _taps_of_short(
-    recording: Recording, entry: RecordingEntry, gaps: Sequence[Missing], meaning: Meaning
+    recording: Recording, entry: RecordingEntry, known: Beside, meaning: Meaning
 ) -> FoundTaps:
     """The taps of a recording that is held in memory."""
     signal = channel_signal(recording, entry.channel)
-    search = find_taps(signal, recording.rate_hz, full_scale=recording.full_scale, gaps=gaps)
+    rate_hz = recording.rate_hz
+    search = find_taps(signal, rate_hz, full_scale=recording.full_scale, gaps=known.gaps)
+    search = without_set_aside(search, known.set_aside, rate_hz)
     search, hammer = with_hammer(entry, recording, signal, search, *meaning)
-    records = cut(signal, recording.rate_hz, search, source=entry.path.name)
+    records = cut(signal, rate_hz, search, source=entry.path.name)
     return FoundTaps(search, records, hammer)
 
 

@@ -134,3 +134,12 @@ def test_a_damaged_sidecar_is_told_with_its_file(recording, text):
     sidecar_path(recording).write_text(text)
     with pytest.raises(InputError, match=r"tap\.wav\.toml"):
         read_tap(entry_for(recording, "tap"))
+
+
+def test_a_blow_the_user_set_aside_does_not_count_and_says_so(recording):
+    """Its samples stay in the recording."""
+    write_info(recording, replace(INFO, set_aside=(round(6.0 * RATE_HZ),)))
+    reading = read_tap(entry_for(recording, "tap"))
+    assert usable(reading) == [True, False, True]
+    assert reading.search.taps[1].reasons == ("set aside by the user",)
+    assert len(reading.records) == 2
