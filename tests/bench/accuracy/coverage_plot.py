@@ -30,8 +30,13 @@ def plot(trials: Sequence[Trial], path: Path) -> None:
     figure, panels = pyplot.subplots(1, 2, figsize=(10, 5.2), sharey=True, layout="constrained")
     for panel, name in zip(panels, ("frequency", "damping"), strict=True):
         panel.plot([0, 1], [0, 1], color="0.4", linewidth=1)
-        for way, colour in zip(WAYS, ("#0b5fa5", "#c2571a"), strict=True):
-            draw(panel, scores(trials, way, name), way, colour)
+        both = {way: scores(trials, way, name) for way in WAYS}
+        chance = _SIMULTANEOUS_95 / np.sqrt(max(*map(len, both.values()), 1))
+        label = "what chance alone would do"
+        low, high = _STATED - chance, _STATED + chance
+        panel.fill_between(_STATED, low, high, color="0.85", linewidth=0, label=label)
+        for (way, values), colour in zip(both.items(), ("#0b5fa5", "#c2571a"), strict=True):
+            draw(panel, values, way, colour)
         panel.set(title=name, xlabel="stated probability of an interval", xlim=(0, 1), ylim=(0, 1))
         panel.set_aspect("equal")
         panel.grid(alpha=0.3)
@@ -42,11 +47,14 @@ def plot(trials: Sequence[Trial], path: Path) -> None:
 
 
 def draw(panel, values: Real, label: str, colour: str) -> None:  # type: ignore[no-untyped-def]
-    """One curve with the band that chance alone would fill."""
-    actual = held(values, _STATED)
-    band = _SIMULTANEOUS_95 / np.sqrt(max(len(values), 1))
-    panel.fill_between(_STATED, actual - band, actual + band, color=colour, alpha=0.12, linewidth=0)
-    panel.plot(_STATED, actual, color=colour, linewidth=2, label=f"{label}, {len(values)} modes")
+    """One curve, with a dot at 95 %."""
+    panel.plot(
+        _STATED,
+        held(values, _STATED),
+        color=colour,
+        linewidth=2,
+        label=f"{label}, {len(values)} modes",
+    )
     at_95 = float(held(values, np.array([0.95]))[0])
     panel.plot([0.95], [at_95], "o", color=colour)
 
