@@ -11,6 +11,7 @@ import pytest
 
 from fieldkit.signal.modes import TapRecord, estimate_modes
 from fieldkit.signal.running import read_running
+from fieldkit.signal.running_modes import estimate_running_modes
 from fieldkit.signal.taps import cut, find_taps
 from tests.published.outside import seismic_traces
 
@@ -22,6 +23,8 @@ STATION = ("io", "mseed", "tests", "data", "timingquality.mseed")
 """Station BW.BGLD, east, 200 Hz, 208 s, with 50 Hz mains."""
 QUIET = ("io", "gse2", "tests", "data", "loc_RJOB20050831023349.z")
 """Station RJOB, vertical, 200 Hz, 60 s of quiet ground."""
+EARTHQUAKE = ("io", "nied", "tests", "data", "test.knet")
+"""Strong-motion station AKT013, 100 Hz, 59 s of an earthquake."""
 HOUR = ("signal", "tests", "data")
 """Folder of ref_STS2 and ref_unknown: two seismometers side by side, 200 Hz, one hour."""
 
@@ -72,6 +75,19 @@ def test_station_beside_mains_claims_no_mode() -> None:
     lines = read_running(samples, rate_hz).lines
     steady = [line.frequency_hz for line in lines if line.steady]
     assert steady == [pytest.approx(MAINS_HZ, abs=0.25)]
+
+
+@pytest.mark.parametrize(
+    ("record", "mains"), [(STATION, True), (QUIET, False), (EARTHQUAKE, False)]
+)
+def test_ground_motion_taken_for_running_vibration_claims_no_mode(
+    record: tuple[str, ...], mains: bool
+) -> None:
+    """Output only: neither hum, nor the ground's noise, nor an earthquake is a mode of pipework."""
+    samples, rate_hz = seismic_traces(*record)[0]
+    estimate = estimate_running_modes(samples, rate_hz, high_hz=0.4 * rate_hz)
+    assert not estimate.modes
+    assert any(abs(tone.frequency_hz - MAINS_HZ) < 0.25 for tone in estimate.tones) == mains
 
 
 def test_no_blow_in_a_minute_of_quiet_ground() -> None:
