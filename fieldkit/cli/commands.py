@@ -170,7 +170,11 @@ def running(
             else [workup.entry_for(path, "running", channel, rate) for path in files]
         )
         highest_hz = job.goal.up_to_hz if job else up_to
-        readings = tuple(workup.read_running_entry(entry, highest_hz) for entry in entries)
+        progress = output.progress()
+        readings = tuple(
+            workup.read_running_entry(entry, highest_hz, progress) for entry in entries
+        )
+        output.clear_progress()
         output.answer(
             documents.running(readings, job), tables.running(readings, job), as_json=as_json
         )

@@ -117,7 +117,7 @@ class TraceWanted(Message):
 
 @dataclass
 class TraceReady(Message):
-    """The samples (n,) of the channel that a recording entry names; empty where unreadable."""
+    """What a recording entry names (n,), evenly over its time; empty where unreadable."""
 
     entry: RecordingEntry
     samples: NDArray[np.float64]

@@ -79,12 +79,14 @@ def _span_modes(job: Job, ticket: int) -> say.SpanReady:
 
 
 def load_trace(entry: RecordingEntry, post: Post) -> None:
-    """The samples that a recording entry names."""
-    from fieldkit.signal.recording import channel_signal, load
+    """The samples that a recording entry names, or their outline where they are many."""
+    from fieldkit.signal.outline import outline
+    from fieldkit.signal.source import as_far_as_readable, open_recording
 
     try:
-        recording = load(entry.path, rate_hz=entry.rate_hz)
-        post(say.TraceReady(entry, channel_signal(recording, entry.channel)))
+        source = open_recording(entry.path, rate_hz=entry.rate_hz)
+        samples, _ = as_far_as_readable(source, lambda whole: outline(whole, entry.channel))
+        post(say.TraceReady(entry, samples))
     except FieldkitError:
         post(say.TraceReady(entry, np.empty(0)))
 

@@ -126,7 +126,7 @@ class TapView(View):
         if found is None or signal is None:
             plot.show((), 1.0)
         else:
-            plot.show(signal, found.rate_hz, blow_marks(found))
+            plot.show(signal, len(signal) / found.duration_s or 1.0, blow_marks(found))
         if found is not None and signal is None:
             self.post_message(TraceWanted(found.entry))
 
