@@ -17,7 +17,7 @@ from fieldkit.signal.pruning import pruned
 from fieldkit.signal.search import Found, search
 from fieldkit.signal.tones import tone_components
 from fieldkit.signal.traces import Component
-from fieldkit.signal.verdicts import Judged, judged
+from fieldkit.signal.verdicts import Judged, hardly_decays, judged, rings_on
 
 _LEAST_SAMPLES = 64
 
@@ -107,7 +107,9 @@ def estimate_modes(
     if odd.any():
         kept = [r for r, left_out in zip(long_enough, odd, strict=True) if not left_out]
         ready, found, fitted = fitted_modes(kept, low_hz, high_hz)
-    verdicts = judged(fitted, ready.traces, ready.lines, found.unresolved)
+    verdicts = judged(
+        fitted, ready.traces, ready.lines, found.unresolved, quiet_before=ready.has_background
+    )
     estimate = told(verdicts, found, ready, low_hz, high_hz)
     left_out = tuple(without_tap(int(i) + 1, len(long_enough)) for i in np.flatnonzero(odd))
     return replace(estimate, warnings=left_out + estimate.warnings)
@@ -156,8 +158,17 @@ def told(
     accepted = [v for v in inside if not v.reason]
     strongest = max((float(v.energy.sum()) for v in accepted), default=0.0)
     modes = [measured(v, strongest) for v in accepted]
-    steady = [p for p in found.parts if p.steady] + [v.part for v in inside if v.steady]
+    still = [p for p in found.parts if p.steady]
+    ringing = [p for p in still if ready.has_background and rings_on(p, ready.traces, ready.lines)]
+    steady = [p for p in still if all(p is not r for r in ringing)] + [
+        v.part for v in inside if v.steady
+    ]
     refused = [RefusedMode(v.estimate.frequency_hz.value, v.reason) for v in inside if v.reason]
+    refused += [
+        RefusedMode(p.frequency_hz, hardly_decays(ready.traces))
+        for p in ringing
+        if low_hz <= p.frequency_hz <= high_hz
+    ]
     return ModeEstimate(
         tuple(sorted(modes, key=lambda m: m.frequency_hz)),
         told_tones(steady, [v.part for v in accepted], low_hz, high_hz),

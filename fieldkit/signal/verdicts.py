@@ -58,8 +58,10 @@ def judged(
     traces: Sequence[Trace],
     lines: Sequence[Line],
     unresolved: Sequence[tuple[complex, complex]] = (),
+    *,
+    quiet_before: bool = False,
 ) -> list[Judged]:
-    """Every fitted component, judged."""
+    """Every fitted component, judged; ``quiet_before``: the lines before the blow are known."""
     gains = [tap_gains(f, traces) for f in fitted]
     strength = np.sum([decay_energy(f.part, traces) for f in fitted], axis=0)
     out = []
@@ -70,10 +72,16 @@ def judged(
             estimate = spanning(estimate, pair)
         estimate = drifting(estimate, one.part.drift_hz)
         steady = steadiness(one.part, estimate, traces, lines)
+        ringing = bool(steady) and quiet_before and rings_on(one.part, traces, lines)
+        steady = hardly_decays(traces) if ringing else steady
         energy = decay_energy(one.part, traces)
         doubtful = "" if twins and one.part.damping_ratio < LARGEST_DAMPING else objection(estimate)
         reason = steady or doubtful or lonely(gain, strength - energy)
-        out.append(Judged(one.part, estimate, energy, gain, reason, bool(steady), bool(twins)))
+        out.append(
+            Judged(
+                one.part, estimate, energy, gain, reason, bool(steady) and not ringing, bool(twins)
+            )
+        )
     return out
 
 
@@ -120,17 +128,39 @@ def steadiness(
     decays = part.decay_per_s * duration_s
     peak = float(np.abs(part.amplitudes).max())
     for line in lines:
-        reach = max(1 / duration_s, line.resolution_hz / 2, _LINE_WANDER * line.frequency_hz)
-        if line.wanders or peak < line.amplitude:
-            reach = max(reach, _FAR_WANDER * line.frequency_hz)
-        near = abs(line.frequency_hz - part.frequency_hz) < reach
-        if near and peak < _OVER_LINE * line.amplitude and not surely_decays(decays, estimate):
+        weaker = peak < _OVER_LINE * line.amplitude
+        if beside(part, line, duration_s) and weaker and not surely_decays(decays, estimate):
             return f"a steady line at {line.frequency_hz:.2f} Hz is there before the blow"
     if decays < _HARDLY_DECAYS and near_mains(part.frequency_hz):
         return "does not decay over the record and stands at a multiple of the mains frequency"
     if decays < _HARDLY_DECAYS and estimate.damping_ratio.sd * 3 > estimate.damping_ratio.value:
         return "its damping cannot be told from none over this record: a steady line"
     return ""
+
+
+def beside(part: Component, line: Line, duration_s: float) -> bool:
+    """True where the line may stand at the component's frequency at another time."""
+    peak = float(np.abs(part.amplitudes).max())
+    reach = max(1 / duration_s, line.resolution_hz / 2, _LINE_WANDER * line.frequency_hz)
+    if line.wanders or peak < line.amplitude:
+        reach = max(reach, _FAR_WANDER * line.frequency_hz)
+    return abs(line.frequency_hz - part.frequency_hz) < reach
+
+
+def rings_on(part: Component, traces: Sequence[Trace], lines: Sequence[Line]) -> bool:
+    """True for what does not decay, yet was not there before the blow and is no mains hum."""
+    reach = max(_FAR_WANDER * part.frequency_hz, 1 / max(t.duration_s for t in traces))
+    known = any(abs(line.frequency_hz - part.frequency_hz) < 2 * reach for line in lines)
+    return not known and not near_mains(part.frequency_hz)
+
+
+def hardly_decays(traces: Sequence[Trace]) -> str:
+    """Why what rings on is not taken as a mode."""
+    duration_s = max(t.duration_s for t in traces)
+    return (
+        f"rings on after the blow with hardly any decay over {duration_s:.2g} s: its damping "
+        "cannot be told; record until it has died away"
+    )
 
 
 def surely_decays(decays: float, estimate: PoleEstimate) -> bool:

@@ -310,6 +310,17 @@ def test_machine_whose_speed_wanders_is_no_mode(seed: int) -> None:
     assert_found(estimate_modes(taps), MODES, deviations=5.0)
 
 
+def test_what_hardly_decays_over_the_record_is_refused_in_so_many_words() -> None:
+    """A chime cut off after a twentieth of a decay: no tone, for it was not there before."""
+    chime = Made(81.3, 2e-4)
+    estimate = estimate_modes(records([chime], duration_s=0.5))
+    assert estimate.modes == ()
+    assert estimate.tones == ()
+    assert [r.frequency_hz for r in estimate.refused] == pytest.approx([81.3], abs=0.02)
+    assert estimate.refused[0].reason.startswith("rings on after the blow with hardly any decay")
+    assert "record until it has died away" in estimate.refused[0].reason
+
+
 def test_one_tap_is_warned_about() -> None:
     estimate = estimate_modes(records(MODES, strengths=[1.0]))
     assert_found(estimate, MODES)
