@@ -38,6 +38,7 @@ _HAND_SPREAD = 0.15
 _RISE_S = 0.5
 _RAIL = 1 - 2.0**-15
 _SETTLE_S = 0.5
+_SHAKER_RAD_S = 1000.0
 
 
 class Pace(Protocol):
@@ -132,6 +133,7 @@ class PracticeSource:
         self._gap_at: int | None = None
         self._speed_rpm, self._wanted = 0.0, 0.0
         self._loudness, self._turns = 0.0, 0.0
+        self._shaker_rms: float | None = None
         self._stop = threading.Event()
         self._ends: SourceEnd | None = None
 
@@ -186,6 +188,11 @@ class PracticeSource:
             self._speed_rpm = speed_rpm or machine.speed_rpm
             self._wanted = 1.0 if on else 0.0
 
+    def shake(self, rms: float | None) -> None:
+        """Put every sensor on a reference shaker of this level in m/s^2, or back (None)."""
+        with self._lock:
+            self._shaker_rms = rms
+
     def unplug(self) -> None:
         """Let the input vanish; a new ``start`` brings it back."""
         self._ends = SourceEnd("vanished", f"{NAME} was unplugged")
@@ -236,6 +243,9 @@ class PracticeSource:
         self._strikes = [s for s in self._strikes if s.start + self.rate_hz > self._frame]
         force += self._machine_force(count)
         motion = self._heard @ self._response.acceleration(force)
+        if self._shaker_rms is not None:
+            shaken = np.sqrt(2) * self._shaker_rms * np.sin(_SHAKER_RAD_S * time / self.rate_hz)
+            motion = np.outer(1 / self._scales(), shaken)
         motion += self._unwanted(time, count)
         self._frame += count
         return np.clip(motion.T, -1.0, _RAIL)
