@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator
-from contextlib import contextmanager
+from contextlib import ExitStack, contextmanager
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -11,7 +11,6 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.errors import InputError, Place
 from fieldkit.signal.audio_file import (
     UNKNOWN_LENGTH_FRAMES,
     coding_notes,
@@ -56,18 +55,8 @@ class AudioInFile:
 
         What is handed out raises BrokenOff where decoding fails before the last frame.
         """
-        with open_audio(self.path) as (audio, _):
-            at = 0
-
-            def read(first: int, past: int) -> Real:
-                nonlocal at
-                if at != first:
-                    _seek(audio, first, self.path)
-                samples = _one_channel(audio, first, past - first, channel - 1)
-                at = past
-                return samples
-
-            yield read
+        with ExitStack() as opened:
+            yield _Cursor(self.path, opened, channel - 1).read
 
 
 def look_into(path: Path) -> AudioInFile:
@@ -117,17 +106,42 @@ def _counted(audio: Any) -> tuple[int, bool]:
         count += frames
 
 
-def _seek(audio: Any, frame: int, path: Path) -> None:
-    import soundfile
+class _Cursor:
+    """A place in an open file. Failing to decode leaves a file useless: then it is opened anew."""
 
-    try:
-        audio.seek(frame)
-    except soundfile.SoundFileError as error:
-        raise InputError(
-            "the file is damaged: a part in its middle cannot be reached",
-            "copy it again from the recorder, or cut out the part that matters",
-            Place(path),
-        ) from error
+    def __init__(self, path: Path, opened: ExitStack, column: int) -> None:
+        self._path, self._opened, self._column = path, opened, column
+        self._open()
+
+    def read(self, first: int, past: int) -> Real:
+        """Samples (past - first,) of the channel."""
+        self._go_to(first)
+        self._at = -1
+        samples = _one_channel(self._audio, first, past - first, self._column)
+        self._at = past
+        return samples
+
+    def _open(self) -> None:
+        self._opened.close()
+        self._audio, _ = self._opened.enter_context(open_audio(self._path))
+        self._at = 0
+
+    def _go_to(self, frame: int) -> None:
+        if self._at == frame or self._reached(frame):
+            return
+        self._open()
+        if not self._reached(frame):
+            self._open()
+            for first in range(0, frame, _CHUNK_SAMPLES):
+                _one_channel(self._audio, first, min(_CHUNK_SAMPLES, frame - first), self._column)
+
+    def _reached(self, frame: int) -> bool:
+        import soundfile
+
+        try:
+            return bool(self._audio.seek(frame) == frame)
+        except soundfile.SoundFileError:
+            return False
 
 
 def _one_channel(audio: Any, first: int, count: int, column: int) -> Real:
