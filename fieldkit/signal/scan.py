@@ -23,6 +23,7 @@ FALSE_PER_SCAN = 1e-3
 GREATEST_DAMPING = 0.25
 SLOW_DAMPING = 3e-3
 """At the end of the reported range: decays below this one's are the slow ones."""
+MOST_AT_ONCE = 8
 _SETTLE_S = 0.003
 _LEVEL_BLOCK = 96
 _LEVEL_QUANTILE = 0.25
@@ -51,7 +52,7 @@ class Region:
     """Up to where what decays slowly is searched."""
 
 
-def scan(leftovers: Sequence[Trace], region: Region, most: int = 8) -> list[Candidate]:
+def scan(leftovers: Sequence[Trace], region: Region, most: int = MOST_AT_ONCE) -> list[Candidate]:
     """Candidates above the threshold, strongest first, none in the skirt of a stronger one.
 
     ``leftovers`` are the taps with what is known already taken out. What decays slowly is looked

@@ -10,7 +10,7 @@ import numpy as np
 from fieldkit.signal.clusters import needed_gain, overlapping, span_s, surroundings
 from fieldkit.signal.leftovers import leftovers, stand_out
 from fieldkit.signal.likelihood import ROUGHLY, fit_before
-from fieldkit.signal.scan import Candidate, Region, scan, threshold
+from fieldkit.signal.scan import MOST_AT_ONCE, Candidate, Region, scan, threshold
 from fieldkit.signal.scatter import freedom_price, looser, scattered
 from fieldkit.signal.traces import Component, Trace, component
 
@@ -18,6 +18,8 @@ _MOST_ROUNDS = 14
 _LOOKED_FOR_ODD_TAPS = (2, 3, 4)
 _MOST_PARTS = 60
 _MOST_AT_A_TONE = 3
+_AS_NOISE = 1.15
+"""Residual over expected noise variance of a fit that no other start would better."""
 WANDER_REACH = 6e-3
 """Relative, how far from its typical frequency a machine's line is looked for."""
 
@@ -49,8 +51,11 @@ def search(traces: Sequence[Trace], tones: Sequence[Component], region: Region) 
         ]
         if not fresh or len(found.parts) > _MOST_PARTS:
             break
+        before = found.parts
         for candidate in fresh:
             found = add(traces, found, candidate, region)
+        if found.parts is before and len(fresh) < MOST_AT_ONCE:
+            break
     return found
 
 
@@ -86,9 +91,10 @@ def add(traces: Sequence[Trace], found: Found, candidate: Candidate, region: Reg
     around = [*near, new]
     still = surroundings(traces, around, held, region.high_hz)
     before = fit_before(still, firm, ROUGHLY)
-    starts = [[*before.active, new], *split(before.active, new, traces)]
-    tried = [fit_before(still, start, ROUGHLY) for start in starts]
-    after = min(tried, key=lambda fit: fit.cost)
+    after = fit_before(still, [*before.active, new], ROUGHLY)
+    if after.variance > _AS_NOISE:
+        others = [fit_before(still, s, ROUGHLY) for s in split(before.active, new, traces)]
+        after = min([after, *others], key=lambda fit: fit.cost)
     saved = before.cost - after.cost
     loose = looser(traces, near, rest, region.high_hz, before, around, least=saved)
     noise = max(min(after.variance, loose.variance if loose else np.inf), 1.0)
