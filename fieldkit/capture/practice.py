@@ -65,12 +65,13 @@ class RealTime:
 
 @dataclass(frozen=True)
 class PracticeSensor:
-    """One channel of the rig."""
+    """One channel of the rig: an accelerometer, or the load cell of the hammer."""
 
     at_m: float
     direction: str
     full_scale: float = 68.6
-    """Acceleration in m/s^2 at which the input reads 1."""
+    """Acceleration in m/s^2, or force in N, at which the input reads 1."""
+    hammer: bool = False
 
 
 @dataclass(frozen=True)
@@ -119,7 +120,7 @@ class PracticeSource:
         self.sensors = tuple(sensors)
         self.rate_hz = rate_hz
         self.channels = len(self.sensors)
-        self.struck_m = self.sensors[0].at_m if struck_m is None else struck_m
+        self.struck_m = self.first.at_m if struck_m is None else struck_m
         self._surroundings = surroundings or Surroundings()
         self._pace = pace or RealTime()
         self._rng = np.random.default_rng(seed)
@@ -136,6 +137,11 @@ class PracticeSource:
         self._shaker_rms: float | None = None
         self._stop = threading.Event()
         self._ends: SourceEnd | None = None
+
+    @property
+    def first(self) -> PracticeSensor:
+        """The first accelerometer: blows that name no direction go its way."""
+        return next((s for s in self.sensors if not s.hammer), self.sensors[0])
 
     def start(self, deliver: Deliver, ended: Ended) -> None:
         """Begin to stream in real time; frames count from 0 again."""
@@ -165,7 +171,7 @@ class PracticeSource:
         if fault:
             chosen(fault, "fault of a blow", FAULTS)
         gain = self.plant.motion(
-            self.struck_m if at_m is None else at_m, direction or self.sensors[0].direction
+            self.struck_m if at_m is None else at_m, direction or self.first.direction
         )
         with self._lock:
             newton = self.usual_newton * strength * self._unevenness()
@@ -206,7 +212,7 @@ class PracticeSource:
             )
         with self._lock:
             self.sensors = tuple(sensors)
-            self.struck_m = self.sensors[0].at_m if struck_m is None else struck_m
+            self.struck_m = self.first.at_m if struck_m is None else struck_m
             self._heard = self._gains()
             self.usual_newton = self._usual_newton()
 
@@ -238,11 +244,15 @@ class PracticeSource:
         """(count, channels) of what comes next, full scale 1."""
         time = self._frame + np.arange(count)
         force = np.zeros((len(self.plant.frequency_hz), count))
+        struck = np.zeros(count)
         for strike in self._strikes:
-            force += np.outer(strike.gain, half_sine(time - strike.start, strike, self.rate_hz))
+            newton = half_sine(time - strike.start, strike, self.rate_hz)
+            struck += newton
+            force += np.outer(strike.gain, newton)
         self._strikes = [s for s in self._strikes if s.start + self.rate_hz > self._frame]
         force += self._machine_force(count)
         motion = self._heard @ self._response.acceleration(force)
+        motion += np.outer([s.hammer / s.full_scale for s in self.sensors], struck)
         if self._shaker_rms is not None:
             shaken = np.sqrt(2) * self._shaker_rms * np.sin(_SHAKER_RAD_S * time / self.rate_hz)
             motion = np.outer(1 / self._scales(), shaken)
@@ -277,18 +287,21 @@ class PracticeSource:
 
     def _gains(self) -> Real:
         """(channels, m) sample of full scale 1 per modal acceleration."""
-        rows = [self.plant.motion(s.at_m, s.direction) / s.full_scale for s in self.sensors]
+        rows = [
+            (not s.hammer) * self.plant.motion(s.at_m, s.direction) / s.full_scale
+            for s in self.sensors
+        ]
         return np.array(rows)
 
     def _unevenness(self) -> float:
         return float(np.exp(_HAND_SPREAD * self._hand.standard_normal()))
 
     def _usual_newton(self) -> float:
-        gain = self.plant.motion(self.struck_m, self.sensors[0].direction)
+        gain = self.plant.motion(self.struck_m, self.first.direction)
         return _USUAL_PEAK / self._peak(gain, CONTACT_S)
 
     def _soft_newton(self, gain: Real, contact_s: float) -> float:
-        around, scale = self._surroundings, self.sensors[0].full_scale
+        around, scale = self._surroundings, self.first.full_scale
         noise = np.hypot(around.noise * np.sqrt(self.rate_hz / 2), around.hum / np.sqrt(2))
         return float(_SOFT_SD * noise / scale / self._peak(gain, contact_s))
 

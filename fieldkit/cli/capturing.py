@@ -59,10 +59,27 @@ def record(
     wait: Annotated[
         float, typer.Option(help="Seconds to wait for an input that is gone.", min=0.0)
     ] = 30.0,
+    practice: Annotated[
+        bool,
+        typer.Option(
+            "--practice", help="Record a simulated span that strikes itself; needs no sensor."
+        ),
+    ] = False,
+    calibrate: Annotated[
+        bool,
+        typer.Option(
+            "--calibrate", help="Measure the sensitivity of a channel on a reference shaker."
+        ),
+    ] = False,
+    reference: Annotated[
+        str, typer.Option(help="Level of the reference shaker, rms, such as '1 g'.")
+    ] = "10 m/s^2",
+    channel: Annotated[int, typer.Option(help="The channel to calibrate.", min=1)] = 1,
     as_json: AsJson = False,
 ) -> None:
     """Record until Enter, Ctrl-C or a stated length, straight to disk."""
     with output.answering(as_json=as_json):
+        from fieldkit.cli.calibrating import calibrated
         from fieldkit.cli.capture_tables import recorded_document, recorded_lines
         from fieldkit.cli.recording import Plan, made
 
@@ -73,7 +90,12 @@ def record(
             "direction": direction,
             "at": at,
         }
-        plan = Plan.from_words(target, kind, device, rate, channels, seconds, told, preset, wait)
+        plan = Plan.from_words(
+            target, kind, device, rate, channels, seconds, told, preset, wait, practice
+        )
+        if calibrate:
+            output.answer(*calibrated(plan, channel, reference, keep), as_json=as_json)
+            return
         done = made(plan)
         if keep is not None:
             plan.keep(keep, done.snapshot)

@@ -13,6 +13,7 @@ from typing import Any
 
 from fieldkit.capture.devices import Input, find_input, list_inputs
 from fieldkit.capture.portaudio import PortAudioSource
+from fieldkit.capture.practice import PracticeSource
 from fieldkit.capture.presets import Preset, presets, save_preset
 from fieldkit.capture.quiet import libraries_kept_quiet
 from fieldkit.capture.session import Session
@@ -20,6 +21,7 @@ from fieldkit.capture.setup import ChannelSetup
 from fieldkit.capture.sidecar import Gap, gaps_of
 from fieldkit.capture.snapshot import ENDED, OPENING, Snapshot
 from fieldkit.cli.capture_tables import level_line
+from fieldkit.cli.practice import Played, rig, rig_channels
 from fieldkit.errors import InputError, Refusal
 from fieldkit.job.recorded import next_recording, with_recording
 from fieldkit.job.store import JobText, load_text
@@ -41,6 +43,8 @@ class Plan:
     job: Path | None = None
     wait_s: float = 30.0
     """An input that is away for longer ends the recording."""
+    practice: bool = False
+    """Whether the practice rig stands in for an input."""
 
     @staticmethod
     def from_words(
@@ -53,6 +57,7 @@ class Plan:
         words: Mapping[str, Sequence[str] | None],
         preset: str | None,
         wait_s: float,
+        practice: bool = False,
     ) -> Plan:
         """Checked as far as it can be without the input; raises InputError."""
         chosen(kind, "kind of recording", ("tap", "running"))
@@ -69,6 +74,7 @@ class Plan:
             job=job,
             wait_s=wait_s,
         )
+        plan = practising(plan) if practice else plan
         if job is not None:
             plan.in_job().job()
         return plan
@@ -98,11 +104,14 @@ class Recorded:
 def made(plan: Plan) -> Recorded:
     """Record, and add it to the job; raises Refusal where nothing was recorded."""
     with libraries_kept_quiet():
-        session = Session(_source(plan), keep_s=1.0, give_up_after_s=plan.wait_s)
+        source = source_of(plan)
+        session = Session(source, keep_s=1.0, give_up_after_s=plan.wait_s)
+        if isinstance(source, PracticeSource):
+            session.add(Played(source, plan.kind))
         with _stop_wanted() as stop:
             session.start()
             try:
-                _wait_for_opening(session)
+                wait_for_opening(session)
                 session.record(plan.path, plan.channels, seconds=plan.seconds)
                 _follow(session, stop)
             finally:
@@ -117,6 +126,14 @@ def made(plan: Plan) -> Recorded:
     gaps = tuple((path, gap) for path in shot.recording.paths for gap in gaps_of(path))
     failure = shot.recording.failure or (shot.message if shot.failed else "")
     return Recorded(plan, shot, gaps, failure)
+
+
+def practising(plan: Plan) -> Plan:
+    """The plan with the practice rig in place of an input; raises InputError."""
+    if plan.device is not None:
+        raise InputError("an input and the practice rig are both asked for", "leave one out")
+    channels = rig_channels(plan.job, plan.channels)
+    return replace(plan, practice=True, channels=channels)
 
 
 def _preset(name: str | None) -> Preset | None:
@@ -151,12 +168,16 @@ def _setups(
     )
 
 
-def _source(plan: Plan) -> PortAudioSource:
+def source_of(plan: Plan) -> PortAudioSource | PracticeSource:
+    """What a plan records from; raises InputError or Refusal."""
+    if plan.practice:
+        return rig(plan.job, plan.channels, plan.kind, plan.rate_hz)
     device: Input = find_input(plan.device, list_inputs(check_rates=False))
     return PortAudioSource(device, rate_hz=plan.rate_hz, channels=len(plan.channels))
 
 
-def _wait_for_opening(session: Session) -> None:
+def wait_for_opening(session: Session) -> None:
+    """Until the input delivers; raises Refusal where it cannot be opened."""
     while session.snapshot().state == OPENING:
         session.join(_TICK_S)
     if session.snapshot().state == ENDED:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from itertools import count
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -42,6 +43,33 @@ def with_recording(
         if hammers and kind == "tap":
             text = _with_hammer(text, *hammers[0])
     return text
+
+
+def with_calibration(
+    text: JobText, channel: int, keys: Mapping[str, str], comment: str
+) -> tuple[JobText, tuple[str, ...]]:
+    """The job with a comment about a calibration above its recordings, and the keys in those of
+    that channel that have none yet; also the files of these."""
+    files = []
+    for index, row in enumerate(text.rows("recording")):
+        bare = not {"sensitivity", "scale"} & row.keys()
+        if bare and int(row.get("channel") or 1) == channel:
+            files.append(row["file"])
+            for key, value in keys.items():
+                text = text.with_value(f"recording[{index}].{key}", value)
+    return _with_comment(text, f"channel {channel} {comment}"), tuple(files)
+
+
+def _with_comment(text: JobText, comment: str) -> JobText:
+    """The job with a comment on lines of its own before the first recording, or at the end."""
+    newline = "\r\n" if "\r\n" in text.text else "\n"
+    lines = text.text.splitlines(keepends=True)
+    heads = [i for i, line in enumerate(lines) if line.strip().startswith("[[recording]]")]
+    if lines and not lines[-1].endswith(("\n", "\r")):
+        lines[-1] += newline
+    at = heads[0] if heads else len(lines)
+    added = replace(text, text="".join([*lines[:at], f"# {comment}{newline}", *lines[at:]]))
+    return added if added.table == text.table else text
 
 
 def _with_hammer(text: JobText, number: int, keys: Mapping[str, str]) -> JobText:

@@ -11,7 +11,7 @@ from numpy.typing import NDArray
 
 from fieldkit.capture.practice import RATE_HZ, Pace, PracticeSensor, PracticeSource
 from fieldkit.capture.practice_plant import PracticeMachine, PracticePlant, plant_of
-from fieldkit.capture.setup import ChannelSetup
+from fieldkit.capture.setup import FORCE, ChannelSetup
 from fieldkit.detune.excitation import Excitation, bands
 from fieldkit.detune.unknowns import Unknown, member_span, member_state, unknowns_of
 from fieldkit.errors import InputError, Refusal
@@ -29,6 +29,7 @@ _UP_TO = 1.5
 _LEAST_UP_TO_HZ = 150.0
 _NEWTON = 40.0
 _SENSITIVITY, _FULL_SCALE = "100 mV/g", "0.7 V"
+_HAMMER = "10 kN per unit"
 _TRUE_SENSITIVITY = 1.03
 """Of the rig's sensors, over what is written on them: a calibration finds out."""
 _SENSOR_AT, _STRUCK_AT = 0.42, 0.58
@@ -114,6 +115,8 @@ def practice_channels(job: Job, channels: Sequence[ChannelSetup]) -> tuple[Chann
 
 
 def _filled(setup: ChannelSetup, at: str, direction: str) -> ChannelSetup:
+    if setup.quantity == FORCE:
+        return setup if setup.si_per_unit is not None else replace(setup, scale=_HAMMER)
     setup = replace(setup, at=setup.at or at, direction=setup.direction or direction)
     if setup.quantity != "acceleration":
         raise InputError(
@@ -125,9 +128,11 @@ def _filled(setup: ChannelSetup, at: str, direction: str) -> ChannelSetup:
 
 
 def _sensor(setup: ChannelSetup) -> PracticeSensor:
+    assert setup.si_per_unit is not None
+    if setup.quantity == FORCE:
+        return PracticeSensor(0.0, "vertical", setup.si_per_unit, hammer=True)
     assert setup.at_m is not None
     assert setup.direction is not None
-    assert setup.si_per_unit is not None
     return PracticeSensor(setup.at_m, setup.direction, setup.si_per_unit / _TRUE_SENSITIVITY)
 
 

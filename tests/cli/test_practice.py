@@ -1,0 +1,79 @@
+"""``fieldkit record --practice`` and ``--calibrate``: no sensor, no sound card."""
+
+from __future__ import annotations
+
+import shutil
+import threading
+
+import pytest
+
+from fieldkit.capture.clock import now_s
+from fieldkit.capture.sidecar import read_info
+from fieldkit.cli.samples import sample_jobs
+from fieldkit.job.schema import load_job
+from tests.cli.running import fieldkit
+
+
+class TenTimesAsFast:
+    """A clock that runs ahead of the one on the wall."""
+
+    def now_s(self) -> float:
+        return 10 * now_s()
+
+    def wait(self, seconds: float, stop: threading.Event) -> None:
+        stop.wait(seconds / 10)
+
+
+@pytest.fixture(autouse=True)
+def _in_a_hurry(monkeypatch):
+    monkeypatch.setattr("fieldkit.capture.practice.RealTime", TenTimesAsFast)
+
+
+@pytest.fixture
+def job(tmp_path):
+    path = tmp_path / "job.toml"
+    shutil.copy(sample_jobs()[0], path)
+    text = path.read_text("utf-8")
+    path.write_text(text[: text.index("[[recording]]")] + text[text.index("[goal]") :], "utf-8")
+    return path
+
+
+def test_a_practice_recording_is_added_to_the_job_and_says_that_it_is_simulated(job) -> None:
+    """Place, direction and sensitivity are filled in; peaks repeats where it comes from."""
+    ran = fieldkit("record", job, "--practice", "--seconds", 9, "--rate", 4000, "--json")
+    assert ran.status == 0, ran.err
+    assert ran.document["simulated"] is True
+    info = read_info(job.parent / "tap-1.wav")
+    assert info is not None
+    assert info.simulated
+    entry = load_job(job).recordings[0]
+    assert (entry.direction, entry.at_m) == ("vertical", 1.43)
+    assert entry.scale == pytest.approx(68.6, rel=1e-3)
+    told = fieldkit("peaks", job.parent / "tap-1.wav", "--json")
+    assert any("simulated by the practice rig" in warning for warning in told.document["warnings"])
+    assert told.document["recordings"][0]["taps"]
+
+
+def test_a_calibration_stands_in_the_job_with_date_and_result(job) -> None:
+    """Written into what has no sensitivity yet, told as a comment for a person."""
+    text = job.read_text("utf-8").replace(
+        "[goal]", '[[recording]]\nfile = "old.wav"\nkind = "tap"\n\n[goal]'
+    )
+    job.write_text(text, "utf-8")
+    ran = fieldkit("record", job, "--practice", "--calibrate", "--reference", "1 g", "--json")
+    assert ran.status == 0, ran.err
+    assert ran.document["sensitivity"] == "103 mV/g"
+    assert ran.document["calibrated_recordings"] == ["old.wav"]
+    assert ran.document["reference_m_per_s2_rms"] == pytest.approx(9.80665)
+    written = job.read_text("utf-8")
+    assert f"# channel 1 calibrated {ran.document['date']}" in written
+    assert "simulated by the practice rig" in written
+    assert load_job(job).recordings[0].scale == pytest.approx(0.7 / 0.103 * 9.80665, rel=1e-3)
+
+
+def test_what_does_not_go_together_is_refused(job) -> None:
+    """An input and the rig; a channel that is not there; a reference of nothing."""
+    assert fieldkit("record", job, "--practice", "--device", "x").status == 2
+    ran = fieldkit("record", job, "--practice", "--calibrate", "--channel", 3)
+    assert (ran.status, "no channel 3" in ran.err) == (2, True)
+    assert fieldkit("record", job, "--practice", "--calibrate", "--reference", "0 g").status == 2
