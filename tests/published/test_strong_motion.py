@@ -15,7 +15,7 @@ import pytest
 
 from fieldkit.signal.recording import channel_signal, load
 from fieldkit.signal.running import read_running
-from fieldkit.signal.spectrum import overall_rms, power_density
+from fieldkit.signal.spectrum import overall_rms
 from tests.published.outside import seismic_file
 
 pytestmark = pytest.mark.outside
@@ -56,7 +56,7 @@ def record() -> Accelerogram:
 @pytest.fixture
 def table(record: Accelerogram, tmp_path: Path) -> Path:
     """The same numbers as a logger would export them: seconds and gal, offset and all."""
-    path = tmp_path / "ns.csv"
+    path = tmp_path / "east-west.csv"
     rows = [f"{i / record.rate_hz:.2f},{gal:.9f}" for i, gal in enumerate(record.gal)]
     path.write_text("\n".join(["time [s],acceleration [gal]", *rows]), encoding="ascii")
     return path
@@ -85,7 +85,7 @@ def test_largest_acceleration_through_the_loader_is_the_stated_one(
 def test_overall_level_is_that_of_the_samples_without_their_offset(
     record: Accelerogram, table: Path
 ) -> None:
-    """Parseval's theorem on a real record; and the stated offset leaves no trace in the level."""
+    """Parseval's theorem on a real record, its offset taken off."""
     recording = load(table)
     samples = channel_signal(recording, 1)
     centred = samples - samples.mean()
@@ -93,8 +93,6 @@ def test_overall_level_is_that_of_the_samples_without_their_offset(
     assert overall_rms(centred, record.rate_hz, 0.0, record.rate_hz / 2) == pytest.approx(
         root, rel=1e-9
     )
-    frequency_hz, density = power_density(centred, record.rate_hz)
-    assert np.sqrt(density.sum() * frequency_hz[1]) == pytest.approx(root, rel=0.05)
 
 
 def test_running_level_is_that_of_the_bare_transform_in_the_band(
