@@ -3,13 +3,20 @@
 from __future__ import annotations
 
 import codecs
+import io
+from collections.abc import Iterator, Sequence
+from contextlib import contextmanager
 from pathlib import Path
+from typing import BinaryIO, overload
 
 from fieldkit.errors import InputError, Place
+from fieldkit.signal.line_index import LineIndex, index_lines
 
 MAX_TEXT_BYTES = 2**29
 """Longest text file that is read."""
 
+_HEAD = 4096
+_LINES_AT_ONCE = 1000
 _BYTE_ORDER_MARKS = (
     (codecs.BOM_UTF8, "utf-8-sig"),
     (codecs.BOM_UTF32_LE, "utf-32"),
@@ -29,8 +36,46 @@ def looks_like_text(head: bytes) -> bool:
     return not any(control in head for control in _BINARY_CONTROLS)
 
 
-def read_lines(path: Path) -> list[str]:
-    """All lines without their ends; line n of an editor is item n - 1.
+class TextLines(Sequence[str]):
+    """Lines without their ends, read from the file as they are asked for.
+
+    Line n of an editor is item n - 1. Many are best asked for as a slice.
+    """
+
+    def __init__(self, file: BinaryIO, index: LineIndex) -> None:
+        self._file, self._index = file, index
+
+    def __len__(self) -> int:
+        return len(self._index.starts)
+
+    @overload
+    def __getitem__(self, at: int) -> str: ...
+    @overload
+    def __getitem__(self, at: slice) -> list[str]: ...
+    def __getitem__(self, at: int | slice) -> str | list[str]:
+        if isinstance(at, slice):
+            first, past, step = at.indices(len(self))
+            return self._between(first, past)[::step] if first < past and step > 0 else []
+        if not -len(self) <= at < len(self):
+            raise IndexError(at)
+        return self._between(at % len(self), at % len(self) + 1)[0]
+
+    def __iter__(self) -> Iterator[str]:
+        for first in range(0, len(self), _LINES_AT_ONCE):
+            yield from self[first : first + _LINES_AT_ONCE]
+
+    def _between(self, first: int, past: int) -> list[str]:
+        starts = self._index.starts
+        end = int(starts[past]) - 1 if past < len(starts) else self._index.size
+        self._file.seek(int(starts[first]))
+        data = self._file.read(end - int(starts[first]))
+        text = data.decode(self._index.encoding, errors="replace")
+        return text.replace("\r\n", "\n").removesuffix("\r").split("\n")
+
+
+@contextmanager
+def open_lines(path: Path) -> Iterator[TextLines]:
+    """All lines of a text file, which is not held in memory.
 
     Reads UTF-8, UTF-16 and UTF-32 with or (UTF-16) without byte order mark, and Latin-1, with
     any line end. Raises InputError where the file is empty, too large or not text.
@@ -43,23 +88,23 @@ def read_lines(path: Path) -> list[str]:
             "cut it to the part that matters, or store it as WAV or FLAC",
             Place(path),
         )
-    text = _decoded(path.read_bytes(), path)
-    if not text.strip():
-        raise InputError("the file is empty", "export the recording again", Place(path))
-    if "\0" in text:
-        raise InputError(
-            "the file holds binary data, not text", "give WAV, FLAC, AIFF or CSV", Place(path)
-        )
-    return text.replace("\r\n", "\n").replace("\r", "\n").split("\n")
+    with path.open("rb") as on_disk:
+        file: BinaryIO = on_disk
+        if not _encoding(file.read(_HEAD)).startswith("utf-8"):
+            file = io.BytesIO(_decoded(path.read_bytes(), path).encode())
+        index = index_lines(file, path)
+        if index.lone_returns:
+            file.seek(0)
+            file = io.BytesIO(file.read().replace(b"\r\n", b"\n").replace(b"\r", b"\n"))
+            index = index_lines(file, path)
+        yield TextLines(file, index)
 
 
 def _decoded(data: bytes, path: Path) -> str:
-    encoding = _encoding(data[:4096])
+    encoding = _encoding(data[:_HEAD])
     try:
         return data.decode(encoding)
     except UnicodeDecodeError as error:
-        if encoding == "utf-8":
-            return data.decode("latin-1")
         raise InputError(
             f"the text is not valid {encoding.upper()}", "save it as UTF-8", Place(path)
         ) from error

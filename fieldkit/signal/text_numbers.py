@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 
 from fieldkit.errors import InputError
 from fieldkit.signal.text_cells import (
+    COMMENT_MARKS,
     NUMBER,
     is_data,
     is_not_finite,
@@ -32,8 +33,8 @@ class Table:
     """The rows of a text file as numbers."""
 
     values: NDArray[np.float64]
-    """(rows, columns); clock times and dates in seconds."""
-    lines: NDArray[np.int64]
+    """(rows, columns), column after column in memory; clock times and dates in seconds."""
+    lines: range | NDArray[np.int32]
     """(rows,) line of each row in the file, counted from 1."""
 
 
@@ -43,16 +44,37 @@ def read_table(lines: Sequence[str], layout: Layout, path: Path) -> Table:
     Raises InputError with the line of the first row that has a different number of columns,
     text in place of a number, or a value that is missing or not finite.
     """
-    rows = [i for i in range(layout.first_row, len(lines)) if is_data(lines[i])]
-    blocks = []
-    for start in range(0, len(rows), _ROWS_AT_ONCE):
-        at_once = rows[start : start + _ROWS_AT_ONCE]
-        texts = [lines[i] for i in at_once]
+    values = np.empty((len(layout.kinds), len(lines) - layout.first_row))
+    numbers: list[NDArray[np.int32]] = []
+    count = 0
+    for start in range(layout.first_row, len(lines), _ROWS_AT_ONCE):
+        texts, at = _rows(list(lines[start : start + _ROWS_AT_ONCE]), start)
+        if not texts:
+            continue
         block = _read_fast(texts, layout)
         if block is None:
-            block = _read_carefully(texts, at_once, layout, path)
-        blocks.append(block)
-    return Table(np.concatenate(blocks), np.asarray(rows, dtype=np.int64) + 1)
+            block = _read_carefully(texts, at, layout, path)
+        values[:, count : count + len(at)] = block.T
+        numbers.append(at + np.int32(1))
+        count += len(at)
+    return Table(values[:, :count].T, _numbered(numbers, count))
+
+
+def _rows(texts: list[str], start: int) -> tuple[list[str], NDArray[np.int32]]:
+    """Those of the lines from ``start`` on that hold data, and where they stand."""
+    at = np.arange(start, start + len(texts), dtype=np.int32)
+    joined = "\n".join(texts)
+    plain = not any(mark in joined for mark in COMMENT_MARKS)
+    if plain and all(map(str.strip, texts)):
+        return texts, at
+    kept = [i for i, text in enumerate(texts) if is_data(text)]
+    return [texts[i] for i in kept], at[kept]
+
+
+def _numbered(numbers: Sequence[NDArray[np.int32]], count: int) -> range | NDArray[np.int32]:
+    """Lines of all rows; a range where no other line stands between them."""
+    first, last = int(numbers[0][0]), int(numbers[-1][-1])
+    return range(first, last + 1) if last - first == count - 1 else np.concatenate(numbers)
 
 
 def _read_fast(texts: list[str], layout: Layout) -> NDArray[np.float64] | None:
@@ -76,14 +98,14 @@ def _read_fast(texts: list[str], layout: Layout) -> NDArray[np.float64] | None:
 
 
 def _read_carefully(
-    texts: list[str], at: Sequence[int], layout: Layout, path: Path
+    texts: list[str], at: NDArray[np.int32], layout: Layout, path: Path
 ) -> NDArray[np.float64]:
     block = np.empty((len(texts), len(layout.kinds)))
     for row, (text, i) in enumerate(zip(texts, at, strict=True)):
         try:
             block[row] = _row_values(text, layout)
         except InputError as error:
-            raise error.at(file=path, line=i + 1) from None
+            raise error.at(file=path, line=int(i) + 1) from None
     return block
 
 

@@ -15,7 +15,7 @@ from fieldkit.signal.column_labels import TIME, Label
 from fieldkit.signal.text_cells import CLOCK, NUMBER, fraction_digits, split_cells, with_point
 from fieldkit.signal.text_header import Header, read_header
 from fieldkit.signal.text_layout import Layout, find_layout
-from fieldkit.signal.text_lines import read_lines
+from fieldkit.signal.text_lines import open_lines
 from fieldkit.signal.text_numbers import Table, read_table
 from fieldkit.signal.time_axis import (
     EvenSamples,
@@ -57,11 +57,14 @@ def read_text(path: Path, stated_hz: float | None = None) -> TextSamples:
 
     Raises InputError with the line of whatever cannot be read, and where no rate is known.
     """
-    lines = read_lines(path)
-    layout = find_layout(lines, path)
-    file = _TextFile(
-        path, lines, layout, read_header(lines, layout), read_table(lines, layout, path)
-    )
+    with open_lines(path) as lines:
+        layout = find_layout(lines, path)
+        header, table = read_header(lines, layout), read_table(lines, layout, path)
+        return _recorded(_TextFile(path, lines, layout, header, table), stated_hz)
+
+
+def _recorded(file: _TextFile, stated_hz: float | None) -> TextSamples:
+    path, layout = file.path, file.layout
     time_columns = _time_columns(file)
     dropped = (*time_columns, *_counter_columns(file, time_columns))
     kept = [column for column in range(len(layout.kinds)) if column not in dropped]
@@ -69,10 +72,16 @@ def read_text(path: Path, stated_hz: float | None = None) -> TextSamples:
         raise InputError(
             "there is no column of samples beside the time", "export the signal too", Place(path)
         )
-    samples = np.ascontiguousarray(file.table.values[:, kept])
+    samples = _columns(file.table.values, kept)
     even = _even(file, time_columns, samples, stated_hz)
     labels = tuple(file.header.labels[column] for column in kept)
     return TextSamples(even.samples, even.rate_hz, labels, (*even.notes, *_label_notes(labels)))
+
+
+def _columns(values: NDArray[np.float64], kept: Sequence[int]) -> NDArray[np.float64]:
+    """Some columns of a table; those that stand side by side are not copied."""
+    first, past = kept[0], kept[-1] + 1
+    return values[:, first:past] if past - first == len(kept) else values[:, list(kept)]
 
 
 def _time_columns(file: _TextFile) -> tuple[int, ...]:
@@ -156,10 +165,13 @@ def _same_rate(a_hz: float, b_hz: float) -> bool:
 def _sampling_times(
     file: _TextFile, columns: tuple[int, ...], likely_hz: float | None
 ) -> SamplingTimes:
-    written = file.table.values[:, list(columns)].sum(axis=1)
+    written = file.table.values[:, columns[0]]
+    for column in columns[1:]:
+        written = written + file.table.values[:, column]
     digits = _resolution(file, columns, written)
     scale = _time_scale(file, columns, written, likely_hz)
-    return SamplingTimes(written * scale, digits * scale, file.table.lines, file.path)
+    seconds = written if scale == 1.0 else written * scale
+    return SamplingTimes(seconds, digits * scale, file.table.lines, file.path)
 
 
 def _time_scale(
@@ -192,13 +204,17 @@ def _resolution(
     Fixed decimals show in the most decimals seen; a fixed count of digits, in the most digits.
     """
     step = max(1, len(file.table.lines) // _CELLS_LOOKED_AT)
-    lines = (file.lines[line - 1] for line in file.table.lines[::step])
+    lines = (file.lines[int(line) - 1] for line in file.table.lines[::step])
     rows = [split_cells(line, file.layout.delimiter) for line in lines]
     clock = next((i for i in columns if file.layout.kinds[i] == CLOCK), None)
     if clock is not None:
-        return np.full(len(written), 10.0 ** -max(fraction_digits(row[clock]) for row in rows))
+        decimals = max(fraction_digits(row[clock]) for row in rows)
+        return np.broadcast_to(np.float64(10.0**-decimals), written.shape)
     cells = [with_point(row[columns[0]], file.layout.decimal) for row in rows]
     decimals, significant = (max(counts) for counts in zip(*map(_digits, cells), strict=True))
+    largest = max(-float(written.min()), float(written.max()))
+    if largest < 10.0 ** (significant - decimals):
+        return np.broadcast_to(np.float64(10.0**-decimals), written.shape)
     with np.errstate(divide="ignore"):
         exponent = np.floor(np.log10(np.abs(written)))
     resolution: NDArray[np.float64] = np.maximum(

@@ -16,6 +16,9 @@ EVEN_WITHIN = 0.01
 """Of a step: times this close to an even grid are even, whatever their digits say."""
 
 
+_ROWS_AT_ONCE = 2**18
+
+
 @dataclass(frozen=True)
 class EvenSamples:
     """Samples at a constant rate."""
@@ -34,7 +37,7 @@ class SamplingTimes:
     """(n,)"""
     resolution_s: NDArray[np.float64]
     """(n,) what the last digit written stands for."""
-    lines: NDArray[np.int64]
+    lines: range | NDArray[np.int32]
     """(n,) line of each row in the file."""
     path: Path
 
@@ -115,15 +118,28 @@ def _check_no_gap(times: SamplingTimes) -> None:
         )
 
 
-def _tolerance(times: SamplingTimes, step_s: float) -> NDArray[np.float64]:
-    return np.maximum(1.01 * times.resolution_s, EVEN_WITHIN * step_s)
-
-
 def _on_grid(times: SamplingTimes, step_s: float) -> bool:
     """Whether the times are those of even samples a step apart, as far as their digits tell."""
-    offset = times.seconds - step_s * np.arange(len(times.seconds))
-    middle = (float(offset.max()) + float(offset.min())) / 2
-    return bool(np.all(np.abs(offset - middle) <= _tolerance(times, step_s)))
+    parts = [
+        slice(first, first + _ROWS_AT_ONCE) for first in range(0, len(times.seconds), _ROWS_AT_ONCE)
+    ]
+    lowest = min(float(_offset(times, step_s, part).min()) for part in parts)
+    highest = max(float(_offset(times, step_s, part).max()) for part in parts)
+    middle = (highest + lowest) / 2
+    return all(
+        np.all(np.abs(_offset(times, step_s, part) - middle) <= _tolerance(times, step_s, part))
+        for part in parts
+    )
+
+
+def _offset(times: SamplingTimes, step_s: float, part: slice) -> NDArray[np.float64]:
+    """Times of a part of the rows less those of an even grid from zero."""
+    seconds = times.seconds[part]
+    return np.asarray(seconds - step_s * np.arange(part.start, part.start + len(seconds)))
+
+
+def _tolerance(times: SamplingTimes, step_s: float, part: slice) -> NDArray[np.float64]:
+    return np.maximum(1.01 * times.resolution_s[part], EVEN_WITHIN * step_s)
 
 
 def _grid_rate(times: SamplingTimes) -> float | None:
