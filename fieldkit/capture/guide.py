@@ -116,6 +116,11 @@ class Guide:
             record_s=record_s,
         )
 
+    def unreadable(self, frame: int, why: str) -> Guide:
+        """A record could not be judged."""
+        seen = None if self.seen_frame == frame else self.seen_frame
+        return replace(self, unread=max(self.unread - 1, 0), seen_frame=seen, notice=why)
+
     def estimated(
         self, place: Place, numbers: tuple[int, ...], estimate: ModeEstimate | None
     ) -> Guide:

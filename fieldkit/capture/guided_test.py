@@ -160,25 +160,26 @@ class GuidedTest:
     def _work(self) -> None:
         warm_up(self._rate_hz)
         while (item := self._queue.get()) != "stop":
-            try:
-                if isinstance(item, _Record):
-                    self._judge(item)
-                if self._queue.empty():
-                    self._estimate()
-            except Exception as error:
-                told = f"a blow could not be read ({type(error).__name__}: {error})"
-                self._change(lambda guide, told=told: replace(guide, notice=told))  # type: ignore[misc]
+            if isinstance(item, _Record):
+                self._judge(item)
+            if self._queue.empty():
+                self._estimate()
 
     def _judge(self, record: _Record) -> None:
         event, longest = record.event, self._guide.quiet()
-        reading = read_blow(
-            record.samples,
-            self._rate_hz,
-            event.blow - event.first,
-            frame=event.blow,
-            up_to_hz=self._guide.up_to_hz,
-            quiet=longest.background if longest is not None else None,
-        )
+        try:
+            reading = read_blow(
+                record.samples,
+                self._rate_hz,
+                event.blow - event.first,
+                frame=event.blow,
+                up_to_hz=self._guide.up_to_hz,
+                quiet=longest.background if longest is not None else None,
+            )
+        except Exception as error:
+            told = f"a blow could not be read ({type(error).__name__}: {error})"
+            self._change(lambda guide: guide.unreadable(event.blow, told))
+            return
         self._change(lambda guide: guide.read(reading, record.place))
 
     def _estimate(self) -> None:
@@ -198,6 +199,9 @@ def estimate_of(guide: Guide, place: Place) -> ModeEstimate | None:
         found = estimate_modes(records, low_hz=LOWEST_HZ, high_hz=guide.up_to_hz)
     except FieldkitError as error:
         return ModeEstimate((), (), (), (str(error),))
+    except Exception as error:
+        told = f"the modes could not be estimated ({type(error).__name__}: {error})"
+        return ModeEstimate((), (), (), (told,))
     modes = tuple(replace(m, direction=place.direction, at_m=place.at_m) for m in found.modes)
     return replace(found, modes=modes)
 
@@ -207,7 +211,7 @@ def warm_up(rate_hz: float) -> None:
     time_s = np.arange(round(3.5 * rate_hz)) / rate_hz - 1.0
     noise = 1e-4 * np.random.default_rng(1).standard_normal(len(time_s))
     decay = np.exp(-5 * np.maximum(time_s, 0.0)) * np.sin(2 * np.pi * 0.02 * rate_hz * time_s)
-    with suppress(FieldkitError):
+    with suppress(Exception):
         reading = read_blow(noise + decay * (time_s >= 0), rate_hz, round(rate_hz))
         if reading.record is not None:
             estimate_modes([reading.record], high_hz=min(100.0, _OF_RATE * rate_hz))

@@ -14,8 +14,9 @@ from numpy.typing import NDArray
 
 from fieldkit.capture.source import Block
 from fieldkit.signal.decimation import by_phases, lowpass
-from fieldkit.signal.spectrum import flat_top_spectrum
-from fieldkit.signal.welch import SegmentPower
+from fieldkit.signal.recording import SI_UNIT
+from fieldkit.signal.spectrum import SAMPLE_UNITS
+from fieldkit.signal.welch import one_sided
 from fieldkit.signal.windows import HFT90D
 
 Real = NDArray[np.float64]
@@ -85,7 +86,10 @@ class LiveSpectrum:
         """``scale``: SI units of the quantity per unit of sample; None where uncalibrated."""
         self.picture: LivePicture | None = None
         self._channel = channel
-        self._quantity, self._scale = quantity, scale
+        calibrated = quantity is not None and scale is not None
+        self._factor = scale if scale is not None and calibrated else 1.0
+        self._unit = SI_UNIT[quantity] if quantity is not None and calibrated else SAMPLE_UNITS
+        self._window: Real = np.zeros(0)
         self._rate_hz = rate_hz
         self._top_hz = min(top_hz, _KEPT_OF_RATE * rate_hz)
         self._step = max(int(rate_hz * _KEPT_OF_RATE // self._top_hz), 1)
@@ -146,14 +150,16 @@ class LiveSpectrum:
 
     def _draw(self, since_s: float) -> None:
         length = len(self._low)
-        weighted = (self._low - self._low.mean()) * HFT90D.samples(length)
+        if len(self._window) != length:
+            self._window = HFT90D.samples(length)
+        weighted = (self._low - self._low.mean()) * self._window
         power = np.abs(np.fft.rfft(weighted)) ** 2
         if self._power is None or len(self._power) != len(power):
             self._power = power
         else:
             share = min(since_s / AVERAGE_S, 1.0)
             self._power = self._power + share * (power - self._power)
-        now, averaged = (self._amplitude(p, length) for p in (power, self._power))
+        now, averaged = self._amplitude(power), self._amplitude(self._power)
         frequency_hz = np.arange(len(power)) * self._low_rate_hz / length
         kept = frequency_hz <= self._top_hz
         count, total, squares = self._squares.sum(axis=0)
@@ -162,22 +168,18 @@ class LiveSpectrum:
         self.picture = LivePicture(
             self._number,
             frequency_hz[kept],
-            now[0][kept],
-            averaged[0][kept],
+            now[kept],
+            averaged[kept],
             length / self._low_rate_hz,
-            overall * (self._scale if self._quantity and self._scale else 1.0),
-            now[1],
-            self._lines(frequency_hz[kept], averaged[0][kept]),
+            overall * self._factor,
+            self._unit,
+            self._lines(frequency_hz[kept], averaged[kept]),
         )
 
-    def _amplitude(self, power: Real, length: int) -> tuple[Real, str]:
-        spectrum = flat_top_spectrum(
-            SegmentPower(power, 1, length),
-            self._low_rate_hz,
-            quantity=self._quantity,
-            scale=self._scale,
-        )
-        return spectrum.amplitude, spectrum.unit
+    def _amplitude(self, power: Real) -> Real:
+        """(m,) RMS of a sine on each line, as ``flat_top_spectrum`` scales it."""
+        counts = one_sided(len(self._window))
+        return np.asarray(self._factor * np.sqrt(counts * power) / self._window.sum())
 
     def _lines(self, frequency_hz: Real, amplitude: Real) -> tuple[OrderLine, ...]:
         reach_hz = _LINE_BINS * float(frequency_hz[1])

@@ -10,6 +10,7 @@ from fieldkit.capture.enough import Expected, best_station, next_place, with_mor
 from fieldkit.capture.guide import Place
 from fieldkit.signal.modes import MeasuredMode
 from tests.capture.practice_rig import AT, Rig
+from tests.capture.rig import until
 
 RATE_HZ = 4000
 
@@ -141,6 +142,25 @@ def test_another_direction_is_estimated_on_its_own() -> None:
     assert shot.estimate is not None
     assert [round(m.frequency_hz, 1) for m in shot.estimate.modes] == [19.2, 48.8]
     assert {place for place, _ in shot.estimates} == {AT, sideways}
+    rig.test.stop()
+
+
+def test_a_record_that_cannot_be_read_is_told_and_the_next_one_counts(monkeypatch) -> None:
+    """A fault inside must not end the test."""
+    rig = Rig()
+
+    def broken(*_words: object, **_more: object) -> None:
+        raise ArithmeticError("made to fail")
+
+    with monkeypatch.context() as patch:
+        patch.setattr("fieldkit.capture.guided_test.read_blow", broken)
+        rig.armed()
+        rig.source.tap()
+        rig.run(6.0)
+        until(lambda: rig.test.snapshot().notice)
+    assert "ArithmeticError: made to fail" in rig.test.snapshot().notice
+    shot = rig.struck()
+    assert [blow.verdict.kind for blow in shot.blows] == ["usable"]
     rig.test.stop()
 
 
