@@ -191,11 +191,14 @@ class Guide:
         here = self.worth(self.place)
         if here.more > 0:
             count = f"{here.more} more" if self.counted(self.place) else str(here.more)
-            return f"{count} good blow{'s' if here.more > 1 else ''}: {here.why}"
+            return f"{count} good blow{'s' if here.more > 1 else ''} wanted: {here.why}"
         for direction in self.directions:
             other = replace(self.place, direction=direction)
             if self.place.direction is not None and self.worth(other).more > 0:
-                return f"{self.place.direction} is done ({here.why}): now {direction}"
+                return (
+                    f"{self.place.direction} is done ({here.why}): "
+                    f"turn sensor and hammer to {direction}"
+                )
         estimate = self.estimate_of(self.place)[1]
         modes = estimate.modes if estimate is not None else ()
         good = len(self.counted(self.place))

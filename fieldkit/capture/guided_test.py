@@ -110,8 +110,9 @@ class GuidedTest:
         """Take a blow that was set aside in again."""
         self._put_aside(number, aside=False)
 
-    def move_to(self, place: Place) -> None:
-        """Go on at another place or in another direction."""
+    def move_to(self, place: Place, expected: Sequence[Expected] | None = None) -> None:
+        """Go on at another place or in another direction, with the modes a model expects there."""
+        self._expected = self._expected if expected is None else tuple(expected)
         self._change(lambda guide: guide.moved_to(place))
         self._queue.put("")
 

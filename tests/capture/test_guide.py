@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
-from fieldkit.capture.blow import MACHINE, NO_BLOW, read_blow
+from fieldkit.capture.blow import CUT_SHORT, MACHINE, NO_BLOW, read_blow
 from fieldkit.capture.enough import Expected, best_station, next_place, with_more, worth
-from fieldkit.capture.guide import Place
+from fieldkit.capture.guide import Guide, Place
 from fieldkit.signal.modes import MeasuredMode
 from tests.capture.practice_rig import AT, Rig
 from tests.capture.rig import until
@@ -29,7 +31,7 @@ def test_three_good_taps_find_the_modes_of_the_rig() -> None:
         assert mode.damping_ratio == pytest.approx(0.012, abs=4 * (mode.damping_sd or 0.0))
         assert (mode.taps, mode.direction, mode.at_m) == (3, "vertical", 1.0)
     assert shots[-1].advice.startswith("vertical is done")
-    assert shots[-1].advice.endswith("now lateral")
+    assert shots[-1].advice.endswith("turn sensor and hammer to lateral")
     assert shots[-1].record_s == pytest.approx(6 / (2 * np.pi * 24.0 * 0.012), rel=0.05)
     rig.test.stop()
 
@@ -109,6 +111,18 @@ def test_what_a_machine_drowns_is_laid_to_the_machine() -> None:
     assert loud.verdict.kind == MACHINE
     assert "24.7 Hz" in loud.verdict.what
     assert read_blow(noise, RATE_HZ, 2 * RATE_HZ).verdict.kind == NO_BLOW
+
+
+def test_a_decay_that_is_cut_while_it_rings_is_short() -> None:
+    """Two seconds of a mode that falls by 2 dB in that time."""
+    time_s = np.arange(4 * RATE_HZ) / RATE_HZ - 2.0
+    decay = np.exp(-0.12 * time_s) * np.sin(2 * np.pi * 19.0 * time_s) * (time_s >= 0)
+    noise = 1e-3 * np.random.default_rng(5).standard_normal(len(time_s))
+    reading = read_blow(0.3 * decay + noise, RATE_HZ, 2 * RATE_HZ)
+    assert reading.verdict.kind == CUT_SHORT
+    assert "the next record is longer" in reading.verdict.change
+    guide = replace(Guide(), record_s=2.5)
+    assert guide.read(reading, guide.place).record_s == 5.0
 
 
 def test_a_blow_set_aside_leaves_the_estimate_and_can_come_back() -> None:

@@ -23,6 +23,7 @@ from fieldkit.errors import InputError
 from fieldkit.job.schema import load_job
 from fieldkit.progress import Progress
 from fieldkit.workup import entry_for, evidence_from, read_tap
+from fieldkit.workup.expected import expected_modes
 from fieldkit.workup.practice import practice_channels, practice_plant, practice_source
 from tests.capture.practice_rig import RATE_HZ, plant
 from tests.capture.rig import until
@@ -217,3 +218,14 @@ def test_what_nobody_said_of_a_channel_is_filled_in() -> None:
     assert one.si_per_unit == pytest.approx(68.6, rel=1e-3)
     with pytest.raises(InputError, match="pressure"):
         practice_channels(job, [ChannelSetup("pressure")])
+
+
+def test_the_model_tells_which_modes_a_direction_shows() -> None:
+    """Upright modes are expected upright only, and move most where the model says."""
+    job = load_job(sample_jobs()[0])
+    upright, sideways = (expected_modes(job, way) for way in ("vertical", "lateral"))
+    assert upright
+    assert sideways
+    assert not {m.frequency_hz for m in upright} & {m.frequency_hz for m in sideways}
+    assert all(mode.motion.max() == 1.0 for mode in (*upright, *sideways))
+    assert expected_modes(job, None) == ()
