@@ -215,7 +215,8 @@ def _mode_cells(mode: MeasuredMode) -> tuple[str, ...]:
 def _blow_rows(readings: tuple[TapReading, ...]) -> list[Row]:
     rows: list[Row] = []
     for number, reading in enumerate(readings):
-        usable = f"{len(reading.records)} of {len(reading.search.taps)} usable"
+        blows = reading.search.taps
+        usable = f"{sum(blow.usable for blow in blows)} of {len(blows)} usable"
         struck = ", h response" if reading.hammer else ""
         length = seconds(reading.duration_s)
         rows.append((str(number), (reading.file, f"{usable}{struck}, {length}")))
