@@ -19,10 +19,10 @@ _AGAINST_BOUND = (
 
 _HEAD = """# How near the measured modes come to what the data allow
 
-`python -m tests.bench.accuracy --seed {seed} --records {records} --write docs/accuracy.md \
---plot docs/coverage.svg` wrote this page; another seed makes other recordings. Every recording is
-simulated, so that its modes are known: {kinds} kinds, rates from 1 to 48 kHz, modes from 3 to
-400 Hz, uneven taps.
+`python -m tests.bench.accuracy --write docs/accuracy.md --plot docs/coverage.svg` writes this page;
+here with `--seed {seed} --records {records}`, and another seed makes other recordings. Every
+recording is simulated, so that its modes are known: {kinds} kinds, rates from 1 to 48 kHz, modes
+from 3 to 400 Hz, uneven taps.
 
 - **Estimable**: energy of the decays, all usable taps together, at least 25 dB over the noise (sum
   of squares over noise variance at the mode's frequency; of one clear mode of energy E damping can
