@@ -73,12 +73,13 @@ def practice_source(
     where it measures anything but acceleration.
     """
     plant = practice_plant(job, running=running)
-    sensors = [_sensor(setup) for setup in practice_channels(job, channels)]
+    filled = practice_channels(job, channels)
+    hammers = [setup.at_m for setup in filled if setup.quantity == FORCE]
     return PracticeSource(
         plant,
-        sensors,
+        [_sensor(setup) for setup in filled],
         rate_hz=rate_hz or RATE_HZ,
-        struck_m=_STRUCK_AT * _end(plant),
+        struck_m=hammers[0] if hammers else _STRUCK_AT * _end(plant),
         pace=pace,
     )
 
@@ -107,8 +108,12 @@ def _end(plant: PracticePlant) -> float:
 
 
 def practice_channels(job: Job, channels: Sequence[ChannelSetup]) -> tuple[ChannelSetup, ...]:
-    """The channels with what nobody said filled in: place, direction and sensitivity."""
-    at = f"{_SENSOR_AT * job.span.length_m:.2f} m"
+    """The channels with what nobody said filled in: place, direction and sensitivity.
+
+    A hammer strikes beside the first sensor, so that the response tells effective masses.
+    """
+    sensors = [setup.at for setup in channels if setup.quantity != FORCE and setup.at]
+    at = sensors[0] if sensors else f"{_SENSOR_AT * job.span.length_m:.2f} m"
     return tuple(
         _filled(setup, at, _DIRECTIONS[i % len(_DIRECTIONS)]) for i, setup in enumerate(channels)
     )
@@ -116,6 +121,7 @@ def practice_channels(job: Job, channels: Sequence[ChannelSetup]) -> tuple[Chann
 
 def _filled(setup: ChannelSetup, at: str, direction: str) -> ChannelSetup:
     if setup.quantity == FORCE:
+        setup = replace(setup, at=setup.at or at)
         return setup if setup.si_per_unit is not None else replace(setup, scale=_HAMMER)
     setup = replace(setup, at=setup.at or at, direction=setup.direction or direction)
     if setup.quantity != "acceleration":

@@ -14,15 +14,17 @@ from fieldkit.capture.guided_test import GuidedTest
 from fieldkit.capture.practice import PracticeSensor, PracticeSource, Surroundings
 from fieldkit.capture.session import Session
 from fieldkit.capture.setup import ChannelSetup
-from fieldkit.capture.sidecar import read_info
+from fieldkit.capture.sidecar import RecordingInfo, read_info
 from fieldkit.capture.snapshot import ENDED, RUNNING, WAITING
 from fieldkit.capture.source import Block
+from fieldkit.capture.writer import RecordingWriter
 from fieldkit.cli.samples import sample_jobs
 from fieldkit.detune.excitation import bands
 from fieldkit.errors import InputError
+from fieldkit.job.document import HammerEntry
 from fieldkit.job.schema import load_job
 from fieldkit.progress import Progress
-from fieldkit.workup import entry_for, evidence_from, read_tap
+from fieldkit.workup import entry_for, evidence_from, read_tap, response_reading
 from fieldkit.workup.expected import expected_modes
 from fieldkit.workup.practice import practice_channels, practice_plant, practice_source
 from tests.capture.practice_rig import RATE_HZ, plant
@@ -212,7 +214,7 @@ def test_what_nobody_said_of_a_channel_is_filled_in() -> None:
     assert (one.direction, two.direction, one.at, two.at) == (
         "vertical",
         "lateral",
-        "1.43 m",
+        "1 m",
         "1 m",
     )
     assert one.si_per_unit == pytest.approx(68.6, rel=1e-3)
@@ -229,3 +231,33 @@ def test_the_model_tells_which_modes_a_direction_shows() -> None:
     assert not {m.frequency_hz for m in upright} & {m.frequency_hz for m in sideways}
     assert all(mode.motion.max() == 1.0 for mode in (*upright, *sideways))
     assert expected_modes(job, None) == ()
+
+
+def test_the_hammer_of_the_rig_weighs_its_modes(tmp_path) -> None:
+    """Struck at the sensor, the effective mass is one over the square of the mass-normalised shape,
+    and 3 % too low with a sensor that reads 3 % high."""
+    job = load_job(sample_jobs()[0])
+    setups = practice_channels(job, [ChannelSetup(direction="lateral"), ChannelSetup("force")])
+    rig = practice_source(job, setups, rate_hz=RATE_HZ)
+    path = tmp_path / "tap-1.wav"
+    info = RecordingInfo(rig.name, RATE_HZ, setups, "2026-01-01T00:00:00+00:00", simulated=True)
+    writer = RecordingWriter(path, info)
+    for number in range(900):
+        if number % 250 == 150:
+            rig.tap()
+        writer.feed(rig.block(number * 80))
+    writer.close("done")
+    hammer = HammerEntry(2, setups[1].si_per_unit, setups[1].at_m)
+    reading = read_tap(replace(entry_for(path, "tap"), hammer=hammer))
+    evidence = evidence_from([reading], None, Progress(), job.goal.up_to_hz)
+    found = response_reading(reading, evidence, job.goal.up_to_hz)
+    assert found is not None
+    assert found.fitted is not None
+    strongest = int(np.argmin([mass.kg if mass else np.inf for mass in found.masses]))
+    mass, hz = found.masses[strongest], found.fitted.modes[strongest].frequency_hz
+    nearest = int(np.argmin(np.abs(rig.plant.frequency_hz - hz)))
+    at_m = setups[0].at_m
+    assert at_m is not None
+    truth = 1 / rig.plant.motion(at_m, "lateral")[nearest] ** 2
+    assert mass is not None
+    assert mass.kg == pytest.approx(truth / 1.03, rel=0.02)
