@@ -26,6 +26,7 @@ STEPS = {
     "preparation": "prepare",
     "search": "search",
     "pruning": "pruned",
+    "drift": "with_drift",
     "polish": "polished",
     "verdicts": "judged",
 }
