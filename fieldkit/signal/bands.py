@@ -49,10 +49,13 @@ class Band:
 
     @cached_property
     def edges_hz(self) -> tuple[float, float]:
-        """Frequencies between which a pole can be seen: a bin beyond the lowest and highest."""
+        """Frequencies between which a pole can be seen: from a bin below the lowest to the highest.
+
+        Beyond the highest there may be no bin at all, for nothing is analysed above the region.
+        """
         used = self.frequency_hz[self.weight > 0]
         spacing = float(np.max(self.rate_hz / self.count))
-        return float(used.min()) - spacing, float(used.max()) + spacing
+        return float(used.min()) - spacing, float(used.max())
 
 
 def band(traces: Sequence[Trace], low_hz: float, high_hz: float, duration_s: float) -> Band:

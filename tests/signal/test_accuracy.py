@@ -41,6 +41,16 @@ def test_no_recording_breaks_the_estimator(tally: Tally) -> None:
     assert not [score.crash for score in tally.scores if score.crash]
 
 
+@pytest.mark.parametrize(("kind", "seed"), [("many", 3100003), ("pair", 2100006)])
+def test_a_pole_that_would_leave_the_region_stays_inside_and_hides_no_mode(
+    kind: str, seed: int
+) -> None:
+    score = run(Plan(kind, seed, (WAY,))).scores[WAY]
+    assert not score.crash
+    assert len(score.found) >= score.estimable - 1
+    assert not score.false_hz
+
+
 def test_nearly_all_estimable_modes_are_found(tally: Tally) -> None:
     assert tally.sum(lambda s: s.estimable) > 60
     assert tally.share(lambda s: len(s.found), lambda s: s.estimable) >= 0.93
