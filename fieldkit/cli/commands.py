@@ -229,7 +229,8 @@ def detune(job_file: JobFile, as_json: AsJson = False) -> None:
         output.clear_progress()
         _stop_where_refused(work, as_json=as_json)
         assert work.detuning is not None
-        extra = [*work.warnings, *(work.match.warnings if work.match else ())]
+        matched = work.match.warnings if work.match else ()
+        extra = list(dict.fromkeys([*work.warnings, *matched]))
         lines = [*tables.detune(work.detuning, work.job.units), *tables.warnings(extra)]
         output.answer(documents.detune(work.detuning, extra), lines, as_json=as_json)
 

@@ -38,7 +38,7 @@ def peaks(
             for tone in evidence.tones
         ],
         "refused_modes": [_refused_mode(peak) for peak in evidence.refused],
-        "warnings": [*evidence.warnings, *_notes(readings)],
+        "warnings": list(dict.fromkeys([*evidence.warnings, *_notes(readings)])),
     }
 
 

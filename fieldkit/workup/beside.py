@@ -13,6 +13,8 @@ from fieldkit.job.document import HammerEntry, RecordingEntry
 from fieldkit.signal.recording import Recording
 from fieldkit.signal.taps import Tap, TapSearch
 
+SIMULATED = "simulated by"
+"""How the note on a recording begins that was computed."""
 _SHOWN = 3
 _SAME_BLOW_S = 0.1
 
@@ -98,7 +100,7 @@ def _check_belongs(info: RecordingInfo, path: Path, recording: Recording) -> Non
 
 
 def _origin(info: RecordingInfo) -> list[str]:
-    notes = [f"simulated by {info.device}: nothing was measured"] if info.simulated else []
+    notes = [f"{SIMULATED} {info.device}: nothing was measured"] if info.simulated else []
     if not info.ended:
         notes.append("it was cut off while it was recorded; it is read as far as it was written")
     return notes

@@ -18,6 +18,7 @@ from fieldkit.span.handbook import HandbookEstimate, estimate
 from fieldkit.span.layout import Span, State
 from fieldkit.span.modes import Mode, free_directions, span_modes
 from fieldkit.span.static import WeightAnswer, weight_answer
+from fieldkit.workup.beside import SIMULATED
 from fieldkit.workup.evidence import evidence_from, with_running_modes
 from fieldkit.workup.readings import RunningReading, TapReading, running_readings, tap_readings
 
@@ -97,7 +98,8 @@ def _with_taps(work: Workup, progress: Progress) -> Workup:
 
 def _with_running(work: Workup, progress: Progress) -> Workup:
     running = running_readings(work.job, progress)
-    return replace(work, running=running, evidence=with_running_modes(work.evidence, running))
+    evidence = with_running_modes(work.evidence, running)
+    return replace(work, running=running, evidence=evidence, warnings=evidence.warnings)
 
 
 def _with_states(work: Workup, progress: Progress) -> Workup:
@@ -169,9 +171,9 @@ def one_state(span: Span, state: State, up_to_hz: float) -> StateModes:
 def matching(
     job: Job, evidence: Evidence, states: Sequence[StateModes], progress: Progress
 ) -> Match:
-    """The ensemble that agrees with the evidence."""
+    """The ensemble that agrees with the evidence; warns where that was simulated."""
     handbook = states[0].handbook if states else None
-    return match(
+    found = match(
         job.span,
         job.tapped,
         job.running,
@@ -180,6 +182,8 @@ def matching(
         handbook_hz=handbook.frequency_hz if handbook else None,
         progress=progress,
     )
+    simulated = [warning for warning in evidence.warnings if f": {SIMULATED}" in warning]
+    return replace(found, warnings=(*simulated, *found.warnings))
 
 
 def detuning(job: Job, evidence: Evidence, matched: Match | None, progress: Progress) -> Detuning:

@@ -11,6 +11,7 @@ from fieldkit.errors import Refusal
 from fieldkit.job.document import Job
 from fieldkit.progress import Progress
 from fieldkit.signal.modes import MeasuredMode, ModeEstimate, Tone, estimate_modes
+from fieldkit.workup.beside import SIMULATED
 from fieldkit.workup.limits import LEAST_HZ, NYQUIST_SHARE, UP_TO_HZ
 from fieldkit.workup.readings import RunningReading, TapReading
 
@@ -35,7 +36,18 @@ def evidence_from(
     for key, group in groupby(sorted(usable, key=_group_key), key=_group_key):
         progress.step("finding modes", 0.5 + 0.5 * len(estimates) / len(usable))
         estimates.append((key, _estimate(list(group), up_to_hz)))
-    return _combined(estimates, typed)
+    evidence = _combined(estimates, typed)
+    return replace(evidence, warnings=(*simulated_in(readings), *evidence.warnings))
+
+
+def simulated_in(readings: Sequence[TapReading] | Sequence[RunningReading]) -> tuple[str, ...]:
+    """A warning for each recording that was computed, not measured."""
+    return tuple(
+        f"{reading.file}: {note}"
+        for reading in readings
+        for note in reading.notes
+        if note.startswith(SIMULATED)
+    )
 
 
 def _why_unusable(readings: Sequence[TapReading]) -> str:
@@ -88,11 +100,16 @@ def _combined(
 def with_running_modes(evidence: Evidence, readings: Sequence[RunningReading]) -> Evidence:
     """The evidence with the modes of running recordings, each marked with source and state.
 
-    Tones, refused peaks and warnings stay those of the taps: the readings keep their own.
+    Tones, refused peaks and warnings stay those of the taps: the readings keep their own, except
+    that a simulated one is named.
     """
     running = [mode for reading in readings if reading.modes for mode in reading.modes.modes]
     together = (*evidence.modes, *running)
-    return replace(evidence, modes=tuple(sorted(together, key=lambda mode: mode.frequency_hz)))
+    return replace(
+        evidence,
+        modes=tuple(sorted(together, key=lambda mode: mode.frequency_hz)),
+        warnings=(*evidence.warnings, *simulated_in(readings)),
+    )
 
 
 def _merged_tones(tones: Sequence[Tone]) -> tuple[Tone, ...]:

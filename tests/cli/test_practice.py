@@ -54,6 +54,18 @@ def test_a_practice_recording_is_added_to_the_job_and_says_that_it_is_simulated(
     assert told.document["recordings"][0]["taps"]
 
 
+def test_an_answer_that_rests_on_the_rig_says_so(job) -> None:
+    """Match, detuning and advice name the recordings that were simulated."""
+    record = ("record", job, "--practice", "--seconds", 20, "--rate", 4000)
+    assert fieldkit(*record, "--direction", "lateral").status == 0
+    said = "tap-1.wav: simulated by the practice rig: nothing was measured"
+    assert said in fieldkit("match", job, "--json").document["warnings"]
+    detuned = fieldkit("detune", job, "--json").document
+    assert detuned["warnings"].count(said) == 1
+    assert detuned["fixes"]
+    assert " ".join(fieldkit(job).out.split()).count(said) == 1
+
+
 def test_a_calibration_stands_in_the_job_with_date_and_result(job) -> None:
     """Written into what has no sensitivity yet, told as a comment for a person."""
     text = job.read_text("utf-8").replace(
