@@ -24,6 +24,7 @@ CUT_SHORT = "cut short"
 MACHINE = "machine too loud"
 GAP = "frames missing"
 NO_BLOW = "no blow"
+REFUSED = "not usable"
 
 CHANGES = {
     USABLE: "",
@@ -34,6 +35,7 @@ CHANGES = {
     MACHINE: "stop the machine, or strike harder",
     GAP: "strike again",
     NO_BLOW: "keep the place quiet, then strike once",
+    REFUSED: "strike again",
 }
 """What to do about each verdict."""
 
@@ -70,7 +72,7 @@ class Verdict:
 
     kind: str
     """``usable``, ``clipped``, ``double``, ``weak``, ``cut short``, ``machine too loud``,
-    ``frames missing`` or ``no blow``."""
+    ``frames missing``, ``no blow`` or ``not usable``."""
     what: str = ""
     """What was seen; empty for a usable one."""
 
@@ -196,6 +198,8 @@ def _verdict(search: TapSearch, tap: Tap | None, before: Real, rate_hz: float) -
             return _drowned(steady, tap.peak) or Verdict(WEAK, _without_kind(said[0]))
         if said:
             return Verdict(kind, _without_kind(said[0]))
+    if tap.reasons:
+        return Verdict(REFUSED, tap.reasons[0].partition("; ")[0])
     return _hardly_over(before, rate_hz, tap.peak, steady) or Verdict(USABLE)
 
 

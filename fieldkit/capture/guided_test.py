@@ -67,7 +67,7 @@ class GuidedTest:
         self._mark = mark
         self._trigger = Trigger(rate_hz=rate_hz)
         self._ring = Ring(frames=round(_RING_S * rate_hz), channels=1)
-        self._listen_anew = False
+        self._listen_anew = self._stopped = False
         self._frame = 0
         self._published_frame = 0
         self._lock = threading.Lock()
@@ -80,6 +80,8 @@ class GuidedTest:
 
     def feed(self, block: Block) -> None:
         """Take a block of the session."""
+        if self._stopped:
+            return
         samples = block.samples[:, self._channel : self._channel + 1]
         if self._listen_anew:
             self._listen_anew = False
@@ -121,7 +123,8 @@ class GuidedTest:
         self._listen_anew = True
 
     def stop(self) -> None:
-        """End the thread; what was found stays."""
+        """Hear nothing more and end the thread; what was found stays."""
+        self._stopped = True
         self._queue.put("stop")
 
     def _take(self, event: BlowSeen | RecordDone | RecordBroken) -> None:
@@ -185,10 +188,13 @@ class GuidedTest:
 
     def _estimate(self) -> None:
         while (place := self._guide.outdated()) is not None and self._queue.empty():
-            guide = self._guide
-            numbers = tuple(blow.number for blow in guide.counted(place))
-            estimate = estimate_of(guide, place)
-            self._change(lambda g, p=place, n=numbers, e=estimate: g.estimated(p, n, e))  # type: ignore[misc]
+            self._estimate_at(place)
+
+    def _estimate_at(self, place: Place) -> None:
+        guide = self._guide
+        numbers = tuple(blow.number for blow in guide.counted(place))
+        estimate = estimate_of(guide, place)
+        self._change(lambda guide: guide.estimated(place, numbers, estimate))
 
 
 def estimate_of(guide: Guide, place: Place) -> ModeEstimate | None:

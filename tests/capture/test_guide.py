@@ -11,6 +11,7 @@ from fieldkit.capture.blow import CUT_SHORT, MACHINE, NO_BLOW, read_blow
 from fieldkit.capture.enough import Expected, best_station, next_place, with_more, worth
 from fieldkit.capture.guide import Guide, Place
 from fieldkit.signal.modes import MeasuredMode
+from fieldkit.signal.taps import TapSearch, find_taps
 from tests.capture.practice_rig import AT, Rig
 from tests.capture.rig import until
 
@@ -123,6 +124,24 @@ def test_a_decay_that_is_cut_while_it_rings_is_short() -> None:
     assert "the next record is longer" in reading.verdict.change
     guide = replace(Guide(), record_s=2.5)
     assert guide.read(reading, guide.place).record_s == 5.0
+
+
+def test_every_reason_not_to_use_a_tap_refuses_the_blow(monkeypatch) -> None:
+    """Also one that the guide has no word of its own for."""
+    time_s = np.arange(5 * RATE_HZ) / RATE_HZ - 2.0
+    decay = 0.3 * np.exp(-3 * time_s) * np.sin(2 * np.pi * 19.0 * time_s) * (time_s >= 0)
+    noise = 1e-3 * np.random.default_rng(5).standard_normal(len(time_s))
+    assert read_blow(decay + noise, RATE_HZ, 2 * RATE_HZ).verdict.usable
+
+    def judged(*words: object, **more: object) -> TapSearch:
+        search = find_taps(*words, **more)  # type: ignore[arg-type]
+        tap = replace(search.taps[0], usable=False, reasons=("touched: by a hand; let go",))
+        return replace(search, taps=(tap,))
+
+    monkeypatch.setattr("fieldkit.capture.blow.find_taps", judged)
+    reading = read_blow(decay + noise, RATE_HZ, 2 * RATE_HZ)
+    assert (reading.verdict.kind, reading.verdict.what) == ("not usable", "touched: by a hand")
+    assert reading.record is None
 
 
 def test_a_blow_set_aside_leaves_the_estimate_and_can_come_back() -> None:
