@@ -44,7 +44,11 @@ class Attachment:
 
 
 def natural_frequencies_hz(
-    beam: Beam, length_m: float, attachments: Sequence[Attachment], count: int
+    beam: Beam,
+    length_m: float,
+    attachments: Sequence[Attachment],
+    count: int,
+    relative_error: float = 1e-11,
 ) -> np.ndarray:
     """The lowest natural frequencies above zero, shape (count,), to 1e-10 of their value."""
     stations = np.unique([0.0, length_m, *(a.at_m for a in attachments)])
@@ -58,9 +62,42 @@ def natural_frequencies_hz(
         middle = 0.5 * (low + high)
         enough = _count_below(beam, stations, attachments, middle) >= wanted
         low, high = np.where(enough, low, middle), np.where(enough, middle, high)
-        if np.all(high - low < 1e-11 * high):
+        if np.all(high - low < relative_error * high):
             break
     return 0.5 * (low + high) / (2 * math.pi)
+
+
+def mode_count(
+    beam: Beam, length_m: float, attachments: Sequence[Attachment], below_hz: float
+) -> int:
+    """How many natural frequencies lie above zero and below a frequency."""
+    stations = np.unique([0.0, length_m, *(a.at_m for a in attachments)])
+    omega = np.array([_start(beam, length_m), 2 * math.pi * below_hz])
+    rigid, all_below = _count_below(beam, stations, attachments, omega)
+    return int(all_below - rigid)
+
+
+def deflections(
+    beam: Beam,
+    length_m: float,
+    attachments: Sequence[Attachment],
+    frequency_hz: np.ndarray,
+    at_m: Sequence[float],
+) -> np.ndarray:
+    """Deflection at some stations in each mode, shape (modes, stations), any scale.
+
+    Every stiffness must be finite. At a natural frequency the dynamic stiffness has no resistance
+    against the mode: the vector of its least eigenvalue.
+    """
+    stations = np.unique([0.0, length_m, *(a.at_m for a in attachments), *at_m])
+    omega = 2 * math.pi * np.asarray(frequency_hz)
+    whole, _ = _whole(beam, stations, attachments, omega)
+    scale = 1 / np.sqrt(np.abs(np.diagonal(whole, axis1=1, axis2=2)))
+    value, vector = np.linalg.eigh(scale[:, :, None] * whole * scale[:, None, :])
+    least = np.argmin(np.abs(value), axis=1)
+    shape = scale * np.take_along_axis(vector, least[:, None, None], axis=2)[:, :, 0]
+    rows = [2 * int(np.argmin(np.abs(stations - station))) for station in at_m]
+    return shape[:, rows]
 
 
 def _start(beam: Beam, length_m: float) -> float:
@@ -70,6 +107,15 @@ def _start(beam: Beam, length_m: float) -> float:
 
 def _count_below(beam, stations, attachments, omega):
     """How many natural frequencies lie below each angular frequency, shape of omega."""
+    whole, inside = _whole(beam, stations, attachments, omega)
+    return inside.sum(axis=1) + _negative_pivots(whole)
+
+
+def _whole(beam, stations, attachments, omega):
+    """Dynamic stiffness of what is free to move, and resonances of the members held at both ends.
+
+    Shapes (W, 2 stations - held, the same), deflection and slope in turn; and (W, members).
+    """
     lengths = np.diff(stations)
     stiffness, inside = _members(beam, lengths, omega)
     size = 2 * len(stations)
@@ -84,7 +130,7 @@ def _count_below(beam, stations, attachments, omega):
         inertia = attached.mass_kg * omega**2
         whole[:, row, row] += np.nan_to_num(attached.spring_n_per_m, posinf=0.0) - inertia
         whole[:, row + 1, row + 1] += np.nan_to_num(attached.rotation_n_m_per_rad, posinf=0.0)
-    return inside.sum(axis=1) + _negative_pivots(whole[:, kept][:, :, kept])
+    return whole[:, kept][:, :, kept], inside
 
 
 def _members(beam, lengths, omega):
