@@ -215,7 +215,7 @@ def longest_m(stiffness: Array, wanted: Array, section: Section) -> float:
     """Longest length (interpolated in logarithms) at which both directions suffice; 0 where none.
 
     ``stiffness`` is (lengths, 2) over LENGTHS_M; it falls with length, but for a sway of a short
-    portal's legs that stiffens its beam by less than 1 in 1000.
+    portal's legs that stiffens its beam by 3 % at most.
     """
     limit = MOST_SLENDER * section.least_radius_m
     for axis in range(2):

@@ -89,10 +89,10 @@ def test_clamp_arm_and_base_are_in_series():
 
 @pytest.mark.parametrize("form", FORMS, ids=lambda form: form.name)
 def test_every_form_softens_with_length(form):
-    """What the search for the longest length rests on; a portal's beam does so within 0.1 %."""
+    """What the search for the longest length rests on; a portal's beam within 0.4 % a step."""
     for section in sections():
         stiffness = bracket_stiffness(form, section, LENGTHS_M, 0.1143)
-        assert np.all(np.diff(stiffness, axis=0) < 1e-3 * stiffness[1:])
+        assert np.all(np.diff(stiffness, axis=0) < 4e-3 * stiffness[1:])
         assert np.all(stiffness[-1] < stiffness[0])
 
 
