@@ -20,14 +20,9 @@ from fieldkit.detune.fixes import (
 )
 from fieldkit.errors import Refusal
 from fieldkit.quantity import show
+from fieldkit.span.held import Holding, holding
 from fieldkit.span.layout import Span, State, axis_vectors
-from fieldkit.span.static import (
-    ThermalGrowth,
-    WeightAnswer,
-    added_support_load,
-    thermal_growth,
-    weight_answer,
-)
+from fieldkit.span.static import WeightAnswer, weight_answer
 from fieldkit.span.supports import springs
 
 Array = NDArray[np.float64]
@@ -50,18 +45,18 @@ class Resting:
     span: Span
     tapped: State
     running: State
-    growth: ThermalGrowth
+    holding: Holding
     weight: WeightAnswer | None
     weight_refused: str = ""
 
 
 def at_rest(span: Span, tapped: State, running: State) -> Resting:
     """Sag, support loads and thermal growth before any change."""
-    growth = thermal_growth(span, tapped, running)
+    held = holding(span, tapped, running)
     try:
-        return Resting(span, tapped, running, growth, weight_answer(span, running))
+        return Resting(span, tapped, running, held, weight_answer(span, running))
     except Refusal as refusal:
-        return Resting(span, tapped, running, growth, None, str(refusal))
+        return Resting(span, tapped, running, held, None, str(refusal))
 
 
 def cautions(
@@ -113,14 +108,7 @@ def _new_support_load(change: AddSupport, resting: Resting, units: str) -> list[
     """What a support set without load in the tapped state comes to carry in the running one."""
     if not change.vertical_n_per_m:
         return []
-    load = added_support_load(
-        resting.span,
-        resting.tapped,
-        resting.running,
-        change.at_m,
-        "vertical",
-        change.vertical_n_per_m,
-    )
+    load = resting.holding.load(change.at_m, "vertical", change.vertical_n_per_m)
     filling, heat = float(np.linalg.norm(load.filling_n)), float(np.linalg.norm(load.heat_n))
     if max(filling, heat) < NOTABLE_LOAD_N:
         return []
@@ -141,7 +129,7 @@ def _heat(change: Change, resting: Resting, units: str) -> list[str]:
     station = _restrained_at(change, span)
     if station is None:
         return []
-    movement = resting.growth.at(station)
+    movement = resting.holding.growth.at(station)
     held = float(np.linalg.norm(_held_directions(change, span, station) @ movement))
     size = float(np.linalg.norm(movement))
     if held >= NOTABLE_MOVEMENT_M:

@@ -13,10 +13,11 @@ from numpy.typing import NDArray
 
 from fieldkit.errors import Refusal
 from fieldkit.span import axial
+from fieldkit.span import elements as element
 from fieldkit.span.factor import Factor, rounding_floor
 from fieldkit.span.layout import Span, State, axis_vectors
 from fieldkit.span.restraint import span_matrices
-from fieldkit.span.structure import Structure, assemble, contents_mass
+from fieldkit.span.structure import Structure, assemble
 from fieldkit.span.supports import springs
 
 if TYPE_CHECKING:
@@ -42,16 +43,10 @@ class WeightAnswer:
     """Where."""
     support_loads: tuple[tuple[int, Array], ...]
     """(index of the support, force (3,) in newtons on the pipe, x y z), in order of support."""
-
-
-@dataclass(frozen=True)
-class AddedLoad:
-    """What a new support comes to carry once the line is no longer as it was set."""
-
-    filling_n: Array
-    """(3,) force on the pipe from the change of contents, x y z."""
-    heat_n: Array
-    """(3,) force on the pipe from heat and pressure."""
+    bending_stress_pa: float
+    """Largest, of the nominal section: nothing added for bends, branches or pressure."""
+    stressed_at_m: float
+    """Where."""
 
 
 def weight_answer(span: Span, state: State) -> WeightAnswer:
@@ -61,12 +56,46 @@ def weight_answer(span: Span, state: State) -> WeightAnswer:
     """
     structure = assemble(span, state, up_to_hz=MESH_HZ, axial=False)
     stiffness, mass = span_matrices(structure, springs(span), span.masses)
-    moved = _solver(stiffness, mass).solve(_weight(mass))
+    moved = solver_of(stiffness, mass).solve(weight_load(mass))
     _refuse_falling(span, moved)
     drop = -moved.reshape(-1, 6)[:, 2]
     lowest = int(np.argmax(drop))
     loads = tuple((i, _support_force(structure, i, moved)) for i in range(len(span.supports)))
-    return WeightAnswer(max(float(drop[lowest]), 0.0), float(structure.station_m[lowest]), loads)
+    stress_pa, stressed_at_m = bending_stress(structure, moved)
+    return WeightAnswer(
+        sag_m=max(float(drop[lowest]), 0.0),
+        sag_at_m=float(structure.station_m[lowest]),
+        support_loads=loads,
+        bending_stress_pa=stress_pa,
+        stressed_at_m=stressed_at_m,
+    )
+
+
+def bending_stress(structure: Structure, moved: Array) -> tuple[float, float]:
+    """Largest bending stress in pascals and its station, under weight that moves the nodes (6N,).
+
+    M D / (2 I) with the moment at the ends and the middle of every element; between point loads the
+    moment is a parabola.
+    """
+    elements, count = structure.elements, len(structure.element_length_m)
+    down = np.zeros((count, 12))
+    down[:, [2, 8]] = -GRAVITY_M_PER_S2
+    weight = np.einsum("eij,ej->ei", element.mass(elements), down)
+    nodal = moved.reshape(-1, 6)
+    ends = np.concatenate([nodal[:-1], nodal[1:]], axis=1)
+    force = np.einsum("eij,ej->ei", element.stiffness(elements), ends) - weight
+    along = np.diff(structure.position_m, axis=0)
+    total = weight[:, 0:3] + weight[:, 6:9]
+    middle = force[:, 3:6] - np.cross(along / 2, force[:, 0:3]) - np.cross(along / 8, total)
+    moment = np.stack([force[:, 3:6], middle, force[:, 9:12]], axis=1)
+    direction = along / np.linalg.norm(along, axis=1, keepdims=True)
+    twist = np.sum(moment * direction[:, None], axis=2, keepdims=True) * direction[:, None]
+    bending = np.linalg.norm(moment - twist, axis=2)
+    worst, place = np.unravel_index(int(np.argmax(bending)), bending.shape)
+    pipe = structure.span.pipe
+    stress = bending[worst, place] * pipe.outside_diameter_m / (2 * pipe.second_moment_m4)
+    start, end = structure.station_m[worst : worst + 2]
+    return float(stress), float(start + 0.5 * place * (end - start))
 
 
 @dataclass(frozen=True)
@@ -97,35 +126,7 @@ def thermal_movement(span: Span, cold: State, hot: State, at_m: float) -> Array:
     return thermal_growth(span, cold, hot).at(at_m)
 
 
-def restraint_force(
-    span: Span, cold: State, hot: State, at_m: float, axis: str, stiffness_n_per_m: float
-) -> float:
-    """Force in newtons by which a spring along ``axis``, set in the cold state, holds heat back."""
-    load = added_support_load(span, cold, hot, at_m, axis, stiffness_n_per_m)
-    return float(np.linalg.norm(load.heat_n))
-
-
-def added_support_load(
-    span: Span, cold: State, hot: State, at_m: float, axis: str, stiffness_n_per_m: float
-) -> AddedLoad:
-    """Load on a spring set free of force in one state, once the line is in the other.
-
-    The spring meets the pipe's own compliance c: F = movement / (1/k + c).
-    """
-    structure = assemble(span, hot, up_to_hz=MESH_HZ, axial=False)
-    stiffness, mass = span_matrices(structure, springs(span), span.masses)
-    solver = _solver(stiffness, mass)
-    rows = structure.motion_rows(at_m, axis)
-    give = np.eye(len(rows)) / stiffness_n_per_m + rows @ solver.solve(rows.T)
-    vectors = axis_vectors(span.centre_line.at(at_m)[1], axis)
-    emptied = (structure.fill - cold.nominal_fill) * contents_mass(structure)
-    filling = rows @ solver.solve(_weight(emptied))
-    heat = vectors @ thermal_movement(span, cold, hot, at_m)
-    held = [-np.linalg.solve(give, movement) @ vectors for movement in (filling, heat)]
-    return AddedLoad(*held)
-
-
-def _weight(mass: csc_array) -> Array:
+def weight_load(mass: csc_array) -> Array:
     """Nodal loads (6N,) of gravity on a mass matrix."""
     down = np.zeros((mass.shape[0] // 6, 6))
     down[:, 2] = -GRAVITY_M_PER_S2
@@ -133,7 +134,7 @@ def _weight(mass: csc_array) -> Array:
     return load
 
 
-def _solver(stiffness: csc_array, mass: csc_array) -> Factor:
+def solver_of(stiffness: csc_array, mass: csc_array) -> Factor:
     """A free direction moves until rounding holds it."""
     return Factor((stiffness + rounding_floor(stiffness, mass) * mass).tocsc())
 

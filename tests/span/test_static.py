@@ -9,16 +9,11 @@ import numpy as np
 import pytest
 
 from fieldkit.errors import Refusal
+from fieldkit.span.held import added_support_load, restraint_force
 from fieldkit.span.layout import Leg, PointMass, Span, State, Support
 from fieldkit.span.materials import material
 from fieldkit.span.pipes import standard_pipe
-from fieldkit.span.static import (
-    GRAVITY_M_PER_S2,
-    added_support_load,
-    restraint_force,
-    thermal_movement,
-    weight_answer,
-)
+from fieldkit.span.static import GRAVITY_M_PER_S2, thermal_movement, weight_answer
 from tests.reference.spans import anchored, level_span, square_legs
 
 LENGTH_M = 6.0
@@ -45,6 +40,43 @@ def pinned() -> Span:
 def weight_n_per_m(span: Span) -> float:
     pipe = span.pipe.wall_area_m2 * span.material.density_kg_per_m3
     return GRAVITY_M_PER_S2 * (pipe + span.pipe.bore_area_m2 * span.contents_density_kg_per_m3)
+
+
+def section_modulus_m3(span: Span) -> float:
+    return 2 * span.pipe.second_moment_m4 / span.pipe.outside_diameter_m
+
+
+def test_bending_of_a_pinned_span_is_w_l2_over_8_at_mid_span():
+    """Beam tables (Gere and Timoshenko, Mechanics of Materials, from memory)."""
+    span = pinned()
+    found = weight_answer(span, FILLED)
+    moment = weight_n_per_m(span) * LENGTH_M**2 / 8
+    assert found.bending_stress_pa == pytest.approx(moment / section_modulus_m3(span), rel=1e-5)
+    assert found.stressed_at_m == pytest.approx(LENGTH_M / 2)
+
+
+def test_bending_of_a_clamped_span_is_w_l2_over_12_at_its_ends():
+    """Beam tables (Gere and Timoshenko, from memory); shear leaves the end moments as they are."""
+    span = replace(pinned(), supports=tuple(
+        Support(at, "free", vertical=STIFF, lateral=STIFF, axial=STIFF, rotation=1e11, torsion=1e9)
+        for at in (0.0, LENGTH_M)
+    ))  # fmt: skip
+    found = weight_answer(span, FILLED)
+    moment = weight_n_per_m(span) * LENGTH_M**2 / 12
+    assert found.bending_stress_pa == pytest.approx(moment / section_modulus_m3(span), rel=1e-4)
+
+
+def test_bending_of_a_bent_cantilever_is_what_hangs_beyond_its_root():
+    """Statics: two legs out of a wall, level and square; moment is weight times lever, twist left
+    out. The bend is short; its cut corner moves the centre of gravity by less than 1 %."""
+    legs = (Leg((1.0, 0.0, 0.0), 2.0), Leg((0.0, 1.0, 0.0), 1.0, 0.06))
+    hold = Support(0.0, "free", STIFF, STIFF, STIFF, 1e11, torsion=1e11)
+    span = replace(pinned(), legs=legs, supports=(hold,))
+    w = weight_n_per_m(span)
+    expected = w * (2.0 * 1.0 + 1.0 * 2.0) / section_modulus_m3(span)
+    found = weight_answer(span, FILLED)
+    assert found.bending_stress_pa == pytest.approx(expected, rel=0.015)
+    assert found.stressed_at_m == 0.0
 
 
 def test_sag_of_a_pinned_span_is_5_w_l4_over_384_e_i():
