@@ -10,6 +10,7 @@ from __future__ import annotations
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from itertools import pairwise
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -203,7 +204,7 @@ def _member_supports(
     span: Span, value: dict[tuple[str, int], float], moved: StationMap
 ) -> tuple[Support, ...]:
     """Supports with every stiffness stated, so that no prior is consulted again."""
-    stated: list[dict[str, float]] = [{} for _ in span.supports]
+    stated: list[dict[str, Any]] = [{} for _ in span.supports]
     for i, spring in enumerate(springs(span)):
         stated[spring.support][spring.axis] = value.get(("spring", i), spring.stiffness)
     return tuple(

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from fractions import Fraction
 from pathlib import Path
 
@@ -11,17 +12,20 @@ from fieldkit.job.document import Job, unnamed_excitation
 from fieldkit.job.file_model import (
     ExcitationTable,
     GoalTable,
+    HeaderTable,
     JobFile,
     LegTable,
     MassTable,
     MaterialTable,
     PipeTable,
     StateTable,
+    SupportTable,
 )
 from fieldkit.job.measurements import measured_mode, recording_entry
 from fieldkit.job.readers import bad
 from fieldkit.job.restraint import support_from
-from fieldkit.span.layout import Insulation, Leg, PointMass, Span, State
+from fieldkit.span.header import check_header
+from fieldkit.span.layout import Insulation, Leg, PointMass, Span, State, Support
 from fieldkit.span.materials import Material, contents_density, material
 from fieldkit.span.pipes import PipeSection, known_schedules, standard_pipe
 
@@ -67,26 +71,47 @@ def _span(file: JobFile) -> Span:
         pipe=section,
         material=bare.material,
         legs=legs,
-        supports=tuple(support_from(table, i, bare) for i, table in enumerate(file.support)),
+        supports=tuple(_support(table, i, bare) for i, table in enumerate(file.support)),
         masses=tuple(_mass(table) for table in file.mass),
         contents_density_kg_per_m3=_density(file),
         insulation=Insulation(layer.thickness, layer.density) if layer else None,
     )
 
 
-def _section(pipe: PipeTable) -> PipeSection:
+def _support(table: SupportTable, index: int, span: Span) -> Support:
+    support, given = support_from(table, index, span), table.header
+    if given is None:
+        return support
+    where = f"support[{index}].header"
+    if table.kind != "branch":
+        what = f"a support of the kind {table.kind} stands on no header"
+        raise bad(where, what, 'write kind = "branch", or take header out')
+    try:
+        header = _section(given, where)
+        check_header(header, span.pipe)
+    except InputError as error:
+        raise bad(_moved(error.place.field or where, where), error.what, error.remedy) from None
+    return replace(support, header=header)
+
+
+def _moved(field: str, where: str) -> str:
+    """The place of a fault that a reader of pipes names as one of ``pipe``."""
+    return f"{where}.{field.removeprefix('pipe.')}" if field.startswith("pipe.") else field
+
+
+def _section(pipe: PipeTable | HeaderTable, where: str = "pipe") -> PipeSection:
     size, measured = pipe.size, pipe.outside_diameter
     if (size is None) == (measured is None):
         what = "it has both size and outside_diameter" if size else "its size is missing"
-        raise bad("pipe.size", what, 'write size = "NPS 3", or outside_diameter = "88.9 mm"')
+        raise bad(f"{where}.size", what, 'write size = "NPS 3", or outside_diameter = "88.9 mm"')
     if (pipe.schedule is None) == (pipe.wall is None):
         what = "it has both schedule and wall" if pipe.wall else "its wall is missing"
-        raise bad("pipe.schedule", what, 'write schedule = "40", or wall = "5.49 mm"')
+        raise bad(f"{where}.schedule", what, 'write schedule = "40", or wall = "5.49 mm"')
     if size is not None and pipe.schedule is not None:
         return standard_pipe(size, pipe.schedule)
     if pipe.wall is None:
         what = "a schedule belongs to a standard size, not to an outside_diameter"
-        raise bad("pipe.schedule", what, 'write wall = "5.49 mm"')
+        raise bad(f"{where}.schedule", what, 'write wall = "5.49 mm"')
     if size is None:
         diameter_m = measured or 0.0
         return PipeSection(diameter_m, pipe.wall, f"OD {diameter_m * 1e3:g} mm")

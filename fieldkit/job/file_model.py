@@ -144,6 +144,15 @@ class LegTable(Table):
     bend_radius: RunLength | None = None
 
 
+class HeaderTable(Table):
+    """``support.header``: the pipe a branch is welded to."""
+
+    size: Spoken | None = None
+    outside_diameter: Size | None = None
+    schedule: Spoken | None = None
+    wall: Size | None = None
+
+
 class SupportTable(Table):
     """``[[support]]``."""
 
@@ -156,6 +165,7 @@ class SupportTable(Table):
     x: Held = "implied"
     y: Held = "implied"
     z: Held = "implied"
+    header: HeaderTable | None = None
 
 
 class MassTable(Table):
@@ -261,6 +271,7 @@ TABLES: dict[tuple[str, ...], type[Table]] = {
     ("state", "running"): StateTable,
     ("leg",): LegTable,
     ("support",): SupportTable,
+    ("support", "header"): HeaderTable,
     ("mass",): MassTable,
     ("excitation",): ExcitationTable,
     ("recording",): RecordingTable,

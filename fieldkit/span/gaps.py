@@ -20,7 +20,7 @@ from fieldkit.errors import Refusal
 from fieldkit.span.layout import END_TOLERANCE_M, Span, State, axis_vectors, is_vertical
 from fieldkit.span.supports import KINDS, Spring, springs
 
-KIND_FIXITY = {"anchor": 1.0, "nozzle": 1.0, "clamp": 0.5}
+KIND_FIXITY = {"anchor": 1.0, "nozzle": 1.0, "branch": 1.0, "clamp": 0.5}
 """Common practice, no source; every other kind is pinned."""
 HALF_FIXED_RATIO = 5.0
 """k_r L/EI of fixity one half."""

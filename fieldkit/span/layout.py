@@ -56,6 +56,8 @@ class Support:
     z: Stiffness = "implied"
     torsion: Stiffness = "implied"
     """About the pipe's own axis; implied by the grip, not written in a job file."""
+    header: PipeSection | None = None
+    """The pipe that a ``branch`` is welded to, where its size is known."""
 
 
 @dataclass(frozen=True)

@@ -15,6 +15,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.errors import InputError, Place
+from fieldkit.span.header import SHELL_SD_LN, shell_rotation_n_m_per_rad
 from fieldkit.span.layout import Span, Stiffness, Support, axis_vectors, is_vertical
 
 REFERENCE_DIAMETER_M = 0.1143
@@ -69,6 +70,11 @@ KINDS = _kinds(
     SupportKind(
         "hanger", _D(8e5, 1.3), _D(2e4, 1.3), _D(2e4, 1.3), None, grips_pipe=False, structural=False
     ),
+    SupportKind(
+        "branch", _D(5e8, 0.6), _D(5e8, 0.6), _D(5e8, 0.6), _D(1, 1.8),
+        grips_pipe=True, structural=False,
+    ),
+    SupportKind("brace", _D(3e6, 1.3), _D(3e6, 1.3), _D(3e6, 1.4), None, grips_pipe=True),
     SupportKind("free", None, None, None, None, grips_pipe=False, structural=False),
 )  # fmt: skip
 
@@ -102,7 +108,8 @@ def _springs_of(span: Span, index: int) -> list[Spring]:
     found = []
     for axis in ("vertical", "lateral", "axial", "rotation", "x", "y", "z"):
         stated: Stiffness = getattr(support, axis)
-        resolved = _resolve(stated, implied.get(axis), _unit(span, support, axis), axis)
+        known, unit = _known(span, support, axis, implied.get(axis))
+        resolved = _resolve(stated, known, unit, axis)
         if resolved is None:
             continue
         kept = _left_to_imply(support, axis, tangent) if stated == "implied" else (axis,)
@@ -118,6 +125,25 @@ def _kind(support: Support, index: int) -> SupportKind:
             Place(field=f"support[{index}].kind"),
         )
     return KINDS[support.kind]
+
+
+def on_header(span: Span) -> bool:
+    """Whether the span is a branch on a header, so that what holds it belongs on the header."""
+    return any(support.kind in ("branch", "brace") for support in span.supports)
+
+
+def _known(
+    span: Span, support: Support, axis: str, implied: Doubtful | None
+) -> tuple[Doubtful | None, float]:
+    """What is believed of one axis and what 1 of it stands for.
+
+    A fitting on a header of known size turns with the header's shell.
+    """
+    if axis == "rotation" and support.header is not None:
+        modulus = span.material.modulus_pa[0][1]
+        turning = shell_rotation_n_m_per_rad(support.header, span.pipe, modulus)
+        return Doubtful(turning, SHELL_SD_LN), 1.0
+    return implied, _unit(span, support, axis)
 
 
 def _left_to_imply(support: Support, axis: str, tangent: NDArray[np.float64]) -> tuple[str, ...]:

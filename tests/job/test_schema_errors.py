@@ -78,7 +78,7 @@ WRONG_VALUES = [
      "the first leg has no bend before it; move bend_radius"),
     ('kind = "clamp"', 'kind = "clmp"', "support[1].kind",
      "'clmp' is not a kind of support; did you mean 'clamp'? use anchor, nozzle, clamp, u-bolt, "
-     "guide, rest, hanger or free"),
+     "guide, rest, hanger, branch, brace or free"),
     ('"2 MN/m"', '"-2 MN/m"', "support[1].lateral", "a stiffness cannot be negative"),
     ('"2 MN/m"', '"stiff"', "support[1].lateral", 'or "rigid", "free" or "unknown"'),
     ('"2 MN/m"', '"2 MN"', "support[1].lateral", "'MN' is the unit of a force, not of a stiffness"),

@@ -26,7 +26,7 @@ from fieldkit.ui.widgets.ticks import round_down
 Floats = NDArray[np.float64]
 KIND_GLYPHS = {
     "anchor": "▓", "nozzle": "▣", "clamp": "╫", "u-bolt": "∩", "guide": "‖",
-    "rest": "▲", "hanger": "┬", "free": "○",
+    "rest": "▲", "hanger": "┬", "branch": "▙", "brace": "╱", "free": "○",
 }  # fmt: skip
 BESIDE = {"rest": 1, "hanger": -1}
 """Kinds that stand below or hang above the pipe: rows from it, down counted positive."""
