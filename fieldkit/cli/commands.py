@@ -123,6 +123,7 @@ def peaks(
         from fieldkit import workup
         from fieldkit.cli.response_files import write_responses
         from fieldkit.sheet import documents, responses, tables
+        from fieldkit.sheet.origin import marked
 
         progress = output.progress()
         job = _job_among(files)
@@ -138,14 +139,14 @@ def peaks(
         inputs = [*files, *(entry.path for entry in entries)]
         written = write_responses(response, found, highest_hz, inputs) if response else {}
         output.clear_progress()
-        output.answer(
-            documents.peaks(readings, evidence, responses.documents(found, highest_hz, written)),
-            [
-                *tables.peaks(readings, evidence),
-                *responses.lines(found, highest_hz, job.units if job else "SI", written),
-            ],
-            as_json=as_json,
+        document = documents.peaks(
+            readings, evidence, responses.documents(found, highest_hz, written)
         )
+        lines = [
+            *tables.peaks(readings, evidence),
+            *responses.lines(found, highest_hz, job.units if job else "SI", written),
+        ]
+        output.answer(*marked(document, lines, entries), as_json=as_json)
 
 
 @app.command(epilog="Example: fieldkit running samples/glycol-booster/job.toml")
@@ -162,6 +163,7 @@ def running(
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
+        from fieldkit.sheet.origin import marked
 
         job = _job_among(files)
         entries = (
@@ -175,9 +177,8 @@ def running(
             workup.read_running_entry(entry, highest_hz, progress) for entry in entries
         )
         output.clear_progress()
-        output.answer(
-            documents.running(readings, job), tables.running(readings, job), as_json=as_json
-        )
+        document, lines = documents.running(readings, job), tables.running(readings, job)
+        output.answer(*marked(document, lines, entries), as_json=as_json)
 
 
 capturing.register(app)
@@ -208,6 +209,7 @@ def match(job_file: JobFile, as_json: AsJson = False) -> None:
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
+        from fieldkit.sheet.origin import marked
 
         progress = output.progress()
         job = _load(job_file)
@@ -215,7 +217,8 @@ def match(job_file: JobFile, as_json: AsJson = False) -> None:
         states = workup.state_modes(job, progress)
         found = workup.matching(job, evidence, states, progress)
         output.clear_progress()
-        output.answer(documents.match(found), tables.match(found, job.units), as_json=as_json)
+        document, lines = documents.match(found), tables.match(found, job.units)
+        output.answer(*marked(document, lines, job.recordings), as_json=as_json)
 
 
 @app.command(epilog="Example: fieldkit detune samples/glycol-booster/job.toml --json")
@@ -224,6 +227,7 @@ def detune(job_file: JobFile, as_json: AsJson = False) -> None:
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
+        from fieldkit.sheet.origin import marked
 
         work = workup.run(_load(job_file), output.progress())
         output.clear_progress()
@@ -232,7 +236,8 @@ def detune(job_file: JobFile, as_json: AsJson = False) -> None:
         matched = work.match.warnings if work.match else ()
         extra = list(dict.fromkeys([*work.warnings, *matched]))
         lines = [*tables.detune(work.detuning, work.job.units), *tables.warnings(extra)]
-        output.answer(documents.detune(work.detuning, extra), lines, as_json=as_json)
+        document = documents.detune(work.detuning, extra)
+        output.answer(*marked(document, lines, work.job.recordings), as_json=as_json)
 
 
 def _print_advice(job_file: Path) -> None:

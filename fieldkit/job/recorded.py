@@ -57,10 +57,10 @@ def with_calibration(
             files.append(row["file"])
             for key, value in keys.items():
                 text = text.with_value(f"recording[{index}].{key}", value)
-    return _with_comment(text, f"channel {channel} {comment}"), tuple(files)
+    return with_note(text, f"channel {channel} {comment}"), tuple(files)
 
 
-def _with_comment(text: JobText, comment: str) -> JobText:
+def with_note(text: JobText, comment: str) -> JobText:
     """The job with a comment on lines of its own before the first recording, or at the end."""
     newline = "\r\n" if "\r\n" in text.text else "\n"
     lines = text.text.splitlines(keepends=True)

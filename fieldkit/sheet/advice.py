@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 from fieldkit.sheet import tables
+from fieldkit.sheet.origin import mark
 from fieldkit.sheet.plain import clean, paragraph, percent
-from fieldkit.workup import Workup, excitation_of
+from fieldkit.workup import Workup, excitation_of, simulated_notice
 
 RESULTS_CAUTION = (
     "These figures support a judgement, they do not replace it: to be confirmed by the responsible "
@@ -17,6 +18,7 @@ NEAR_LINE = 0.1
 def lines(workup: Workup) -> list[str]:
     """The whole advice: question, answer, evidence, cautions."""
     found = [clean(workup.job.title), "=" * min(len(clean(workup.job.title)), 78), ""]
+    found += mark(simulated_notice(workup.simulated))
     found += ["Is it a resonance?", *_resonance(workup), ""]
     found += ["What to change", *_cure(workup), ""]
     found += ["What it rests on", *_evidence(workup)]

@@ -14,7 +14,7 @@ from textual.widgets import ContentSwitcher, Footer, Static
 from fieldkit.ui.commands import COMMANDS, help_text
 from fieldkit.ui.desk import STEPS
 from fieldkit.ui.dialogs import TextScreen
-from fieldkit.ui.editing import Editing
+from fieldkit.ui.measuring import Measuring
 from fieldkit.ui.plots import shaded
 from fieldkit.ui.readings import reading
 from fieldkit.ui.strip import Step, Strip
@@ -32,7 +32,7 @@ def _view_keys() -> list[BindingType]:
     ]  # fmt: skip
 
 
-class FieldkitApp(Editing):
+class FieldkitApp(Measuring):
     """Six views in the order of the work, over one job."""
 
     TITLE = "fieldkit"
@@ -48,6 +48,8 @@ class FieldkitApp(Editing):
         Binding("n", "new", "New", show=False, id="file.new", tooltip="Start a new job"),
         Binding("s", "sample", "Sample", show=False, id="file.sample",
                 tooltip="Copy the sample jobs out and open one"),
+        Binding("m", "measure('tap')", "Measure", show=False, id="capture.tap",
+                tooltip="Guided tap test with an input or the practice rig"),
         Binding("u", "undo", "Undo", show=False, id="edit.undo",
                 tooltip="Take the last change of the job back"),
         Binding("r", "rerun", "Rework", show=False, id="work.again",

@@ -109,6 +109,11 @@ class Desk:
         return spreads(self.chosen.modes_after) if self.chosen else ()
 
     @property
+    def simulated(self) -> tuple[str, ...]:
+        """Recordings of the job that the practice rig made."""
+        return self.workup.simulated if self.workup else ()
+
+    @property
     def mode_hz(self) -> tuple[float, ...]:
         """Natural frequencies as they are now, running state where that is known."""
         return tuple(median for _, median, _ in self.now) or self.measured_hz

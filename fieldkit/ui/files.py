@@ -16,6 +16,7 @@ WELCOME = (
     ("sample", "Sample   copy the sample jobs out and open one"),
     ("open", "Open     a job file"),
     ("new", "New      an empty description to fill in"),
+    ("practise", "Practise tap a simulated pipe: no sensor needed"),
 )
 
 

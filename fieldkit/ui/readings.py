@@ -64,7 +64,7 @@ def _tap(desk: Desk) -> Reading:
     if not desk.has("tap"):
         return Reading(
             "Nothing tapped yet: frequencies below come from the description alone",
-            next="record four or more soft taps, then name the file with a",
+            next="tap it now with m, or name a recording with a",
         )
     modes = desk.workup.evidence.firm if desk.workup else ()
     if not modes:
@@ -108,7 +108,7 @@ def _running(desk: Desk) -> Reading:
     if not desk.has("running"):
         return Reading(
             "No running recording: which line shakes the pipe is not known",
-            next="record half a minute with the machine running, then name the file with a",
+            next="record it running with m, or name a recording with a",
         )
     if desk.workup is None or not desk.workup.running:
         return waiting(desk, "running", "The running recording has not been read")

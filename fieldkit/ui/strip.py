@@ -11,7 +11,7 @@ from textual.widgets import Static
 
 from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
-from fieldkit.ui.words import safe
+from fieldkit.ui.words import SIMULATED, safe
 
 
 class Step(Static):
@@ -73,7 +73,10 @@ class Strip(Vertical):
         """Everything at once."""
         title = desk.job.title if desk.job else "no job open"
         mark = "  * unsaved" if unsaved else ""
-        self.query_one("#job-title", Static).update(Content(safe(f" fieldkit  {title}{mark}")))
+        origin = f"  {SIMULATED}" if desk.simulated else ""
+        self.set_class(bool(origin), "-simulated")
+        line = f" fieldkit{origin}  {title}{mark}"
+        self.query_one("#job-title", Static).update(Content(safe(line)))
         if not desk.working:
             self.query_one("#activity", Static).update(Content(safe(verdict(desk))))
         for step, state in step_states(desk).items():

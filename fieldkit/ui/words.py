@@ -7,6 +7,8 @@ import math
 from fieldkit.sheet.plain import clean
 
 DASH = "–"
+SIMULATED = "◆ SIMULATED ◆"
+"""Stands before every title that rests on the practice rig."""
 
 
 def decimals_for(sd: float) -> int:

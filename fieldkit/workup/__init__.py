@@ -25,6 +25,7 @@ from fieldkit.workup.readings import (
 )
 from fieldkit.workup.response import EffectiveMass, ResponseReading, response_reading
 from fieldkit.workup.response_notes import response_notes
+from fieldkit.workup.simulated import simulated_files, simulated_notice
 
 __all__ = [
     "EffectiveMass",
@@ -48,6 +49,8 @@ __all__ = [
     "response_reading",
     "run",
     "running_readings",
+    "simulated_files",
+    "simulated_notice",
     "state_modes",
     "tap_readings",
     "with_running_modes",

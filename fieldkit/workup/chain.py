@@ -21,6 +21,7 @@ from fieldkit.span.static import WeightAnswer, weight_answer
 from fieldkit.workup.beside import SIMULATED
 from fieldkit.workup.evidence import evidence_from, with_running_modes
 from fieldkit.workup.readings import RunningReading, TapReading, running_readings, tap_readings
+from fieldkit.workup.simulated import simulated_files
 
 
 @dataclass(frozen=True)
@@ -60,6 +61,8 @@ class Workup:
     states: tuple[StateModes, ...] = ()
     done: tuple[str, ...] = ()
     """Steps that were gone through, with or without an answer."""
+    simulated: tuple[str, ...] = ()
+    """Recordings that the practice rig made: nothing that rests on them was measured."""
 
     def refusals(self, step: str) -> tuple[str, ...]:
         """Why a step has no answer; empty when it has one."""
@@ -77,7 +80,8 @@ def run(
     entries of ``refused``; Cancelled passes through.
     """
     progress = progress or Progress()
-    work = Workup(job, (), Evidence(job.measured), (), None, None)
+    simulated = simulated_files(job.recordings)
+    work = Workup(job, (), Evidence(job.measured), (), None, None, simulated=simulated)
     for step, start, end, add in STEPS:
         progress.step(step, start)
         try:

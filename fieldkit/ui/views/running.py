@@ -26,7 +26,7 @@ if TYPE_CHECKING:
     from fieldkit.workup import RunningReading
 
 
-NO_RECORDING = "No running recording yet: press a to name one"
+NO_RECORDING = "No running recording yet: press m to record one now, a to name one"
 
 
 class RunningView(View):
@@ -35,6 +35,8 @@ class RunningView(View):
     NAME = "running"
     HOME = "#lines"
     BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("m", "app.measure('running')", "Measure", id="running.measure",
+                tooltip="Record the running machine with an input or the practice rig"),
         Binding("a", "add", "Add recording", id="running.add", tooltip="Name a running recording"),
         Binding("e", "edit", "Edit", id="running.edit", tooltip="Change the recording on screen"),
         Binding("v", "next", "Next recording", show=False, id="running.next",

@@ -23,7 +23,10 @@ if TYPE_CHECKING:
     from fieldkit.workup import TapReading
 
 
-NO_TAP = "No tap recording yet: press a to name one, or p to type in a peak read elsewhere"
+NO_TAP = (
+    "No tap recording yet: press m to tap now (a practice rig is built in), a to name a recording, "
+    "or p to type in a peak read elsewhere"
+)
 CAUTION_LINE = "! Ask the operator first; no hot or pressurised line without a permit (c)"
 CAUTION = """\
 Before you strike a pipe
@@ -52,6 +55,8 @@ class TapView(View):
     NAME = "tap"
     HOME = "#modes"
     BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("m", "app.measure('tap')", "Measure", id="tap.measure",
+                tooltip="Guided tap test with an input or the practice rig"),
         Binding("a", "add", "Add", id="tap.add", tooltip="Name a tap recording"),
         Binding("p", "peak", "Peak", id="tap.peak",
                 tooltip="Type in a peak that was read elsewhere"),
@@ -87,7 +92,7 @@ class TapView(View):
         """Tables first: the cursor in them says what the plots show."""
         found = self.desk.workup
         self.table("#modes").fill(_mode_rows(found.evidence.firm) if found else [])
-        self.table("#blows").fill(_blow_rows(found.taps) if found else [])
+        self.table("#blows").fill(_blow_rows(found.taps, found.simulated) if found else [])
         self._draw_plots()
 
     @property
@@ -212,14 +217,15 @@ def _mode_cells(mode: MeasuredMode) -> tuple[str, ...]:
     )
 
 
-def _blow_rows(readings: tuple[TapReading, ...]) -> list[Row]:
+def _blow_rows(readings: tuple[TapReading, ...], simulated: tuple[str, ...]) -> list[Row]:
     rows: list[Row] = []
     for number, reading in enumerate(readings):
         blows = reading.search.taps
         usable = f"{sum(blow.usable for blow in blows)} of {len(blows)} usable"
         struck = ", h response" if reading.hammer else ""
+        origin = "simulated, " if reading.file in simulated else ""
         length = seconds(reading.duration_s)
-        rows.append((str(number), (reading.file, f"{usable}{struck}, {length}")))
+        rows.append((str(number), (reading.file, f"{origin}{usable}{struck}, {length}")))
         rows += [
             (f"{number}.{i}", (f"{blow.at_s:9.2f} s", _judged(blow)))
             for i, blow in enumerate(reading.search.taps)

@@ -1,0 +1,1 @@
+"""Live capture on screen: set-up, guided tap test, running recording, calibration."""

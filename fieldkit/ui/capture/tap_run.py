@@ -1,0 +1,236 @@
+"""A guided tap test behind its screen: session, guide, spectrum and recordings together.
+
+Every method but ``begin`` and ``finish`` returns at once.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from contextlib import suppress
+from dataclasses import dataclass, replace
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from fieldkit.capture.guide import GuideSnapshot, Place
+from fieldkit.capture.guided_test import GuidedTest
+from fieldkit.capture.live import LivePicture, LiveSpectrum
+from fieldkit.capture.practice import PracticeSource
+from fieldkit.capture.session import Session
+from fieldkit.capture.setup import ChannelSetup
+from fieldkit.capture.snapshot import RUNNING, Snapshot
+from fieldkit.errors import FieldkitError
+from fieldkit.job.recorded import next_recording
+from fieldkit.ui.capture.takes import Take, remove_empty
+from fieldkit.ui.capture.wiring import Wiring, judged_channel, source_of
+from fieldkit.workup.expected import expected_modes
+
+if TYPE_CHECKING:
+    from fieldkit.capture.enough import Expected
+    from fieldkit.capture.source import Source
+    from fieldkit.job.document import Job
+    from fieldkit.ui.capture.bench import Bench
+
+DIRECTIONS = ("vertical", "lateral")
+FAULTS = (
+    ("double", "Double    the hammer rebounds and strikes again"),
+    ("clipped", "Clipped   too hard for the input"),
+    ("soft", "Soft      hardly over the noise"),
+    ("gap", "Gap       the input loses frames while it rings"),
+    ("machine", "Machine   switch the pump beside it on or off"),
+    ("unplug", "Unplug    the input is torn out, and comes back"),
+)
+_KEPT_S = 5.0
+_CLOSED_WITHIN_S = 15.0
+
+
+@dataclass(frozen=True)
+class TapLook:
+    """Everything the screen shows at one moment."""
+
+    session: Snapshot
+    guide: GuideSnapshot
+    picture: LivePicture | None
+    channels: tuple[ChannelSetup, ...]
+    judged: int
+    """The channel that is judged, from 0."""
+    trouble: str = ""
+    """Why nothing is written, one sentence."""
+
+
+class TapRun:
+    """From the moment the input is opened until all is on the disk."""
+
+    def __init__(
+        self,
+        source: Source,
+        channels: tuple[ChannelSetup, ...],
+        job_path: Path,
+        up_to_hz: float,
+        expected: Mapping[str | None, Sequence[Expected]] | None = None,
+    ) -> None:
+        """``expected``: by direction, the modes of a model."""
+        self._expected = expected or {}
+        self._source = source
+        self._job_path = job_path
+        self._channels = channels
+        self._judged = judged_channel(channels)
+        self._takes: list[Take] = []
+        self._trouble = ""
+        self._machine = False
+        setup = channels[self._judged]
+        self.session = Session(source, keep_s=_KEPT_S)
+        self._guide = GuidedTest(
+            rate_hz=source.rate_hz,
+            place=Place(setup.direction, setup.at_m),
+            channel=self._judged,
+            directions=DIRECTIONS,
+            up_to_hz=up_to_hz,
+            expected=self._expected.get(setup.direction, ()),
+            mark=self.session.set_aside,
+        )
+        self._live = LiveSpectrum(
+            rate_hz=source.rate_hz,
+            channel=self._judged,
+            top_hz=up_to_hz,
+            quantity=setup.quantity,
+            scale=setup.si_per_unit,
+        )
+        self.session.add(self._guide)
+        self.session.add(self._live)
+        self.session.start()
+
+    @classmethod
+    def begin(cls, job: Job, job_path: Path, wiring: Wiring, bench: Bench) -> TapRun:
+        """Make the source and open it; may take seconds. Raises InputError or Refusal."""
+        source, channels = source_of(job, wiring, bench), wiring.channels(job)
+        expected: dict[str | None, tuple[Expected, ...]] = {}
+        with suppress(FieldkitError):
+            expected = {way: expected_modes(job, way) for way in (*DIRECTIONS, "axial")}
+        return cls(source, channels, job_path, job.goal.up_to_hz, expected)
+
+    @property
+    def practice(self) -> bool:
+        """Whether there is a rig to strike."""
+        return isinstance(self._source, PracticeSource)
+
+    def look(self) -> TapLook:
+        """How things are; begins to record as soon as the input delivers."""
+        shot = self.session.snapshot()
+        if shot.state == RUNNING and not self._takes and not self._trouble:
+            self._record(_KEPT_S)
+        return TapLook(
+            shot,
+            self._guide.snapshot(),
+            self._live.picture,
+            self._channels,
+            self._judged,
+            self._trouble,
+        )
+
+    def strike(self, fault: str = "", strength: float = 1.0) -> bool:
+        """Strike the practice rig, or do one of FAULTS to it; False where there is none."""
+        rig = self._source
+        if not isinstance(rig, PracticeSource):
+            return False
+        if fault == "unplug":
+            rig.unplug()
+        elif fault == "machine":
+            rig.machine(on=not self._machine)
+            self._machine = not self._machine
+        else:
+            rig.tap(strength, fault=fault)
+        return True
+
+    def undo(self) -> bool:
+        """Set the latest blow aside that counts; False where there is none."""
+        if not any(blow.counts for blow in self._guide.snapshot().blows):
+            return False
+        self._guide.set_aside()
+        return True
+
+    def redo(self) -> bool:
+        """Take the latest blow in again that was set aside."""
+        aside = [blow for blow in self._guide.snapshot().blows if blow.set_aside]
+        if aside:
+            self._guide.take_in(aside[-1].number)
+        return bool(aside)
+
+    def listen_anew(self) -> None:
+        """Measure the background again."""
+        self._guide.listen_anew()
+
+    def hands_on(self) -> None:
+        """Miss what comes while the sensor is moved."""
+        self.session.pause()
+
+    def hands_off(self) -> None:
+        """Go on."""
+        self.session.resume()
+
+    @property
+    def setup(self) -> ChannelSetup:
+        """Of the channel that is judged."""
+        return self._channels[self._judged]
+
+    def move_to(self, setup: ChannelSetup) -> None:
+        """Go on with the judged sensor elsewhere, in a recording of its own."""
+        channels = list(self._channels)
+        channels[self._judged] = setup
+        self._channels = tuple(channels)
+        rig = self._source
+        if isinstance(rig, PracticeSource):
+            sensors = list(rig.sensors)
+            at_m = sensors[self._judged].at_m if setup.at_m is None else setup.at_m
+            sensors[self._judged] = replace(
+                sensors[self._judged], at_m=at_m, direction=setup.direction or "vertical"
+            )
+            rig.move(sensors, rig.struck_m)
+        self._record(0.0)
+        self._guide.move_to(
+            Place(setup.direction, setup.at_m), self._expected.get(setup.direction, ())
+        )
+        self._guide.listen_anew()
+
+    def stop(self) -> None:
+        """End session and guide."""
+        self.session.stop()
+        self._guide.stop()
+
+    def finish(self) -> tuple[Take, ...]:
+        """Stop, and wait until all is on the disk; may take seconds."""
+        self.session.stop()
+        written = self.session.join(_CLOSED_WITHIN_S)
+        self._guide.stop()
+        if not written:
+            self._trouble = "the disk or the input does not answer: look at the file before use"
+        takes = self._counted()
+        for take in takes:
+            if self.practice and not take.usable:
+                remove_empty(take.path)
+        return takes
+
+    @property
+    def trouble(self) -> str:
+        """What ended it early, or keeps it from the disk."""
+        shot = self.session.snapshot()
+        failure = shot.recording.failure if shot.recording else ""
+        return self._trouble or failure or (shot.message if shot.failed else "")
+
+    def _record(self, before_s: float) -> None:
+        path = next_recording(self._job_path, "tap")
+        first = self.session.snapshot().frames if self._takes else 0
+        try:
+            self.session.record(path, self._channels, before_s=before_s)
+        except FieldkitError as error:
+            self._trouble = str(error)
+        else:
+            self._takes.append(Take(path, self._channels, "tap", first))
+
+    def _counted(self) -> tuple[Take, ...]:
+        """Every take with the number of its blows that count."""
+        counts = [0] * len(self._takes)
+        for blow in self._guide.snapshot().blows:
+            holding = [i for i, take in enumerate(self._takes) if take.first_frame <= blow.frame]
+            if blow.counts and holding:
+                counts[holding[-1]] += 1
+        return tuple(replace(t, usable=n) for t, n in zip(self._takes, counts, strict=True))

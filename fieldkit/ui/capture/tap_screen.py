@@ -1,0 +1,290 @@
+"""The guided tap test: large words, level, live spectrum, the latest decay, blows and modes."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+from typing import TYPE_CHECKING, ClassVar
+
+import numpy as np
+from textual import work
+from textual.app import ComposeResult
+from textual.binding import Binding, BindingType
+from textual.containers import Horizontal, Vertical
+from textual.content import Content
+from textual.widgets import Footer
+
+from fieldkit.errors import FieldkitError
+from fieldkit.ui.capture import tap_words as words
+from fieldkit.ui.capture.channel_forms import PLACE, setup_with, texts_of
+from fieldkit.ui.capture.level_meter import meter_line
+from fieldkit.ui.capture.live_screen import Begin, LiveScreen
+from fieldkit.ui.capture.takes import Result
+from fieldkit.ui.capture.tap_run import FAULTS, TapRun
+from fieldkit.ui.commands import help_text
+from fieldkit.ui.dialogs import AskScreen, PickScreen, TextScreen
+from fieldkit.ui.forms import FormWindow, Values
+from fieldkit.ui.plots import mode_marks, spectrum_curve, unit_of
+from fieldkit.ui.units import AMPLITUDES
+from fieldkit.ui.views.base import plain
+from fieldkit.ui.widgets import BandShade, Curve, SpectrumPlot, TapMark, TimePlot
+from fieldkit.ui.words import count
+
+if TYPE_CHECKING:
+    from fieldkit.capture.guide import Blow
+    from fieldkit.ui.capture.tap_run import TapLook
+
+TITLE = "Guided tap test"
+LEAVING = (
+    ("keep", "Stop and keep"),
+    ("leave", "Leave, job unchanged"),
+    ("back", "Go on tapping"),
+)
+NO_RIG = "Space strikes the practice rig; here the pipe is real: strike it with the hammer."
+
+
+class TapScreen(LiveScreen[TapRun]):
+    """Blow by blow to modes that can be believed."""
+
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding("space,enter", "strike", "Tap", key_display="space", id="guided.strike",
+                tooltip="Strike the practice rig (enter does too)"),
+        Binding("x", "fault", "Faults", id="guided.fault",
+                tooltip="Strike the practice rig wrongly, let its machine run, or unplug it"),
+        Binding("u", "undo", "Undo blow", id="guided.undo",
+                tooltip="Set the latest blow aside that counts; it stays in the recording, marked"),
+        Binding("U", "redo", "Take in again", show=False, id="guided.redo",
+                tooltip="Take the latest blow in again that was set aside"),
+        Binding("d", "next", "Next place", id="guided.next",
+                tooltip="Next direction or place, in a recording of its own"),
+        Binding("b", "listen", "Background", show=False, id="guided.listen",
+                tooltip="Measure the background again"),
+        Binding("v", "other_plot", "Plot", id="guided.plot",
+                tooltip="Spectrum of the latest blow instead of its decay, or back"),
+        Binding("s", "keep", "Keep", id="guided.keep",
+                tooltip="Stop, and add what was recorded to the job"),
+        Binding("question_mark", "help", "Keys", show=False, id="guided.help",
+                tooltip="List these keys"),
+        Binding("escape", "leave", "Leave", priority=True, id="guided.leave",
+                tooltip="Leave; the recording stays on the disk"),
+    ]  # fmt: skip
+
+    def __init__(
+        self, begin: Begin[TapRun], job_title: str, units: str, bands: Sequence[BandShade] = ()
+    ) -> None:
+        super().__init__(begin)
+        self.job_title = job_title
+        self.units = units
+        self.bands = tuple(bands)
+        self._picture = self._blow = 0
+        self._verdict_frame = 0
+
+    def compose(self) -> ComposeResult:
+        """From what is read across the room to what is read up close."""
+        yield plain("live-title", classes="live-title")
+        with Horizontal(id="banner"):
+            yield plain("big")
+            yield plain("side")
+        yield plain("now", classes="live-now")
+        yield plain("told")
+        yield plain("meters")
+        yield SpectrumPlot(id="live-spectrum", empty="Listening ...")
+        with Horizontal(id="live-lower"):
+            with Vertical(id="live-blow"):
+                yield TimePlot(id="live-decay", empty="The decay of each blow comes here")
+                yield SpectrumPlot(id="live-after", empty="The spectrum of each blow comes here")
+            yield plain("live-blows")
+            yield plain("live-modes")
+        yield Footer(compact=True, show_command_palette=False)
+
+    def on_mount(self) -> None:
+        """The plot takes the keys that the screen does not."""
+        super().on_mount()
+        self.query_one("#live-spectrum").focus()
+
+    def poll(self) -> None:
+        """Everything from one look."""
+        if self.adding is not None:
+            self.say_big("saving", words.CALM)
+            return
+        if self.run is None:
+            self._say_not_begun()
+            return
+        look = self.run.look()
+        self._say_words(look)
+        self._say_levels(look)
+        self._draw_live(look)
+        self._draw_blow(look)
+
+    def _say_not_begun(self) -> None:
+        self.say("#live-title", self.title_line(f"{TITLE}  {self.job_title}", False))
+        self.say_big("not now" if self.refused else "one moment",
+                     words.BAD if self.refused else words.CALM)  # fmt: skip
+        self.say("#now", self.refused or "Getting the input ready.")
+        self.say("#told", "esc goes back to the set-up." if self.refused else "")
+
+    def _say_words(self, look: TapLook) -> None:
+        number = look.guide.latest.number if look.guide.latest else 0
+        if number != self._blow:
+            self._verdict_frame = look.session.frames
+        age_s = (look.session.frames - self._verdict_frame) / look.session.rate_hz
+        large, below, tone = words.headline(look, age_s if number else np.inf)
+        self.say("#live-title",
+                 self.title_line(f"{TITLE}  {self.job_title}", look.session.simulated))  # fmt: skip
+        self.say_big(large, tone)
+        self.say("#side", "\n".join(words.side_lines(look)))
+        self.say("#now", below)
+        self.say("#told", "\n".join(words.told(look)))
+        rows = self.query_one("#live-lower").size.height
+        self.say("#live-blows", "\n".join(words.blow_lines(look.guide, rows)))
+        self.say("#live-modes", "\n".join(words.mode_lines(look.guide, rows)))
+
+    def _say_levels(self, look: TapLook) -> None:
+        threshold = look.guide.threshold.size if look.guide.threshold else None
+        width = self.size.width - 2
+        lines = []
+        for index, level in enumerate(look.session.levels):
+            setup = look.channels[index]
+            what = setup.direction or setup.quantity
+            mine = threshold if index == look.judged else None
+            lines.append(meter_line(level, f"{index + 1} {what}", width, mine))
+        self.say("#meters", Content("\n").join(lines))
+
+    def _draw_live(self, look: TapLook) -> None:
+        picture = look.picture
+        if picture is None or picture.number == self._picture:
+            return
+        self._picture = picture.number
+        factor, unit = AMPLITUDES.get(picture.unit, (1.0, picture.unit))
+        estimate = look.guide.estimate
+        self.query_one("#live-spectrum", SpectrumPlot).show(
+            (Curve(picture.frequency_hz, factor * picture.now, "live"),),
+            mode_marks(estimate.modes) if estimate else (),
+            self.bands,
+            amplitude_unit=f"{unit} rms",
+            up_to_hz=float(picture.frequency_hz[-1]),
+        )
+
+    def _draw_blow(self, look: TapLook) -> None:
+        latest = look.guide.latest
+        if latest is None or latest.number == self._blow:
+            return
+        self._blow = latest.number
+        self._draw_decay(latest)
+        spectrum = latest.reading.spectrum if latest.reading else None
+        self.query_one("#live-after", SpectrumPlot).show(
+            (spectrum_curve(spectrum, f"blow {latest.number}"),) if spectrum else (),
+            amplitude_unit=unit_of(spectrum),
+        )
+
+    def _draw_decay(self, blow: Blow) -> None:
+        plot = self.query_one("#live-decay", TimePlot)
+        if blow.reading is None:
+            plot.show((), 1.0)
+            return
+        trace = blow.reading.trace
+        both = np.stack([trace.low, trace.high], axis=1).ravel()
+        mark = TapMark(blow.number, max(-trace.start_s, 0.0), blow.verdict.usable,
+                       "" if blow.verdict.usable else blow.verdict.kind)  # fmt: skip
+        plot.show(both, 2 / trace.step_s, (mark,))
+
+    def action_strike(self) -> None:
+        """One blow on the practice rig."""
+        if self.run is not None and not self.run.strike():
+            self.notify(NO_RIG, markup=False)
+
+    @work
+    async def action_fault(self) -> None:
+        """What can go wrong, to see what is said about it."""
+        if self.run is None or not self.run.practice:
+            self.notify(NO_RIG, markup=False)
+            return
+        picked = await self.app.push_screen_wait(PickScreen("Practise a fault", FAULTS))
+        if picked is not None:
+            try:
+                self.run.strike(picked)
+            except FieldkitError as error:
+                self.notify(str(error), severity="error", markup=False)
+
+    def action_undo(self) -> None:
+        """The latest blow that counts no longer does."""
+        if self.run is not None and not self.run.undo():
+            self.notify("No blow counts yet: there is nothing to set aside.", markup=False)
+
+    def action_redo(self) -> None:
+        """And does again."""
+        if self.run is not None and not self.run.redo():
+            self.notify("No blow was set aside.", markup=False)
+
+    def action_listen(self) -> None:
+        """Measure the background again."""
+        if self.run is not None:
+            self.run.listen_anew()
+
+    @work
+    async def action_next(self) -> None:
+        """Next direction or place; while it is typed the sensor may be moved."""
+        run = self.run
+        if run is None or self.adding is not None:
+            return
+        run.hands_on()
+        before = run.setup
+        offered = replace(before, direction=self._direction_after(before.direction))
+        title = "Move sensor and hammer, then enter: nothing is recorded meanwhile"
+
+        def objection(values: Values) -> str:
+            try:
+                setup_with(offered, values)
+            except FieldkitError as error:
+                return str(error)
+            return ""
+
+        values = await self.app.push_screen_wait(
+            FormWindow(PLACE, title, texts_of(offered), self.units, objection)
+        )
+        if values is not None:
+            moved = setup_with(offered, values)
+            if (moved.direction, moved.at) != (before.direction, before.at):
+                run.move_to(moved)
+        run.hands_off()
+
+    def _direction_after(self, direction: str | None) -> str:
+        return "lateral" if direction == "vertical" else "vertical"
+
+    def action_other_plot(self) -> None:
+        """Decay or spectrum of the latest blow."""
+        self.toggle_class("-after")
+
+    def action_help(self) -> None:
+        """List every key."""
+        plot = ("In the spectrum", self.query_one("#live-spectrum", SpectrumPlot).BINDINGS)
+        self.app.push_screen(TextScreen("Keys", help_text([(TITLE, self.BINDINGS), plot])))
+
+    def action_keep(self) -> None:
+        """Stop, and let the job have it."""
+        if self._good == 0:
+            self.notify("No blow counts yet: there is nothing to keep; esc leaves.", markup=False)
+            return
+        self.end(add=True)
+
+    @work
+    async def action_leave(self) -> None:
+        """Leave; asks where blows would not reach the job."""
+        if self.run is None:
+            self.dismiss(Result(again=True))
+            return
+        if self._good == 0:
+            self.end(add=False)
+            return
+        question = (
+            f"{count(self._good, 'usable blow')} would not reach the job. The recording stays on "
+            "the disk either way."
+        )
+        answer = await self.app.push_screen_wait(AskScreen(question, LEAVING))
+        if answer != "back":
+            self.end(add=answer == "keep")
+
+    @property
+    def _good(self) -> int:
+        """Blows that count, anywhere."""
+        return sum(blow.counts for blow in self.run.look().guide.blows) if self.run else 0

@@ -1,0 +1,138 @@
+"""What the screen of a guided tap test says, from one look at it."""
+
+from __future__ import annotations
+
+from typing import TYPE_CHECKING
+
+from fieldkit.capture import blow as verdicts
+from fieldkit.capture.guide import READING
+from fieldkit.capture.snapshot import ENDED, OPENING, PAUSED, WAITING
+from fieldkit.capture.trigger import ARMED, LISTENING, RECORDING
+from fieldkit.ui.plots import SHORT, mode_cells
+from fieldkit.ui.words import count, sentence
+
+if TYPE_CHECKING:
+    from fieldkit.capture.guide import Blow, GuideSnapshot
+    from fieldkit.capture.snapshot import Snapshot
+    from fieldkit.ui.capture.tap_run import TapLook
+
+VERDICT_S = 1.5
+"""A verdict stands in large letters for so long."""
+CALM, GO, GOOD, BAD = "calm", "go", "good", "bad"
+"""Tones of the large words, each a colour; the words alone say it too."""
+
+_VERDICTS = {
+    verdicts.USABLE: "good blow",
+    verdicts.CLIPPED: "clipped",
+    verdicts.DOUBLE: "double",
+    verdicts.WEAK: "too weak",
+    verdicts.CUT_SHORT: "cut short",
+    verdicts.MACHINE: "too loud",
+    verdicts.GAP: "frames lost",
+    verdicts.NO_BLOW: "no blow",
+}
+_SESSION = {
+    OPENING: ("one moment", "Opening the input.", CALM),
+    WAITING: ("input gone", "Plug it in again: it goes on by itself.", BAD),
+    ENDED: ("stopped", "Press s to keep what was recorded, or esc to leave.", BAD),
+    PAUSED: ("paused", "What comes now is not recorded.", CALM),
+}
+_TOO_LOUD = 0.5
+
+
+def headline(look: TapLook, verdict_age_s: float) -> tuple[str, str, str]:
+    """(large words, one line below, tone); the verdict stands first for VERDICT_S."""
+    if look.session.state in _SESSION:
+        return _SESSION[look.session.state]
+    guide, latest = look.guide, look.guide.latest
+    if latest is not None and verdict_age_s < VERDICT_S and guide.phase != RECORDING:
+        tone = GOOD if latest.counts else BAD
+        return _VERDICTS[latest.verdict.kind], _result(latest), tone
+    return _phase(guide)
+
+
+def _phase(guide: GuideSnapshot) -> tuple[str, str, str]:
+    if guide.phase == LISTENING:
+        return "quiet please", "Measuring the background: keep still.", CALM
+    if guide.phase == RECORDING:
+        rung = "" if guide.ringing_s is None else f" {guide.ringing_s:.1f} of"
+        return "ringing", f"Keep away, touch nothing:{rung} {guide.record_s:.1f} s at most.", CALM
+    if guide.phase == READING:
+        return "judging", "Reading the blow.", CALM
+    if guide.threshold is not None and guide.threshold.size > _TOO_LOUD:
+        return "too loud", "Stop the machine, or lower the input level.", BAD
+    if guide.phase == ARMED and guide.worth.more == 0 and not guide.estimating:
+        return "enough", "d goes to the next direction or place, s keeps it all.", GOOD
+    if guide.phase == ARMED:
+        return "tap now", "Strike once, then let it ring.", GO
+    return "wait", "Until it is quiet again.", CALM
+
+
+def side_lines(look: TapLook) -> list[str]:
+    """Place and counts, three lines."""
+    guide = look.guide
+    good = sum(1 for blow in guide.blows if blow.counts and blow.place == guide.place)
+    here = sum(1 for blow in guide.blows if blow.place == guide.place)
+    more = guide.worth.more
+    worth = "no more needed" if more == 0 and good else f"{count(more, 'more blow')} worth it"
+    return [str(guide.place), f"{good} good of {count(here, 'blow')}", worth]
+
+
+def told(look: TapLook) -> list[str]:
+    """The latest blow and what to change; then what to do next, or what is wrong."""
+    latest = look.guide.latest
+    first = _numbered(latest) if latest else "No blow yet."
+    wrong = look.trouble or _news(look.session) or look.guide.notice
+    second = f"! {sentence(wrong)}" if wrong else f"Next: {look.guide.advice}"
+    return [first, second]
+
+
+def _news(session: Snapshot) -> str:
+    failure = session.recording.failure if session.recording else ""
+    return failure or session.message
+
+
+def _numbered(blow: Blow) -> str:
+    return f"{_glyph(blow)} Blow {blow.number}: {_result(blow)}"
+
+
+def _result(blow: Blow) -> str:
+    verdict = blow.verdict
+    if blow.set_aside:
+        return "Set aside by you; U takes it in again."
+    if verdict.usable:
+        return "Usable."
+    return f"{sentence(verdict.what)} {sentence(verdict.change)}"
+
+
+def _glyph(blow: Blow) -> str:
+    return "–" if blow.set_aside else "✓" if blow.verdict.usable else "✗"
+
+
+def blow_lines(guide: GuideSnapshot, rows: int) -> list[str]:
+    """Every blow with its verdict, the latest first, as many as fit."""
+    lines = [
+        f"{blow.number:3} {_glyph(blow)} "
+        f"{SHORT.get(blow.place.direction or '', '?'):4} "
+        f"{'set aside' if blow.set_aside else blow.verdict.kind}"
+        for blow in reversed(guide.blows)
+    ]
+    return _fitting(["blows", *lines], rows)
+
+
+def mode_lines(guide: GuideSnapshot, rows: int) -> list[str]:
+    """Modes at this place with their scatter, as many as fit."""
+    estimate = guide.estimate
+    if estimate is None or not (estimate.modes or estimate.warnings):
+        return ["modes Hz, damping %", "  none yet" if not guide.estimating else "  reading ..."]
+    head = f"modes from {count(guide.estimated_from, 'blow')}: Hz, %"
+    lines = [f"{hz:>14}  {damping}" for hz, damping in map(mode_cells, estimate.modes)]
+    lines += [sentence(warning) for warning in estimate.warnings if not estimate.modes]
+    return _fitting([head, *lines], rows)
+
+
+def _fitting(lines: list[str], rows: int) -> list[str]:
+    if len(lines) <= max(rows, 2):
+        return lines
+    shown = max(rows - 1, 1)
+    return [*lines[:shown], f"    and {len(lines) - shown} more"]

@@ -1,0 +1,111 @@
+"""What is to be measured with: input, rate, channels, and for a running recording its length."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING
+
+from fieldkit.capture.setup import FORCE, ChannelSetup
+from fieldkit.errors import InputError
+
+if TYPE_CHECKING:
+    from fieldkit.capture.devices import Input
+    from fieldkit.capture.practice import PracticeSource
+    from fieldkit.capture.presets import Preset
+    from fieldkit.capture.source import Source
+    from fieldkit.job.document import Job
+    from fieldkit.ui.capture.bench import Bench
+
+LAST = "last used"
+"""The preset that the last measurement was made with."""
+RUNNING_S = 60.0
+
+
+@dataclass(frozen=True)
+class Wiring:
+    """A set-up as far as it is chosen."""
+
+    kind: str
+    """``tap`` or ``running``."""
+    device: Input | None = None
+    """None: the practice rig."""
+    rate_hz: int | None = None
+    """None: the input's own."""
+    setups: tuple[ChannelSetup, ...] = (ChannelSetup(direction="vertical"),)
+    """As typed; ``channels`` is what comes of them with this input."""
+    preset: str = ""
+    seconds: float = RUNNING_S
+    """Of a running recording."""
+    speeds_hz: dict[str, float] = field(default_factory=dict)
+    """Speed that was read off each machine, by its name in the job."""
+
+    @property
+    def practice(self) -> bool:
+        """Whether nothing is connected."""
+        return self.device is None
+
+    def channels(self, job: Job) -> tuple[ChannelSetup, ...]:
+        """One for each channel; raises InputError where the rig has no such sensor."""
+        if self.device is not None:
+            return self.setups[: self.device.channels]
+        from fieldkit.workup.practice import practice_channels
+
+        return practice_channels(job, self.setups)
+
+    def rate(self) -> int:
+        """Frames a second that will come."""
+        if self.device is not None:
+            return self.rate_hz or self.device.default_rate_hz
+        from fieldkit.capture.practice import RATE_HZ
+
+        return RATE_HZ
+
+    def on(self, device: Input | None) -> Wiring:
+        """With another input; a rate that it does not know is let go."""
+        known = device is not None and self.rate_hz in device.rates_hz
+        return replace(self, device=device, rate_hz=self.rate_hz if known else None)
+
+    def with_count(self, count: int) -> Wiring:
+        """With so many channels; new ones are bare."""
+        setups = (*self.setups, *[ChannelSetup()] * count)[:count]
+        return replace(self, setups=setups)
+
+    def with_setup(self, index: int, setup: ChannelSetup) -> Wiring:
+        """With one channel changed."""
+        setups = [*self.setups[:index], setup, *self.setups[index + 1 :]]
+        return replace(self, setups=tuple(setups))
+
+    def as_preset(self) -> Preset:
+        """To keep for the next visit."""
+        from fieldkit.capture.presets import Preset
+
+        name = self.device.name if self.device else ""
+        return Preset(self.setups, name, self.rate_hz)
+
+    def from_preset(self, name: str, preset: Preset, inputs: Sequence[Input]) -> Wiring:
+        """As it was kept; the input too, where it is there."""
+        same = [one for one in inputs if preset.device and one.name == preset.device]
+        device = same[0] if same else self.device
+        found = replace(self, setups=preset.channels, rate_hz=preset.rate_hz, preset=name)
+        return found.on(device)
+
+
+def judged_channel(channels: Sequence[ChannelSetup]) -> int:
+    """The first that is no hammer; raises InputError where there is none."""
+    for index, setup in enumerate(channels):
+        if setup.quantity != FORCE:
+            return index
+    raise InputError("every channel is a hammer's", "connect a sensor to one of them")
+
+
+def source_of(job: Job, wiring: Wiring, bench: Bench) -> Source | PracticeSource:
+    """What streams; may take seconds. Raises InputError or Refusal."""
+    channels = wiring.channels(job)
+    if wiring.device is not None:
+        from fieldkit.capture.portaudio import PortAudioSource
+
+        return PortAudioSource(wiring.device, rate_hz=wiring.rate_hz, channels=len(channels))
+    from fieldkit.workup.practice import practice_source
+
+    return practice_source(job, channels, running=wiring.kind == "running", pace=bench.pace)
