@@ -23,7 +23,7 @@ from fieldkit.quantity import show
 from fieldkit.span.held import Holding, holding
 from fieldkit.span.layout import Span, State, axis_vectors
 from fieldkit.span.static import WeightAnswer, weight_answer
-from fieldkit.span.supports import springs
+from fieldkit.span.supports import on_header, springs
 
 Array = NDArray[np.float64]
 
@@ -35,6 +35,9 @@ HEAVY_SHARE = 0.2
 """An added mass above this share of the pipe's own deserves a word."""
 NOTABLE_MOVEMENT_M = 0.5e-3
 NOTABLE_LOAD_N = 20.0
+HOT_K = 273.15 + 60
+"""Metal above this burns at a touch (common practice, no source)."""
+PRESSURISED_PA = 0.1e5
 _DIRECTIONS = ("vertical", "lateral", "axial")
 
 
@@ -69,7 +72,49 @@ def cautions(
     found += _weight(change, resting, units)
     found += _heat(change, resting, units)
     found += _mass(change, resting.span, units)
+    found += _small_bore(change, resting.span)
     return (*(text for text in found if text), ALWAYS)
+
+
+def working_cautions(change: Change, resting: Resting, units: str) -> tuple[str, ...]:
+    """What to mind when steel is put up beside this line, its state named."""
+    running = resting.running
+    temperature = show(running.temperature_k, "temperature", units, 3)
+    pressure = show(running.pressure_pa, "pressure", units, 3)
+    found = [
+        f"the line runs at {temperature} and {pressure}, was tapped at "
+        f"{show(resting.tapped.temperature_k, 'temperature', units, 3)}; other states (start-up, "
+        "steam-out, upset) were not looked at"
+    ]
+    if running.temperature_k > HOT_K:
+        found.append(
+            "hot to the touch: work on it cold, keep insulation and its shoe, and leave a hot line "
+            "room to grow"
+        )
+    if running.pressure_pa > PRESSURISED_PA:
+        found.append(
+            "under pressure: do not weld to, drill, unbolt or hammer the pipe in service; a clamp "
+            "with a liner needs no weld on it"
+        )
+    if _restrained_at(change, resting.span) is not None:
+        found.append(
+            "weld to structure, never to the pipe without a qualified procedure for its material; "
+            "the strength of steel, welds and anchors is not checked here, only stiffness"
+        )
+    return (*found, *_small_bore(change, resting.span), ALWAYS)
+
+
+def _small_bore(change: Change, span: Span) -> list[str]:
+    """A branch moves with its header: what holds it must as well."""
+    if not on_header(span):
+        return []
+    found = ["small bore: never strike or bend it under pressure, and look for cracks at the weld"]
+    if _restrained_at(change, span) is not None:
+        found.append(
+            "brace it back to the header, never to structure: held from outside it is bent "
+            "wherever the header moves (the header is taken as still here)"
+        )
+    return found
 
 
 def _stiffness_needed(change: Change, least_share: float, goal: Goal, units: str) -> str:
