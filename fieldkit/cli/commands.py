@@ -10,7 +10,7 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import capturing, output
+from fieldkit.cli import capturing, installing, output
 
 OPEN = "open"
 
@@ -222,13 +222,19 @@ def match(job_file: JobFile, as_json: AsJson = False) -> None:
 
 
 @app.command(epilog="Example: fieldkit detune samples/glycol-booster/job.toml --json")
-def detune(job_file: JobFile, as_json: AsJson = False) -> None:
-    """Rank changes that move every mode out of every excitation band."""
+def detune(
+    job_file: JobFile,
+    as_json: AsJson = False,
+    number: installing.FixNumber = None,
+    reach: installing.Reach = None,
+) -> None:
+    """Rank changes that move every mode out of every excitation band, with what each needs."""
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
         from fieldkit.sheet.origin import marked
 
+        reach_m = installing.reach_m(reach)
         work = workup.run(_load(job_file), output.progress())
         output.clear_progress()
         _stop_where_refused(work, as_json=as_json)
@@ -237,6 +243,10 @@ def detune(job_file: JobFile, as_json: AsJson = False) -> None:
         extra = list(dict.fromkeys([*work.warnings, *matched]))
         lines = [*tables.detune(work.detuning, work.job.units), *tables.warnings(extra)]
         document = documents.detune(work.detuning, extra)
+        if as_json or number is not None:
+            document, installs = installing.installed(work, document, number, reach_m)
+        if number is not None:
+            lines = installing.detailed(number, work, installs)
         output.answer(*marked(document, lines, work.job.recordings), as_json=as_json)
 
 

@@ -101,6 +101,7 @@ def working_cautions(change: Change, resting: Resting, units: str) -> tuple[str,
             "weld to structure, never to the pipe without a qualified procedure for its material; "
             "the strength of steel, welds and anchors is not checked here, only stiffness"
         )
+    found += [*_heat(change, resting, units), *_mass(change, resting.span, units)]
     return (*found, *_small_bore(change, resting.span), ALWAYS)
 
 

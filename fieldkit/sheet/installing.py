@@ -12,10 +12,20 @@ from fieldkit.span.static import WeightAnswer
 from fieldkit.steel.brackets import Bracket
 
 Document = dict[str, Any]
+_LEAST_N = 0.5
 BASIS = (
     "clamp and what the bracket stands on are counted at values of common practice; what it stands "
     "on must itself be much stiffer than the bracket"
 )
+
+
+def with_installs(answer: Document, installs: Mapping[int, Sequence[Installation]]) -> Document:
+    """The document of ``detune`` with ``install`` in every fix that has one."""
+    fixes = [
+        fix | ({"install": document(installs[fix["rank"]])} if fix["rank"] in installs else {})
+        for fix in answer["fixes"]
+    ]
+    return answer | {"fixes": fixes}
 
 
 def document(parts: Sequence[Installation]) -> Document:
@@ -153,7 +163,7 @@ def heat_lines(found: Installation, units: str) -> list[str]:
     if not found.heat:
         return []
     rows = [
-        (axis, movement(heated, units), show(heated.force_n, "force", units, 2),
+        (axis, movement(heated, units), force(heated.force_n, units),
          "held" if heated.held else "free")
         for axis, heated in found.heat.items()
     ]  # fmt: skip
@@ -161,6 +171,11 @@ def heat_lines(found: Installation, units: str) -> list[str]:
         "From tapped to running, heat and pressure move the pipe here:",
         *table(("direction", "free", "force if held", "by this"), rows),
     ]
+
+
+def force(newtons: float, units: str) -> str:
+    """A force to whole newtons or pounds."""
+    return show(newtons if newtons >= _LEAST_N else 0.0, "force", units, 2)
 
 
 def movement(heated: Heated, units: str) -> str:
@@ -178,7 +193,7 @@ def rest_lines(found: Installation, units: str) -> list[str]:
     """Sag, bending and load under weight, before and after, beside the published rule."""
     text = []
     if found.added_load_n is not None:
-        load = show(found.added_load_n, "force", units, 2)
+        load = force(found.added_load_n, units)
         text.append(f"Weight it comes to carry: about {load}.")
     if found.at_rest is None:
         return paragraph(" ".join([*text, f"Sag: {found.rest_refused}."]), 0)

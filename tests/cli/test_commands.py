@@ -45,6 +45,7 @@ def test_detune_ranks_changes_of_every_sample(name):
     best = answer["fixes"][0]
     assert set(best) == {
         "rank", "kind", "summary", "change", "modes_after", "nearest", "chance", "cautions",
+        "install",
     }  # fmt: skip
     assert best["chance"] >= 0.9
     assert len(best["change"]) == 1

@@ -102,8 +102,8 @@ def test_load_by_filling_is_5_8_of_the_contents_on_a_stiff_middle_support():
 
 
 def test_stress_and_sag_before_and_after_beside_the_span_rule():
-    """w L^2/8 before; w (L/2)^2/8 over a stiff middle support after (beam tables); shear takes 0.2 % off the
-    moment over the middle."""
+    """w L^2/8 before; w (L/2)^2/8 over a stiff middle support after (beam tables);
+    shear takes 0.2 % off the moment over the middle."""
     found = installation(
         stand(Excitation("fan", None, (1.0,), (5.0, 12.0))), AddSupport(LENGTH_M / 2, 1e10)
     )
