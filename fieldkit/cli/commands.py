@@ -10,7 +10,7 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import capturing, installing, output
+from fieldkit.cli import capturing, installing, output, spacing
 
 OPEN = "open"
 
@@ -185,7 +185,13 @@ capturing.register(app)
 
 
 @app.command(epilog="Example: fieldkit span samples/riser/job.toml")
-def span(job_file: JobFile, as_json: AsJson = False) -> None:
+def span(
+    job_file: JobFile,
+    as_json: AsJson = False,
+    spaced: spacing.Asked = False,
+    spans: spacing.Spans = spacing.USUAL,
+    support: spacing.Kind = None,
+) -> None:
     """Compute the modes of the span and compare them with a handbook estimate."""
     with output.answering(as_json=as_json):
         from fieldkit import workup
@@ -193,6 +199,11 @@ def span(job_file: JobFile, as_json: AsJson = False) -> None:
 
         progress = output.progress()
         job = _load(job_file)
+        if spaced:
+            document, lines = spacing.answered(job, progress, spans, support)
+            output.clear_progress()
+            output.answer(document, lines, as_json=as_json)
+            return
         states = workup.state_modes(job, progress)
         weights, notes = workup.at_rest(job)
         output.clear_progress()
