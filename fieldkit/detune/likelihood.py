@@ -90,14 +90,25 @@ def align(
     ``detected`` (members, modes) is the chance of each mode to show; ``widening`` multiplies the
     peak widths, for annealing.
     """
-    match = _log_match(peaks, frequency_hz, detected, widening)
-    missed = np.log1p(-detected)
-    false = np.log(peaks.false_rate / peaks.highest_hz)
+    match, missed, false = _logs(peaks, frequency_hz, detected, widening)
     forward = _forward(match, missed, false)
     backward = _forward(match[:, ::-1, ::-1], missed[:, ::-1], false[::-1])[:, ::-1, ::-1]
     total = forward[:, -1, -1]
     through = forward[:, :-1, :-1] + match + backward[:, 1:, 1:] - total[:, None, None]
     return Alignment(total, np.exp(np.minimum(through, 0.0)))
+
+
+def log_likelihood(peaks: Peaks, frequency_hz: Array, detected: Array) -> Array:
+    """(members,) the likelihood of ``align`` alone, in half its time."""
+    return np.asarray(_forward(*_logs(peaks, frequency_hz, detected, 1.0))[:, -1, -1])
+
+
+def _logs(
+    peaks: Peaks, frequency_hz: Array, detected: Array, widening: float
+) -> tuple[Array, Array, Array]:
+    """What a match, a missed mode and a false peak cost."""
+    match = _log_match(peaks, frequency_hz, detected, widening)
+    return match, np.log1p(-detected), np.log(peaks.false_rate / peaks.highest_hz)
 
 
 def _log_match(peaks: Peaks, frequency_hz: Array, detected: Array, widening: float) -> Array:

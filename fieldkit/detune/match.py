@@ -40,7 +40,11 @@ BELONGS = 0.5
 """A peak is paired when it belongs to some mode with at least this probability."""
 RUNNING_SHARE = 0.5
 """Running peaks weigh at most this share of as many peaks of taps (common practice, no source)."""
+LEAST_EFFECTIVE = 4.0
+FEW_EFFECTIVE = 15.0
 FREE_HZ = 0.2
+SENSED_STATIONS = 15
+"""Places along the pipe that tell how much a mode moves at all."""
 MOST_MODES = 12
 FAINT = 0.02
 HEAVY_DAMPING = 0.06
@@ -76,6 +80,7 @@ def match(
     population = posterior.sample(problem, np.random.default_rng(SEED), progress)
     reading = _Reading(span, tapped, running, models, groups, problem, population)
     _require_plausible(reading)
+    _require_enough(population)
     return _answer(reading, evidence, unknowns, handbook_hz)
 
 
@@ -140,7 +145,7 @@ def _seen(
 ) -> Seen:
     number = [state.name for state in states].index(group.peaks.state)
     model = models[number]
-    stations = np.linspace(0, span.length_m, 25)
+    stations = np.linspace(0, span.length_m, SENSED_STATIONS)
     at_m = group.modes[0].at_m
     axes = (group.peaks.direction,) if group.peaks.direction else ("vertical", "lateral", "axial")
     places = stations if at_m is None else np.array([at_m])
@@ -208,6 +213,18 @@ def _require_plausible(reading: _Reading) -> None:
     )
 
 
+def _require_enough(population: Population) -> None:
+    """Refuse where so few first draws survived that their spread says nothing."""
+    size = population.effective_size
+    if size < LEAST_EFFECTIVE:
+        raise Refusal(
+            "the measured frequencies can be explained in so many unlike ways that the ensemble "
+            f"is worth {size:.0f} independent parameter sets only, too few to judge a change by",
+            "state the supports that are known (vertical, lateral), leave out peaks that may "
+            "belong to something else, or tap another place and direction",
+        )
+
+
 def _answer(
     reading: _Reading, evidence: Evidence, unknowns: tuple[Unknown, ...], handbook_hz: float | None
 ) -> Match:
@@ -220,10 +237,23 @@ def _answer(
         pairs=pairs,
         unpaired=unpaired,
         parameters=parameters,
-        ensemble=Ensemble(tuple(u.name for u in unknowns), z, np.full(len(z), 1.0 / len(z))),
+        ensemble=_ensemble(reading.population, unknowns),
         tapped_modes=modes,
         next_measurement=next_measurement(modes, pairs, evidence),
-        warnings=_warnings(pairs, unpaired, parameters, z),
+        warnings=_warnings(pairs, unpaired, parameters, reading.population),
+    )
+
+
+def _ensemble(population: Population, unknowns: Sequence[Unknown]) -> Ensemble:
+    """Two halves, of different families where there are many: to choose by and to judge by."""
+    order = np.argsort(population.family, kind="stable")
+    chosen, fresh = np.array_split(population.z[order], 2)
+    return Ensemble(
+        tuple(unknown.name for unknown in unknowns),
+        chosen,
+        np.full(len(chosen), 1.0 / len(chosen)),
+        fresh,
+        population.effective_size,
     )
 
 
@@ -349,7 +379,7 @@ def _warnings(
     pairs: Sequence[Pair],
     unpaired: Sequence[MeasuredMode],
     parameters: Sequence[ParameterReading],
-    z: Array,
+    population: Population,
 ) -> tuple[str, ...]:
     found = [
         f"the peak at {mode.frequency_hz:.2f} Hz belongs to no computed mode: another line, a "
@@ -367,7 +397,13 @@ def _warnings(
             "one measured mode fixes one unknown only; a second one, best in the other direction, "
             "narrows the prediction more than anything else"
         )
-    far = np.abs(z.mean(axis=0)) > 2.5
+    if population.effective_size < FEW_EFFECTIVE:
+        found.append(
+            "the measured frequencies can be explained in many unlike ways: the ensemble is worth "
+            f"about {population.effective_size:.0f} independent parameter sets, so its chances are "
+            "rough; a further tap would settle which"
+        )
+    far = np.abs(population.z.mean(axis=0)) > 2.5
     for parameter, is_far in zip(parameters, far, strict=True):
         if is_far:
             found.append(

@@ -55,10 +55,17 @@ class Ensemble:
     """(members, parameters) in standard-normal coordinates of the prior."""
     weights: NDArray[np.float64]
     """(members,) summing to 1."""
+    fresh: NDArray[np.float64] | None = None
+    """(members, parameters) as many again, from other first draws: what was chosen for doing well
+    on ``standard`` is judged on these, or the choice itself would flatter it."""
+    independent: float | None = None
+    """How many independent draws all of them are worth, where the sampler told."""
 
     @property
     def effective_size(self) -> float:
-        """Number of equally weighted members that would say as much."""
+        """Number of independent, equally weighted members that would say as much."""
+        if self.independent is not None:
+            return self.independent
         return float(1 / np.sum(self.weights**2))
 
 

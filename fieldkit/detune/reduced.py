@@ -110,8 +110,8 @@ class FullTerms:
     mass_terms: tuple[Sparse | None, ...]
     reference: Array
     """(parameters,) physical values at which the base matrices stand."""
-    ports: tuple[Array, ...]
-    """Rows where unknown springs and masses act."""
+    ports: dict[int, Array]
+    """Rows where unknown springs and masses act, by number of the parameter."""
 
 
 @dataclass(frozen=True)
@@ -130,6 +130,8 @@ class ReducedModel:
     """(parameters, r, r)."""
     mass_terms: Array
     reference: Array
+    port_rows: dict[int, Array]
+    """(k, r) motion that each unknown spring or mass meets, by number of the parameter."""
     middle_stiffness: Sparse
     """(6N, 6N) every unknown at its prior median."""
     middle_mass: Sparse
@@ -173,21 +175,43 @@ class ReducedModel:
 
         d lambda = phi^T (dK - lambda dM) phi (Fox and Kapoor 1968, AIAA Journal 6, from memory).
         """
-        vector = np.ascontiguousarray(modes.vector[:, :, :count])
+        vector = modes.vector[:, :, :count]
         eigenvalue = modes.eigenvalue[:, :count]
-        slope = np.empty((len(z), len(self.unknowns), count))
-        for i, (stiff, heavy) in enumerate(zip(self.stiffness_terms, self.mass_terms, strict=True)):
-            slope[:, i] = _quadratic(stiff, vector) - eigenvalue * _quadratic(heavy, vector)
+        slope = self._slopes_of_ports(vector, eigenvalue)
+        for own, (_, stiff, _, heavy) in zip(self.blocks, self._parts, strict=True):
+            part = np.ascontiguousarray(vector[:, own])
+            for i in self._spread_out:
+                if stiff[i].any():
+                    slope[:, i] += _quadratic(stiff[i], part)
+                if heavy[i].any():
+                    slope[:, i] -= eigenvalue * _quadratic(heavy[i], part)
         chain = np.stack([u.slope(z[:, i]) for i, u in enumerate(self.unknowns)], axis=1)
         frequency = np.maximum(modes.frequency_hz[:, :count], 1e-6)
         return np.asarray(slope * chain[:, :, None] / (8 * np.pi**2 * frequency[:, None, :]))
 
+    def _slopes_of_ports(self, vector: Array, eigenvalue: Array) -> Array:
+        """(members, parameters, count) the part of springs and masses, which act at a point."""
+        slope = np.zeros((len(vector), len(self.unknowns), vector.shape[2]))
+        if not self.port_rows:
+            return slope
+        motion = (np.concatenate(list(self.port_rows.values())) @ vector) ** 2
+        at = 0
+        for i, rows in self.port_rows.items():
+            slope[:, i] = motion[:, at : at + len(rows)].sum(axis=1)
+            if self.unknowns[i].role == "mass":
+                slope[:, i] *= -eigenvalue
+            at += len(rows)
+        return slope
+
+    @cached_property
+    def _spread_out(self) -> list[int]:
+        """Parameters that act along the pipe."""
+        return [i for i in range(len(self.unknowns)) if i not in self.port_rows]
+
 
 def _quadratic(term: Array, vector: Array) -> Array:
     """(members, count) phi^T A phi for one symmetric matrix and many vectors."""
-    if not term.any():
-        return np.zeros((len(vector), vector.shape[2]))
-    return np.asarray(np.sum(vector * (term @ vector), axis=1))
+    return np.asarray(np.einsum("sij,sij->sj", vector, term @ vector))
 
 
 def build(span: Span, state: State, unknowns: Sequence[Unknown], up_to_hz: float) -> ReducedModel:
@@ -219,6 +243,7 @@ def project(terms: FullTerms, unknowns: Sequence[Unknown], parts: Sequence[Array
         np.stack([reduce(term) for term in terms.stiffness_terms]),
         np.stack([reduce(term) for term in terms.mass_terms]),
         terms.reference,
+        {i: rows @ basis for i, rows in terms.ports.items()},
         *_full_at(terms, unknowns, np.zeros(len(unknowns))),
     )
 
@@ -241,18 +266,18 @@ def full_terms(span: Span, state: State, unknowns: Sequence[Unknown], up_to_hz: 
     lengths = segments(span)
     stiffness_terms: list[Sparse | None] = []
     mass_terms: list[Sparse | None] = []
-    ports = []
-    for unknown in unknowns:
+    ports: dict[int, Array] = {}
+    for i, unknown in enumerate(unknowns):
         dK: Sparse | None = None
         dM: Sparse | None = None
         if unknown.role == "spring":
             rows = spring_rows(structure, all_springs[unknown.index])
             dK = _outer(rows)
-            ports.append(rows)
+            ports[i] = rows
         elif unknown.role == "mass":
             rows = mass_rows(structure, span.masses[unknown.index])
             dM = _outer(rows)
-            ports.append(rows)
+            ports[i] = rows
         elif unknown.role == "length":
             dK, dM = stretch_derivative(structure, *lengths[unknown.index])
         elif unknown.role == "wall":
@@ -271,7 +296,7 @@ def full_terms(span: Span, state: State, unknowns: Sequence[Unknown], up_to_hz: 
         tuple(stiffness_terms),
         tuple(mass_terms),
         reference,
-        tuple(ports),
+        ports,
     )
 
 
@@ -326,7 +351,7 @@ def _basis(terms: FullTerms, unknowns: Sequence[Unknown], up_to_hz: float) -> li
     columns = [_felt(terms, vectors), *_soft_modes(terms, unknowns, mass, up_to_hz)]
     if terms.ports:
         shifted = csc_matrix(stiffness + SHIFT_RAD2_PER_S2 * mass)
-        columns.append(splu(shifted).solve(np.concatenate(terms.ports).T))
+        columns.append(splu(shifted).solve(np.concatenate(list(terms.ports.values())).T))
     every = np.concatenate(columns, axis=1)
     parts = [_orthonormal(np.where(own[:, None], every, 0.0), mass) for own in _uncoupled(terms)]
     return [part for part in parts if part.shape[1]]

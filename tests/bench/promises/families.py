@@ -33,7 +33,7 @@ class Described:
 
 def single(rng: Draw) -> Span:
     """One span between two supports, with or without a valve."""
-    length = rng.uniform(2.5, 6.0)
+    length = _taped(rng.uniform(2.5, 6.0))
     first = rng.choice(["anchor", "nozzle", "clamp"])
     last = rng.choice(["clamp", "u-bolt", "guide", "rest"])
     masses = [_valve(rng, rng.uniform(0.25, 0.75) * length)] if rng.random() < 0.6 else []
@@ -42,39 +42,39 @@ def single(rng: Draw) -> Span:
 
 def double(rng: Draw) -> Span:
     """Two spans over a middle support, with a valve in one."""
-    bays = rng.uniform(2.2, 4.8, 2)
+    bays = np.round(rng.uniform(2.2, 4.8, 2), 2)
     kinds = (
         rng.choice(["anchor", "nozzle"]),
         rng.choice(["clamp", "u-bolt", "guide", "rest"]),
         rng.choice(["clamp", "u-bolt", "anchor"]),
     )
     valve = _valve(rng, rng.uniform(0.2, 0.8) * float(bays[0]))
-    return _line(rng, float(bays.sum()), list(zip(_ends(bays), kinds, strict=True)), [valve])
+    return _line(rng, _taped(bays.sum()), list(zip(_ends(bays), kinds, strict=True)), [valve])
 
 
 def several(rng: Draw) -> Span:
     """Three or four spans over mixed supports, two of them hardly known."""
-    bays = rng.uniform(2.2, 4.2, rng.integers(3, 5))
+    bays = np.round(rng.uniform(2.2, 4.2, rng.integers(3, 5)), 2)
     middle = rng.choice(["clamp", "u-bolt", "guide", "rest", "hanger"], len(bays) - 1)
     kinds = (rng.choice(["anchor", "nozzle"]), *middle, rng.choice(["clamp", "anchor"]))
-    end = float(bays.sum())
+    end = _taped(bays.sum())
     valves = [_valve(rng, rng.uniform(0.1, 0.9) * end) for _ in range(rng.integers(1, 3))]
     return _line(rng, end, list(zip(_ends(bays), kinds, strict=True)), valves)
 
 
 def overhang(rng: Draw) -> Span:
     """A span that runs on beyond its last support to a valve at the free end."""
-    bay, beyond = rng.uniform(2.0, 4.0), rng.uniform(0.6, 1.8)
+    bay, beyond = _taped(rng.uniform(2.0, 4.0)), _taped(rng.uniform(0.6, 1.8))
     kinds = rng.choice(["anchor", "nozzle", "clamp"]), rng.choice(["clamp", "u-bolt", "guide"])
     supports = list(zip((0.0, bay), kinds, strict=True))
-    return _line(rng, bay + beyond, supports, [_valve(rng, bay + 0.95 * beyond)])
+    return _line(rng, _taped(bay + beyond), supports, [_valve(rng, bay + 0.95 * beyond)])
 
 
 def small_bore(rng: Draw) -> Span:
     """A small branch on a header that carries a valve near its free end."""
     size = str(rng.choice(["3/4", "1", "1-1/2"]))
-    length = rng.uniform(0.3, 0.8)
-    valve = PointMass(rng.uniform(0.7, 0.95) * length, rng.uniform(2, 9), "valve", 0.15)
+    length = _taped(rng.uniform(0.3, 0.8))
+    valve = PointMass(_taped(rng.uniform(0.7, 0.95) * length), rng.uniform(2, 9), "valve", 0.15)
     legs = (Leg((1.0, 0.0, 0.0), length),)
     pipe, steel = standard_pipe(size, "80"), material("carbon steel")
     return Span(pipe, steel, legs, (Support(0.0, "nozzle"),), (valve,), 900.0)
@@ -119,10 +119,15 @@ def _line(
     )
 
 
+def _taped(length_m: float) -> float:
+    """To the centimetre."""
+    return round(float(length_m), 2)
+
+
 def _valve(rng: Draw, at_m: float) -> PointMass:
     tolerance = float(rng.choice([0.05, 0.1, 0.2]))
-    return PointMass(float(at_m), float(rng.uniform(8, 45)), "valve", tolerance)
+    return PointMass(_taped(at_m), float(rng.uniform(8, 45)), "valve", tolerance)
 
 
 def _ends(bays: np.ndarray) -> list[float]:
-    return [0.0, *(float(x) for x in np.cumsum(bays))]
+    return [0.0, *(_taped(x) for x in np.cumsum(bays))]
