@@ -1,13 +1,13 @@
-"""Every change worth trying, family by family, with its chance from the counts.
+"""Every single change worth trying, family by family, with its chance from the counts.
 
 A family is one function from a ``Search`` to ``Candidate``s and a line in FAMILIES; a new kind of
-fix is added here and in ``fixes``.
+fix is added here, in ``fixes`` and in ``push``.
 """
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
-from dataclasses import dataclass, replace
+from collections.abc import Callable, Iterable, Sequence
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -25,44 +25,37 @@ from fieldkit.detune.fixes import (
     SetMass,
     StiffenSupport,
 )
-from fieldkit.detune.screen import Counter, Scatter, counter
+from fieldkit.detune.push import EVERY_WAY, Push, own_springs, push_of, springs_along
+from fieldkit.detune.scatter import Scatter
+from fieldkit.detune.screen import Count, Counter, clear, counter, left_in
 from fieldkit.progress import Progress
 from fieldkit.span.layout import Span
-from fieldkit.span.supports import KINDS, REFERENCE_DIAMETER_M, springs
+from fieldkit.span.supports import KINDS, REFERENCE_DIAMETER_M
 
 Array = NDArray[np.float64]
 
-STIFFNESS_LEVELS_N_PER_M = (0.5e6, 1e6, 2e6, 4e6, 8e6, 16e6, 32e6)
+STIFFNESS_N_PER_M = (0.25e6, 64e6)
 """Brackets that can be built for a 4-inch pipe; scaled with the diameter."""
-AXIS_SETS = (("vertical",), ("lateral",), ("vertical", "lateral"))
-MASS_SHARES = (0.05, 0.1, 0.2, 0.35, 0.5)
+LEVELS = 50
+AXIS_SETS = (("vertical",), ("lateral",), ("vertical", "lateral"), ("axial",))
+MASS_SHARES = (0.03, 0.5)
 """Of the mass of the pipe itself."""
-KEPT_MASS_SHARES = (0.0, 0.3, 0.6, 1.5)
+MASS_LEVELS = 40
+KEPT_MASS_SHARES = (0.0, 0.15, 0.3, 0.45, 0.6, 0.75, 0.9, 1.1, 1.25, 1.5, 1.75, 2.0)
 NEAR_SUPPORT_DIAMETERS = 2.0
 NEAR_M = 1e-3
-
-
-@dataclass(frozen=True)
-class Push:
-    """What a candidate does to a base field: springs or masses at ports."""
-
-    without_springs: tuple[int, ...] = ()
-    without_masses: tuple[int, ...] = ()
-    ports: tuple[int, ...] = ()
-    moved_by: Array | None = None
-    """(members, p, r) shapes at the ports after the scatter of place; None where it has none."""
-    stiffness: Array | None = None
-    """(members, p)."""
-    mass: Array | None = None
+STIFFER = 1.5
+"""A support is stiffened to at least this many times what it is."""
 
 
 @dataclass(frozen=True)
 class Candidate:
-    """A change with what it does to the model and its counted chance."""
+    """A change with its counted chance."""
 
     change: Change
-    push: Push
     chance: float
+    left: float
+    """Modes left in the bands, mean over the members: what a second change would have to cure."""
 
 
 @dataclass(frozen=True)
@@ -74,26 +67,61 @@ class Search:
     bands: tuple[Band, ...]
     goal: Goal
     scatter: Scatter
+    pick: NDArray[np.intp] | None = None
+    """Members the choice is made on; None means all."""
 
-    def counter(self, base: Field) -> Counter:
+    def counter(self, base: Field | None = None) -> Counter:
         """Counts on a base field at the edges of this job's bands."""
-        return counter(base, self.bands, self.goal.up_to_hz)
+        return counter(base or self.field, self.bands, self.goal.up_to_hz)
 
-    def attachable(self) -> list[int]:
+    def push(self, change: Change) -> Push:
+        """What a change does, as installed."""
+        return push_of(self.field, change, self.scatter)
+
+    def counted(self, change: Change) -> Candidate:
+        """Any change of supports and masses with its chance."""
+        return self.candidate(change, self.counter().with_push(self.push(change)))
+
+    def candidate(self, change: Change, count: Count) -> Candidate:
+        """A change with the counts (members, edges) after it."""
+        kept = count if self.pick is None else count[self.pick]
+        return Candidate(
+            change, float(clear(kept).mean()), float(left_in(kept).sum(axis=-1).mean())
+        )
+
+    def candidates(self, changes: Sequence[Change], count: Count) -> list[Candidate]:
+        """Many at once, from counts (changes, members, edges)."""
+        kept = count if self.pick is None else count[:, self.pick]
+        chance = clear(kept).mean(axis=1)
+        left = left_in(kept).sum(axis=-1).mean(axis=1)
+        return [
+            Candidate(change, float(c), float(n))
+            for change, c, n in zip(changes, chance, left, strict=True)
+        ]
+
+    def attachable(self) -> list[float]:
         """Grid stations outside every keep-out and not on top of a support."""
         near = NEAR_SUPPORT_DIAMETERS * self.span.pipe.outside_diameter_m
         taken = [support.at_m for support in self.span.supports]
+        rounded = [round(float(station), 3) for station in self.field.station_m]
         return [
-            i
-            for i, station in enumerate(self.field.station_m)
-            if self.goal.may_attach(float(station))
+            station
+            for station in rounded
+            if station <= self.span.length_m
+            and self.goal.may_attach(station)
             and all(abs(station - at) > near for at in taken)
         ]
 
-    def stiffness_levels(self) -> Array:
+    def stiffness_levels(self, count: int = LEVELS) -> Array:
         """(levels,) N/m for this pipe size, rounded to two digits."""
         scale = self.span.pipe.outside_diameter_m / REFERENCE_DIAMETER_M
-        return np.array([float(f"{scale * k:.1e}") for k in STIFFNESS_LEVELS_N_PER_M])
+        levels = scale * np.geomspace(*STIFFNESS_N_PER_M, count)
+        return np.unique([float(f"{k:.1e}") for k in levels])
+
+    def mass_levels(self, count: int = MASS_LEVELS) -> Array:
+        """(levels,) kg for this pipe, rounded to two digits."""
+        levels = pipe_mass_kg(self.span) * np.geomspace(*MASS_SHARES, count)
+        return np.unique([round_mass(kg) for kg in levels])
 
 
 def generate(search: Search, progress: Progress) -> list[Candidate]:
@@ -108,32 +136,33 @@ def generate(search: Search, progress: Progress) -> list[Candidate]:
 
 def added_supports(search: Search) -> Iterable[Candidate]:
     """A new support at every free station, in each set of directions, at each stiffness."""
-    count = search.counter(search.field)
-    levels = search.stiffness_levels()
-    for station in search.attachable():
-        at_m = round(float(search.field.station_m[station]), 3)
-        for axes in AXIS_SETS:
-            ports = _ports(search.field, axes, station)
-            shape = _displaced(search, search.field, axes, station)
-            receptance = count.receptance(shape, _residual(search.field, ports))
-            stiffness = _scattered(search, levels, len(ports))
-            clear = count.clear_with_springs(receptance, stiffness)
-            for level, k, chance in zip(levels, stiffness, clear.mean(axis=1), strict=True):
-                change = replace(AddSupport(at_m), **_levels(axes, level))
-                push = Push(ports=ports, moved_by=shape, stiffness=k)
-                yield Candidate(change, push, float(chance))
+    levels, places = search.stiffness_levels(), search.attachable()
+    for axes in AXIS_SETS:
+        for stations, receptance in equal_rows(search, axes, places):
+            count = search.counter()
+            for level in levels:
+                installed = level * search.scatter.stiffness_factor
+                stated = stiffness_along(axes, level)
+                changes = [AddSupport(at_m, **stated) for at_m in stations]
+                yield from search.candidates(changes, count.with_springs(receptance, installed))
 
 
 def stiffened_supports(search: Search) -> Iterable[Candidate]:
     """Each structural support brought to a higher total stiffness."""
-    count = search.counter(search.field)
     for index, support in enumerate(search.span.supports):
         if not KINDS[support.kind].structural:
             continue
-        for axes in AXIS_SETS:
-            numbers = _springs_along(search, index, axes)
-            if len(numbers) == len(axes):
-                yield from _stiffened(search, count, index, axes, numbers)
+        for axes in AXIS_SETS[:3]:
+            numbers = [i for axis in axes for i in springs_along(search.field, index, axis)]
+            if len(numbers) != len(axes):
+                continue
+            now = max(float(np.median(search.field.spring_value(i))) for i in numbers)
+            changes = [
+                StiffenSupport(index, **stiffness_along(axes, level))
+                for level in search.stiffness_levels()
+                if level > STIFFER * now
+            ]
+            yield from _pushed_at_one_place(search, changes)
 
 
 def moved_supports(search: Search) -> Iterable[Candidate]:
@@ -142,24 +171,13 @@ def moved_supports(search: Search) -> Iterable[Candidate]:
         low, high = _between_neighbours(search.span, index)
         if support.kind in ("anchor", "nozzle", "free") or low is None or high is None:
             continue
-        own = [i for i, s in enumerate(springs(search.span)) if s.support == index]
+        own = own_springs(search.field, index)
         if not own:
             continue
         base = search.field.without(own, ())
         count = search.counter(base)
-        axes = tuple(springs(search.span)[i].axis for i in own)
-        value = [search.field.spring_value(i) for i in own]
-        for station in search.attachable():
-            if not low < base.station_m[station] < high:
-                continue
-            ports = _ports(base, axes, station)
-            shape = _displaced(search, base, axes, station)
-            stiffness = _per_port(base, axes, station, value)
-            receptance = count.receptance(shape, _residual(base, ports))
-            chance = count.clear_with_springs(receptance, stiffness[None]).mean()
-            push = Push(tuple(own), (), ports, shape, stiffness=stiffness)
-            change = MoveSupport(index, round(float(base.station_m[station]), 3))
-            yield Candidate(change, push, float(chance))
+        changes = [MoveSupport(index, at_m) for at_m in search.attachable() if low < at_m < high]
+        yield from _on_base(search, count, changes)
 
 
 def changed_masses(search: Search) -> Iterable[Candidate]:
@@ -168,9 +186,12 @@ def changed_masses(search: Search) -> Iterable[Candidate]:
     for index, mass in enumerate(search.span.masses):
         if mass.mass_kg <= 0:
             continue
-        base = search.field.without((), (index,))
-        yield from _reset_mass(search, base, index)
-        yield from _moved_mass(search, base, index)
+        count = search.counter(search.field.without((), (index,)))
+        changes: list[Change] = [
+            SetMass(index, round_mass(share * mass.mass_kg)) for share in KEPT_MASS_SHARES
+        ]
+        changes += [MoveMass(index, station) for station in search.attachable()]
+        yield from _on_base(search, count, changes)
 
 
 Family = Callable[[Search], Iterable[Candidate]]
@@ -182,86 +203,75 @@ FAMILIES: dict[str, Family] = {
 }
 
 
-def _stiffened(
-    search: Search, count: Counter, index: int, axes: tuple[str, ...], numbers: list[int]
-) -> Iterable[Candidate]:
-    ports = tuple(int(p) for i in numbers for p in search.field.ports.of("spring", i))
-    owner = [j for j, i in enumerate(numbers) for _ in search.field.ports.of("spring", i)]
-    now = np.stack([search.field.spring_value(numbers[j]) for j in owner], axis=1)
-    shape = search.field.motion(ports)
-    receptance = count.receptance(shape, _residual(search.field, ports))
-    levels = [k for k in search.stiffness_levels() if k > 1.5 * np.median(now)]
-    for level in levels:
-        total = level * search.scatter.stiffness_factor[:, None]
-        added = np.maximum(total - now, 1e-3 * level)
-        chance = count.clear_with_springs(receptance, added[None]).mean()
-        change = replace(StiffenSupport(index), **_levels(axes, level))
-        yield Candidate(change, Push(ports=ports, stiffness=added), float(chance))
+def equal_rows(
+    search: Search, axes: tuple[str, ...], places: Sequence[float]
+) -> list[tuple[list[float], Array]]:
+    """Stations with the principal receptances (stations, members, edges, p) of the rows there.
+
+    Stations go together where as many rows belong to the directions.
+    """
+    spots = [search.field.spot(axes, at_m) for at_m in places]
+    found = []
+    for p in sorted({len(spot.rows) for spot in spots}):
+        own = [i for i, spot in enumerate(spots) if len(spot.rows) == p]
+        rows = np.stack([spots[i].rows for i in own])
+        slope = np.stack([spots[i].slope for i in own])
+        vector = search.field.modes.vector
+        shape = rows[:, None] @ vector[None]
+        shape += search.scatter.place_m[:, None, None] * (slope[:, None] @ vector[None])
+        full = np.concatenate([spots[i].full for i in own])
+        every = search.field.ports.residual_of(full).reshape(len(own), p, len(own), p)
+        residual = every[np.arange(len(own)), :, np.arange(len(own))]
+        residual += np.stack([spots[i].inside for i in own])
+        receptance = search.counter().equal_rows(shape, residual)
+        found.append(([places[i] for i in own], receptance))
+    return found
 
 
-def _levels(axes: tuple[str, ...], level: float) -> dict[str, Any]:
+def stiffness_along(axes: Sequence[str], level: float) -> dict[str, Any]:
+    """Keyword arguments of a support change."""
     return {f"{axis}_n_per_m": float(level) for axis in axes}
 
 
-def _springs_along(search: Search, index: int, axes: tuple[str, ...]) -> list[int]:
-    wanted: list[int] = []
-    for axis in axes:
-        wanted += [
-            i
-            for i, spring in enumerate(springs(search.span))
-            if spring.support == index and spring.axis == axis
-        ]
-    return wanted
+def round_mass(kilograms: float) -> float:
+    """To two digits."""
+    return float(f"{kilograms:.2g}")
+
+
+def _pushed_at_one_place(search: Search, changes: Sequence[Change]) -> Iterable[Candidate]:
+    """Changes at the same rows: the receptance is formed once."""
+    if not changes:
+        return
+    pushes = [search.push(change) for change in changes]
+    count = search.counter()
+    shape = pushes[0].rows @ search.field.modes.vector
+    receptance = count.receptance(shape, pushes[0].residual)
+    softness = np.stack([count.softness(push) for push in pushes])
+    yield from search.candidates(changes, count.with_update(receptance[None], softness))
+
+
+def _on_base(search: Search, count: Counter, changes: Sequence[Change]) -> Iterable[Candidate]:
+    """Changes whose removals the base already has, those at as many rows together."""
+    pushes = [(change, search.push(change)) for change in changes]
+    for p in sorted({push.rows.shape[1] for _, push in pushes}):
+        own = [(change, push) for change, push in pushes if push.rows.shape[1] == p]
+        same = [change for change, _ in own]
+        if p == 0:
+            yield from search.candidates(same, np.stack([count.base] * len(own)))
+            continue
+        shape = np.stack([push.rows for _, push in own]) @ count.field.modes.vector
+        receptance = count.receptance(shape, np.stack([push.residual for _, push in own]))
+        softness = np.stack([count.softness(push) for _, push in own])
+        yield from search.candidates(same, count.with_update(receptance, softness))
 
 
 def _added_masses(search: Search) -> Iterable[Candidate]:
-    count = search.counter(search.field)
-    kilograms = [_round_mass(share * pipe_mass_kg(search.span)) for share in MASS_SHARES]
-    for station in search.attachable():
-        ports = _ports(search.field, _EVERY_WAY, station)
-        shape = _displaced(search, search.field, _EVERY_WAY, station)
-        receptance = count.receptance(shape, _residual(search.field, ports))
-        mass = np.array(kilograms)[:, None, None] * np.ones((1, search.field.members, len(ports)))
-        clear = count.clear_with_masses(receptance, mass).mean(axis=1)
-        at_m = round(float(search.field.station_m[station]), 3)
-        for kg, values, chance in zip(kilograms, mass, clear, strict=True):
-            push = Push(ports=ports, moved_by=shape, mass=values)
-            yield Candidate(AddMass(at_m, kg), push, float(chance))
-
-
-def _reset_mass(search: Search, base: Field, index: int) -> Iterable[Candidate]:
-    count = search.counter(base)
-    ports = tuple(int(p) for p in base.ports.of("mass", index))
-    receptance = count.receptance(base.motion(ports), _residual(base, ports))
-    actual = search.field.mass_value(index)
-    for share in KEPT_MASS_SHARES:
-        kept = _round_mass(share * search.span.masses[index].mass_kg)
-        if share == 0.0:
-            clear, push = count.clear_now(), Push(without_masses=(index,))
-        else:
-            ratio = kept / search.span.masses[index].mass_kg
-            values = (ratio * actual)[:, None] * np.ones((1, len(ports)))
-            clear = count.clear_with_masses(receptance, values[None])
-            push = Push(without_masses=(index,), ports=ports, mass=values)
-        yield Candidate(SetMass(index, kept), push, float(clear.mean()))
-
-
-def _moved_mass(search: Search, base: Field, index: int) -> Iterable[Candidate]:
-    count = search.counter(base)
-    actual = search.field.mass_value(index)
-    model, mass = base.model, search.span.masses[index]
-    for station in search.attachable():
-        at_m = float(base.station_m[station])
-        rows = model.structure.point_rows(at_m, mass.offset_m) @ model.basis
-        shape = rows @ base.modes.vector
-        values = actual[:, None] * np.ones((1, len(rows)))
-        receptance = count.receptance(shape, np.zeros((len(rows), len(rows))))
-        chance = count.clear_with_masses(receptance, values[None]).mean()
-        push = Push(without_masses=(index,), moved_by=shape, mass=values)
-        yield Candidate(MoveMass(index, round(at_m, 3)), push, float(chance))
-
-
-_EVERY_WAY = ("x", "y", "z")
+    count = search.counter()
+    for stations, receptance in equal_rows(search, EVERY_WAY, search.attachable()):
+        for kg in search.mass_levels():
+            changes = [AddMass(at_m, float(kg)) for at_m in stations]
+            mass = np.full(search.field.members, kg)
+            yield from search.candidates(changes, count.with_masses(receptance, mass))
 
 
 def _between_neighbours(span: Span, index: int) -> tuple[float | None, float | None]:
@@ -270,41 +280,3 @@ def _between_neighbours(span: Span, index: int) -> tuple[float | None, float | N
     before = [s.at_m for s in span.supports if s.at_m < here - NEAR_M]
     after = [s.at_m for s in span.supports if s.at_m > here + NEAR_M]
     return max(before, default=None), min(after, default=None)
-
-
-def _ports(base: Field, axes: tuple[str, ...], station: int) -> tuple[int, ...]:
-    return tuple(int(p) for axis in axes for p in base.ports.of(axis, station))
-
-
-def _per_port(base: Field, axes: tuple[str, ...], station: int, value: list[Array]) -> Array:
-    """(members, p) a stiffness per axis, repeated where an axis means two rows."""
-    columns = [v for axis, v in zip(axes, value, strict=True) for _ in base.ports.of(axis, station)]
-    return np.stack(columns, axis=1)
-
-
-def _displaced(search: Search, base: Field, axes: tuple[str, ...], station: int) -> Array:
-    """(members, p, r) shapes at a station, each member off by its own scatter of place."""
-    last = len(base.station_m) - 1
-    low, high = max(station - 1, 0), min(station + 1, last)
-    here = base.motion(_ports(base, axes, station))
-    before, after = _ports(base, axes, low), _ports(base, axes, high)
-    if len(before) != here.shape[1] or len(after) != here.shape[1]:
-        return here
-    slope = (base.motion(after) - base.motion(before)) / (
-        base.station_m[high] - base.station_m[low]
-    )
-    return np.asarray(here + search.scatter.place_m[:, None, None] * slope)
-
-
-def _residual(base: Field, ports: tuple[int, ...]) -> Array:
-    return base.ports.residual[np.ix_(ports, ports)]
-
-
-def _scattered(search: Search, levels: Array, ports: int) -> Array:
-    """(levels, members, p)."""
-    factor = search.scatter.stiffness_factor[None, :, None]
-    return levels[:, None, None] * factor * np.ones((1, 1, ports))
-
-
-def _round_mass(kilograms: float) -> float:
-    return float(f"{kilograms:.2g}")

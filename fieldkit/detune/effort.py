@@ -7,10 +7,14 @@ from __future__ import annotations
 
 import math
 
+from fieldkit.detune.excitation import Goal
 from fieldkit.detune.fixes import (
+    AddAbsorber,
     AddMass,
     AddSupport,
+    AllOf,
     Change,
+    ChangeSpeed,
     MoveMass,
     MoveSupport,
     SetMass,
@@ -34,8 +38,34 @@ PER_DECADE = 0.5
 PER_METRE_MOVED = 0.15
 
 
-def effort(change: Change, span: Span) -> float:
+STEEL_NEAR = 0.8
+"""Of a bracket where the job says there is steel to stand it on."""
+TOGETHER = 0.3
+"""Planning and proving two changes instead of one, for each further one."""
+SPEED_BASE = 3.0
+"""Whoever runs the machine gives something up, for good."""
+ABSORBER_BASE = 2.5
+
+
+def effort(change: Change, span: Span, goal: Goal | None = None) -> float:
     """Size of a change on this span; smaller is easier."""
+    if isinstance(change, AllOf):
+        sizes = [effort(part, span, goal) for part in change.parts]
+        return sum(sizes) + TOGETHER * (len(sizes) - 1)
+    near = goal is not None and goal.steel_near(_bracket_at(change, span))
+    return (STEEL_NEAR if near else 1.0) * _single(change, span)
+
+
+def _bracket_at(change: Change, span: Span) -> float | None:
+    """Station of the steelwork a change needs; None where it needs none."""
+    if isinstance(change, AddSupport):
+        return change.at_m
+    if isinstance(change, MoveSupport):
+        return change.to_m
+    return span.supports[change.index].at_m if isinstance(change, StiffenSupport) else None
+
+
+def _single(change: Change, span: Span) -> float:
     if isinstance(change, AddSupport):
         return SUPPORT_BASE + _stiffness_effort(
             span, change.vertical_n_per_m, change.lateral_n_per_m, change.axial_n_per_m
@@ -53,7 +83,9 @@ def effort(change: Change, span: Span) -> float:
         return VALVE_BASE + abs(change.mass_kg - old) / old
     if isinstance(change, MoveMass):
         return VALVE_BASE + PER_METRE_MOVED * abs(change.to_m - span.masses[change.index].at_m)
-    return SUPPORT_BASE
+    if isinstance(change, AddAbsorber):
+        return ABSORBER_BASE + MASS_SHARE_WEIGHT * change.mass_kg / pipe_mass_kg(span)
+    return SPEED_BASE if isinstance(change, ChangeSpeed) else SUPPORT_BASE
 
 
 def pipe_mass_kg(span: Span) -> float:

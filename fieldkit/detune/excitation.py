@@ -88,6 +88,12 @@ class Goal:
     allow: tuple[str, ...] = ("support", "move", "stiffen", "mass")
     keep_out_m: tuple[tuple[float, float], ...] = ()
     """Stations where nothing can be attached."""
+    steel_m: tuple[tuple[float, float], ...] = ()
+    """Stations beside steel or concrete that a bracket can stand on."""
+
+    def steel_near(self, at_m: float | None) -> bool:
+        """Whether the job names something to stand a bracket on at a station."""
+        return at_m is not None and any(low <= at_m <= high for low, high in self.steel_m)
 
     def may_attach(self, at_m: float) -> bool:
         """Whether a station lies outside every keep-out."""

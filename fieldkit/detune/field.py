@@ -8,13 +8,14 @@ depend on support stiffness because the basis contains the deflection under ever
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from functools import cached_property
 
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.detune.inside import inside_flexibility
 from fieldkit.detune.reduced import (
     SHIFT_RAD2_PER_S2,
     Modes,
@@ -25,14 +26,30 @@ from fieldkit.detune.reduced import (
     spring_rows,
 )
 from fieldkit.detune.tracking import central_member
+from fieldkit.span.elements import cross_matrix
 from fieldkit.span.layout import Span, axis_vectors
-from fieldkit.span.supports import springs
+from fieldkit.span.supports import Spring, springs
 
 Array = NDArray[np.float64]
 
 GRID_STEPS = 64
+SLOPE_STEP_M = 0.02
 AXES = ("vertical", "lateral", "axial")
 """What a mode's direction is told by; the grid has more ports: x, y, z and what supports use."""
+
+
+@dataclass(frozen=True)
+class Spot:
+    """Rows of motion at one place, along one or several directions."""
+
+    rows: Array
+    """(p, r) in the coordinates of the basis."""
+    slope: Array
+    """(p, r) the same per metre along the pipe."""
+    full: Array
+    """(p, 6N) on the full model."""
+    inside: Array
+    """(p, p) flexibility of the place itself between the nodes of the mesh."""
 
 
 @dataclass(frozen=True)
@@ -52,7 +69,15 @@ class Ports:
     @cached_property
     def residual(self) -> Array:
         """(ports, ports) m/N: static flexibility that the basis cannot show."""
-        return _residual(self.model, self.full_rows.toarray())
+        return self.residual_of(self.full_rows.toarray())
+
+    def residual_of(self, full_rows: Array) -> Array:
+        """(p, p) the same between any rows (p, 6N) of the full model."""
+        return self._residual_of(full_rows)
+
+    @cached_property
+    def _residual_of(self) -> Callable[[Array], Array]:
+        return _residual(self.model)
 
     def of(self, name: str, number: int) -> NDArray[np.intp]:
         """Port numbers of a group."""
@@ -91,6 +116,11 @@ class Field:
         columns = np.swapaxes(self.modes.vector, 0, 1).reshape(r, members * count)
         return (self.ports.rows @ columns).reshape(-1, members, count)
 
+    @cached_property
+    def springs(self) -> tuple[Spring, ...]:
+        """The springs of the span, by number."""
+        return tuple(springs(self.span))
+
     @property
     def members(self) -> int:
         """How many parameter sets."""
@@ -107,9 +137,14 @@ class Field:
             mass = mass - self.mass_value(i)[:, None, None] * (rows.T @ rows)
         return replace(self, modes=solve_blocks(stiffness, mass, self.model.blocks))
 
+    def some(self, members: NDArray[np.intp]) -> Field:
+        """The field of some members only; the first of them counts as the middle one."""
+        chosen = Modes(self.modes.eigenvalue[members], self.modes.vector[members])
+        return replace(self, z=self.z[members], modes=chosen, central=0)
+
     def spring_value(self, i: int) -> Array:
         """(members,) stiffness of a spring of the span."""
-        return self._value("spring", i, springs(self.span)[i].stiffness)
+        return self._value("spring", i, self.springs[i].stiffness)
 
     def mass_value(self, i: int) -> Array:
         """(members,) kilograms of a mass of the span."""
@@ -131,11 +166,73 @@ class Field:
         ]
         return float(self.station_m[int(np.argmax(total))])
 
+    def spot(self, axes: Sequence[str], at_m: float) -> Spot:
+        """Motion along some directions at any station."""
+        return self._spot(tuple(axes), at_m, None)
+
+    def mass_spot(self, i: int, at_m: float) -> Spot:
+        """Motion of the centre of gravity of a mass of the span if it stood at a station."""
+        return self._spot(("x", "y", "z"), at_m, self.span.masses[i].offset_m)
+
+    def spring_spot(self, i: int) -> Spot:
+        """Motion that a spring of the span resists."""
+        full = spring_rows(self.model.structure, self.springs[i])
+        rows = full @ self.model.basis
+        return Spot(rows, np.zeros_like(rows), full, np.zeros((len(rows), len(rows))))
+
+    def _spot(
+        self, axes: tuple[str, ...], at_m: float, offset: tuple[float, float, float] | None
+    ) -> Spot:
+        key = (axes, at_m, offset)
+        if key not in self._read:
+            self._read[key] = _read_spot(self, axes, at_m, offset)
+        return self._read[key]
+
+    def motion_at(self, at_m: float) -> tuple[Array, Array, Array, Array]:
+        """Translation above rotation at a station: (6, r), the same per metre, (6, 6N), and the
+        flexibility (6, 6) of the place itself."""
+        if at_m not in self._motion_read:
+            low = max(at_m - SLOPE_STEP_M, 0.0)
+            high = min(at_m + SLOPE_STEP_M, self.span.length_m)
+            structure, basis = self.model.structure, self.model.basis
+            before, full, after = (
+                np.concatenate(structure.station_motion(station)) for station in (low, at_m, high)
+            )
+            slope = (after - before) @ basis / (high - low)
+            inside = inside_flexibility(structure, at_m)
+            self._motion_read[at_m] = (full @ basis, slope, full, inside)
+        return self._motion_read[at_m]
+
+    @cached_property
+    def _motion_read(self) -> dict[float, tuple[Array, Array, Array, Array]]:
+        return {}
+
+    @cached_property
+    def _read(self) -> dict[tuple[object, ...], Spot]:
+        return {}
+
     def _value(self, role: str, index: int, stated: float) -> Array:
         for column, unknown in enumerate(self.model.unknowns):
             if (unknown.role, unknown.index) == (role, index):
                 return unknown.at(self.z[:, column])
         return np.full(self.members, stated)
+
+
+def _read_spot(
+    base: Field, axes: tuple[str, ...], at_m: float, offset: tuple[float, float, float] | None
+) -> Spot:
+    tangent = base.span.centre_line.at(at_m)[1]
+    here, per_metre, full, inside = base.motion_at(at_m)
+    lever = np.zeros((3, 3)) if offset is None else cross_matrix(np.array(offset))
+    moves = np.concatenate([np.eye(3), -lever], axis=1)
+    turns = np.concatenate([np.zeros((3, 3)), np.eye(3)], axis=1)
+    turn = np.concatenate(
+        [
+            axis_vectors(tangent, axis) @ (turns if axis in ("rotation", "torsion") else moves)
+            for axis in axes
+        ]
+    )
+    return Spot(turn @ here, turn @ per_metre, turn @ full, turn @ inside @ turn.T)
 
 
 def field(span: Span, model: ReducedModel, z: Array) -> Field:
@@ -177,17 +274,18 @@ def _ports(span: Span, model: ReducedModel, stations: Array) -> Ports:
     return Ports(tuple(keys), groups, np.asarray(full @ model.basis), model, full)
 
 
-def _residual(model: ReducedModel, rows: Array) -> Array:
-    """Static flexibility between ports that the basis cannot show, at the prior medians."""
+def _residual(model: ReducedModel) -> Callable[[Array], Array]:
+    """Static flexibility between rows that the basis cannot show, at the prior medians."""
     from scipy.sparse.linalg import splu
 
-    shifted = model.middle_stiffness + SHIFT_RAD2_PER_S2 * model.middle_mass
-    whole = rows @ splu(shifted.tocsc()).solve(rows.T)
-    reduced_rows = rows @ model.basis
-    middle = np.zeros((1, len(model.unknowns)))
-    stiffness, mass = model.matrices(middle)
-    shown = reduced_rows @ np.linalg.solve(
-        stiffness[0] + SHIFT_RAD2_PER_S2 * mass[0], reduced_rows.T
-    )
-    residual = whole - shown
-    return np.asarray(0.5 * (residual + residual.T))
+    shifted = splu((model.middle_stiffness + SHIFT_RAD2_PER_S2 * model.middle_mass).tocsc())
+    stiffness, mass = model.matrices(np.zeros((1, len(model.unknowns))))
+    small = stiffness[0] + SHIFT_RAD2_PER_S2 * mass[0]
+
+    def between(rows: Array) -> Array:
+        whole = rows @ shifted.solve(np.ascontiguousarray(rows.T))
+        reduced_rows = rows @ model.basis
+        residual = whole - reduced_rows @ np.linalg.solve(small, reduced_rows.T)
+        return np.asarray(0.5 * (residual + residual.T))
+
+    return between

@@ -16,7 +16,7 @@ class Change(Protocol):
 
     @property
     def kind(self) -> str:
-        """Family: ``support``, ``move``, ``stiffen`` or ``mass``."""
+        """Family: ``support``, ``move``, ``stiffen``, ``mass``, ``pair``, ``speed``..."""
         ...
 
     def apply(self, span: Span) -> Span:
@@ -175,3 +175,74 @@ class MoveMass:
     def as_json(self) -> Json:
         """``move_mass``."""
         return {"move_mass": {"index": self.index, "to_m": self.to_m}}
+
+
+@dataclass(frozen=True)
+class AllOf:
+    """Several changes done together; each names supports and masses as they are numbered now."""
+
+    parts: tuple[Change, ...]
+    kind: str = "pair"
+
+    def apply(self, span: Span) -> Span:
+        """The span with every part made: what is added stands behind what was there."""
+        for part in self.parts:
+            span = part.apply(span)
+        return span
+
+    def as_json(self) -> Json:
+        """``all_of`` a list of single changes."""
+        return {"all_of": [part.as_json() for part in self.parts]}
+
+
+@dataclass(frozen=True)
+class ChangeSpeed:
+    """A machine kept to another speed range; the pipe stays as it is."""
+
+    excitation: str
+    low_hz: float
+    """Revolutions per second."""
+    high_hz: float
+    kind: str = "speed"
+
+    def apply(self, span: Span) -> Span:
+        """The same span."""
+        return span
+
+    def as_json(self) -> Json:
+        """``change_speed``."""
+        low_rpm, high_rpm = round(60 * self.low_hz, 1), round(60 * self.high_hz, 1)
+        return {
+            "change_speed": {
+                "excitation": self.excitation,
+                "low_rpm": low_rpm,
+                "high_rpm": high_rpm,
+            }
+        }
+
+
+@dataclass(frozen=True)
+class AddAbsorber:
+    """A small mass on a spring and a damper, tuned against one mode, moving one way."""
+
+    at_m: float
+    mass_kg: float
+    stiffness_n_per_m: float
+    damping_n_s_per_m: float
+    direction: str = "vertical"
+    kind: str = "absorber"
+
+    def apply(self, span: Span) -> Span:
+        """The same span: the absorber is a system of its own on it."""
+        return span
+
+    def as_json(self) -> Json:
+        """``add_absorber``."""
+        return {
+            "add_absorber": {
+                "at_m": self.at_m,
+                "mass_kg": self.mass_kg,
+                "stiffness_n_per_m": self.stiffness_n_per_m,
+                "damping_n_s_per_m": self.damping_n_s_per_m,
+            }
+        }

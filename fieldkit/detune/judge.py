@@ -8,19 +8,20 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.detune.candidates import Push
 from fieldkit.detune.excitation import Band, clear_of_all
 from fieldkit.detune.field import AXES, Field
 from fieldkit.detune.fixes import (
     AddMass,
     AddSupport,
+    AllOf,
     Change,
     MoveMass,
     MoveSupport,
     SetMass,
     StiffenSupport,
 )
-from fieldkit.detune.reduced import Modes, solve_many
+from fieldkit.detune.lowrank import condensed, kept_modes
+from fieldkit.detune.push import Push
 from fieldkit.detune.tracking import follow, followed
 from fieldkit.detune.unknowns import StationMap, member_span, member_state, station_map
 from fieldkit.detune.verdict import JudgedMode, Nearest
@@ -29,9 +30,6 @@ from fieldkit.span.modes import span_modes
 
 Array = NDArray[np.float64]
 
-KEPT_MODES = 22
-"""Modes of the base that carry the dynamics under added springs; the others act as static
-flexibility. Under added mass, where there is no such short cut, all of them are kept."""
 RIGID_HZ = 0.2
 """Below this a mode is a free direction of the model, not a vibration."""
 WORST_DISAGREEMENT = 0.01
@@ -60,30 +58,11 @@ def after(field: Field, push: Push, up_to_hz: float) -> Spectrum:
     base = field
     if push.without_springs or push.without_masses:
         base = field.without(push.without_springs, push.without_masses)
-    if not push.ports and push.moved_by is None:
-        return now(base, up_to_hz)
-    modes = _pushed(base, push)
-    vector = base.modes.vector[:, :, : modes.eigenvalue.shape[1]] @ modes.vector
-    return _spectrum(field, modes.frequency_hz, vector, up_to_hz)
-
-
-def _pushed(base: Field, push: Push) -> Modes:
-    shape = push.moved_by if push.moved_by is not None else base.motion(push.ports)
-    kept = min(KEPT_MODES, shape.shape[2]) if push.mass is None else shape.shape[2]
-    low, high = shape[:, :, :kept], shape[:, :, kept:]
-    members, ports = shape.shape[:2]
-    stiffness = base.modes.eigenvalue[:, :kept, None] * np.eye(kept)
-    mass = np.broadcast_to(np.eye(kept), (members, kept, kept)).copy()
-    if push.stiffness is not None:
-        flexibility = base.ports.residual[np.ix_(push.ports, push.ports)]
-        flexibility = flexibility + (high / base.modes.eigenvalue[:, None, kept:]) @ np.swapaxes(
-            high, 1, 2
-        )
-        spring = np.linalg.inv(flexibility + (1 / push.stiffness)[:, :, None] * np.eye(ports))
-        stiffness = stiffness + np.swapaxes(low, 1, 2) @ spring @ low
-    if push.mass is not None:
-        mass = mass + np.swapaxes(low, 1, 2) @ (push.mass[:, :, None] * low)
-    return solve_many(stiffness, mass)
+    if not push.rows.shape[1]:
+        return _spectrum(field, base.modes.frequency_hz, base.modes.vector, up_to_hz)
+    seen = condensed(base.modes, push.rows, push.residual, kept_modes(base.modes, up_to_hz))
+    modes = seen.modes(push.stiffness, push.mass)
+    return _spectrum(field, modes.frequency_hz, modes.vector, up_to_hz)
 
 
 def _spectrum(field: Field, frequency_hz: Array, vector: Array, up_to_hz: float) -> Spectrum:
@@ -137,6 +116,8 @@ def resolve(
 
 def _on_member(change: Change, span: Span, member: Span, moved: StationMap) -> Change:
     """The change as it meets one member: stations stretched, existing values the member's own."""
+    if isinstance(change, AllOf):
+        return AllOf(tuple(_on_member(part, span, member, moved) for part in change.parts))
     if isinstance(change, MoveSupport | MoveMass):
         return replace(change, to_m=moved(change.to_m))
     if isinstance(change, SetMass):
@@ -166,17 +147,29 @@ def _at_least(change: StiffenSupport, member: Span) -> StiffenSupport:
     )
 
 
-def chance_clear(spectrum: Spectrum, bands: Sequence[Band], up_to_hz: float) -> float:
-    """Chance that every mode up to the limit lies outside every band.
-
-    (k + 1/2) / (n + 1) for k clear members of n, the Jeffreys estimate: a finite ensemble can
-    promise neither 0 nor 1.
-    """
+def members_clear(spectrum: Spectrum, bands: Sequence[Band], up_to_hz: float) -> NDArray[np.bool_]:
+    """(members,) whether every mode up to the limit lies outside every band."""
     frequency = spectrum.all_hz
     ignored = np.isnan(frequency) | (frequency > up_to_hz)
     clear = clear_of_all(np.where(ignored, -1.0, frequency), bands)
-    members_clear = np.all(clear | ignored, axis=1)
-    return float((members_clear.sum() + 0.5) / (len(members_clear) + 1))
+    return np.asarray(np.all(clear | ignored, axis=1))
+
+
+def chance_of(clear: NDArray[np.bool_]) -> float:
+    """(k + 1/2) / (n + 1) for k clear members of n, the Jeffreys estimate: a finite ensemble can
+    promise neither 0 nor 1."""
+    return float((clear.sum() + 0.5) / (len(clear) + 1))
+
+
+def chance_clear(
+    spectrum: Spectrum,
+    bands: Sequence[Band],
+    up_to_hz: float,
+    members: NDArray[np.intp] | None = None,
+) -> float:
+    """Chance that every mode up to the limit lies outside every band, over some or all members."""
+    clear = members_clear(spectrum, bands, up_to_hz)
+    return chance_of(clear if members is None else clear[members])
 
 
 def judged_modes(

@@ -1,9 +1,10 @@
 """Whether a fix clears the bands: counted at the band edges, nothing solved.
 
-The number of natural frequencies below w after adding springs D at ports with receptance G(w) is
-N - neg(D^-1 + G), and after adding masses (D = -w^2 m) N + pos(D^-1 + G): the law of inertia
-applied to the bordered matrix (Haynsworth 1968, Linear Algebra and its Applications 1, 73). A band
-is clear of every mode exactly when the counts at its two edges are equal.
+With receptance G(w) at the rows where springs and masses D(w) = k - w^2 m are put on, the number
+of natural frequencies below w becomes N + pos(D^-1 + G) - pos(D^-1), pos counting positive
+eigenvalues: the law of inertia applied to the bordered matrix (Haynsworth 1968, Linear Algebra
+and its Applications 1, 73). Taking something off is the same with D below zero. A band is clear of
+every mode exactly when the counts at its two edges are equal.
 """
 
 from __future__ import annotations
@@ -16,30 +17,17 @@ from numpy.typing import NDArray
 
 from fieldkit.detune.excitation import Band
 from fieldkit.detune.field import Field
+from fieldkit.detune.push import Push, removals
+from fieldkit.detune.scatter import Scatter, as_installed
 
 Array = NDArray[np.float64]
+Count = NDArray[np.int64]
 
-STIFFNESS_SCATTER_LN = 0.35
-"""A bracket comes out this much stiffer or softer than drawn (common practice, no source)."""
-PLACE_SCATTER_M = 0.015
+__all__ = ["Counter", "Scatter", "as_installed", "counter", "left_in", "merged", "negative_count"]
 
-
-@dataclass(frozen=True)
-class Scatter:
-    """How one member's bracket differs from the drawing."""
-
-    stiffness_factor: Array
-    """(members,)"""
-    place_m: Array
-    """(members,)"""
-
-
-def as_installed(members: int, rng: np.random.Generator) -> Scatter:
-    """Draw the scatter of installation once for all candidates, so that they compare fairly."""
-    return Scatter(
-        np.exp(STIFFNESS_SCATTER_LN * rng.standard_normal(members)),
-        PLACE_SCATTER_M * rng.standard_normal(members),
-    )
+LEAST_EDGE_RAD_PER_S = 1e-2
+DECOUPLED = 1e-7
+"""Receptance between rows below this share of their own is rounding."""
 
 
 def merged(bands: Sequence[Band], up_to_hz: float) -> list[tuple[float, float]]:
@@ -56,6 +44,11 @@ def merged(bands: Sequence[Band], up_to_hz: float) -> list[tuple[float, float]]:
     return joined
 
 
+def left_in(count: Count) -> Count:
+    """(..., intervals) modes left in each interval from the counts (..., edges) at its edges."""
+    return np.asarray(count[..., 1::2] - count[..., 0::2])
+
+
 @dataclass(frozen=True)
 class Counter:
     """Counts of modes at the edges of the forbidden intervals, for one base field."""
@@ -63,61 +56,117 @@ class Counter:
     field: Field
     edge_rad_per_s: Array
     """(2 intervals,) low, high, low, high..."""
-    base: NDArray[np.int64]
+    base: Count
     """(members, edges) modes below each edge."""
 
     def receptance(self, shape: Array, residual: Array) -> Array:
-        """(members, edges, p, p) motion per force; ``shape`` (members, p, r) is of the ports."""
-        gap = self.field.modes.eigenvalue[:, None, :] - self.edge_rad_per_s[None, :, None] ** 2
-        weighted = shape[:, None] / gap[:, :, None, :]
-        dynamic = weighted @ np.swapaxes(shape, 1, 2)[:, None]
-        return np.asarray(dynamic + residual)
+        """(..., members, edges, p, p) motion per force at rows of motion.
 
-    def clear_with_springs(self, receptance: Array, stiffness: Array) -> NDArray[np.bool_]:
-        """Whether every interval is empty after adding springs.
-
-        ``receptance`` is (members, edges, p, p), ``stiffness`` (levels, members, p);
-        the answer is (levels, members).
+        ``shape`` (..., members, p, r) is the motion of the base modes there, ``residual``
+        (..., p, p) the static flexibility beside them.
         """
-        bordered = receptance[None] + _diagonal(1 / stiffness)[:, :, None]
-        return self._clear(self.base - negative_count(bordered))
+        return np.asarray(self._dynamic(shape) + residual[..., None, None, :, :])
 
-    def clear_with_masses(self, receptance: Array, mass: Array) -> NDArray[np.bool_]:
-        """The same for added masses (levels, members, p)."""
-        inertia = mass[:, :, None, :] * self.edge_rad_per_s[None, None, :, None] ** 2
-        bordered = receptance[None] - _diagonal(1 / inertia)
-        ports = receptance.shape[-1]
-        return self._clear(self.base + ports - negative_count(bordered))
+    def equal_rows(self, shape: Array, residual: Array) -> Array:
+        """(..., members, edges, p) principal receptances: all that counts where every row is held
+        alike or carries the same mass."""
+        p = shape.shape[-2]
+        if p == 1:
+            return self.receptance(shape, residual)[..., 0]
+        return principal(self.receptance(shape, residual))
+
+    def with_springs(self, principal_receptance: Array, stiffness: Array) -> Count:
+        """(..., members, edges) counts after the same spring (..., members) at every row."""
+        drop = (stiffness[..., None, None] * -principal_receptance > 1).sum(axis=-1)
+        return np.asarray(self.base - drop)
+
+    def with_masses(self, principal_receptance: Array, mass: Array) -> Count:
+        """(..., members, edges) counts after the same mass (..., members) at every row."""
+        inertia = mass[..., None, None] * (self.edge_rad_per_s**2)[:, None]
+        return np.asarray(self.base + (inertia * principal_receptance > 1).sum(axis=-1))
+
+    def with_push(self, push: Push) -> Count:
+        """(members, edges) counts after any change of supports and masses."""
+        push = removals(self.field, push)
+        if not push.rows.shape[1]:
+            return self.base
+        receptance = self.receptance(push.rows @ self.field.modes.vector, push.residual)
+        return self.with_update(receptance, self.softness(push))
+
+    def softness(self, push: Push) -> Array:
+        """(members, edges, p) 1/D of every row at every edge."""
+        dynamic = push.stiffness[:, None] - self.edge_rad_per_s[:, None] ** 2 * push.mass[:, None]
+        return np.asarray(1 / dynamic)
+
+    def with_update(self, receptance: Array, softness: Array) -> Count:
+        """(..., members, edges) counts from receptance (..., p, p) and 1/D (..., p)."""
+        positive = receptance.shape[-1] - negative_count(receptance + _diagonal(softness))
+        return np.asarray(self.base + positive - (softness > 0).sum(axis=-1))
+
+    def some(self, members: NDArray[np.intp]) -> Counter:
+        """The same for some of the members only."""
+        return Counter(self.field.some(members), self.edge_rad_per_s, self.base[members])
 
     def clear_now(self) -> NDArray[np.bool_]:
         """(members,) whether every interval is empty without any fix."""
-        return self._clear(self.base)
+        return clear(self.base)
 
-    def _clear(self, count: NDArray[np.int64]) -> NDArray[np.bool_]:
-        return np.asarray(np.all(count[..., 1::2] == count[..., 0::2], axis=-1))
+    def _dynamic(self, shape: Array) -> Array:
+        """(..., members, edges, p, p): sum over modes of shape times shape over the gap."""
+        gap = self.field.modes.eigenvalue[:, None, :] - self.edge_rad_per_s[None, :, None] ** 2
+        weight = 1 / gap
+        rows = np.moveaxis(shape, -3, 0)
+        p = shape.shape[-2]
+        found = np.empty((*shape.shape[:-2], len(self.edge_rad_per_s), p, p))
+        for i in range(p):
+            for j in range(i + 1):
+                product = rows[..., i, :] * rows[..., j, :]
+                flat = product.reshape(len(product), -1, product.shape[-1])
+                summed = (flat @ np.swapaxes(weight, 1, 2)).reshape(*product.shape[:-1], -1)
+                found[..., i, j] = found[..., j, i] = np.moveaxis(summed, 0, -2)
+        return found
 
 
 def counter(base: Field, bands: Sequence[Band], up_to_hz: float) -> Counter:
     """Count the modes of every member below each edge of the forbidden intervals."""
     intervals = merged(bands, up_to_hz)
     edges = 2 * np.pi * np.array([edge for interval in intervals for edge in interval])
+    edges = np.maximum(edges, LEAST_EDGE_RAD_PER_S)
     below = base.modes.eigenvalue[:, None, :] < edges[None, :, None] ** 2
     return Counter(base, edges, below.sum(axis=2))
 
 
-def negative_count(matrix: Array) -> NDArray[np.int64]:
+def clear(count: Count) -> NDArray[np.bool_]:
+    """(...,) whether every interval is empty, from counts (..., edges)."""
+    return np.asarray(np.all(left_in(count) == 0, axis=-1))
+
+
+def principal(matrix: Array) -> Array:
+    """(..., p) eigenvalues of small symmetric matrices (..., p, p), in any order."""
+    diagonal = np.diagonal(matrix, axis1=-2, axis2=-1)
+    p = matrix.shape[-1]
+    own = np.sqrt(np.abs(diagonal))
+    coupled = np.abs(matrix) > DECOUPLED * own[..., :, None] * own[..., None, :]
+    if not np.any(coupled & ~np.eye(p, dtype=bool)):
+        return np.asarray(diagonal)
+    if p == 2:
+        a, b, c = matrix[..., 0, 0], matrix[..., 1, 1], matrix[..., 0, 1]
+        middle, half = 0.5 * (a + b), np.hypot(0.5 * (a - b), c)
+        return np.stack([middle - half, middle + half], axis=-1)
+    return np.asarray(np.linalg.eigvalsh(matrix))
+
+
+def negative_count(matrix: Array) -> Count:
     """Negative eigenvalues of symmetric matrices (..., p, p) by the signs of LDL^T pivots."""
-    work = matrix.copy()
-    size = work.shape[-1]
-    negative = np.zeros(work.shape[:-2], dtype=np.int64)
+    size = matrix.shape[-1]
+    rows = np.moveaxis(matrix, (-2, -1), (0, 1)).copy()
+    negative = np.zeros(matrix.shape[:-2], dtype=np.int64)
     for i in range(size):
-        pivot = work[..., i, i]
-        pivot = np.where(pivot == 0.0, np.finfo(float).tiny, pivot)
+        pivot = np.where(rows[i, i] == 0.0, np.finfo(float).tiny, rows[i, i])
         negative += pivot < 0
-        if i + 1 < size:
-            column = work[..., i + 1 :, i]
-            row = column / pivot[..., None]
-            work[..., i + 1 :, i + 1 :] -= column[..., :, None] * row[..., None, :]
+        for j in range(i + 1, size):
+            share = rows[j, i] / pivot
+            rows[j, i + 1 : j + 1] -= share * rows[i + 1 : j + 1, i]
     return negative
 
 

@@ -45,6 +45,29 @@ class Verdict:
     chance: float
     """Chance that every mode up to the goal's limit lies outside every band."""
     cautions: tuple[str, ...]
+    why: str = ""
+    """Why it works, one sentence."""
+    fails: str = ""
+    """What would make it fail."""
+
+
+@dataclass(frozen=True)
+class OtherCure:
+    """A cure whose promise is not that every mode is clear: it lives with the resonance."""
+
+    kind: str
+    """``absorber`` or ``damping``."""
+    summary: str
+    chance: float | None
+    """None where nothing is promised."""
+    chance_means: str
+    """What the chance is the chance of."""
+    change: Change | None = None
+    direction: str = ""
+    amplification_now: float | None = None
+    amplification_after: float | None = None
+    """Median over the members, of the mode in question; displacement over that at rest."""
+    cautions: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
@@ -60,3 +83,6 @@ class Detuning:
     nearest_now: Nearest | None
     fixes: tuple[Verdict, ...]
     warnings: tuple[str, ...] = ()
+    tried: int = 0
+    """How many changes were counted."""
+    other_cures: tuple[OtherCure, ...] = ()

@@ -3,9 +3,12 @@
 from __future__ import annotations
 
 from fieldkit.detune.fixes import (
+    AddAbsorber,
     AddMass,
     AddSupport,
+    AllOf,
     Change,
+    ChangeSpeed,
     MoveMass,
     MoveSupport,
     SetMass,
@@ -17,6 +20,12 @@ from fieldkit.span.layout import Span
 
 def summary(change: Change, span: Span, units: str) -> str:
     """What to do, where, how stiff or heavy."""
+    if isinstance(change, AllOf):
+        return " and ".join(summary(part, span, units) for part in change.parts)
+    if isinstance(change, ChangeSpeed):
+        return f"keep the {change.excitation} at {_speeds(change)} rpm"
+    if isinstance(change, AddAbsorber):
+        return _absorber(change, units)
     if isinstance(change, AddSupport):
         stiffness = _stiffness(change, units)
         return f"add a support at {_length(change.at_m, units)}: {stiffness}"
@@ -37,6 +46,20 @@ def summary(change: Change, span: Span, units: str) -> str:
             f"move the {old.name} from {_length(old.at_m, units)} to {_length(change.to_m, units)}"
         )
     raise TypeError(f"no wording for {type(change).__name__}")
+
+
+def _speeds(change: ChangeSpeed) -> str:
+    low, high = f"{60 * change.low_hz:.0f}", f"{60 * change.high_hz:.0f}"
+    return low if low == high else f"{low} to {high}"
+
+
+def _absorber(change: AddAbsorber, units: str) -> str:
+    mass, stiffness = show(change.mass_kg, "mass", units), change.stiffness_n_per_m
+    return (
+        f"hang a tuned absorber on at {_length(change.at_m, units)}: {mass} on "
+        f"{show(stiffness, 'stiffness', units, 3)}, moving {change.direction}, with a damper of "
+        f"{change.damping_n_s_per_m:.3g} N s/m"
+    )
 
 
 def _set_mass(change: SetMass, span: Span, units: str) -> str:

@@ -49,7 +49,7 @@ def test_counted_chances_equal_solved_ones(span, frequency_hz):
         found = list(family(search))
         assert found, name
         for i in rng.choice(len(found), size=min(12, len(found)), replace=False):
-            spectrum = judge.after(search.field, found[i].push, UP_TO_HZ)
+            spectrum = judge.after(search.field, search.push(found[i].change), UP_TO_HZ)
             solved = judge.chance_clear(spectrum, search.bands, UP_TO_HZ)
             assert found[i].chance == pytest.approx(solved, abs=2.1 / 24), found[i].change
 
@@ -59,6 +59,7 @@ def test_nothing_is_attached_in_a_keep_out_or_when_not_allowed():
     goal = Goal(up_to_hz=UP_TO_HZ, allow=("support",), keep_out_m=((1.0, 3.0),))
     limited = Search(search.span, search.field, search.bands, goal, search.scatter)
     changes = [candidate.change for candidate in generate(limited, Progress())]
+    assert changes
     assert {change.kind for change in changes} == {"support"}
     assert not any(1.0 <= change.at_m <= 3.0 for change in changes)
 

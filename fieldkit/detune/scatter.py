@@ -1,0 +1,51 @@
+"""How far what is built differs from what was drawn."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+Array = NDArray[np.float64]
+
+STIFFNESS_SCATTER_LN = 0.35
+"""A bracket comes out this much stiffer or softer than drawn (common practice, no source)."""
+PLACE_SCATTER_M = 0.015
+SHIFT = 37
+"""Members by which the scatter of each further part is shifted: it is built on its own."""
+
+
+@dataclass(frozen=True)
+class Scatter:
+    """How one member's bracket differs from the drawing."""
+
+    stiffness_factor: Array
+    """(members,)"""
+    place_m: Array
+    """(members,)"""
+    as_drawn: int | None = None
+    """A member installed exactly as drawn, so that it can be re-solved in full."""
+
+    def of(self, part: int) -> Scatter:
+        """The scatter of the nth part of a change."""
+        if part == 0:
+            return self
+        factor = np.roll(self.stiffness_factor, SHIFT * part)
+        place = np.roll(self.place_m, SHIFT * part)
+        shifted = replace(self, stiffness_factor=factor, place_m=place)
+        return shifted if self.as_drawn is None else shifted.exact(self.as_drawn)
+
+    def exact(self, member: int) -> Scatter:
+        """The same with one member as drawn."""
+        factor, place = self.stiffness_factor.copy(), self.place_m.copy()
+        factor[member], place[member] = 1.0, 0.0
+        return Scatter(factor, place, member)
+
+
+def as_installed(members: int, rng: np.random.Generator) -> Scatter:
+    """Draw the scatter of installation once for all candidates, so that they compare fairly."""
+    return Scatter(
+        np.exp(STIFFNESS_SCATTER_LN * rng.standard_normal(members)),
+        PLACE_SCATTER_M * rng.standard_normal(members),
+    )
