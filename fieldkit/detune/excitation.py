@@ -85,7 +85,7 @@ class Goal:
     margin_measured: float = 0.1
     chance: float = 0.9
     up_to_hz: float = 200.0
-    allow: tuple[str, ...] = ("support", "move", "stiffen", "mass")
+    allow: tuple[str, ...] = ("support", "move", "stiffen", "mass", "speed", "absorber")
     keep_out_m: tuple[tuple[float, float], ...] = ()
     """Stations where nothing can be attached."""
     steel_m: tuple[tuple[float, float], ...] = ()

@@ -207,10 +207,11 @@ def _excitation(table: ExcitationTable, index: int) -> Excitation:
 
 
 def _goal(table: GoalTable, span: Span) -> Goal:
-    for i, (low_m, _) in enumerate(table.keep_out):
-        if low_m > span.length_m:
-            what = f"this stretch begins beyond the end of the span at {span.length_m:g} m"
-            raise bad(f"goal.keep_out[{i}]", what, "correct the stations")
+    for key, stretches in (("keep_out", table.keep_out), ("steel", table.steel)):
+        for i, (low_m, _) in enumerate(stretches):
+            if low_m > span.length_m:
+                what = f"this stretch begins beyond the end of the span at {span.length_m:g} m"
+                raise bad(f"goal.{key}[{i}]", what, "correct the stations")
     return Goal(
         margin=table.margin,
         margin_measured=table.margin_measured,
@@ -218,4 +219,5 @@ def _goal(table: GoalTable, span: Span) -> Goal:
         up_to_hz=table.up_to,
         allow=tuple(dict.fromkeys(table.allow)),
         keep_out_m=tuple(table.keep_out),
+        steel_m=tuple(table.steel),
     )

@@ -28,7 +28,7 @@ from fieldkit.span.layout import Stiffness, Vector
 from fieldkit.span.supports import KINDS
 
 FORMAT = 1
-FAMILIES = ("support", "move", "stiffen", "mass")
+FAMILIES = ("support", "move", "stiffen", "mass", "speed", "absorber")
 STATES = ("tapped", "running")
 
 Text = Annotated[str, StringConstraints(max_length=200)]
@@ -234,6 +234,7 @@ class GoalTable(Table):
     up_to: Limit = 200.0
     allow: Annotated[list[Family], Limits(min_length=1, max_length=20)] = list(FAMILIES)
     keep_out: Annotated[list[Stations], Limits(max_length=100)] = []
+    steel: Annotated[list[Stations], Limits(max_length=100)] = []
 
 
 class JobFile(Table):

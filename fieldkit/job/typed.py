@@ -13,6 +13,7 @@ _NUMBERS = {
     "fieldkit", "fill", "tolerance", "channel", "damping", "margin", "margin_measured", "chance",
     "orders", "poisson",
 }  # fmt: skip
+_STRETCHES = (("keep_out",), ("steel",))
 _TO = re.compile(r"\s+(?:to|-|–)\s+|\s*\.\.+\s*|\s*;\s*")
 _ITEM = re.compile(r"\s*;\s*|\s*,\s+|\s*,(?=[^0-9])")
 _ANY_GAP = re.compile(r"[\s,;]+")
@@ -27,7 +28,7 @@ def text_of(value: object, loc: Loc = (), found: Places | None = None) -> str:
     if isinstance(value, str):
         return value
     if isinstance(value, list):
-        joint = " to " if _is_pair(loc) else "; " if loc[-1:] == ("keep_out",) else ", "
+        joint = " to " if _is_pair(loc) else "; " if loc[-1:] in _STRETCHES else ", "
         return joint.join(text_of(item, (*loc, i), found) for i, item in enumerate(value))
     spot = found.valued(loc) if found else None
     if spot and found:
@@ -36,7 +37,7 @@ def text_of(value: object, loc: Loc = (), found: Places | None = None) -> str:
 
 
 def _is_pair(loc: Loc) -> bool:
-    return (loc[0], loc[-1]) in _PAIRS or loc[-2:-1] == ("keep_out",) if loc else False
+    return (loc[0], loc[-1]) in _PAIRS or loc[-2:-1] in _STRETCHES if loc else False
 
 
 def value_of(text: str, loc: Loc) -> object:
@@ -47,7 +48,7 @@ def value_of(text: str, loc: Loc) -> object:
         parts = _with_unit_of_last(_TO.split(inner))
         values = [_single(part, key) for part in parts]
         return values if len(values) > 1 else values[0]
-    if key == "keep_out":
+    if (key,) in _STRETCHES:
         stretches = [part for part in re.split(r"\s*;\s*", inner) if part]
         return [_with_unit_of_last(_TO.split(part)) for part in stretches]
     if key in ("orders", "allow"):

@@ -83,6 +83,7 @@ chance = 0.9
 up_to = "200 Hz"
 allow = ["support", "mass"]
 keep_out = [["1.0 m", "1.6 m"]]
+steel = [["2 m", "3 m"]]
 """
 
 SMALL = """\

@@ -11,6 +11,7 @@ import pytest
 from fieldkit.detune.fixes import (
     AddMass,
     AddSupport,
+    AllOf,
     MoveMass,
     MoveSupport,
     SetMass,
@@ -42,6 +43,8 @@ CHANGES = [
     AddMass(1.5, 12.345),
     SetMass(0, 7.7),
     MoveMass(0, 3.21),
+    AllOf((MoveSupport(1, 3.4), AddMass(1.5, 12.345))),
+    AllOf((AddSupport(2.05, lateral_n_per_m=4e6), StiffenSupport(1, vertical_n_per_m=2e7))),
 ]
 
 

@@ -57,7 +57,9 @@ def test_describes_what_was_measured_and_wanted(full: Job) -> None:
         at_m=1.9,
     )
     assert full.measured == (MeasuredMode(23.4, 0.1, 0.011, None, "vertical", source="typed"),)
-    assert full.goal == Goal(allow=("support", "mass"), keep_out_m=((1.0, 1.6),))
+    assert full.goal == Goal(
+        allow=("support", "mass"), keep_out_m=((1.0, 1.6),), steel_m=((2.0, 3.0),)
+    )
     assert (full.title, full.units, full.contents_name) == (
         "Glycol booster, discharge line", "SI", "water",
     )  # fmt: skip

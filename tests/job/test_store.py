@@ -177,6 +177,7 @@ def test_text_is_taken_as_people_type_it(job: JobText) -> None:
         "mass[0].offset": ("0, 0, 0,18 m", ["0 m", "0 m", "0,18 m"]),
         "leg[1].direction": ("1, 0, 1", [1.0, 0.0, 1.0]),
         "goal.keep_out": ("1 to 2 m; 3 m to 4 m", [["1 m", "2 m"], ["3 m", "4 m"]]),
+        "goal.steel": ("1 to 2 m; 3 m to 4 m", [["1 m", "2 m"], ["3 m", "4 m"]]),
         "goal.allow": ("mass, move", ["mass", "move"]),
         "title": ("12", "12"),
         "support[1].lateral": ("rigid", "rigid"),

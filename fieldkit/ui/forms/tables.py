@@ -215,10 +215,13 @@ FORMS: dict[str, Form] = {
                 Field("chance", "chance wanted", SHARE, when_empty="0.9"),
                 Field("up_to", "up to", FREQUENCY, when_empty="200 Hz"),
                 Field("allow", "allow",
-                      Several(Choice(("support", "move", "stiffen", "mass"))),
-                      when_empty="support, move, stiffen, mass"),
+                      Several(Choice(
+                          ("support", "move", "stiffen", "mass", "speed", "absorber"))),
+                      when_empty="all of them"),
                 Field("keep_out", "keep out", Several(Range(LENGTH), joint="; "),
                       when_empty="nowhere"),
+                Field("steel", "steel near", Several(Range(LENGTH), joint="; "),
+                      when_empty="not said"),
             ),
         ),
     )
