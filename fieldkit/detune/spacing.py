@@ -25,6 +25,7 @@ SPREAD_Z = 1.645
 LIQUID_KG_PER_M3 = 200.0
 """Contents heavier than this make the line a liquid one in the table of weight-based spacing."""
 FIRST_ELEMENTS = 4
+RIGID_N_PER_M = 1e11
 
 
 @dataclass(frozen=True)
@@ -78,6 +79,8 @@ class SpacingAnswer:
     """Largest spacing whose first frequency is above every band; None where none is."""
     above_soft_m: float | None
     """The same with supports as soft as their 5 %."""
+    above_rigid_m: float | None
+    """The same with supports that do not give."""
     between_m: float | None
     """Largest spacing, beyond ``above_m``, up to the weight-based one, at which every mode lies
     outside the bands; None where none is."""
@@ -153,6 +156,9 @@ def equal_spacing(
         curve=curve,
         above_m=above,
         above_soft_m=_crossing(spacing, np.array([p.low_hz for p in curve]), top_hz),
+        above_rigid_m=_crossing(
+            spacing, _first(span, state, spacing, spans, RIGID_N_PER_M), top_hz
+        ),
         between_m=_between(curve, above, limit) if top_hz is not None else None,
         by_spans=_by_spans(span, state, spacing, supports, top_hz, above),
         weight_based=suggested,

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from typing import Any
 
 from fieldkit.detune.install import AtRest, Heated, Installation
@@ -12,6 +12,8 @@ from fieldkit.span.static import WeightAnswer
 from fieldkit.steel.brackets import Bracket
 
 Document = dict[str, Any]
+Fold = Callable[[str, int, str], list[str]]
+"""``plain.paragraph``, or ``plain.unwrapped``."""
 _LEAST_N = 0.5
 BASIS = (
     "clamp and what the bracket stands on are counted at values of common practice; what it stands "
@@ -86,22 +88,22 @@ def _rule(rest: AtRest | None) -> Document | None:
     }
 
 
-def lines(parts: Sequence[Installation], units: str) -> list[str]:
+def lines(parts: Sequence[Installation], units: str, fold: Fold = paragraph) -> list[str]:
     """Stiffness, brackets, line at rest, heat and cautions."""
     found: list[str] = []
     for number, part in enumerate(parts, start=1):
         if len(parts) > 1:
             found.append(f"Part {number} of {len(parts)}")
-        found += stiffness_lines(part, units)
-        found += bracket_lines(part, units)
+        found += stiffness_lines(part, units, fold)
+        found += bracket_lines(part, units, fold)
         found += heat_lines(part, units)
-        found += rest_lines(part, units)
+        found += rest_lines(part, units, fold)
     for caution in dict.fromkeys(text for part in parts for text in part.cautions):
-        found += paragraph(caution, 2, "- ")
+        found += fold(caution, 2, "- ")
     return found
 
 
-def stiffness_lines(found: Installation, units: str) -> list[str]:
+def stiffness_lines(found: Installation, units: str, fold: Fold = paragraph) -> list[str]:
     """What was promised for, and where the promise ends."""
     needed = found.stiffness_n_per_m
     if not needed:
@@ -116,7 +118,7 @@ def stiffness_lines(found: Installation, units: str) -> list[str]:
         text.append(f"Drawn under {_shown(below, units)} the chance falls below the one wanted.")
     if above is not None:
         text.append(f"Over {_shown(above, units)} it does as well: no stiffer than that.")
-    return paragraph(" ".join(text), 0)
+    return fold(" ".join(text), 0, "")
 
 
 def _shown(by_axis: Mapping[str, float], units: str) -> str:
@@ -127,7 +129,7 @@ def _shown(by_axis: Mapping[str, float], units: str) -> str:
     return ", ".join(f"{value} {' and '.join(axes)}" for value, axes in together.items())
 
 
-def bracket_lines(found: Installation, units: str) -> list[str]:
+def bracket_lines(found: Installation, units: str, fold: Fold = paragraph) -> list[str]:
     """The lightest bracket of each form, with its longest length."""
     if not found.stiffness_n_per_m:
         return []
@@ -135,10 +137,10 @@ def bracket_lines(found: Installation, units: str) -> list[str]:
     what = "the header" if found.to_header else "steel or concrete"
     if not found.brackets:
         if "axial" in found.stiffness_n_per_m:
-            return paragraph("Brackets that hold along the pipe are not designed here.", 0)
-        return paragraph(
+            return fold("Brackets that hold along the pipe are not designed here.", 0, "")
+        return fold(
             "No bracket of the table is stiff enough, clamp and base counted: share the stiffness "
-            "between two supports, or design one.", 0,
+            "between two supports, or design one.", 0, "",
         )  # fmt: skip
     rows = [
         (
@@ -152,9 +154,9 @@ def bracket_lines(found: Installation, units: str) -> list[str]:
     ]
     standards = ", ".join(dict.fromkeys(bracket.standard for bracket in found.brackets))
     return [
-        *paragraph(f"Brackets that have it, the lightest of each form for {reach} to {what}:", 0),
+        *fold(f"Brackets that have it, the lightest of each form for {reach} to {what}:", 0, ""),
         *table(("form", "section", "longest", "mass", ""), rows),
-        *paragraph(f"Sections: {standards}. {BASIS[0].upper()}{BASIS[1:]}.", 2),
+        *fold(f"Sections: {standards}. {BASIS[0].upper()}{BASIS[1:]}.", 2, ""),
     ]
 
 
@@ -189,14 +191,14 @@ def small(length_m: float, units: str) -> str:
     return f"{rounded:.3f} in" if units == "US" else f"{rounded:.2f} mm"
 
 
-def rest_lines(found: Installation, units: str) -> list[str]:
+def rest_lines(found: Installation, units: str, fold: Fold = paragraph) -> list[str]:
     """Sag, bending and load under weight, before and after, beside the published rule."""
     text = []
     if found.added_load_n is not None:
         load = force(found.added_load_n, units)
         text.append(f"Weight it comes to carry: about {load}.")
     if found.at_rest is None:
-        return paragraph(" ".join([*text, f"Sag: {found.rest_refused}."]), 0)
+        return fold(" ".join([*text, f"Sag: {found.rest_refused}."]), 0, "")
     before, after = found.at_rest.before, found.at_rest.after
     rule = found.at_rest.rule_after
     text.append(
@@ -205,7 +207,7 @@ def rest_lines(found: Installation, units: str) -> list[str]:
         f"{stress(after, units)} after; the span rule, {rule.rule}, is "
         f"{'kept' if rule.kept else 'not kept'} ({rule.source})."
     )
-    return paragraph(" ".join(text), 0)
+    return fold(" ".join(text), 0, "")
 
 
 def stress(answer: WeightAnswer, units: str) -> str:

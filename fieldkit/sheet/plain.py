@@ -54,6 +54,11 @@ def table(head: Sequence[str], rows: Sequence[Sequence[str]], indent: int = 2) -
     return lines
 
 
+def unwrapped(text: str, indent: int = 2, mark: str = "") -> list[str]:
+    """The same in one line, for a screen that wraps by itself."""
+    return [" " * indent + mark + clean(text)]
+
+
 def paragraph(text: str, indent: int = 2, mark: str = "") -> list[str]:
     """One paragraph wrapped to the page; ``mark`` such as ``- `` hangs before it."""
     blank = " " * (indent + len(mark))

@@ -7,6 +7,7 @@ from typing import Any
 
 from fieldkit.detune.spacing import CurvePoint, Held, SpacingAnswer
 from fieldkit.quantity import show
+from fieldkit.sheet.installing import Fold
 from fieldkit.sheet.plain import paragraph, table
 
 Document = dict[str, Any]
@@ -39,6 +40,7 @@ def document(found: SpacingAnswer) -> Document:
             "chosen_m": found.chosen_m,
             "above_m": found.above_m,
             "above_with_soft_supports_m": found.above_soft_m,
+            "above_with_rigid_supports_m": found.above_rigid_m,
             "between_bands_m": found.between_m,
             "by_spans": [{"spans": n, "above_m": at} for n, at in found.by_spans],
             "weight_based": None
@@ -75,16 +77,16 @@ def _point(point: CurvePoint) -> Document:
     }
 
 
-def lines(found: SpacingAnswer, units: str) -> list[str]:
-    """What to choose, the curve as bars, what it rests on."""
+def lines(found: SpacingAnswer, units: str, fold: Fold = paragraph, bar: int = BAR) -> list[str]:
+    """What to choose, the curve as bars ``bar`` wide, what it rests on."""
     return [
-        *paragraph(_choice(found, units), 0),
+        *fold(_choice(found, units), 0, ""),
         "",
         f"First natural frequency of {found.spans} equal spans, {found.state}, Hz",
-        *curve_lines(found, units),
+        *curve_lines(found, units, bar),
         "",
-        *(line for text in _notes(found, units) for line in paragraph(text, 0)),
-        *(line for text in warnings(found) for line in paragraph(text, 2, "! ")),
+        *(line for text in _notes(found, units) for line in fold(text, 0, "")),
+        *(line for text in warnings(found) for line in fold(text, 2, "! ")),
     ]
 
 
@@ -101,6 +103,8 @@ def _choice(found: SpacingAnswer, units: str) -> str:
             text += " That is the longest spacing looked at."
         return text
     text = f"No equal spacing with these supports keeps the first frequency above {edge}."
+    if found.above_rigid_m is not None:
+        text += f" Supports that do not give would: every {_at(found.above_rigid_m, units)}."
     if found.between_m is not None:
         text += (
             f" At {_at(found.between_m, units)} every mode lies between or below the bands: "
@@ -109,24 +113,23 @@ def _choice(found: SpacingAnswer, units: str) -> str:
     return text
 
 
-def curve_lines(found: SpacingAnswer, units: str) -> list[str]:
+def curve_lines(found: SpacingAnswer, units: str, bar: int = BAR) -> list[str]:
     """A row for every few spacings, and one for the chosen: frequency as a bar, the edge marked."""
     rows = shown_points(found)
     top = max(point.high_hz for point in rows)
     low = min(point.low_hz for point in rows)
 
     def place(hz: float) -> int:
-        return round((BAR - 1) * math.log(hz / low) / math.log(top / low)) if top > low else 0
+        return round((bar - 1) * math.log(hz / low) / math.log(top / low)) if top > low else 0
 
     return table(
-        ("every", "Hz", "5 to 95 %", "", "clear", ""),
+        ("every", "Hz", "5 to 95 %", "", ""),
         [
             (
                 _short(point.spacing_m, units),
                 f"{point.frequency_hz:.1f}",
                 f"{point.low_hz:.1f} to {point.high_hz:.1f}",
-                _bar(place, point, found.top_hz, low, top),
-                "yes" if point.clear else "no",
+                _bar(place, point, found.top_hz, low, top, bar),
                 mark,
             )
             for point, mark in marked_points(found, rows)
@@ -141,7 +144,7 @@ def shown_points(found: SpacingAnswer) -> list[CurvePoint]:
 
 
 def marked_points(found: SpacingAnswer, rows: list[CurvePoint]) -> list[tuple[CurvePoint, str]]:
-    """Rows with what falls between each and the next."""
+    """Rows with whether they are clear, and what falls between each and the next."""
     marks = [
         (found.above_m, "chosen"),
         (found.weight_based_m, "by weight"),
@@ -152,13 +155,16 @@ def marked_points(found: SpacingAnswer, rows: list[CurvePoint]) -> list[tuple[Cu
         end = rows[i + 1].spacing_m if i + 1 < len(rows) else math.inf
         told = [text for at, text in marks
                 if at is not None and row.spacing_m <= at < end]  # fmt: skip
-        out.append((row, f"◀ {', '.join(told)}" if told else ""))
+        clear = "clear" if row.clear else ""
+        out.append((row, f"{clear} ◀ {', '.join(told)}".strip() if told else clear))
     return out
 
 
-def _bar(place: Any, point: CurvePoint, edge: float | None, low: float, top: float) -> str:
+def _bar(
+    place: Any, point: CurvePoint, edge: float | None, low: float, top: float, width: int
+) -> str:
     """From soft to stiff supports as a line, the median as a block, the edge as a bar."""
-    cells = [" "] * BAR
+    cells = [" "] * width
     for i in range(place(point.low_hz), place(point.high_hz) + 1):
         cells[i] = "─"
     if edge is not None and low <= edge <= top:

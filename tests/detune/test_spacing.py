@@ -95,7 +95,9 @@ def test_nothing_is_chosen_without_a_band_or_where_no_spacing_reaches():
     free = equal_spacing(line(), FULL, RIGID, (), 200.0)
     assert (free.top_hz, free.chosen_m, free.by_spans) == (None, None, ())
     soft = SupportRow("hanger", *[Held(1e3, 1e3, 1e3)] * 2, "prior")
-    assert equal_spacing(line(), FULL, soft, fan(190.0, 199.0), 200.0).above_m is None
+    none = equal_spacing(line(), FULL, soft, fan(190.0, 199.0), 200.0)
+    assert none.above_m is None
+    assert none.above_rigid_m == pytest.approx(pinned_spacing_m(line(), 199.0), rel=0.2)
 
 
 def test_kinds_that_make_a_row():

@@ -30,6 +30,8 @@ class DetuneView(View):
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("a", "adopt", "Adopt", id="detune.adopt",
                 tooltip="Write the chosen change into the job, after asking"),
+        Binding("i", "install", "Install", key_display="enter", id="detune.install",
+                tooltip="What it takes to install the chosen change (enter or i)"),
     ]  # fmt: skip
 
     def compose(self) -> ComposeResult:
@@ -72,6 +74,20 @@ class DetuneView(View):
         self._draw_chosen()
         if self.chosen is not None:
             self.post_message(FixChosen(self.chosen))
+
+    def on_data_table_row_selected(self, event: DataTable.RowSelected) -> None:
+        """Enter on a fix tells what it takes."""
+        if event.data_table.id == "fixes":
+            self.action_install()
+
+    def action_install(self) -> None:
+        """Brackets, loads, heat and cautions of the chosen fix, in a window."""
+        from fieldkit.ui.worked_screen import install_window
+
+        if self.chosen is None or self.desk.workup is None:
+            self.notify("No change is chosen.", severity="warning")
+            return
+        self.app.push_screen(install_window(self.desk.workup, self.chosen))
 
     def action_adopt(self) -> None:
         """Ask for the chosen fix to be written into the job."""

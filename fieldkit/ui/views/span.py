@@ -42,6 +42,8 @@ class SpanView(View):
         Binding("v", "turn", "View", id="span.turn", tooltip="See the span from another side"),
         Binding("m", "state", "State", id="span.state",
                 tooltip="Draw the span as tapped, as running, or with the chosen change"),
+        Binding("p", "spacing", "Spacing", id="span.spacing",
+                tooltip="How far apart equal supports may stand under this line"),
     ]  # fmt: skip
 
     def __init__(self) -> None:
@@ -155,6 +157,15 @@ class SpanView(View):
         here = order.index(self.drawn) if self.drawn in order else -1
         self.drawn = order[(here + 1) % len(order)]
         self._draw_shape()
+
+    def action_spacing(self) -> None:
+        """Frequency against equal spacing, in a window."""
+        from fieldkit.ui.worked_screen import spacing_window
+
+        if self.desk.job is None:
+            self.notify("There is no job yet.", severity="warning")
+            return
+        self.app.push_screen(spacing_window(self.desk.job, self.desk.workup))
 
     def action_edit(self) -> None:
         """Change the row under the cursor."""
