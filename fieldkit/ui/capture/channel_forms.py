@@ -91,9 +91,15 @@ def recording_form(wiring: Wiring, job: Job) -> Form:
     if wiring.kind == "running":
         seconds = Number(1.0, MOST_SECONDS)
         fields.append(Field("seconds", "length, s", seconds, needed=True))
+        turning = machines(job)
         fields += [
-            Field(f"speed of {name}", f"{name} turns", Quantity("speed"), when_empty="not read")
-            for name in machines(job)
+            Field(
+                f"speed of {name}",
+                "speed now" if len(turning) == 1 else name,
+                Quantity("speed"),
+                when_empty=f"of {name}: not read",
+            )
+            for name in turning
         ]
     return Form("recording", "Recording", tuple(fields))
 
@@ -105,7 +111,7 @@ def machines(job: Job) -> dict[str, tuple[float, ...]]:
 
 def recording_texts(wiring: Wiring) -> dict[str, str]:
     """What that form starts with."""
-    texts = {"channels": str(len(wiring.setups)), "seconds": f"{wiring.seconds:g}"}
+    texts = {"channels": str(len(wiring.typed)), "seconds": f"{wiring.seconds:g}"}
     if wiring.rate_hz is not None:
         texts["rate"] = f"{wiring.rate_hz} Hz"
     return texts | {f"speed of {n}": f"{60 * hz:g} rpm" for n, hz in wiring.speeds_hz.items()}

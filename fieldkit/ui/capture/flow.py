@@ -44,7 +44,13 @@ async def measure(app: Measuring, kind: str, bench: Bench) -> None:
     wiring: Wiring | None = replace(app.wiring, kind=kind) if app.wiring else Wiring(kind)
     while wiring is not None and app.desk.job is not None:
         wiring = await app.push_screen_wait(
-            SetupScreen(wiring, app.desk.job, bench, lambda found, i: note(app, found, i))
+            SetupScreen(
+                wiring,
+                app.desk.job,
+                bench,
+                lambda found, i: note(app, found, i),
+                fresh=app.wiring is None,
+            )
         )
         if wiring is None:
             return
@@ -143,8 +149,11 @@ def save(app: Measuring) -> bool:
 
 def note(app: Measuring, found: Calibrated, channel: int) -> None:
     """Date and result of a calibration into the job."""
-    opened = app.open_job
-    if opened is None:
+    opened, job = app.open_job, app.desk.job
+    if opened is None or job is None:
+        return
+    if found.simulated and measured_for_real(job):
+        app.tell("Calibrated on the practice rig: the job, which is measured, is left alone.")
         return
     clean = not opened.unsaved
     keys = found.found.keys(found.full_scale)

@@ -8,7 +8,7 @@ from fieldkit.capture.meter import ChannelLevel, decibels
 from fieldkit.ui.words import safe
 
 LEAST_DB = -60.0
-_LABEL, _FIGURES = 13, 24
+_LABEL, _FIGURES = 13, 21
 LEAST_BAR = 10
 
 
@@ -31,7 +31,7 @@ def _lamp(level: ChannelLevel) -> Content:
     """Lit for two seconds, then it remembers that it was."""
     if level.clipped:
         return Content.styled(" CLIPPED ", "bold reverse")
-    return Content(" clipped before" if level.clipped_samples else "")
+    return Content(" clip seen" if level.clipped_samples else "")
 
 
 def _cell(share: float, cells: int) -> int:

@@ -24,6 +24,8 @@ if TYPE_CHECKING:
 
 _KEPT_S = 1.0
 _CLOSED_WITHIN_S = 30.0
+_HIGHEST_HZ, _OVER = 1000.0, 1.1
+"""Order lines are drawn up to there, and the picture reaches a little over the highest."""
 _LEAST_S = 1.0
 """A shorter recording tells nothing."""
 
@@ -72,8 +74,8 @@ class RunningRun:
         self._trouble = ""
         self._shown = judged_channel(channels)
         setup = channels[self._shown]
-        top_hz = job.goal.up_to_hz
-        self._orders = _order_lines(wiring, job, top_hz)
+        self._orders = _order_lines(wiring, job)
+        top_hz = max([job.goal.up_to_hz, *(_OVER * hz for _, hz in self._orders)])
         self.session = Session(source, keep_s=_KEPT_S)
         self._live = LiveSpectrum(
             rate_hz=source.rate_hz,
@@ -150,12 +152,12 @@ class RunningRun:
         return None if speed_hz is None else 60 * speed_hz
 
 
-def _order_lines(wiring: Wiring, job: Job, top_hz: float) -> tuple[tuple[str, float], ...]:
+def _order_lines(wiring: Wiring, job: Job) -> tuple[tuple[str, float], ...]:
     """Every order of every machine whose speed was read."""
     found = []
     for name, orders in machines(job).items():
         speed_hz = wiring.speeds_hz.get(name)
         if speed_hz is not None:
-            lines = order_frequencies(60 * speed_hz, orders, top_hz)
+            lines = order_frequencies(60 * speed_hz, orders, _HIGHEST_HZ)
             found += [(f"{name} {order:g}x", hz) for order, hz in lines]
     return tuple(found)

@@ -69,8 +69,7 @@ class RunningScreen(LiveScreen[RunningRun]):
         yield Footer(compact=True, show_command_palette=False)
 
     def on_mount(self) -> None:
-        """The plot takes the keys that the screen does not."""
-        super().on_mount()
+        """The plot takes the keys that the screen does not; the base's handler runs as well."""
         self.query_one("#live-spectrum").focus()
 
     def poll(self) -> None:

@@ -83,9 +83,17 @@ class SetupScreen(ModalScreen[Wiring | None]):
     ]  # fmt: skip
 
     def __init__(
-        self, wiring: Wiring, job: Job, bench: Bench, calibrate: Calibrate | None = None
+        self,
+        wiring: Wiring,
+        job: Job,
+        bench: Bench,
+        calibrate: Calibrate | None = None,
+        *,
+        fresh: bool = False,
     ) -> None:
+        """``calibrate`` gets what a reference shaker said; ``fresh``: nothing was chosen yet."""
         super().__init__()
+        self.fresh = fresh
         self.wiring = wiring
         self.job = job
         self.bench = bench
@@ -111,17 +119,9 @@ class SetupScreen(ModalScreen[Wiring | None]):
         title = f" {words.TITLES[self.wiring.kind]}   {self.job.title}"
         self._write("#live-title", title)
         self._write("#setup-caution", words.CAUTIONS[self.wiring.kind])
-        self._take_last()
         self.draw()
         self.query_one("#inputs").focus()
         self.action_look()
-
-    def _take_last(self) -> None:
-        """Begin with what was used last."""
-        kept = self._presets()
-        if self.wiring.preset == "" and LAST in kept:
-            self.wiring = self.wiring.from_preset(LAST, kept[LAST], ())
-            self._wanted = kept[LAST].device
 
     def draw(self) -> None:
         """Tables and sentences."""
@@ -144,7 +144,7 @@ class SetupScreen(ModalScreen[Wiring | None]):
         try:
             return self.wiring.channels(self.job)
         except FieldkitError:
-            return self.wiring.setups
+            return self.wiring.typed
 
     def _objection(self) -> str:
         """Why this set-up cannot begin."""
@@ -174,9 +174,20 @@ class SetupScreen(ModalScreen[Wiring | None]):
     def on_listed(self, message: Listed) -> None:
         """The list is there; the input used last is chosen where it is."""
         self.looking, self.inputs, self.refused = False, message.inputs, message.refused
-        wanted = [i for i in self.inputs if self._wanted in (i.name, words.input_key(i))]
+        wanted = [i for i in self.inputs if words.input_key(i) == self._wanted]
         self.wiring = self.wiring.on(wanted[0] if wanted else None)
+        self._take_last()
         self.draw()
+
+    def _take_last(self) -> None:
+        """The first time, begin with what was used on the last visit, where it is there."""
+        if not self.fresh or not self.inputs:
+            return
+        self.fresh = False
+        kept = self._presets().get(LAST)
+        if kept is not None and any(one.name == kept.device for one in self.inputs):
+            self.wiring = self.wiring.from_preset(LAST, kept, self.inputs)
+            self._wanted = words.input_key(self.wiring.device)
 
     def on_data_table_row_highlighted(self, event: DataTable.RowHighlighted) -> None:
         """The input under the cursor is the chosen one."""

@@ -77,7 +77,8 @@ class TapScreen(LiveScreen[TapRun]):
         self.units = units
         self.bands = tuple(bands)
         self._picture = self._blow = 0
-        self._verdict_frame = 0
+        self._verdict_frame = self._news_frame = 0
+        self._news = ""
 
     def compose(self) -> ComposeResult:
         """From what is read across the room to what is read up close."""
@@ -98,8 +99,7 @@ class TapScreen(LiveScreen[TapRun]):
         yield Footer(compact=True, show_command_palette=False)
 
     def on_mount(self) -> None:
-        """The plot takes the keys that the screen does not."""
-        super().on_mount()
+        """The plot takes the keys that the screen does not; the base's handler runs as well."""
         self.query_one("#live-spectrum").focus()
 
     def poll(self) -> None:
@@ -134,7 +134,10 @@ class TapScreen(LiveScreen[TapRun]):
         self.say_big(large, tone)
         self.say("#side", "\n".join(words.side_lines(look)))
         self.say("#now", below)
-        self.say("#told", "\n".join(words.told(look)))
+        if look.session.message != self._news:
+            self._news, self._news_frame = look.session.message, look.session.frames
+        news_age_s = (look.session.frames - self._news_frame) / look.session.rate_hz
+        self.say("#told", "\n".join(words.told(look, news_age_s)))
         rows = self.query_one("#live-lower").size.height
         self.say("#live-blows", "\n".join(words.blow_lines(look.guide, rows)))
         self.say("#live-modes", "\n".join(words.mode_lines(look.guide, rows)))

@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING
 
 from fieldkit.capture import blow as verdicts
 from fieldkit.capture.guide import READING
-from fieldkit.capture.snapshot import ENDED, OPENING, PAUSED, WAITING
+from fieldkit.capture.snapshot import ENDED, OPENING, PAUSED, RUNNING, WAITING
 from fieldkit.capture.trigger import ARMED, LISTENING, RECORDING
 from fieldkit.ui.plots import SHORT, mode_cells
 from fieldkit.ui.words import count, sentence
@@ -18,6 +18,8 @@ if TYPE_CHECKING:
 
 VERDICT_S = 1.5
 """A verdict stands in large letters for so long."""
+NEWS_S = 8.0
+"""What happened to the input is told for so long."""
 CALM, GO, GOOD, BAD = "calm", "go", "good", "bad"
 """Tones of the large words, each a colour; the words alone say it too."""
 
@@ -78,13 +80,19 @@ def side_lines(look: TapLook) -> list[str]:
     return [str(guide.place), f"{good} good of {count(here, 'blow')}", worth]
 
 
-def told(look: TapLook) -> list[str]:
-    """The latest blow and what to change; then what to do next, or what is wrong."""
+def told(look: TapLook, news_age_s: float = 0.0) -> list[str]:
+    """The latest blow and what to change; then what to do next, or what is wrong.
+
+    What the session said ``news_age_s`` ago is told while it matters, for NEWS_S at most.
+    """
     latest = look.guide.latest
     first = _numbered(latest) if latest else "No blow yet."
-    wrong = look.trouble or _news(look.session) or look.guide.notice
-    second = f"! {sentence(wrong)}" if wrong else f"Next: {look.guide.advice}"
-    return [first, second]
+    running = look.session.state == RUNNING
+    news = _news(look.session) if not running or news_age_s < NEWS_S else ""
+    wrong = look.trouble or news or look.guide.notice
+    if wrong and not running:
+        return [f"! {sentence(wrong)}"]
+    return [first, f"! {sentence(wrong)}" if wrong else f"Next: {look.guide.advice}"]
 
 
 def _news(session: Snapshot) -> str:

@@ -33,7 +33,9 @@ class Wiring:
     rate_hz: int | None = None
     """None: the input's own."""
     setups: tuple[ChannelSetup, ...] = (ChannelSetup(direction="vertical"),)
-    """As typed; ``channels`` is what comes of them with this input."""
+    """Of a real input, as typed."""
+    rig_setups: tuple[ChannelSetup, ...] = (ChannelSetup(direction="vertical"),)
+    """Of the practice rig: what is tried there must not pass for what is written on a sensor."""
     preset: str = ""
     seconds: float = RUNNING_S
     """Of a running recording."""
@@ -45,13 +47,23 @@ class Wiring:
         """Whether nothing is connected."""
         return self.device is None
 
+    @property
+    def typed(self) -> tuple[ChannelSetup, ...]:
+        """The channels of this input as typed; ``channels`` is what comes of them."""
+        return self.rig_setups if self.practice else self.setups
+
+    def _with_typed(self, setups: tuple[ChannelSetup, ...]) -> Wiring:
+        if self.practice:
+            return replace(self, rig_setups=setups)
+        return replace(self, setups=setups)
+
     def channels(self, job: Job) -> tuple[ChannelSetup, ...]:
         """One for each channel; raises InputError where the rig has no such sensor."""
         if self.device is not None:
             return self.setups[: self.device.channels]
         from fieldkit.workup.practice import practice_channels
 
-        return practice_channels(job, self.setups)
+        return practice_channels(job, self.rig_setups)
 
     def rate(self) -> int:
         """Frames a second that will come."""
@@ -68,27 +80,25 @@ class Wiring:
 
     def with_count(self, count: int) -> Wiring:
         """With so many channels; new ones are bare."""
-        setups = (*self.setups, *[ChannelSetup()] * count)[:count]
-        return replace(self, setups=setups)
+        return self._with_typed((*self.typed, *[ChannelSetup()] * count)[:count])
 
     def with_setup(self, index: int, setup: ChannelSetup) -> Wiring:
         """With one channel changed."""
-        setups = [*self.setups[:index], setup, *self.setups[index + 1 :]]
-        return replace(self, setups=tuple(setups))
+        return self._with_typed((*self.typed[:index], setup, *self.typed[index + 1 :]))
 
     def as_preset(self) -> Preset:
         """To keep for the next visit."""
         from fieldkit.capture.presets import Preset
 
         name = self.device.name if self.device else ""
-        return Preset(self.setups, name, self.rate_hz)
+        return Preset(self.typed, name, self.rate_hz)
 
     def from_preset(self, name: str, preset: Preset, inputs: Sequence[Input]) -> Wiring:
         """As it was kept; the input too, where it is there."""
         same = [one for one in inputs if preset.device and one.name == preset.device]
         device = same[0] if same else self.device
-        found = replace(self, setups=preset.channels, rate_hz=preset.rate_hz, preset=name)
-        return found.on(device)
+        found = replace(self, rate_hz=preset.rate_hz, preset=name)
+        return found.on(device)._with_typed(preset.channels)
 
 
 def judged_channel(channels: Sequence[ChannelSetup]) -> int:
