@@ -163,7 +163,9 @@ def running(
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
+        from fieldkit.sheet import findings as told
         from fieldkit.sheet.origin import marked
+        from fieldkit.workup.diagnosing import diagnosed
 
         job = _job_among(files)
         entries = (
@@ -176,8 +178,14 @@ def running(
         readings = tuple(
             workup.read_running_entry(entry, highest_hz, progress) for entry in entries
         )
+        found = diagnosed(job, readings, progress)
         output.clear_progress()
-        document, lines = documents.running(readings, job), tables.running(readings, job)
+        document = told.with_running(documents.running(readings, job), found)
+        lines = [
+            *tables.running(readings, job),
+            *told.diagnosis_lines(found),
+            *told.severity_lines(found.running, job.units if job else "SI"),
+        ]
         output.answer(*marked(document, lines, entries), as_json=as_json)
 
 
@@ -220,15 +228,24 @@ def match(job_file: JobFile, as_json: AsJson = False) -> None:
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
+        from fieldkit.sheet import findings as told
         from fieldkit.sheet.origin import marked
+        from fieldkit.workup.findings import findings, with_next_blow
 
         progress = output.progress()
         job = _load(job_file)
         evidence = workup.measured(job, progress)
         states = workup.state_modes(job, progress)
         found = workup.matching(job, evidence, states, progress)
+        further = findings(job, evidence, (), found, None, progress)
+        found = with_next_blow(found, further)
         output.clear_progress()
-        document, lines = documents.match(found), tables.match(found, job.units)
+        document = told.with_blows(documents.match(found), further)
+        lines = [
+            *tables.match(found, job.units),
+            *told.blow_lines(further, job.units),
+            *told.contradiction_lines(further),
+        ]
         output.answer(*marked(document, lines, job.recordings), as_json=as_json)
 
 
@@ -243,6 +260,7 @@ def detune(
     with output.answering(as_json=as_json):
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
+        from fieldkit.sheet import findings as told
         from fieldkit.sheet.origin import marked
 
         reach_m = installing.reach_m(reach)
@@ -252,8 +270,14 @@ def detune(
         assert work.detuning is not None
         matched = work.match.warnings if work.match else ()
         extra = list(dict.fromkeys([*work.warnings, *matched]))
-        lines = [*tables.detune(work.detuning, work.job.units), *tables.warnings(extra)]
-        document = documents.detune(work.detuning, extra)
+        best = max((one.chance for one in work.detuning.fixes), default=work.detuning.chance_now)
+        lines = [
+            *told.detune_top(work.findings),
+            *tables.detune(work.detuning, work.job.units),
+            *told.better_measurement(work.findings, best, work.job.goal.chance),
+            *tables.warnings(extra),
+        ]
+        document = told.with_diagnosis(documents.detune(work.detuning, extra), work.findings)
         if as_json or number is not None:
             document, installs = installing.installed(work, document, number, reach_m)
         if number is not None:

@@ -103,14 +103,14 @@ def measured_in_bands(
 
 
 def worst(found: Sequence[Diagnosis]) -> Diagnosis | None:
-    """The one to show first: resonance before near before the rest, the most amplified first.
+    """The one to show first: a resonance, then one near it, then the strongest.
 
-    What is merely forced or open is ranked by level.
+    A line that sits on an order and has a mode beside it goes before one that does not.
     """
-    order = (RESONANCE, NEAR, CANNOT_TELL, FORCED)
 
-    def place(one: Diagnosis) -> tuple[int, bool, float]:
-        return order.index(one.verdict), one.excitation is None, -one.line.rms
+    def place(one: Diagnosis) -> tuple[int, bool, bool, float]:
+        first = {RESONANCE: 0, NEAR: 1}.get(one.verdict, 2)
+        return first, one.excitation is None, one.mode is None, -one.line.rms
 
     return min(found, key=place, default=None)
 
@@ -259,7 +259,7 @@ def _next(line: Line, order: str | None, mode: KnownMode, verdict: str) -> str:
             "stopped"
         )
     return (
-        "where the operator allows it, change the speed by a few per cent: a resonance falls "
+        "change the speed by a few per cent, where the operator allows it: a resonance falls "
         "steeply off its peak, a forced line does not"
     )
 

@@ -2,17 +2,15 @@
 
 from __future__ import annotations
 
-from fieldkit.sheet import tables
+from fieldkit.sheet import findings, tables
 from fieldkit.sheet.origin import mark
 from fieldkit.sheet.plain import clean, paragraph, percent
-from fieldkit.workup import Workup, excitation_of, simulated_notice
+from fieldkit.workup import Workup, simulated_notice
 
 RESULTS_CAUTION = (
     "These figures support a judgement, they do not replace it: to be confirmed by the responsible "
     "piping engineer under the local code."
 )
-NEAR_LINE = 0.1
-"""A running line this close to a measured mode, relative, is worth naming."""
 
 
 def lines(workup: Workup) -> list[str]:
@@ -53,33 +51,15 @@ def _resonance(workup: Workup) -> list[str]:
 
 
 def _running_lines(workup: Workup) -> list[str]:
-    """The strongest running lines, with what they sit on and the mode beside them."""
-    said = []
-    for reading in workup.running:
-        sensor = f"{reading.entry.direction} sensor, " if reading.entry.direction else ""
-        for line in reading.picture.lines[:3]:
-            source = excitation_of(line.frequency_hz, workup.job.excitations)
-            text = (
-                f"Running, {sensor}{line.frequency_hz:.2f} Hz stands out "
-                f"({line.rms:.3g} {reading.picture.spectrum.unit} rms)"
-            )
-            text += f": {source}" if source else ": on no excitation the job names"
-            if line.steady is False:
-                text += "; not a steady line: a mode stirred by flow, or a speed that wanders"
-            said += paragraph(f"{text}{_mode_beside(workup, line.frequency_hz)}.", 2)
+    """The strongest running lines with their verdicts, and what the level exceeds."""
+    said: list[str] = []
+    for running in workup.findings.running if workup.findings else ():
+        named = [one for one in running.diagnoses if one.mode or one.excitation]
+        for one in named[:3]:
+            sensor = f", {one.line.direction} sensor" if one.line.direction else ""
+            said += paragraph(f"Running{sensor}: {one.reason}.", 2)
+        said += paragraph(f"{findings.screening_summary(running)}.", 2)
     return said
-
-
-def _mode_beside(workup: Workup, frequency_hz: float) -> str:
-    detuning, limit = workup.detuning, workup.job.goal.up_to_hz
-    if detuning is None or not detuning.modes:
-        return ""
-    if frequency_hz > limit * (1 - NEAR_LINE):
-        return f"; modes were looked for up to {limit:g} Hz only"
-    nearest = min(detuning.modes, key=lambda mode: abs(mode.median_hz - frequency_hz))
-    if abs(nearest.median_hz / frequency_hz - 1) > NEAR_LINE:
-        return "; no mode beside it: forced, not resonant"
-    return f"; the {nearest.direction} mode at {nearest.median_hz:.1f} Hz is beside it"
 
 
 def _cure(workup: Workup) -> list[str]:
@@ -96,6 +76,7 @@ def _cure(workup: Workup) -> list[str]:
             f"No single change reaches the wanted chance of {percent(goal)}. The best found:", 2
         )
     said += tables.fix(best)
+    said += findings.better_measurement(workup.findings, best.chance, goal)
     others = [f"chance {percent(fix.chance)}: {fix.summary}" for fix in detuning.fixes[1:4]]
     if others:
         said += ["", "  Else"]

@@ -15,7 +15,6 @@ from fieldkit.workup.findings import Findings, RunningFindings
 
 Document = dict[str, Any]
 _DIMENSIONS = {"m/s": "velocity", "Pa": "modulus"}
-NOT_SCREENED = "Severity was not screened"
 
 
 def with_running(document: Document, found: Findings) -> Document:
@@ -198,6 +197,16 @@ def severity_lines(found: Sequence[RunningFindings], units: str = "SI") -> list[
 def _direction(running: RunningFindings) -> str:
     directions = {one.line.direction for one in running.diagnoses if one.line.direction}
     return f", {directions.pop()} sensor" if len(directions) == 1 else ""
+
+
+def screening_summary(found: RunningFindings) -> str:
+    """Which lines the level exceeds, in one sentence, or why it was not screened."""
+    screened = found.screened
+    if screened.refused:
+        return f"Severity not screened: {screened.refused.partition('since ')[2]}"
+    above = [f"{one.criterion} ({one.above[-1]})" for one in screened.screenings if one.above]
+    said = f"above {', '.join(above)}" if above else "under every line it was held against"
+    return f"Severity, screening only: {said}"
 
 
 def screening_cells(one: Screening, units: str = "SI") -> tuple[str, str, str, str]:

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING
 from fieldkit.detune.excitation import excitation_band
 from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import Desk
+from fieldkit.ui.diagnosis_words import first_part, first_verdict, in_short
 from fieldkit.ui.words import count, hertz, plus_minus, ratio_percent, sentence
 
 if TYPE_CHECKING:
@@ -117,6 +118,9 @@ def _running(desk: Desk) -> Reading:
         return Reading(
             "No line stands clear of the noise", next="record longer, or closer to mid-span"
         )
+    verdict = first_verdict(desk)
+    if verdict is not None:
+        return Reading(in_short(verdict), next=first_part(verdict.measure_next))
     return _strongest_line(desk, max(lines, key=lambda line: line.rms))
 
 

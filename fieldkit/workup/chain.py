@@ -20,6 +20,7 @@ from fieldkit.span.modes import Mode, free_directions, span_modes
 from fieldkit.span.static import WeightAnswer, weight_answer
 from fieldkit.workup.beside import SIMULATED
 from fieldkit.workup.evidence import evidence_from, with_running_modes
+from fieldkit.workup.findings import Findings, findings, with_next_blow
 from fieldkit.workup.readings import RunningReading, TapReading, running_readings, tap_readings
 from fieldkit.workup.simulated import simulated_files
 
@@ -61,6 +62,8 @@ class Workup:
     states: tuple[StateModes, ...] = ()
     done: tuple[str, ...] = ()
     """Steps that were gone through, with or without an answer."""
+    findings: Findings | None = None
+    """Resonance or forced, severity, the next blow, contradictions."""
     simulated: tuple[str, ...] = ()
     """Recordings that the practice rig made: nothing that rests on them was measured."""
 
@@ -118,12 +121,19 @@ def _with_detuning(work: Workup, progress: Progress) -> Workup:
     return replace(work, detuning=detuning(work.job, work.evidence, work.match, progress))
 
 
+def _with_findings(work: Workup, progress: Progress) -> Workup:
+    found = findings(work.job, work.evidence, work.running, work.match, work.detuning, progress)
+    matched = with_next_blow(work.match, found) if work.match else None
+    return replace(work, findings=found, match=matched)
+
+
 STEPS: tuple[tuple[str, float, float, Callable[[Workup, Progress], Workup]], ...] = (
     ("tap", 0.0, 0.35, _with_taps),
     ("running", 0.35, 0.45, _with_running),
     ("span", 0.45, 0.5, _with_states),
     ("match", 0.5, 0.75, _with_match),
-    ("detune", 0.75, 1.0, _with_detuning),
+    ("detune", 0.75, 0.97, _with_detuning),
+    ("findings", 0.97, 1.0, _with_findings),
 )
 """The steps in the order of the work, each with its share of the progress."""
 

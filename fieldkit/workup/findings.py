@@ -51,6 +51,11 @@ class RunningFindings:
     diagnoses: tuple[Diagnosis, ...]
     screened: Screened
 
+    @property
+    def top(self) -> Diagnosis | None:
+        """The line of this recording to speak of first."""
+        return worst(self.diagnoses)
+
 
 @dataclass(frozen=True)
 class Findings:

@@ -34,6 +34,7 @@ def test_detune_ranks_changes_of_every_sample(name):
     answer = ran.document
     assert set(answer) == {
         "state", "margin", "bands", "modes", "chance_now", "fixes", "warnings",
+        "diagnosis", "diagnosis_first", "next_blows", "contradictions", "simulated",
     }  # fmt: skip
     assert set(answer["bands"][0]) == {
         "name", "low_hz", "high_hz", "avoid_low_hz", "avoid_high_hz",

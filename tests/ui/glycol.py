@@ -3,15 +3,19 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 
+from fieldkit.detune.contradictions import Contradiction
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.excitation import Excitation, Goal, bands
 from fieldkit.detune.fixes import AddMass, AddSupport, StiffenSupport
+from fieldkit.detune.known_modes import known_modes
 from fieldkit.detune.matched import Ensemble, Match, ModelMode, Pair, ParameterReading
+from fieldkit.detune.next_blow import Blow, Expected, sentence
 from fieldkit.detune.verdict import Detuning, JudgedMode, Nearest, Verdict
 from fieldkit.job.document import Job, RecordingEntry
 from fieldkit.signal.modes import MeasuredMode, RefusedMode, TapRecord, Tone
@@ -24,6 +28,7 @@ from fieldkit.span.materials import Material
 from fieldkit.span.modes import Mode
 from fieldkit.span.pipes import PipeSection
 from fieldkit.workup import RunningReading, StateModes, TapReading, Workup
+from fieldkit.workup.findings import Findings, running_findings
 
 PIPE = PipeSection(0.0889, 0.00549, "NPS 3 schedule 40")
 STEEL = Material("carbon steel", 7850.0, 0.3, ((293.15, 203e9),), 11.7e-6)
@@ -145,7 +150,7 @@ def running_reading() -> RunningReading:
     for line in lines:
         amplitude[np.abs(lines_hz - line.frequency_hz) < 0.6] = line.rms
     spectrum = Spectrum(lines_hz, amplitude, "rms", "acceleration", "m/s^2", 0.75)
-    picture = RunningPicture(spectrum, lines, 3.42, 2.0, 200.0)
+    picture = RunningPicture(spectrum, lines, 3.42, 2.0, 200.0, velocity_rms_m_per_s=0.0124)
     return RunningReading("running.flac", 400.0, 1, 30.0, picture, RUN_ENTRY)
 
 
@@ -228,8 +233,24 @@ def workup(of: Job | None = None, **changes: object) -> Workup:
         match=MATCH,
         detuning=DETUNING,
         states=states(),
+        findings=findings(of, running),
     )
     return replace(whole, **changes)  # type: ignore[arg-type]
+
+
+def findings(of: Job, readings: Sequence[RunningReading]) -> Findings:
+    """What the lines come to beside the modes as judged, and what else is to be said."""
+    known = known_modes(MODES, DETUNING.modes, of.tapped, of.running)
+    blow = Blow(
+        4.9, "lateral", "tapped", 0.042, 0.018, "the natural frequencies in the running state",
+        (Expected(28.9, 33.4, "lateral", 0.93),),
+    )  # fmt: skip
+    stray = Contradiction(
+        "peak", MODES[2].frequency_hz, "vertical",
+        "the peak belongs to no computed mode: a line joined to this one may ring there",
+        "move the sensor along the pipe",
+    )  # fmt: skip
+    return Findings(running_findings(of, readings, known), (), (blow,), (stray,), sentence([blow]))
 
 
 def states() -> tuple[StateModes, ...]:

@@ -77,8 +77,15 @@ def test_the_detune_reading_says_when_nothing_need_be_done() -> None:
     )
 
 
-def test_the_running_reading_names_the_order_and_the_distance_to_the_nearest_mode() -> None:
+def test_the_running_reading_begins_with_the_verdict_that_matters_most() -> None:
+    """24.55 Hz is near the mode at 20.9 Hz; the stronger 49.1 Hz has no mode beside it."""
     says = str(reading("running", FULL))
+    assert says.startswith("Near resonance: 24.6 Hz on pump 1x, mode 20.9 Hz 14.9 % away")
+    assert "Tap in vertical direction" in says
+
+
+def test_before_any_verdict_the_running_reading_names_order_and_nearest_mode() -> None:
+    says = str(reading("running", Desk(job=job(), workup=workup(findings=None))))
     assert "49.1 Hz" in says
     assert "pump 2x" in says
     assert "42 %" in says  # 28.4 Hz against 49.1 Hz
@@ -122,4 +129,5 @@ def test_nothing_is_claimed_about_a_line_above_the_highest_mode_looked_at() -> N
     assert FULL.job is not None
     low_limit = replace(FULL, job=replace(FULL.job, goal=replace(FULL.job.goal, up_to_hz=40.0)))
     assert nearest_mode(low_limit, 49.1) is None
-    assert "up to 40.0 Hz only" in str(reading("running", low_limit))
+    early = replace(low_limit, workup=workup(findings=None))
+    assert "up to 40.0 Hz only" in str(reading("running", early))

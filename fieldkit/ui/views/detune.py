@@ -10,6 +10,7 @@ from textual.containers import Horizontal, Vertical, VerticalScroll
 from textual.widgets import DataTable
 
 from fieldkit.sheet.plain import percent
+from fieldkit.ui.diagnosis_words import first_verdict, in_short
 from fieldkit.ui.messages import AdoptWanted, FixChosen
 from fieldkit.ui.plots import SHORT
 from fieldkit.ui.table import Row, Table
@@ -121,7 +122,9 @@ class DetuneView(View):
         if found is None:
             return bands
         nearest = f", nearest {_nearest(found.nearest_now)}" if found.nearest_now else ""
-        return f"Now: {percent(found.chance_now)} chance of being clear{nearest}\n{bands}"
+        first = first_verdict(self.desk)
+        verdict = f"{in_short(first)}\n" if first else ""
+        return f"{verdict}Now: {percent(found.chance_now)} chance of being clear{nearest}\n{bands}"
 
     def _draw_chosen(self) -> None:
         found, fix = self._found, self.chosen
@@ -148,8 +151,14 @@ class DetuneView(View):
             return []
         return [
             f"No change reaches the {percent(wanted)} wanted; the best reaches {percent(best)}. "
-            "Another speed, added damping or an absorber may; a better tap narrows the doubt."
+            "Another speed, added damping or an absorber may; a better tap narrows the doubt.",
+            *self._better_tap(),
         ]
+
+    def _better_tap(self) -> list[str]:
+        """The measurement that would make a change surer."""
+        found = self.desk.workup.findings if self.desk.workup else None
+        return [f"Next: {sentence(found.next_measurement)}"] if found and found.blows else []
 
 
 def _nearest(nearest: Nearest) -> str:

@@ -10,10 +10,14 @@ from textual.containers import Horizontal, VerticalScroll
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import interval
 from fieldkit.ui.views.base import View, plain
+from fieldkit.ui.widgets.interval_bar import interval_bar
 from fieldkit.ui.words import DASH, hertz, plus_minus, sentence, span_of
 
 if TYPE_CHECKING:
     from fieldkit.detune.matched import Match, Pair, ParameterReading
+
+
+BAR = "├before ▓after┤"
 
 
 class MatchView(View):
@@ -35,7 +39,7 @@ class MatchView(View):
             id="pairs",
         )
         with Horizontal(classes="lower"):
-            yield Table("unknown", "told", "after 90 %", "before 90 %", id="parameters")
+            yield Table("unknown", "told", BAR, "after 90 %", "before 90 %", id="parameters")
             with VerticalScroll(id="match-words", can_focus=True):
                 yield plain("match-text")
 
@@ -52,8 +56,15 @@ class MatchView(View):
                 "No match yet: it needs a tap recording, or a measured peak typed in (Tap, a)."
             ]
         words = [f"Next: {sentence(found.next_measurement)}"] if found.next_measurement else []
+        words += self._contradictions()
         words += [sentence(warning) for warning in found.warnings]
         return words
+
+    def _contradictions(self) -> list[str]:
+        """What the model does not account for, with what to check."""
+        found = self.desk.workup.findings if self.desk.workup else None
+        told = found.contradictions if found else ()
+        return [f"! {sentence(one.text)} Check: {sentence(one.check)}" for one in told]
 
 
 def _pair_rows(found: Match) -> list[Row]:
@@ -87,6 +98,9 @@ def _parameter_cells(one: ParameterReading, units: str) -> tuple[str, ...]:
     return (
         one.name,
         "✓ by tap" if one.informed else "· no",
+        interval_bar(
+            (one.prior_low, one.prior_median, one.prior_high), (one.low, one.median, one.high)
+        ),
         interval(one.low, one.high, one.unit, units),
         interval(one.prior_low, one.prior_high, one.unit, units),
     )

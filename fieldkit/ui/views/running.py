@@ -10,6 +10,7 @@ from textual.containers import Horizontal
 from textual.widgets import DataTable
 
 from fieldkit.detune.excitation import excitation_band
+from fieldkit.ui.diagnosis_words import in_short, times
 from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.messages import AddWanted, EditWanted
 from fieldkit.ui.plots import mode_cells, running_marks, shaded, spectrum_curve, unit_of
@@ -24,6 +25,7 @@ if TYPE_CHECKING:
     from fieldkit.signal.modes import MeasuredMode
     from fieldkit.signal.running import RunningPicture
     from fieldkit.workup import RunningReading
+    from fieldkit.workup.findings import RunningFindings
 
 
 NO_RECORDING = "No running recording yet: press m to record one now, a to name one"
@@ -43,6 +45,8 @@ class RunningView(View):
                 tooltip="Show the next running recording"),
         Binding("x", "refused", "Refused", show=False, id="running.refused",
                 tooltip="Peaks that were not accepted as modes, with reasons"),
+        Binding("l", "severity", "Level", show=False, id="running.severity",
+                tooltip="Resonance or forced for each line, and the level screened, with sources"),
     ]  # fmt: skip
 
     def __init__(self) -> None:
@@ -55,7 +59,7 @@ class RunningView(View):
         yield SpectrumPlot(id="running-spectrum", classes="plot")
         yield plain("running-text")
         with Horizontal(classes="lower"):
-            yield Table("Hz", "RMS", "order", "nearest mode", "apart", id="lines")
+            yield Table("Hz", "RMS", "order", "verdict", "amplified", "mode", "apart", id="lines")
             yield Table("mode seen, Hz", "damping %", id="seen")
 
     @property
@@ -98,15 +102,24 @@ class RunningView(View):
 
     def _rows(self, found: RunningReading) -> list[Row]:
         unit = found.picture.spectrum.unit
+        own = self._findings
+        told = own.diagnoses if own else ()
         rows: list[Row] = []
         for line in found.picture.lines:
             order = excitation_band(line.frequency_hz, self.desk.bands)
             mode_hz = nearest_mode(self.desk, line.frequency_hz)
             apart = DASH if mode_hz is None else ratio_percent(abs(mode_hz / line.frequency_hz - 1))
+            verdict = next(
+                (one for one in told if one.line.frequency_hz == line.frequency_hz), None
+            )
+            if verdict is not None and verdict.mode is not None:
+                mode_hz, apart = verdict.mode.hz, ratio_percent(verdict.apart or 0.0)
             cells = (
                 f"{line.frequency_hz:.2f}",
                 level(line.rms, unit),
                 order.name if order else "no known order",
+                verdict.verdict if verdict else DASH,
+                times(verdict) if verdict else DASH,
                 DASH if mode_hz is None else f"{hertz(mode_hz)} Hz",
                 apart,
             )
@@ -129,7 +142,35 @@ class RunningView(View):
         )
         notes = (*found.notes, *picture.warnings)
         modes = self._modes_in_words(found)
-        return [line for line in (heading, *refused, *map(sentence, notes), modes) if line]
+        own = self._findings
+        verdict = own.top if own else None
+        said = (in_short(verdict) if verdict else "", heading, self._screened(own))
+        return [line for line in (*said, *refused, *map(sentence, notes), modes) if line]
+
+    @staticmethod
+    def _screened(own: RunningFindings | None) -> str:
+        from fieldkit.sheet.findings import screening_summary
+
+        return f"{screening_summary(own)}; sources under l" if own else ""
+
+    @property
+    def _findings(self) -> RunningFindings | None:
+        """Verdicts and screening of the recording on screen."""
+        found = self.desk.workup.findings if self.desk.workup else None
+        if found is None or not found.running:
+            return None
+        return found.running[self.number % len(found.running)]
+
+    def action_severity(self) -> None:
+        """Every verdict and every screening, with its source."""
+        from fieldkit.sheet.findings import diagnosis_lines, severity_lines
+
+        found = self.desk.workup.findings if self.desk.workup else None
+        if found is None or not found.running:
+            self.notify("Nothing has been read yet.", severity="warning")
+            return
+        text = [*diagnosis_lines(found), *severity_lines(found.running, self.desk.units)]
+        self.app.push_screen(TextScreen("Resonance or forced, and severity", "\n".join(text[1:])))
 
     def _modes_in_words(self, found: RunningReading) -> str:
         """What the second table holds, or why there is none."""
