@@ -13,7 +13,7 @@ from pydantic_core import PydanticCustomError
 
 from fieldkit.errors import InputError, Place
 from fieldkit.quantity import DIMENSIONS, chosen, parse, quoted, show
-from fieldkit.span.layout import Stiffness, Vector
+from fieldkit.span.layout import Believed, Stiffness, Vector
 
 T = TypeVar("T")
 Reader = Callable[[Any], T]
@@ -28,6 +28,8 @@ _HEADINGS: dict[str, Vector] = {
 }
 _STIFFNESS_WORDS: dict[str, Stiffness] = {"rigid": math.inf, "free": 0.0, "unknown": "unknown"}
 _FARTHEST_OFFSET_M = 10.0
+_WIDEST_SPREAD = 100.0
+_BELIEVED_KEYS = ("median", "spread")
 
 
 def bad(where: str, what: str, remedy: str) -> InputError:
@@ -96,9 +98,11 @@ def pair(read: Reader[float], *, both: bool = False) -> Reader[tuple[float, floa
 
 
 def stiffness(dimension: str) -> Reader[Stiffness]:
-    """A stiffness, or one of the words for it."""
+    """A stiffness, one of the words for it, or what is believed of it and how surely."""
 
     def read(value: Any) -> Stiffness:
+        if isinstance(value, dict):
+            return _believed(value, dimension)
         word = value.strip().lower() if isinstance(value, str) else ""
         if word in _STIFFNESS_WORDS:
             return _STIFFNESS_WORDS[word]
@@ -109,6 +113,26 @@ def stiffness(dimension: str) -> Reader[Stiffness]:
             raise InputError(error.what, remedy) from None
 
     return read
+
+
+def _believed(table: dict[str, Any], dimension: str) -> Believed:
+    """``{ median = "5 MN/m", spread = 2.0 }``: a factor either way, two times out of three."""
+    one = DIMENSIONS[dimension].examples.split(",")[0].split(" or ")[0].replace("'", '"')
+    example = f"write {{ median = {one}, spread = 2.0 }}"
+    strange = [key for key in table if key not in _BELIEVED_KEYS]
+    missing = [key for key in _BELIEVED_KEYS if key not in table]
+    if strange or missing:
+        what = f"{quoted(strange[0])} is not a key of it" if strange else f"{missing[0]} is missing"
+        raise InputError(what, example)
+    median, spread = parse(table["median"], dimension), table["spread"]
+    if not 0 < median < math.inf:
+        raise InputError(f"a median of {quoted(table['median'])} is not above zero", example)
+    if not _is_number(spread) or not 1 < spread <= _WIDEST_SPREAD:
+        raise InputError(
+            f"{quoted(spread)} is not a factor above 1 and at most {_WIDEST_SPREAD:g}",
+            "write spread = 2.0 where the stiffness may well be half or twice the median",
+        )
+    return Believed(median, math.log(spread))
 
 
 def direction(value: Any) -> Vector:

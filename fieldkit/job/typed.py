@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+import tomllib
 from typing import Any
 
 from fieldkit.errors import InputError
@@ -43,6 +44,8 @@ def _is_pair(loc: Loc) -> bool:
 def value_of(text: str, loc: Loc) -> object:
     """What to write into the file for a text typed at a key; whether it fits, the schema says."""
     key, text = loc[-1], text.strip()
+    if text[:1] == "{":
+        return _table(text)
     inner = text[1:-1].strip() if text[:1] == "[" and text[-1:] == "]" else text
     if _is_pair(loc):
         parts = _with_unit_of_last(_TO.split(inner))
@@ -58,6 +61,14 @@ def value_of(text: str, loc: Loc) -> object:
     if loc[0] == "leg" and key == "direction":
         return _heading(inner) or text
     return _single(text, key)
+
+
+def _table(text: str) -> object:
+    """An inline table, or the text where it is none."""
+    try:
+        return tomllib.loads(f"value = {text}")["value"]
+    except tomllib.TOMLDecodeError:
+        return text
 
 
 def _single(text: str, key: str | int) -> object:
@@ -91,11 +102,15 @@ def _with_unit_of_last(parts: list[str]) -> list[str]:
 
 def rendered(value: Any) -> str:
     """A value as TOML; raises InputError for what TOML cannot hold."""
-    from tomlkit import item
+    from tomlkit import inline_table, item
     from tomlkit.exceptions import ConvertError
 
     try:
-        text = str(item(value).as_string())
+        held = item(value)
+        if isinstance(value, dict):
+            held = inline_table()
+            held.update(value)
+        text = str(held.as_string())
         text.encode("utf-8")
     except (ConvertError, UnicodeEncodeError, ValueError):
         raise InputError("this cannot be written to a file", "type it anew") from None

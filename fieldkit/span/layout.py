@@ -22,7 +22,19 @@ from fieldkit.span.materials import Material
 from fieldkit.span.pipes import PipeSection
 
 Vector = tuple[float, float, float]
-Stiffness = float | Literal["implied", "unknown"]
+
+
+@dataclass(frozen=True)
+class Believed:
+    """A stiffness that somebody has reason to expect, with how sure of it one may be."""
+
+    median: float
+    """N/m (N m/rad for rotation)."""
+    sd_ln: float
+    """Standard deviation of the natural logarithm."""
+
+
+Stiffness = float | Believed | Literal["implied", "unknown"]
 """N/m (N m/rad for rotation); ``math.inf`` is rigid, 0 is free; ``implied`` is what the kind of
 support implies and ``unknown`` the same with a wider doubt."""
 
@@ -322,6 +334,8 @@ def _check_station(name: str, i: int, at_m: float, end_m: float) -> None:
 def _check_stiffness(support: Support, i: int) -> None:
     for axis in (*AXES, "torsion"):
         value = getattr(support, axis)
+        if isinstance(value, Believed):
+            value = value.median
         if not isinstance(value, str) and not value >= 0:
             what = f"a stiffness of {value:g}"
             raise _bad(what, "give zero (free) or more", f"support[{i}].{axis}")

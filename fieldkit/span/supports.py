@@ -16,7 +16,7 @@ from numpy.typing import NDArray
 
 from fieldkit.errors import InputError, Place
 from fieldkit.span.header import SHELL_SD_LN, shell_rotation_n_m_per_rad
-from fieldkit.span.layout import Span, Stiffness, Support, axis_vectors, is_vertical
+from fieldkit.span.layout import Believed, Span, Stiffness, Support, axis_vectors, is_vertical
 
 REFERENCE_DIAMETER_M = 0.1143
 RIGID_N_PER_M = 1e12
@@ -214,6 +214,8 @@ def _resolve(
     if stated == "unknown":
         known = implied or _FALLBACK["rotation" if axis == "rotation" else "translation"]
         return known.median * unit, max(known.sd_ln, UNKNOWN_SD_LN)
+    if isinstance(stated, Believed):
+        return (stated.median, stated.sd_ln) if stated.median > 0 else None
     rigid = RIGID_N_M_PER_RAD if axis == "rotation" else RIGID_N_PER_M
     return (min(float(stated), rigid), 0.0) if float(stated) > 0 else None
 

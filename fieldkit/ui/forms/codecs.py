@@ -6,12 +6,14 @@ InputError where one means nothing.
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 from typing import Protocol
 
 from fieldkit.errors import InputError
 from fieldkit.job.typed import value_of
 from fieldkit.quantity import DIMENSIONS, parse, quoted, show
+from fieldkit.span.layout import Believed
 
 AXIS_WORDS = {"+x": "", "-x": "", "+y": "", "-y": "", "+z": "up", "-z": "down"}
 
@@ -76,7 +78,18 @@ class Quantity:
         """In the units of the job."""
         if value in self.words:
             return str(value)
+        if self.words and isinstance(value, dict):
+            return self._believed(value, units)
         return show(parse(value, self.dimension), self.dimension, units)
+
+    def _believed(self, value: object, units: str) -> str:
+        from fieldkit.job.readers import stiffness
+
+        held = stiffness(self.dimension)(value)
+        if not isinstance(held, Believed):
+            return str(held)
+        median = show(held.median, self.dimension, units)
+        return f"about {median}, a factor {math.exp(held.sd_ln):.3g} either way"
 
 
 @dataclass(frozen=True)
