@@ -20,6 +20,7 @@ from fieldkit.detune.fixes import (
     SetMass,
     StiffenSupport,
 )
+from fieldkit.detune.likelihood import MODEL_ERROR
 from fieldkit.detune.lowrank import condensed, kept_modes
 from fieldkit.detune.push import Push
 from fieldkit.detune.tracking import follow, followed
@@ -30,6 +31,7 @@ from fieldkit.span.modes import span_modes
 
 Array = NDArray[np.float64]
 
+SEED = 22
 RIGID_HZ = 0.2
 """Below this a mode is a free direction of the model, not a vibration."""
 WORST_DISAGREEMENT = 0.01
@@ -80,7 +82,7 @@ def _spectrum(field: Field, frequency_hz: Array, vector: Array, up_to_hz: float)
 def corrected(
     spectrum: Spectrum, field: Field, exact_hz: Sequence[float], up_to_hz: float
 ) -> tuple[Spectrum, float]:
-    """Scale each mode by exact over reduced frequency at the central member.
+    """Scale each mode by exact over reduced frequency at the central member; doubt the others.
 
     Returns the scaled spectrum and the largest relative correction of a mode up to the limit.
     """
@@ -99,7 +101,21 @@ def corrected(
         frequency_hz=spectrum.frequency_hz * tracked,
         all_hz=spectrum.all_hz * every,
     )
-    return scaled, worst
+    return _doubted(scaled, field.central), worst
+
+
+def _doubted(spectrum: Spectrum, central: int) -> Spectrum:
+    """With what no parameter accounts for, drawn for every mode of every other member."""
+    rng = np.random.default_rng(SEED)
+    factor = 1 + MODEL_ERROR * rng.standard_normal(spectrum.all_hz.shape)
+    factor[central] = 1.0
+    every = np.nan_to_num(spectrum.all_hz, nan=-1.0)
+    same = np.argmin(np.abs(every[:, None, :] - spectrum.frequency_hz[:, :, None]), axis=2)
+    return replace(
+        spectrum,
+        frequency_hz=spectrum.frequency_hz * np.take_along_axis(factor, same, axis=1),
+        all_hz=spectrum.all_hz * factor,
+    )
 
 
 def resolve(

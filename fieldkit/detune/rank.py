@@ -67,20 +67,21 @@ def detune(
     """
     progress = progress or Progress()
     search, known = prepare(span, tapped, running, match, excitations, goal, progress)
-    now, _ = _checked(search, running, None)
+    fresh = _afresh(search, match)
+    now, _ = _checked(fresh, running, None)
     chance_now = judge.chance_clear(now, search.bands, goal.up_to_hz)
     singles = generate(search, progress.within(0.0, 0.5))
     judged = _re_solved(
-        search, running, shortlist(singles, span, goal, chance_now), progress.within(0.5, 0.7)
+        fresh, running, shortlist(singles, span, goal, chance_now), progress.within(0.5, 0.7)
     )
     if max([chance_now, *(j.chance for j in judged)]) < goal.chance:
         both = pairs(search, singles, progress.within(0.7, 0.9))
         chosen = shortlist(both, span, goal, max([chance_now, *(j.chance for j in judged)]))
-        judged += _re_solved(search, running, chosen, progress.within(0.9, 1.0))
+        judged += _re_solved(fresh, running, chosen, progress.within(0.9, 1.0))
     judged.sort(key=lambda j: order(j.chance, j.candidate.change, span, goal, j.room))
     resting = at_rest(span, tapped, running)
     verdicts = tuple(
-        _verdict(search, resting, now, j, rank, units)
+        _verdict(fresh, resting, now, j, rank, units)
         for rank, j in enumerate(judged[:SHOWN], start=1)
     )
     modes = judge.judged_modes(now, search.bands, goal.up_to_hz)
@@ -121,6 +122,27 @@ def prepare(
     base, known = _ensemble_field(span, tapped, running, match, goal, rng)
     scatter = as_installed(base.members, rng).exact(base.central)
     return Search(span, base, bands(excitations, goal.margin), goal, scatter), known
+
+
+def _afresh(search: Search, match: Match | None) -> Search:
+    """The same search over members that had no say in what was chosen.
+
+    The best of thousands of changes on one ensemble owes part of its chance to that ensemble.
+    """
+    if match is None or match.ensemble.fresh is None:
+        return search
+    base = field(search.span, search.field.model, match.ensemble.fresh)
+    scatter = as_installed(base.members, np.random.default_rng(SEED + 1)).exact(base.central)
+    return replace(search, field=base, scatter=scatter)
+
+
+def judged_change(
+    search: Search, tapped: State, running: State, change: Change, units: str = "SI"
+) -> Verdict:
+    """Any one change, re-solved and described like a ranked one."""
+    now, _ = _checked(search, running, None)
+    judged = _judge(search, running, search.counted(change))
+    return _verdict(search, at_rest(search.span, tapped, running), now, judged, 1, units)
 
 
 def _re_solved(
