@@ -15,12 +15,21 @@ from numpy.typing import NDArray
 from fieldkit.detune.cautions import Resting, at_rest, working_cautions
 from fieldkit.detune.excitation import Band, Excitation, Goal, bands
 from fieldkit.detune.field import Field, field
-from fieldkit.detune.fixes import AddMass, AddSupport, Change, MoveMass, MoveSupport, StiffenSupport
+from fieldkit.detune.fixes import (
+    AddAbsorber,
+    AddMass,
+    AddSupport,
+    Change,
+    MoveMass,
+    MoveSupport,
+    StiffenSupport,
+)
 from fieldkit.detune.matched import Match
+from fieldkit.detune.push import parts
 from fieldkit.detune.reduced import build
-from fieldkit.detune.screen import as_installed
+from fieldkit.detune.scatter import Scatter, as_installed
 from fieldkit.detune.unknowns import unknowns_of
-from fieldkit.detune.window import StiffnessWindow, stated_stiffness, stiffness_window
+from fieldkit.detune.window import stated_stiffness, stiffness_window
 from fieldkit.errors import Refusal
 from fieldkit.span.layout import Span, State
 from fieldkit.span.span_rule import RuleReading, against_rule
@@ -65,6 +74,8 @@ class Installation:
     """Station; None where the fix has none."""
     stiffness_n_per_m: Mapping[str, float]
     """By direction, what was promised for; empty where the fix is no stiffness."""
+    kept: bool | None
+    """Whether the wanted chance is reached as drawn; None where no stiffness is stated."""
     fails_below_n_per_m: Mapping[str, float] | None
     """Drawn less stiff than this the chance falls under the goal's; None where it does anyway."""
     fails_above_n_per_m: Mapping[str, float] | None
@@ -89,10 +100,8 @@ class Yard:
     field: Field
     bands: tuple[Band, ...]
     goal: Goal
-    stiffness_factor: Array
-    """(members,) installed over drawn."""
-    place_m: Array
-    """(members,) installed off the drawn station."""
+    scatter: Scatter
+    """Of installation."""
     resting: Resting
     units: str
 
@@ -113,43 +122,47 @@ def yard(
     members = match.ensemble.standard if match is not None else prior
     assert members is not None
     base: Field = field(span, build(span, running, unknowns, goal.up_to_hz), members)
-    scatter = as_installed(base.members, rng)
     return Yard(
         field=base,
         bands=bands(excitations, goal.margin),
         goal=goal,
-        stiffness_factor=scatter.stiffness_factor,
-        place_m=scatter.place_m,
+        scatter=as_installed(base.members, rng),
         resting=at_rest(span, tapped, running),
         units=units,
     )
 
 
 def installations(yard: Yard, change: Change, reach_m: float = REACH_M) -> tuple[Installation, ...]:
-    """What is needed to put each part of a change in; the line at rest is shown with all of it."""
-    parts: tuple[Change, ...] = getattr(change, "parts", (change,))
-    return tuple(installation(yard, part, reach_m, whole=change) for part in parts)
+    """What is needed to put each part of a change in; the line at rest is shown with all of it.
 
-
-def installation(
-    yard: Yard, change: Change, reach_m: float = REACH_M, *, whole: Change | None = None
-) -> Installation:
-    """What is needed to put one change in; a bracket spans ``reach_m`` from steel to pipe.
-
-    ``whole`` is the change it is a part of: the window of stiffness is known only for a change on
-    its own, the line at rest is that after the whole.
+    A bracket spans ``reach_m`` from steel to pipe.
     """
-    alone = whole is None or whole == change
+    rest = _resting(yard.resting, change)
+    return tuple(
+        _part(yard, change, number, part, rest, reach_m)
+        for number, part in enumerate(parts(change))
+    )
+
+
+def _part(
+    yard: Yard,
+    whole: Change,
+    number: int,
+    change: Change,
+    rest: tuple[AtRest | None, str],
+    reach_m: float,
+) -> Installation:
     span = yard.resting.span
     stated, at_m = stated_stiffness(change), station_of(change, span)
-    window = _window(yard, change) if alone else None
+    window = stiffness_window(yard.field, whole, number, yard.bands, yard.goal, yard.scatter)
     below = window.fails_below if window else None
     above = window.fails_above if window else None
     to_header = on_header(span)
-    resting, refused = _resting(yard.resting, whole or change)
+    resting, refused = rest
     return Installation(
         at_m=at_m,
         stiffness_n_per_m=stated,
+        kept=window.kept_as_drawn if window else None,
         fails_below_n_per_m=None if below is None else _scaled(stated, below),
         fails_above_n_per_m=None if above is None else _scaled(stated, above),
         brackets=_brackets(stated, span, reach_m, yard.units, to_header=to_header),
@@ -163,12 +176,6 @@ def installation(
     )
 
 
-def _window(yard: Yard, change: Change) -> StiffnessWindow | None:
-    return stiffness_window(
-        yard.field, change, yard.bands, yard.goal, yard.stiffness_factor, yard.place_m
-    )
-
-
 def _holding(change: Change, span: Span) -> dict[str, float]:
     """N/m by direction that the change puts at its station; a moved support brings its own."""
     if isinstance(change, MoveSupport):
@@ -179,7 +186,7 @@ def _holding(change: Change, span: Span) -> dict[str, float]:
 
 def station_of(change: Change, span: Span) -> float | None:
     """Where a change is put in; None where it has no one place."""
-    if isinstance(change, AddSupport | AddMass):
+    if isinstance(change, AddSupport | AddMass | AddAbsorber):
         return change.at_m
     if isinstance(change, MoveSupport | MoveMass):
         return change.to_m

@@ -42,6 +42,7 @@ def _one(found: Installation) -> Document:
     return {
         "at_m": found.at_m,
         "stiffness_needed": _stiffness(found.stiffness_n_per_m),
+        "kept_as_drawn": found.kept,
         "fails_below": _stiffness(found.fails_below_n_per_m),
         "fails_above": _stiffness(found.fails_above_n_per_m),
         "braced_to": "header" if found.to_header else "structure",
@@ -111,7 +112,11 @@ def stiffness_lines(found: Installation, units: str, fold: Fold = paragraph) -> 
     text = [f"Draw it {_shown(needed, units)}."]
     below, above = found.fails_below_n_per_m, found.fails_above_n_per_m
     if below is None:
-        text.append("How much less would do was not counted for it.")
+        text.append(
+            "How much less would do was not counted."
+            if found.kept is None
+            else "Even so drawn it does not reach the chance wanted, as installed."
+        )
     elif not any(below.values()):
         text.append("Softer does no harm.")
     else:

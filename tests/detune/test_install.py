@@ -9,8 +9,17 @@ import numpy as np
 import pytest
 
 from fieldkit.detune.excitation import Excitation, Goal
-from fieldkit.detune.fixes import AddMass, AddSupport, MoveSupport, StiffenSupport
-from fieldkit.detune.install import Yard, installation, installations, yard
+from fieldkit.detune.fixes import (
+    AddAbsorber,
+    AddMass,
+    AddSupport,
+    AllOf,
+    Change,
+    ChangeSpeed,
+    MoveSupport,
+    StiffenSupport,
+)
+from fieldkit.detune.install import Installation, Yard, installations, yard
 from fieldkit.detune.window import SHARES, StiffnessWindow
 from fieldkit.span.layout import Leg, Span, State, Support
 from fieldkit.span.materials import material
@@ -44,6 +53,12 @@ def stand(excitation: Excitation, *, running: State = HOT, pipe: Span | None = N
     return yard(pipe or span(), COLD, running, None, (excitation,), goal)
 
 
+def installation(stands: Yard, change: Change) -> Installation:
+    """Of a change with one part."""
+    (found,) = installations(stands, change)
+    return found
+
+
 def test_chance_falls_where_the_closed_form_says():
     """A pinned span with a spring in the middle: the band ends at the frequency of K = 4 k_span, so
     that softer springs leave the first mode in it. Prior lengths, modulus and wall blur it by 2 %
@@ -62,6 +77,9 @@ def test_chance_falls_where_the_closed_form_says():
     found = installation(stands, change)
     assert found.fails_below_n_per_m["vertical"] == pytest.approx(at, rel=0.3)
     assert found.fails_below_n_per_m["lateral"] == found.fails_below_n_per_m["vertical"]
+    assert found.kept
+    short = installation(stands, AddSupport(LENGTH_M / 2, at / 3, at / 3))
+    assert (short.kept, short.fails_below_n_per_m) == (False, None)
 
 
 def test_a_stiffness_may_also_be_too_much():
@@ -181,19 +199,21 @@ def test_a_branch_is_braced_to_its_header():
 
 
 def test_parts_of_a_change_each_get_theirs():
-    """Whatever has ``parts`` is installed part by part; at rest the whole stands."""
-
-    class Both:
-        kind = "pair"
-        parts = (AddSupport(2.0, 4e6), AddSupport(4.0, 4e6))
-
-        def apply(self, pipe: Span) -> Span:
-            return self.parts[1].apply(self.parts[0].apply(pipe))
-
-        def as_json(self) -> dict[str, object]:
-            return {}
-
-    stands = stand(Excitation("fan", None, (1.0,), (5.0, 9.0)))
-    first, second = installations(stands, Both())
+    """At rest the whole stands; each part's window is counted with the other as drawn."""
+    stands = stand(Excitation("fan", None, (1.0,), (5.0, 12.0)))
+    both = AllOf((AddSupport(2.0, 4e6, 4e6), AddSupport(4.0, 4e6, 4e6)))
+    first, second = installations(stands, both)
     assert (first.at_m, second.at_m) == (2.0, 4.0)
     assert first.at_rest.after.sag_m == second.at_rest.after.sag_m
+    alone = installation(stands, AddSupport(2.0, 4e6, 4e6))
+    assert first.at_rest.after.sag_m < alone.at_rest.after.sag_m
+    assert first.fails_below_n_per_m["vertical"] < alone.fails_below_n_per_m["vertical"]
+
+
+def test_speeds_and_absorbers_have_nothing_to_hold():
+    stands = stand(Excitation("fan", None, (1.0,), (5.0, 9.0)))
+    speed = installation(stands, ChangeSpeed("fan", 10.0, 11.0))
+    assert (speed.at_m, speed.heat, speed.brackets) == (None, {}, ())
+    absorber = installation(stands, AddAbsorber(2.0, 3.0, 1e4, 20.0))
+    assert absorber.stiffness_n_per_m == {}
+    assert absorber.at_m == 2.0
