@@ -6,6 +6,7 @@ from typing import TYPE_CHECKING
 
 from fieldkit.capture import blow as verdicts
 from fieldkit.capture.guide import READING
+from fieldkit.capture.meter import decibels
 from fieldkit.capture.snapshot import ENDED, OPENING, PAUSED, RUNNING, WAITING
 from fieldkit.capture.trigger import ARMED, LISTENING, RECORDING
 from fieldkit.ui.plots import SHORT, mode_cells
@@ -49,7 +50,8 @@ def headline(look: TapLook, verdict_age_s: float) -> tuple[str, str, str]:
     guide, latest = look.guide, look.guide.latest
     if latest is not None and verdict_age_s < VERDICT_S and guide.phase != RECORDING:
         tone = GOOD if latest.counts else BAD
-        return _VERDICTS[latest.verdict.kind], _result(latest), tone
+        below = sentence(latest.verdict.change) or "It counts. Wait until it is armed again."
+        return _VERDICTS[latest.verdict.kind], below, tone
     return _phase(guide)
 
 
@@ -66,8 +68,15 @@ def _phase(guide: GuideSnapshot) -> tuple[str, str, str]:
     if guide.phase == ARMED and guide.worth.more == 0 and not guide.estimating:
         return "enough", "d goes to the next direction or place, s keeps it all.", GOOD
     if guide.phase == ARMED:
-        return "tap now", "Strike once, then let it ring.", GO
+        return "tap now", f"Strike once, then let it ring.{_armed_at(guide)}", GO
     return "wait", "Until it is quiet again.", CALM
+
+
+def _armed_at(guide: GuideSnapshot) -> str:
+    """Where the line in the level meter stands."""
+    if guide.threshold is None:
+        return ""
+    return f" Armed at ┊ {decibels(guide.threshold.size):.0f} dB."
 
 
 def side_lines(look: TapLook) -> list[str]:
