@@ -12,7 +12,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from fieldkit.detune.excitation import Band, Excitation, Goal, bands, excitation_band
-from fieldkit.detune.known_modes import COMPUTED, MEASURED, KnownMode
+from fieldkit.detune.known_modes import DESCRIBED, MEASURED, KnownMode
 from fieldkit.detune.magnification import Amplification, Doubtful, amplification
 
 RESONANCE, NEAR, FORCED, CANNOT_TELL = "resonance", "near", "forced", "cannot tell"
@@ -24,6 +24,8 @@ STRONG = 0.05
 MOST_LINES = 6
 SAME_FREQUENCY = 0.005
 FAR_STRONGER = 2.0
+WORTH_SAYING = 1.05
+"""Ends of an interval that differ by more are told with the mode."""
 
 
 @dataclass(frozen=True)
@@ -96,7 +98,7 @@ def measured_in_bands(
         return ()
     found = []
     for mode in modes:
-        if mode.origin != COMPUTED:
+        if not mode.computed:
             band = min(kept, key=lambda b: b.separation(mode.hz))
             found.append(BandCheck(mode, band, band.holds(mode.hz)))
     return tuple(found)
@@ -148,6 +150,12 @@ def _diagnosed(
     found = amplification(
         Doubtful.about(line.frequency_hz, line.sd_hz), mode.frequency, mode.damping
     )
+    if mode.origin == DESCRIBED:
+        words = (
+            f"Cannot tell: {sits}; nothing was measured on this pipe, and how stiff its supports "
+            f"are decides where {_named(mode)} lies"
+        )
+        return Diagnosis(line, order, mode, None, CANNOT_TELL, words, _TAP_FIRST)
     verdict = _verdict(found, goal)
     if order is None and line.steady is not True and verdict != FORCED:
         level = "does not hold its level" if line.steady is False else "is hardly a line"
@@ -169,8 +177,8 @@ def _why_unknown(line: Line, modes: Sequence[KnownMode], goal: Goal) -> tuple[st
         )
     if not modes:
         return (
-            "no natural frequency of this pipe is known",
-            "tap the pipe, best as it runs: full, warm and with the machine stopped",
+            "no natural frequency of this pipe as it runs is known",
+            _TAP_FIRST,
         )
     if not _seen_by(line, modes):
         return (
@@ -209,6 +217,7 @@ _HEADINGS = {
     FORCED: "Forced, off resonance",
     CANNOT_TELL: "Cannot tell",
 }
+_TAP_FIRST = "tap the pipe, best as it runs: full, warm and with the machine stopped"
 _STIRRED = (
     "a tap in the same direction tells whether this is a mode; count it as one, not as a force"
 )
@@ -223,9 +232,8 @@ def _beside(mode: KnownMode, found: Amplification, verdict: str, goal: Goal) -> 
         return f"{apart:.0f} % from {_named(mode)}, the nearest: {times}"
     if verdict == CANNOT_TELL:
         return (
-            f"and {_named(mode)} is too uncertain ({mode.frequency.low:.1f} to "
-            f"{mode.frequency.high:.1f} Hz) to be put within or beyond {100 * goal.margin:.0f} % "
-            f"of it: {times}"
+            f"and {_named(mode)} is too uncertain to be put within or beyond "
+            f"{100 * goal.margin:.0f} % of it: {times}"
         )
     return f"{apart:.1f} % from {_named(mode)}: {times}"
 
@@ -237,7 +245,10 @@ def _interval(found: Amplification) -> str:
 
 def _named(mode: KnownMode) -> str:
     direction = f"{mode.direction} " if mode.direction else ""
-    said = "" if mode.origin == MEASURED else f" ({mode.origin})"
+    notes = [] if mode.origin == MEASURED else [mode.origin]
+    if mode.frequency.high > WORTH_SAYING * mode.frequency.low:
+        notes.append(f"{mode.frequency.low:.1f} to {mode.frequency.high:.1f} Hz")
+    said = f" ({', '.join(notes)})" if notes else ""
     return f"the {direction}mode at {mode.hz:.1f} Hz{said}"
 
 

@@ -14,6 +14,8 @@ from fieldkit.span.layout import State
 MEASURED = "measured"
 SEEN_RUNNING = "seen running"
 COMPUTED = "computed"
+DESCRIBED = "by its description"
+"""Computed where nothing was measured: supports as they usually are."""
 
 ASSUMED_DAMPING = (0.001, 0.05)
 """Where none was measured: bare welded pipe to insulated pipe on many supports, at vibration
@@ -56,7 +58,7 @@ class KnownMode:
     damping: Doubtful
     direction: str | None
     origin: str
-    """MEASURED, SEEN_RUNNING or COMPUTED."""
+    """MEASURED, SEEN_RUNNING, COMPUTED or DESCRIBED."""
     damping_measured: bool
 
     @property
@@ -67,7 +69,7 @@ class KnownMode:
     @property
     def computed(self) -> bool:
         """Whether only the model says so."""
-        return self.origin == COMPUTED
+        return self.origin in (COMPUTED, DESCRIBED)
 
 
 def alike(tapped: State, running: State) -> bool:
@@ -118,7 +120,8 @@ def _computed(mode: Spread, measured: Sequence[MeasuredMode]) -> KnownMode:
     own = [m for m in measured if m.direction in (mode.direction, None)] or list(measured)
     nearest = sorted(own, key=lambda m: abs(m.frequency_hz / mode.median_hz - 1))
     damping, stated = _damping(nearest)
-    return KnownMode(Doubtful(mode.median_hz, spread), damping, mode.direction, COMPUTED, stated)
+    origin = COMPUTED if measured else DESCRIBED
+    return KnownMode(Doubtful(mode.median_hz, spread), damping, mode.direction, origin, stated)
 
 
 def _damping(candidates: Iterable[MeasuredMode]) -> tuple[Doubtful, bool]:

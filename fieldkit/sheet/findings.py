@@ -173,11 +173,11 @@ def band_words(check: BandCheck) -> str:
 
 def severity_lines(found: Sequence[RunningFindings], units: str = "SI") -> list[str]:
     """Screening of every recording, or why there is none; each criterion told once."""
-    said: list[str] = []
+    refused = dict.fromkeys(one.screened.refused for one in found if one.screened.refused)
+    said = [line for reason in refused for line in paragraph(f"{reason}.", 2)]
     criteria: dict[str, Screening] = {}
     for running in found:
         if running.screened.refused:
-            said += paragraph(running.screened.refused + ".", 2)
             continue
         said += paragraph(f"{running.file}{_direction(running)}", 2)
         said += table(
@@ -191,7 +191,8 @@ def severity_lines(found: Sequence[RunningFindings], units: str = "SI") -> list[
     sources = [
         line for one in criteria.values() for line in paragraph(criterion_words(one), 2, "- ")
     ]
-    return ["", "Severity, screening only", *said, *sources, *paragraph(SCREENING_CAUTION, 2)]
+    caution = paragraph(SCREENING_CAUTION, 2) if criteria else []
+    return ["", "Severity, screening only", *said, *sources, *caution]
 
 
 def _direction(running: RunningFindings) -> str:

@@ -23,8 +23,8 @@ def in_short(one: Diagnosis) -> str:
     """``Resonance: 47.2 Hz on pump 2x, mode 46.3 Hz 1.9 % away: 26x (18–40)``."""
     on = f"on {one.excitation}" if one.excitation else "on no known order"
     start = f"{HEADINGS[one.verdict]}: {hertz(one.line.frequency_hz)} Hz {on}"
-    if one.mode is None or one.apart is None:
-        return f"{start}, {one.reason.rpartition('; ')[2]}"
+    if one.mode is None or one.apart is None or one.amplification is None:
+        return f"{start}, {one.reason.rpartition('; ')[2].partition(',')[0]}"
     return f"{start}, mode {hertz(one.mode.hz)} Hz {100 * one.apart:.1f} % away: {times(one)}"
 
 

@@ -22,6 +22,7 @@ from fieldkit.detune.diagnosis import (
     worst,
 )
 from fieldkit.detune.excitation import Excitation, Goal
+from fieldkit.detune.field import field
 from fieldkit.detune.known_modes import (
     ASSUMED_DAMPING,
     COMPUTED,
@@ -30,9 +31,14 @@ from fieldkit.detune.known_modes import (
     known_modes,
 )
 from fieldkit.detune.magnification import Doubtful, amplification, magnification
+from fieldkit.detune.match import model_modes
+from fieldkit.detune.reduced import build
+from fieldkit.detune.unknowns import unknowns_of
 from fieldkit.detune.verdict import JudgedMode
 from fieldkit.signal.modes import MeasuredMode
 from fieldkit.span.layout import State
+from fieldkit.span.modes import span_modes
+from tests.detune.lines import RUNNING, TAPPED, UP_TO_HZ, booster
 
 EMPTY = State("tapped", (0.0, 0.0))
 FULL = State("running", (1.0, 1.0))
@@ -91,10 +97,20 @@ def test_the_margin_for_measured_frequencies_is_the_job_s():
 
 def test_a_wide_prediction_cannot_tell_and_asks_for_a_tap_as_it_runs():
     """A computed mode anywhere from 35 to 65 Hz says nothing of 47.2 Hz."""
-    found = only(47.2, model=[computed(35.0, 47.697, 65.0)])
+    far = mode(110.0, state="tapped")
+    found = only(47.2, far, model=[computed(35.0, 47.697, 65.0)])
     assert found.verdict == CANNOT_TELL
     assert "35.0 to 65.0 Hz" in found.reason
     assert "full and warm" in found.measure_next
+
+
+@pytest.mark.parametrize("median_hz", [47.0, 90.0])
+def test_where_nothing_was_measured_neither_resonance_nor_forced_is_claimed(median_hz):
+    """However narrow the usual supports make the computed mode, they may not be the usual ones."""
+    found = only(47.2, model=[computed(0.98 * median_hz, median_hz, 1.02 * median_hz)])
+    assert (found.verdict, found.amplification) == (CANNOT_TELL, None)
+    assert "nothing was measured on this pipe" in found.reason
+    assert found.measure_next.startswith("tap the pipe")
 
 
 def test_a_tapped_mode_stands_for_the_running_one_only_in_the_same_state():
@@ -149,7 +165,7 @@ def test_a_steady_line_on_no_order_asks_what_turns_there():
     ("hz", "measured", "says"),
     [
         (150.0, [mode(46.0)], "looked for up to 120 Hz only"),
-        (47.2, [], "no natural frequency of this pipe is known"),
+        (47.2, [], "no natural frequency of this pipe as it runs is known"),
         (47.2, [mode(46.0, direction="lateral")], "no mode was measured in vertical direction"),
     ],
 )
@@ -224,3 +240,29 @@ def test_the_interval_of_a_resonance_follows_the_damping():
     found = amplification(Doubtful(50.0, 0.0), Doubtful(50.0, 0.0), Doubtful(0.01, 0.2))
     assert found.low == pytest.approx(50 * np.exp(-1.6449 * 0.2), rel=0.03)
     assert found.high == pytest.approx(50 * np.exp(1.6449 * 0.2), rel=0.03)
+
+
+def test_what_a_matched_model_says_holds_on_the_hidden_span():
+    """Lines beside the true running modes of a span that was tapped empty.
+
+    The true magnification, from the hidden frequency and damping, lies inside the interval in most
+    cases, and no line within 5 % of a true mode is called forced.
+    """
+    span, truth, found = booster()
+    unknowns = unknowns_of(span, (TAPPED, RUNNING))
+    model = build(span, RUNNING, unknowns, UP_TO_HZ)
+    computed_modes = model_modes(field(span, model, found.ensemble.standard))
+    known = known_modes(found.measured, computed_modes, TAPPED, RUNNING)
+    goal, inside, tried = Goal(up_to_hz=UP_TO_HZ), 0, 0
+    for true in span_modes(truth, RUNNING, 0.6 * UP_TO_HZ):
+        if true.direction not in ("vertical", "lateral"):
+            continue
+        for ratio in (0.95, 0.98, 1.02, 1.05):
+            at = line(ratio * true.frequency_hz, direction=true.direction)
+            told = diagnose([at], known, (), goal)[0]
+            assert told.verdict != FORCED
+            exact = float(magnification(ratio, 0.01))
+            inside += told.amplification.low <= exact <= told.amplification.high
+            tried += 1
+    assert tried >= 16
+    assert inside >= 0.8 * tried
