@@ -16,6 +16,7 @@ from fieldkit.detune.fixes import (
 )
 from fieldkit.quantity import show
 from fieldkit.span.layout import Span
+from fieldkit.span.supports import on_header
 
 
 def summary(change: Change, span: Span, units: str) -> str:
@@ -28,7 +29,8 @@ def summary(change: Change, span: Span, units: str) -> str:
         return _absorber(change, units)
     if isinstance(change, AddSupport):
         stiffness = _stiffness(change, units)
-        return f"add a support at {_length(change.at_m, units)}: {stiffness}"
+        what = "brace it to the header" if on_header(span) else "add a support"
+        return f"{what} at {_length(change.at_m, units)}: {stiffness}"
     if isinstance(change, StiffenSupport):
         stiffness = _stiffness(change, units)
         return f"stiffen the {_support(span, change.index, units)} to {stiffness} in all"

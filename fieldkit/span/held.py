@@ -76,18 +76,3 @@ class Holding:
 def holding(span: Span, cold: State, hot: State) -> Holding:
     """The span with its growth from one state to the other."""
     return Holding(span, cold, hot, thermal_growth(span, cold, hot))
-
-
-def added_support_load(
-    span: Span, cold: State, hot: State, at_m: float, axis: str, stiffness_n_per_m: float
-) -> AddedLoad:
-    """Load on a spring set free of force in one state, once the line is in the other."""
-    return holding(span, cold, hot).load(at_m, axis, stiffness_n_per_m)
-
-
-def restraint_force(
-    span: Span, cold: State, hot: State, at_m: float, axis: str, stiffness_n_per_m: float
-) -> float:
-    """Force in newtons by which a spring along ``axis``, set in the cold state, holds heat back."""
-    load = added_support_load(span, cold, hot, at_m, axis, stiffness_n_per_m)
-    return float(np.linalg.norm(load.heat_n))

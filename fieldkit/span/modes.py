@@ -191,7 +191,7 @@ def _motions(
         moved.append((line, (np.sqrt(item.mass_kg) * (rows @ vectors))[None]))
     split = [[axes @ motion for axes in _axes(line)] for line, motion in moved]
     vertical, lateral, along = (
-        np.concatenate([part.reshape(part.shape[0] * part.shape[1], part.shape[2]) for part in parts])
+        np.concatenate([part.reshape(len(part) * part.shape[1], part.shape[2]) for part in parts])
         for parts in zip(*split, strict=True)
     )
     return vertical, lateral, along

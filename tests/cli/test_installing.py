@@ -27,9 +27,9 @@ def test_every_change_says_what_it_takes_to_install_it():
             assert len(found["all_of"]) == len(fix["change"]["all_of"])
             continue
         assert set(found) == {
-            "at_m", "stiffness_needed", "kept_as_drawn", "fails_below", "fails_above", "braced_to", "reach_m",
-            "brackets", "added_load_n", "sag_mm", "bending_stress_mpa", "span_rule",
-            "thermal_movement_mm", "thermal_force_n", "held", "cautions",
+            "at_m", "stiffness_needed", "kept_as_drawn", "fails_below", "fails_above",
+            "braced_to", "reach_m", "brackets", "added_load_n", "sag_mm", "bending_stress_mpa",
+            "span_rule", "thermal_movement_mm", "thermal_force_n", "held", "cautions",
         }  # fmt: skip
         assert len(found["sag_mm"]) == len(found["bending_stress_mpa"]) == 2
         assert "responsible piping engineer" in found["cautions"][-1]

@@ -21,6 +21,7 @@ from fieldkit.detune.fixes import (
 )
 from fieldkit.detune.install import Installation, Yard, installations, yard
 from fieldkit.detune.window import SHARES, StiffnessWindow
+from fieldkit.detune.wording import summary
 from fieldkit.span.layout import Leg, Span, State, Support
 from fieldkit.span.materials import material
 from fieldkit.span.pipes import standard_pipe
@@ -217,3 +218,14 @@ def test_speeds_and_absorbers_have_nothing_to_hold():
     absorber = installation(stands, AddAbsorber(2.0, 3.0, 1e4, 20.0))
     assert absorber.stiffness_n_per_m == {}
     assert absorber.at_m == 2.0
+
+
+def test_a_support_of_a_branch_is_worded_as_a_brace():
+    branch = Span(
+        standard_pipe("NPS 1", "80"), material("carbon steel"), (Leg((0.0, 1.0, 0.0), 0.45),),
+        (Support(0.0, "branch"),),
+    )  # fmt: skip
+    assert summary(AddSupport(0.4, 1e6), branch, "SI").startswith(
+        "brace it to the header at 0.40 m"
+    )
+    assert summary(AddSupport(0.4, 1e6), span(), "SI").startswith("add a support at 0.40 m")

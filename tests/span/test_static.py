@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 from fieldkit.errors import Refusal
-from fieldkit.span.held import added_support_load, restraint_force
+from fieldkit.span.held import holding
 from fieldkit.span.layout import Leg, PointMass, Span, State, Support
 from fieldkit.span.materials import material
 from fieldkit.span.pipes import standard_pipe
@@ -113,7 +113,7 @@ def test_a_spring_against_growth_carries_k_times_what_it_lets_through(stiffness)
     pipe_flexibility = LENGTH_M / (modulus * span.pipe.wall_area_m2) + 1 / STIFF
     growth = span.material.expansion_per_k * 60.0 * LENGTH_M
     expected = growth / (pipe_flexibility + 1 / stiffness)
-    force = restraint_force(span, COLD, HOT, LENGTH_M, "axial", stiffness)
+    force = np.linalg.norm(holding(span, COLD, HOT).load(LENGTH_M, "axial", stiffness).heat_n)
     assert force == pytest.approx(expected, rel=1e-3)
 
 
@@ -124,7 +124,7 @@ def test_nothing_moves_between_equal_states():
 def test_a_new_prop_under_an_empty_line_carries_five_eighths_of_the_water():
     """Rigid prop at mid span, set empty, then filled: 5/8 of w L (beam tables, from memory)."""
     span = pinned()
-    load = added_support_load(span, COLD, FILLED, LENGTH_M / 2, "vertical", STIFF)
+    load = holding(span, COLD, FILLED).load(LENGTH_M / 2, "vertical", STIFF)
     water = GRAVITY_M_PER_S2 * span.pipe.bore_area_m2 * span.contents_density_kg_per_m3
     assert load.filling_n == pytest.approx([0, 0, 5 / 8 * water * LENGTH_M], rel=5e-3, abs=1e-6)
     assert load.heat_n == pytest.approx([0.0, 0.0, 0.0], abs=1e-6)
@@ -136,7 +136,7 @@ def test_a_rigid_stop_takes_the_whole_thermal_force():
     modulus = span.material.modulus_at(HOT.temperature_k)
     give = LENGTH_M / (modulus * span.pipe.wall_area_m2) + 1 / STIFF
     expected = span.material.expansion_per_k * 60.0 * LENGTH_M / give
-    load = added_support_load(span, COLD, HOT, LENGTH_M, "axial", math.inf)
+    load = holding(span, COLD, HOT).load(LENGTH_M, "axial", math.inf)
     assert load.heat_n == pytest.approx([-expected, 0.0, 0.0], rel=1e-3)
 
 
