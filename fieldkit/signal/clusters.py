@@ -41,7 +41,7 @@ def limits_hz(parts: Sequence[Component], duration_s: float, top_hz: float) -> t
     ]
     low = min(p.frequency_hz - r for p, r in zip(parts, reach, strict=True))
     high = max(p.frequency_hz + r for p, r in zip(parts, reach, strict=True))
-    return max(low, 0.0), min(high, top_hz)
+    return max(min(low, top_hz - _LEAST_BINS / duration_s), 0.0), min(high, top_hz)
 
 
 def overlapping(part: Component, others: Sequence[Component], duration_s: float) -> list[Component]:

@@ -15,6 +15,8 @@ _STANDS_OUT = 5.0
 """Share of a tap's energy over the noise that is left, against the median tap's."""
 _OVER_NOISE = 3.0
 MANY_OF_ITS_OWN = 3
+LEAST_TO_COMPARE = 3
+"""Taps from which on one can be called odd."""
 _ALMOST_ALL = 0.9
 _RINGS = 0.2
 
@@ -41,7 +43,7 @@ def stand_out(
     A tap struck again unnoticed would take dozens. With fewer than three taps nobody can say which
     one is odd: none is.
     """
-    if len(left) < 3:
+    if len(left) < LEAST_TO_COMPARE:
         return ()
     energy = np.array([np.mean(t.samples**2) for t in left])
     noise = np.array([noise_power(t) for t in left])

@@ -11,10 +11,12 @@ from numpy.typing import NDArray
 from fieldkit.errors import Refusal
 from fieldkit.signal.audit import odd_taps
 from fieldkit.signal.bending import with_drift
+from fieldkit.signal.misfit import searched_beside_misfit
 from fieldkit.signal.polish import Fitted, polished
 from fieldkit.signal.preparation import Prepared, prepare
 from fieldkit.signal.pruning import pruned
-from fieldkit.signal.search import Found, search
+from fieldkit.signal.search import Found, overcrowded, search
+from fieldkit.signal.settling import with_later
 from fieldkit.signal.tones import tone_components
 from fieldkit.signal.traces import Component
 from fieldkit.signal.verdicts import Judged, hardly_decays, judged, rings_on
@@ -108,7 +110,13 @@ def estimate_modes(
         kept = [r for r, left_out in zip(long_enough, odd, strict=True) if not left_out]
         ready, found, fitted = fitted_modes(kept, low_hz, high_hz)
     verdicts = judged(
-        fitted, ready.traces, ready.lines, found.unresolved, quiet_before=ready.has_background
+        fitted,
+        ready.traces,
+        ready.lines,
+        () if found.crowded else found.unresolved,
+        quiet_before=ready.has_background,
+        surplus=[ready.surplus(f.part) for f in fitted],
+        crowded=found.crowded,
     )
     estimate = told(verdicts, found, ready, low_hz, high_hz)
     left_out = tuple(without_tap(int(i) + 1, len(long_enough)) for i in np.flatnonzero(odd))
@@ -120,14 +128,17 @@ def fitted_modes(
 ) -> tuple[Prepared, Found, tuple[Fitted, ...]]:
     """Search, elimination and last fits of all records together."""
     ready = prepare(records, low_hz, high_hz)
-    found = resolved(ready)
+    ready, found = resolved(ready)
     if found.odd:
         return ready, found, ()
-    if not ready.has_background:
+    if not ready.has_background and not found.crowded:
         ready = ready.with_noise_from(found.parts)
-        found = resolved(ready, found)
-    found = with_drift(ready.traces, found, ready.region)
+        ready, found = resolved(ready, found)
+    if not found.crowded:
+        found = with_drift(ready.traces, found, ready.region)
     found, fitted = polished(ready.traces, found, ready.region)
+    if found.crowded:
+        fitted = with_later(ready.traces, found.parts, fitted, ready.region)
     return ready, found, fitted
 
 
@@ -139,11 +150,16 @@ def without_tap(number: int, count: int) -> str:
     )
 
 
-def resolved(ready: Prepared, known: Found | None = None) -> Found:
-    """Search, then backward elimination."""
-    start = known.parts if known else tone_components(ready.lines, ready.traces)
-    found = search(ready.traces, start, ready.region)
-    return found if found.odd else pruned(ready.traces, found, ready.region)
+def resolved(ready: Prepared, known: Found | None = None) -> tuple[Prepared, Found]:
+    """Search, then backward elimination; with the noise they ended with."""
+    tones = tone_components(ready.lines, ready.traces)
+    found = search(ready.traces, known.parts if known else tones, ready.region)
+    if found.crowded and overcrowded(
+        with_drift(ready.traces, found, ready.region).parts, ready.traces
+    ):
+        heard, found = searched_beside_misfit(ready.traces, tones, ready.region)
+        ready = replace(ready, traces=heard)
+    return ready, found if found.odd else pruned(ready.traces, found, ready.region)
 
 
 def told(

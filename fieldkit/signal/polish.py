@@ -28,6 +28,8 @@ class Fitted:
     """Which of the fit's active components it is."""
     tap_fits: tuple[Fit, ...] = ()
     """Of each tap alone, where the poles differ between taps."""
+    later: Fitted | None = None
+    """From later in the decay, where that was looked at."""
 
 
 def polished(

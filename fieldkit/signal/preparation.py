@@ -12,7 +12,15 @@ from numpy.typing import NDArray
 from fieldkit.signal.background import NoiseDensity, noise_density
 from fieldkit.signal.decimation import decimate
 from fieldkit.signal.scan import Region
-from fieldkit.signal.tones import Line, background_lines, dies_away, wandering_density, wanders
+from fieldkit.signal.surplus import background_surplus
+from fieldkit.signal.tones import (
+    Line,
+    background_lines,
+    dies_away,
+    swing,
+    wandering_density,
+    wanders,
+)
 from fieldkit.signal.traces import Component, Trace, residual
 
 Real = NDArray[np.float64]
@@ -53,6 +61,16 @@ class Prepared:
     lines: tuple[Line, ...]
     region: Region
     has_background: bool
+    quiets: tuple[Trace | None, ...] = ()
+    """The different backgrounds at the analysis rate."""
+
+    def surplus(self, part: Component) -> float:
+        """What the backgrounds hold where a component stands, over the noise it was judged by."""
+        longest = max(t.duration_s for t in self.traces)
+        width_hz = max(part.half_power_hz, 1 / longest)
+        noise, at_hz = self.traces[0].noise, part.frequency_hz
+        found = [background_surplus(q, self.lines, noise, at_hz, width_hz) for q in self.quiets]
+        return float(np.mean(found)) if found else 1.0
 
     def with_noise_from(self, parts: Sequence[Component]) -> Prepared:
         """Noise density read anew from what the components leave."""
@@ -91,7 +109,8 @@ def prepare(records: Sequence[Record], low_hz: float, high_hz: float) -> Prepare
     )
     lines = distinct([g.lines for g in grounds.values()])
     has_background = all(g.noise is not None for g in grounds.values())
-    return Prepared(traces, lines, region, has_background)
+    quiets = tuple(g.trace for g in grounds.values())
+    return Prepared(traces, lines, region, has_background, quiets)
 
 
 @dataclass(frozen=True)
@@ -102,6 +121,8 @@ class Ground:
     lines: tuple[Line, ...] = ()
     wandering: NoiseDensity | None = None
     """Density of the lines that wander."""
+    trace: Trace | None = None
+    """The stretch itself."""
 
 
 def ground(samples: Real, rate_hz: float, top_hz: float) -> Ground:
@@ -113,7 +134,9 @@ def ground(samples: Real, rate_hz: float, top_hz: float) -> Ground:
     found = background_lines(samples, rate_hz, noise, top_hz)
     lasting = [line for line in found if not dies_away(line, trace)]
     lines = tuple(replace(line, wanders=wanders(line, trace)) for line in lasting)
-    return Ground(noise, lines, wandering_density(lines, trace))
+    density = wandering_density(lines, trace)
+    told = (replace(line, amplitude=swing(line, trace)) if line.wanders else line for line in lines)
+    return Ground(noise, tuple(told), density, trace)
 
 
 def rest(record: Record) -> float:

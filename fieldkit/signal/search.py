@@ -8,11 +8,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from fieldkit.signal.clusters import needed_gain, overlapping, span_s, surroundings
-from fieldkit.signal.leftovers import leftovers, stand_out
+from fieldkit.signal.leftovers import LEAST_TO_COMPARE, leftovers, stand_out
 from fieldkit.signal.likelihood import ROUGHLY, fit_before
 from fieldkit.signal.scan import MOST_AT_ONCE, Candidate, Region, scan, threshold
 from fieldkit.signal.scatter import freedom_price, looser, scattered
-from fieldkit.signal.traces import Component, Trace, component
+from fieldkit.signal.traces import Component, Trace, component, decay_energy
 
 _MOST_ROUNDS = 14
 _LOOKED_FOR_ODD_TAPS = (2, 3, 4)
@@ -20,6 +20,10 @@ _MOST_PARTS = 60
 _MOST_AT_A_TONE = 3
 _AS_NOISE = 1.15
 """Residual over expected noise variance of a fit that no other start would better."""
+NEARNESS = 0.1
+"""Relative distance in frequency up to which what is far weaker may belong to a strong mode."""
+FAR_WEAKER = 1e-2
+_MOST_SATELLITES = 1
 WANDER_REACH = 6e-3
 """Relative, how far from its typical frequency a machine's line is looked for."""
 
@@ -34,6 +38,8 @@ class Found:
     """Pairs of poles too near each other to be told apart; one component stands for both."""
     odd: tuple[int, ...] = ()
     """Taps that cannot be explained together with the others; the search ended there."""
+    crowded: bool = False
+    """True where a strong mode drew in more than can ring beside it; the search ended there."""
 
 
 def search(traces: Sequence[Trace], tones: Sequence[Component], region: Region) -> Found:
@@ -52,11 +58,27 @@ def search(traces: Sequence[Trace], tones: Sequence[Component], region: Region) 
         if not fresh or len(found.parts) > _MOST_PARTS:
             break
         before = found.parts
+        looked = len(traces) < LEAST_TO_COMPARE or number >= _LOOKED_FOR_ODD_TAPS[-1]
         for candidate in fresh:
             found = add(traces, found, candidate, region)
+            if looked and overcrowded(found.parts, traces):
+                return replace(found, crowded=True)
         if found.parts is before and len(fresh) < MOST_AT_ONCE:
             break
     return found
+
+
+def overcrowded(parts: Sequence[Component], traces: Sequence[Trace]) -> bool:
+    """True where several far weaker modes stand about a strong one: its decay is no exponential."""
+    modes = [p for p in parts if not p.steady]
+    if len(modes) <= _MOST_SATELLITES:
+        return False
+    frequency_hz = np.array([p.frequency_hz for p in modes])
+    energy = np.array([float(decay_energy(p, traces).sum()) for p in modes])
+    distance = np.abs(np.subtract.outer(frequency_hz, frequency_hz))
+    near = distance < NEARNESS * frequency_hz[:, None]
+    weaker = energy[None, :] < FAR_WEAKER * energy[:, None]
+    return bool(np.any(np.count_nonzero(near & weaker, axis=1) > _MOST_SATELLITES))
 
 
 def tried(candidate: Candidate, vain: Sequence[complex], traces: Sequence[Trace]) -> bool:

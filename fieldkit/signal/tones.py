@@ -26,6 +26,8 @@ _TURNS_AWAY = 0.3
 """Phase, in radians over a tap, by which a tone has to run off before its frequency follows."""
 _UNEXPLAINED = 1e-3
 _STANDS_OVER = 6.0
+WANDERING_WIDTH = 4.0
+"""Resolutions of the background over which the line of what wanders is spread."""
 _FARTHEST_WANDER = 6e-3
 
 
@@ -110,6 +112,16 @@ def wanders(line: Line, background: Trace) -> bool:
     whole = float(np.sum(np.abs(bins.data) ** 2))
     result = fit(bins, [], [tone], leftover_terms=1)
     return result.variance > _WANDERS and result.cost > _UNEXPLAINED * whole
+
+
+def swing(line: Line, background: Trace) -> float:
+    """Amplitude of all that stands about a line that wanders: more than its top shows."""
+    count = background.fast_whole
+    power = periodograms(background.samples[-count:], count, background.rate_hz)[0]
+    spacing_hz = background.rate_hz / count
+    apart_hz = np.abs(np.arange(len(power)) * spacing_hz - line.frequency_hz)
+    near = apart_hz < WANDERING_WIDTH * line.resolution_hz
+    return max(line.amplitude, float(np.sqrt(2 * power[near].sum() * spacing_hz)))
 
 
 def wandering_density(lines: Sequence[Line], background: Trace) -> NoiseDensity | None:

@@ -11,7 +11,9 @@ from numpy.typing import NDArray
 from fieldkit.signal.bending import stands_for
 from fieldkit.signal.covariance import Estimate, PoleEstimate, pole_estimate
 from fieldkit.signal.polish import Fitted
-from fieldkit.signal.tones import Line
+from fieldkit.signal.search import FAR_WEAKER, NEARNESS
+from fieldkit.signal.settling import amid
+from fieldkit.signal.tones import WANDERING_WIDTH, Line
 from fieldkit.signal.traces import Component, Trace, decay_energy
 
 Real = NDArray[np.float64]
@@ -27,7 +29,11 @@ _FAR_WANDER = 6e-3
 _MAINS_HZ = (50.0, 60.0)
 _TO_SPARE = 1.15
 _HARDLY_DECAYS = 0.5
+_MOST_UNSETTLED = 0.5
 _SURE = 0.1
+_DISTORTED = 1e-3
+"""Energy of a product of distortion over that of either of the two it comes from, at most."""
+_SAME_DECAY = 0.1
 
 
 @dataclass(frozen=True)
@@ -60,13 +66,26 @@ def judged(
     unresolved: Sequence[tuple[complex, complex]] = (),
     *,
     quiet_before: bool = False,
+    surplus: Sequence[float] = (),
+    crowded: bool = False,
 ) -> list[Judged]:
-    """Every fitted component, judged; ``quiet_before``: the lines before the blow are known."""
-    gains = [tap_gains(f, traces) for f in fitted]
+    """Every fitted component, judged.
+
+    ``quiet_before``: the lines before the blow are known. ``surplus``: what the background holds at
+    each component over the noise it was fitted with. ``crowded``: decays are not exactly
+    exponential.
+    """
+    over = surplus or [1.0] * len(fitted)
+    gains = [tap_gains(f, traces) / s for f, s in zip(fitted, over, strict=True)]
     strength = np.sum([decay_energy(f.part, traces) for f in fitted], axis=0)
+    whole = [
+        widened(pole_estimate(one, (gain > _SEEN).astype(float)), more)
+        for one, gain, more in zip(fitted, gains, over, strict=True)
+    ]
+    plain = [amid(e, f) for e, f in zip(whole, fitted, strict=True)]
     out = []
-    for one, gain in zip(fitted, gains, strict=True):
-        estimate = pole_estimate(one, (gain > _SEEN).astype(float))
+    for one, gain, first, estimate in zip(fitted, gains, whole, plain, strict=True):
+        doubtful = objection(first) or unsettled(estimate)
         twins = [pair for pair in unresolved if stands_for(one.part, pair) and not one.part.bend]
         for pair in twins:
             estimate = spanning(estimate, pair)
@@ -75,14 +94,90 @@ def judged(
         ringing = bool(steady) and quiet_before and rings_on(one.part, traces, lines)
         steady = hardly_decays(traces) if ringing else steady
         energy = decay_energy(one.part, traces)
-        doubtful = "" if twins and one.part.damping_ratio < LARGEST_DAMPING else objection(estimate)
+        others = [f.part for f in fitted if f is not one]
+        rest = [e for f, e in zip(fitted, plain, strict=True) if f is not one]
         reason = steady or doubtful or lonely(gain, strength - energy)
+        reason = reason or by_distortion(one.part, estimate, others, rest, traces)
+        reason = reason or (leftover(one.part, others, traces) if crowded else "")
         out.append(
             Judged(
                 one.part, estimate, energy, gain, reason, bool(steady) and not ringing, bool(twins)
             )
         )
     return out
+
+
+def widened(estimate: PoleEstimate, surplus: float) -> PoleEstimate:
+    """The estimate in a background of so many times the power."""
+    if surplus <= 1:
+        return estimate
+    frequency, damping, more = estimate.frequency_hz, estimate.damping_ratio, surplus**0.5
+    return replace(
+        estimate,
+        frequency_hz=replace(frequency, sd=more * frequency.sd),
+        damping_ratio=replace(damping, sd=more * damping.sd),
+    )
+
+
+def by_distortion(
+    part: Component,
+    own: PoleEstimate,
+    others: Sequence[Component],
+    estimates: Sequence[PoleEstimate],
+    traces: Sequence[Trace],
+) -> str:
+    """Why it is a product of two far stronger decays; empty where it is none.
+
+    What squares the vibration, in the sensor or in a support, rings at sum and difference of two
+    frequencies and decays as fast as both together.
+    """
+    energy = float(decay_energy(part, traces).sum())
+    strong = [
+        e
+        for o, e in zip(others, estimates, strict=True)
+        if not (o.steady or objection(e))
+        and energy < _DISTORTED * float(decay_energy(o, traces).sum())
+    ]
+    at, decay = own.frequency_hz, decay_rate(own)
+    for i, one in enumerate(strong):
+        for other in strong[i:]:
+            both = one.frequency_hz, other.frequency_hz
+            total, beat = both[0].value + both[1].value, abs(both[0].value - both[1].value)
+            sign = "+" if abs(total - at.value) < abs(beat - at.value) else "-"
+            apart_hz = min(abs(total - at.value), abs(beat - at.value))
+            first, second = decay_rate(one), decay_rate(other)
+            apart_per_s = abs(first.value + second.value - decay.value)
+            half_width_hz = decay.value / (2 * np.pi)
+            reach_hz = min(2 * (at.sd + both[0].sd + both[1].sd), half_width_hz) + half_width_hz
+            reach_per_s = 2 * (decay.sd + first.sd + second.sd) + _SAME_DECAY * decay.value
+            if apart_hz < reach_hz and apart_per_s < reach_per_s:
+                return (
+                    f"stands at {both[0].value:.5g} {sign} {both[1].value:.5g} Hz and decays as "
+                    "fast as both together: distortion of the sensor or of a support, no mode"
+                )
+    return ""
+
+
+def decay_rate(estimate: PoleEstimate) -> Estimate:
+    """Decay rate, per second."""
+    omega = 2 * np.pi * estimate.frequency_hz.value
+    zeta = estimate.damping_ratio
+    return Estimate(zeta.value * omega, zeta.sd * omega)
+
+
+def leftover(part: Component, others: Sequence[Component], traces: Sequence[Trace]) -> str:
+    """Why it belongs to a far stronger mode whose decay is not exactly exponential."""
+    energy = float(decay_energy(part, traces).sum())
+    for other in others:
+        ratio = float(decay_energy(other, traces).sum()) / max(energy, 1e-300)
+        near = abs(other.frequency_hz - part.frequency_hz) < NEARNESS * other.frequency_hz
+        if not other.steady and near and ratio * FAR_WEAKER > 1:
+            return (
+                f"stands beside the mode at {other.frequency_hz:.5g} Hz, "
+                f"{10 * np.log10(ratio):.0f} dB under it: what is left of a decay that is not "
+                "exactly exponential"
+            )
+    return ""
 
 
 def spanning(estimate: PoleEstimate, pair: tuple[complex, complex]) -> PoleEstimate:
@@ -144,6 +239,8 @@ def beside(part: Component, line: Line, duration_s: float) -> bool:
     reach = max(1 / duration_s, line.resolution_hz / 2, _LINE_WANDER * line.frequency_hz)
     if line.wanders or peak < line.amplitude:
         reach = max(reach, _FAR_WANDER * line.frequency_hz)
+    if line.wanders:
+        reach = max(reach, WANDERING_WIDTH * line.resolution_hz)
     return abs(line.frequency_hz - part.frequency_hz) < reach
 
 
@@ -187,11 +284,21 @@ def objection(estimate: PoleEstimate) -> str:
             f"damping ratio {zeta.value:.2f} is above {LARGEST_DAMPING}: what the contact or the "
             "background leaves, no vibration that rings"
         )
+    if zeta.value <= 0:
+        return "its damping cannot be told from none: too little energy over the background"
     if zeta.sd > LARGEST_RELATIVE_SD * zeta.value:
         return (
             f"damping uncertain by {100 * zeta.sd / zeta.value:.0f} %: too little energy over the "
             "background; tap harder, or record more taps"
         )
+    return ""
+
+
+def unsettled(estimate: PoleEstimate) -> str:
+    """What speaks against a mode whose decay changes."""
+    zeta = estimate.damping_ratio
+    if zeta.sd > _MOST_UNSETTLED * zeta.value:
+        return "no one decay: what comes later in it tells a quite different damping"
     return ""
 
 
