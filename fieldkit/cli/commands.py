@@ -10,7 +10,7 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import capturing, installing, output, spacing
+from fieldkit.cli import capturing, installing, mapping, output, spacing
 
 OPEN = "open"
 
@@ -255,6 +255,8 @@ def detune(
     as_json: AsJson = False,
     number: installing.FixNumber = None,
     reach: installing.Reach = None,
+    map_: mapping.MapOption = None,
+    holds: mapping.HeldOption = mapping.Held.BOTH,
 ) -> None:
     """Rank changes that move every mode out of every excitation band, with what each needs."""
     with output.answering(as_json=as_json):
@@ -263,6 +265,9 @@ def detune(
         from fieldkit.sheet import findings as told
         from fieldkit.sheet.origin import marked
 
+        if map_ is not None:
+            mapping.answer(job_file, map_, holds, as_json=as_json)
+            return
         reach_m = installing.reach_m(reach)
         work = workup.run(_load(job_file), output.progress())
         output.clear_progress()

@@ -7,7 +7,7 @@ from typing import Any
 
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.matched import Match, Pair, ParameterReading
-from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
+from fieldkit.detune.verdict import Detuning, JudgedMode, OtherCure, Verdict
 from fieldkit.job.document import Job
 from fieldkit.signal.modes import MeasuredMode, RefusedMode
 from fieldkit.signal.taps import Tap
@@ -100,7 +100,9 @@ def detune(found: Detuning, warnings: Sequence[str] = ()) -> Document:
         ],
         "modes": [_judged(mode, with_chance=True) for mode in found.modes],
         "chance_now": found.chance_now,
+        "tried": found.tried,
         "fixes": [_fix(verdict) for verdict in found.fixes],
+        "other_cures": [_other_cure(cure) for cure in found.other_cures],
         "warnings": [*found.warnings, *warnings],
     }
 
@@ -262,7 +264,23 @@ def _fix(verdict: Verdict) -> Document:
         "modes_after": [_judged(mode, with_chance=False) for mode in verdict.modes_after],
         "nearest": {"band": verdict.nearest.band, "separation": verdict.nearest.separation},
         "chance": verdict.chance,
+        "why": verdict.why,
+        "fails": verdict.fails,
         "cautions": list(verdict.cautions),
+    }
+
+
+def _other_cure(cure: OtherCure) -> Document:
+    return {
+        "kind": cure.kind,
+        "summary": cure.summary,
+        "change": cure.change.as_json() if cure.change else None,
+        "direction": cure.direction,
+        "chance": cure.chance,
+        "chance_means": cure.chance_means,
+        "amplification_now": cure.amplification_now,
+        "amplification_after": cure.amplification_after,
+        "cautions": list(cure.cautions),
     }
 
 

@@ -6,7 +6,7 @@ from collections.abc import Mapping, Sequence
 
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.matched import Match
-from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
+from fieldkit.detune.verdict import Detuning, JudgedMode, OtherCure, Verdict
 from fieldkit.job.document import Job
 from fieldkit.quantity import show
 from fieldkit.sheet.plain import clean, paragraph, percent, share, table, with_doubt
@@ -196,9 +196,13 @@ def detune(found: Detuning, units: str) -> list[str]:
     )
     lines += ["", f"Modes now, {found.state}, Hz", *_judged_table(found.modes)]
     lines += ["", f"Chance that every mode is clear now: {percent(found.chance_now)}", ""]
-    lines += ["Changes, best first"]
+    tried = f", the best of {found.tried:,} single changes tried" if found.tried else ""
+    lines += [f"Changes, best first{tried}"]
     for verdict in found.fixes:
         lines += fix(verdict)
+    if found.other_cures:
+        lines += ["", "Living with it: these do not clear the bands"]
+        lines += [line for cure in found.other_cures for line in other_cure(cure)]
     return lines + warnings(found.warnings)
 
 
@@ -214,7 +218,18 @@ def fix(verdict: Verdict) -> list[str]:
         f"chance {percent(verdict.chance)}: {verdict.summary}", 2, f"{verdict.rank:2d}. "
     )
     lines += paragraph(f"modes after {modes} Hz; {nearest}", 6)
+    for text in (verdict.why, verdict.fails):
+        lines += paragraph(text, 6) if text else []
     for caution in verdict.cautions:
+        lines += paragraph(caution, 6, "- ")
+    return lines
+
+
+def other_cure(cure: OtherCure) -> list[str]:
+    """A cure that promises something else than clear bands."""
+    chance = f"chance {percent(cure.chance)} that {cure.chance_means}: " if cure.chance else ""
+    lines = paragraph(f"{chance}{cure.summary}", 2, "- ")
+    for caution in cure.cautions:
         lines += paragraph(caution, 6, "- ")
     return lines
 

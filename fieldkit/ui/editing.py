@@ -124,8 +124,9 @@ class Editing(Files):
         text, verdict = self.desk.text, message.verdict
         if text is None:
             return
+        which = f"change {verdict.rank}" if verdict.rank else "the change from the map"
         question = (
-            f"Adopt change {verdict.rank} into the job?\n\n{verdict.summary}\n\n"
+            f"Adopt {which} into the job?\n\n{verdict.summary}\n\n"
             "The description then shows the pipe as it will be. The taps are of the pipe as it "
             "was: set them aside, build the change, tap again. Save under another name (S) to "
             "keep both; u takes it back."

@@ -31,6 +31,8 @@ class DetuneView(View):
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("a", "adopt", "Adopt", id="detune.adopt",
                 tooltip="Write the chosen change into the job, after asking"),
+        Binding("m", "map", "Map", id="detune.map",
+                tooltip="The chance of every place and size of a new support or mass"),
         Binding("i", "install", "Install", key_display="enter", id="detune.install",
                 tooltip="What it takes to install the chosen change (enter or i)"),
     ]  # fmt: skip
@@ -89,6 +91,20 @@ class DetuneView(View):
             self.notify("No change is chosen.", severity="warning")
             return
         self.app.push_screen(install_window(self.desk.workup, self.chosen))
+
+    def action_map(self) -> None:
+        """The chance map; the change chosen on it goes the way of any other."""
+        from fieldkit.ui.chance_screen import ChanceScreen
+
+        work = self.desk.workup
+        if self.desk.job is None or work is None or work.detuning is None:
+            self.notify("The map comes with the ranked changes.", severity="warning")
+            return
+        self.app.push_screen(ChanceScreen(self.desk.job, work.match), self._from_map)
+
+    def _from_map(self, verdict: Verdict | None) -> None:
+        if verdict is not None:
+            self.post_message(AdoptWanted(verdict))
 
     def action_adopt(self) -> None:
         """Ask for the chosen fix to be written into the job."""
