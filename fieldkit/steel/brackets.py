@@ -1,7 +1,9 @@
 """Brackets and how long they may be for the stiffness that is needed.
 
 Every bracket is a small plane frame on springs for what it stands on, in series with the clamp
-that holds the pipe. Pure stiffness: strength of steel, welds and anchors is for the designer.
+that holds the pipe. Loads meet every section without twisting it (a channel at its shear centre), a
+brace is a bar with pinned ends, and the bracket's own mass is left out. Pure stiffness: strength of
+steel, welds and anchors is for the designer.
 """
 
 from __future__ import annotations
