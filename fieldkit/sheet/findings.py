@@ -10,7 +10,7 @@ from fieldkit.detune.diagnosis import BandCheck, Diagnosis
 from fieldkit.detune.next_blow import Blow, figure, place
 from fieldkit.detune.severity import SCREENING_CAUTION, Screening
 from fieldkit.quantity import show
-from fieldkit.sheet.plain import paragraph, percent, table
+from fieldkit.sheet.plain import paragraph, percent
 from fieldkit.workup.findings import Findings, RunningFindings
 
 Document = dict[str, Any]
@@ -180,11 +180,8 @@ def severity_lines(found: Sequence[RunningFindings], units: str = "SI") -> list[
         if running.screened.refused:
             continue
         said += paragraph(f"{running.file}{_direction(running)}", 2)
-        said += table(
-            ("screening by", "level", "at Hz", "against"),
-            [screening_cells(one, units) for one in running.screened.screenings],
-            indent=4,
-        )
+        for one in running.screened.screenings:
+            said += paragraph(screening_words(one, units), 4, "- ")
         criteria |= {one.criterion: one for one in running.screened.screenings}
     if not said:
         return []
@@ -210,15 +207,11 @@ def screening_summary(found: RunningFindings) -> str:
     return f"Severity, screening only: {said}"
 
 
-def screening_cells(one: Screening, units: str = "SI") -> tuple[str, str, str, str]:
-    """Criterion, level, frequency, and where the level lies among the lines."""
-    at = f"{one.at_hz:.1f}" if one.at_hz is not None else "all"
-    return (
-        one.criterion,
-        f"{_shown(one.value, one.unit, units)} {one.measure}",
-        at,
-        _among(one, units),
-    )
+def screening_words(one: Screening, units: str = "SI") -> str:
+    """Criterion, level, and where that lies among the lines."""
+    at = f" at {one.at_hz:.1f} Hz" if one.at_hz is not None else ""
+    level = f"{_shown(one.value, one.unit, units)} {one.measure}{at}"
+    return f"{one.criterion}: {level}, {_among(one, units)}"
 
 
 def _among(one: Screening, units: str) -> str:
