@@ -9,12 +9,13 @@ from fieldkit.detune.contradictions import Contradiction
 from fieldkit.detune.diagnosis import BandCheck, Diagnosis
 from fieldkit.detune.next_blow import Blow, figure, place
 from fieldkit.detune.severity import SCREENING_CAUTION, Screening
+from fieldkit.detune.severity_lines import PSI_PA
 from fieldkit.quantity import show
 from fieldkit.sheet.plain import paragraph, percent
 from fieldkit.workup.findings import Findings, RunningFindings
 
 Document = dict[str, Any]
-_DIMENSIONS = {"m/s": "velocity", "Pa": "modulus"}
+_DIMENSIONS = {"m/s": "velocity"}
 
 
 def with_running(document: Document, found: Findings) -> Document:
@@ -232,7 +233,7 @@ def criterion_words(one: Screening) -> str:
 
 def _shown(value: float, unit: str, units: str) -> str:
     if unit == "Pa":
-        return f"{value / 1e6:.2g} MPa" if units == "SI" else f"{value / 6894.757:.2g} psi"
+        return f"{value / 1e6:.2g} MPa" if units == "SI" else f"{value / PSI_PA:.0f} psi"
     return show(value, _DIMENSIONS[unit], units, 3)
 
 

@@ -5,11 +5,12 @@ from __future__ import annotations
 import re
 from typing import TYPE_CHECKING
 
-from fieldkit.ui.words import DASH, hertz
+from fieldkit.ui.words import DASH, hertz, sentence
 
 if TYPE_CHECKING:
     from fieldkit.detune.diagnosis import Diagnosis
     from fieldkit.ui.desk import Desk
+    from fieldkit.workup.findings import Findings
 
 HEADINGS = {
     "resonance": "Resonance",
@@ -48,3 +49,28 @@ def first_verdict(desk: Desk) -> Diagnosis | None:
     """The verdict of the whole job that matters most."""
     found = desk.workup.findings if desk.workup else None
     return found.top if found else None
+
+
+def details(found: Findings, units: str) -> str:
+    """Every verdict, every screening and where each criterion comes from, as paragraphs."""
+    from fieldkit.detune.severity import SCREENING_CAUTION
+    from fieldkit.sheet.findings import band_words, criterion_words, screening_words
+
+    said: list[str] = []
+    criteria: dict[str, str] = {}
+    for running in found.running:
+        for one in running.diagnoses:
+            sensor = f" ({one.line.direction} sensor)" if one.line.direction else ""
+            said += [f"{sentence(one.reason)}{sensor}", f"→ {sentence(one.measure_next)}", ""]
+    said += [sentence(band_words(check)) for check in found.band_checks]
+    for running in found.running:
+        directions = {one.line.direction for one in running.diagnoses} - {None}
+        heading = ", ".join(
+            ("Severity, screening only", running.file, *sorted(map(str, directions)))
+        )
+        said += ["", heading]
+        said += [f"- {screening_words(one, units)}" for one in running.screened.screenings]
+        said += [sentence(running.screened.refused)] if running.screened.refused else []
+        criteria |= {one.criterion: criterion_words(one) for one in running.screened.screenings}
+    said += ["", *(sentence(words) for words in criteria.values())]
+    return "\n".join([*said, "", SCREENING_CAUTION] if criteria else said)

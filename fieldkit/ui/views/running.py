@@ -10,7 +10,7 @@ from textual.containers import Horizontal
 from textual.widgets import DataTable
 
 from fieldkit.detune.excitation import excitation_band
-from fieldkit.ui.diagnosis_words import in_short, times
+from fieldkit.ui.diagnosis_words import details, in_short, times
 from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.messages import AddWanted, EditWanted
 from fieldkit.ui.plots import mode_cells, running_marks, shaded, spectrum_curve, unit_of
@@ -163,14 +163,12 @@ class RunningView(View):
 
     def action_severity(self) -> None:
         """Every verdict and every screening, with its source."""
-        from fieldkit.sheet.findings import diagnosis_lines, severity_lines
-
         found = self.desk.workup.findings if self.desk.workup else None
         if found is None or not found.running:
             self.notify("Nothing has been read yet.", severity="warning")
             return
-        text = [*diagnosis_lines(found), *severity_lines(found.running, self.desk.units)]
-        self.app.push_screen(TextScreen("Resonance or forced, and severity", "\n".join(text[1:])))
+        text = details(found, self.desk.units)
+        self.app.push_screen(TextScreen("Resonance or forced, and severity", text))
 
     def _modes_in_words(self, found: RunningReading) -> str:
         """What the second table holds, or why there is none."""
