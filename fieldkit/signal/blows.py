@@ -8,9 +8,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.bursts import is_burst
 from fieldkit.signal.contact import (
     Later,
     contact_end_s,
+    early_change_s,
     later_blows,
     overlooked,
     sharpest,
@@ -21,7 +23,7 @@ from fieldkit.signal.prediction import Errors, Predictor, backward_predictor, er
 from fieldkit.signal.rails import blow_clipped_at
 from fieldkit.signal.restrikes import LONGEST_GAP_S, Restrike, Stretch, restrikes
 from fieldkit.signal.ringing import Ringing, ringing
-from fieldkit.signal.swells import swells
+from fieldkit.signal.swells import APART_S, Swell, swells
 
 Real = NDArray[np.float64]
 
@@ -51,6 +53,8 @@ class Blow:
     """True where the recording's end is the limit."""
     contact_s: float = 0.0
     """From the onset, or the last weak rebound, to the start of the free decay."""
+    burst: bool = False
+    """True where it looks like a burst of noise, as ringing at a rail does too."""
     rails: int = 0
     """Samples that stand at a rail."""
     rail: float = 0.0
@@ -62,16 +66,12 @@ def find_blows(scales: Sequence[Level]) -> list[Blow]:
     level = spectral_level(scales)
     picture = ringing(level, (0.0, 0.0))
     supposed = onsets(scales)
-    soft = [
-        Onset(s.at_s, 0.0, len(scales) - 1, s.full_s - s.at_s)
-        for s in swells(level, picture, [o.at_s for o in supposed])
-    ]
-    anchors = sorted(o.at_s for o in [*supposed, *soft])
+    rises = swells(level, picture)
+    anchors = sorted([*(o.at_s for o in supposed), *(s.at_s for s in apart(rises, supposed))])
     foresights = [e for e in (errors_of(s, anchors) for s in scales) if e is not None]
-    known = [
-        *confirmed(supposed, foresights, scales),
-        *(made_sudden(onset, foresights, scales) for onset in soft),
-    ]
+    known = confirmed(supposed, foresights, scales)
+    soft = [Onset(s.at_s, 0.0, len(scales) - 1, s.full_s - s.at_s) for s in apart(rises, known)]
+    known += [made_sudden(onset, foresights, scales) for onset in soft]
     loud = loud_moments(picture)
     slow = [e for e in foresights if _LEAST_RATE_HZ < e.rate_hz <= level.rate_hz] or foresights[:1]
     amid = overlooked(
@@ -85,6 +85,11 @@ def find_blows(scales: Sequence[Level]) -> list[Blow]:
     known.sort(key=lambda o: o.at_s)
     back = backward_predictor(scales[0], anchors)
     return grouped(known, foresights, scales, back)
+
+
+def apart(rises: Sequence[Swell], known: Sequence[Onset]) -> list[Swell]:
+    """Rises that belong to none of the onsets."""
+    return [s for s in rises if all(abs(s.middle_s - o.at_s) > APART_S for o in known)]
 
 
 def spectral_level(scales: Sequence[Level]) -> Level:
@@ -145,7 +150,9 @@ def grouped(
     out = []
     for blow, stretch, change in zip(blows, stretches, changes, strict=True):
         later = later_than(blow, foresights, change)
-        blow = replace(blow, later=later, contact_s=stretch.begin_s - stretch.onset_s)
+        contact = max(stretch.begin_s - stretch.onset_s, early_change_s(change))
+        burst = is_burst(foresights, blow.onset.at_s)
+        blow = replace(blow, later=later, contact_s=contact, burst=burst)
         weak = any(x.share < DOUBLE_SHARE for x in later)
         out.append(replace(blow, contact_s=contact_s(blow, scales, back)) if weak else blow)
     return out
@@ -163,7 +170,7 @@ def later_than(
 def without_rattle(
     blows: Sequence[Blow], samples: Real, rate_hz: float, full_scale: float | None
 ) -> list[Blow]:
-    """Blows less those that only seem to be some because what rings then is clipped."""
+    """Blows less those that only seem to be some: clipped ringing, and bursts of noise."""
     kept: list[Blow] = []
     clipped_until_s = -np.inf
     for blow in blows:
@@ -173,6 +180,8 @@ def without_rattle(
         where = blow_clipped_at(stretch, full_scale)
         if kept and at_s < clipped_until_s + _RATTLE_S:
             kept[-1] = replace(kept[-1], limit_s=blow.limit_s, last=blow.last)
+        elif blow.burst and not len(where):
+            continue
         else:
             rail = float(np.abs(stretch).max(initial=0.0))
             kept.append(replace(blow, rails=len(where), rail=rail))

@@ -29,9 +29,15 @@ _LIKE = 2.0
 _CLEAR = 20.0
 _CLEAR_SOON = 13.0
 _SOON_S = 0.03
+_CLEAR_AMID = 10.0
+_OVER_STRONGEST = 0.05
+"""As the energy asked of an onset, in amplitude."""
+_LEAST_AMID = 0.1
+"""Of the error at the strongest blow."""
 _OVER_PRECEDING = 2.5
 _LEAST_SHARE = 0.12
 _LONGEST_CONTACT_S = 0.015
+"""Until then a change of all lines may be the end of the contact."""
 _QUIET_AFTER_S = 0.1
 
 
@@ -82,7 +88,7 @@ def first_failure(errors: Errors, about_s: float, slack_s: float) -> Place | Non
     near = errors.between(about_s - slack_s, about_s + slack_s + SHORTEST_GAP_S)
     size = errors.size[near]
     peak = float(size.max(initial=0.0))
-    if peak < SHARP:
+    if peak < SHARP or errors.raw[near].max() < _OVER_STRONGEST * errors.strongest:
         return None
     first = int(np.argmax(size > max(_OVER_TYPICAL, _FOOT * peak)))
     return Place((near.start + first) / errors.rate_hz, peak, errors.rate_hz)
@@ -106,9 +112,12 @@ def overlooked(
             at_s, [*known_s, *(f for f, _ in found)], errors.smeared_s
         ):
             continue
+        at = round(at_s * errors.rate_hz)
+        if errors.raw[at] < _LEAST_AMID * errors.highest_at(known_s):
+            continue
         near_s = 6 / errors.rate_hz
         agree = any(abs(at_s - other_s) < near_s for other_s, j in shown if j != k)
-        if agree or errors.size[round(at_s * errors.rate_hz)] > _CLEAR_SOON:
+        if agree or errors.size[at] > _CLEAR_AMID:
             found.append((at_s, k))
     return found
 
@@ -160,25 +169,37 @@ def later_blows(
 def sure(seen: Sequence[Later]) -> bool:
     """True for what two levels show, or one clearly; soon after the first few levels can tell.
 
-    Changes of all lines alone must be three, at two levels and of like strength.
+    Changes of all lines alone must be of like strength at several levels. Soon after the first
+    they are its contact that ends.
     """
-    needed = _CLEAR_SOON if seen[0].after_s < _SOON_S else _CLEAR
-    if max(one.sharpness for one in seen) > needed:
+    soon = seen[0].after_s < _SOON_S
+    if max(one.sharpness for one in seen) > (_CLEAR_SOON if soon else _CLEAR):
         return True
     sudden = {one.shown_by for one in seen if one.sharpness > 0}
     changes = [one for one in seen if one.sharpness == 0]
     if len(sudden) > 1 or (sudden and changes):
         return True
-    return alike(changes)
+    return seen[0].after_s > _LONGEST_CONTACT_S and alike(changes)
 
 
 def alike(changes: Sequence[Later]) -> bool:
-    """True for changes at two levels or more, at least three in all, of like strength."""
+    """True for changes of like strength at three levels, or twice at each of two."""
     if len(changes) < _CHANGES:
         return False
     middle = float(np.median([one.share for one in changes]))
-    near = [one for one in changes if 1 / _LIKE < one.share / middle < _LIKE]
-    return len(near) >= _CHANGES and len({one.shown_by[0] for one in near}) > 1
+    rates = [one.shown_by[0] for one in changes if 1 / _LIKE < one.share / middle < _LIKE]
+    twice = [rate for rate in set(rates) if rates.count(rate) > 1]
+    return len(set(rates)) > 2 or len(twice) > 1
+
+
+def early_change_s(changes: Sequence[Restrike]) -> float:
+    """When all lines last change soon after the blow, at two levels; 0 if they do not.
+
+    The free decay begins after it, whether it was a long contact that ended or a rebound.
+    """
+    soon = [c for c in changes if c.after_s < _SOON_S]
+    enough = len(soon) >= _CHANGES and len({c.rate_hz for c in soon}) > 1
+    return max(c.after_s for c in soon) if enough else 0.0
 
 
 def jumps(errors: Errors, onset_s: float, until_s: float) -> list[Later]:

@@ -37,6 +37,7 @@ _SMEARED = 6
 _TYPICAL_S = 0.025
 _TYPICAL = 16
 """Samples at least whose median error is typical of their time."""
+_ENOUGH = 33
 _AROUND = 5
 
 
@@ -72,6 +73,11 @@ class Errors:
     """Of the predictor: for so many samples after a blow it errs still."""
 
     @property
+    def strongest(self) -> float:
+        """Highest error of all, in the samples' unit."""
+        return float(self.raw.max())
+
+    @property
     def sharp(self) -> NDArray[np.intp]:
         """Where it is far above the typical size, the first and last samples left out."""
         where = np.flatnonzero(self.size > SHARP)
@@ -87,6 +93,11 @@ class Errors:
         """Samples of a stretch of time."""
         first = max(int(np.ceil(first_s * self.rate_hz)), 0)
         return slice(first, max(int(np.ceil(past_s * self.rate_hz)), first))
+
+    def highest_at(self, times_s: Sequence[float]) -> float:
+        """Highest error about any of some times, in the samples' unit."""
+        near = (self.between(at_s - 0.01, at_s + 0.02) for at_s in times_s)
+        return max((float(self.raw[part].max(initial=0.0)) for part in near), default=0.0)
 
 
 def errors_of(level: Level, anchors_s: Sequence[float]) -> Errors | None:
@@ -109,7 +120,8 @@ def typical(raw: Real, rate_hz: float) -> Real:
     """(n,) running median of the medians of short blocks."""
     block = min(max(int(_TYPICAL_S * rate_hz), _TYPICAL), len(raw))
     count = len(raw) // block
-    medians = np.median(raw[: count * block].reshape(count, block), axis=1)
+    stride = max(block // _ENOUGH, 1)
+    medians = np.median(raw[: count * block].reshape(count, block)[:, ::stride], axis=1)
     padded = np.pad(medians, _AROUND // 2, mode="reflect" if count > _AROUND else "edge")
     around = np.median(np.lib.stride_tricks.sliding_window_view(padded, _AROUND), axis=1)
     return np.concatenate([np.repeat(around, block), np.full(len(raw) - count * block, around[-1])])

@@ -20,14 +20,13 @@ _NEAR_TOP = 0.12
 """Of the height: samples so near the highest are looked at."""
 _TOLERANCES = (0.0, 1e-4, 3e-4, 1e-3, 3e-3)
 """Of the height: how far samples at one rail may differ (noise behind the stage that clips)."""
-_ROUGH = 5e-4
 _SHORTEST_RUN = 3
-_SHORTEST_ROUGH_RUN = 4
+_LONG_ROUGH_RUN = 5
 _JUMP = 10.0
 """A rail is entered by a jump of so many tolerances; the top of a smooth wave is not."""
-_PAIR_TOLERANCE = 1.5e-4
-_PAIR_JUMP = 0.03
-"""Two samples alike with so deep a drop on both sides are no chance."""
+_FINE_STEP = 1e-4
+_PAIR_JUMP = 0.05
+"""Two samples alike to a fine step, with so deep a drop on both sides, are no chance."""
 _BAND = 30.0
 """Tops of equal height are weighed against all that come within so many tolerances of it."""
 _TOPS_NEEDED = ((1e-5, 3), (5e-4, 4), (2e-3, 6))
@@ -91,7 +90,7 @@ def at_rail(samples: Real, sign: float, top: float, middle: float) -> Indices:
         tolerance = max(share, 1.01 * step, 1e-7)
         runs = runs_within(samples, near, top, height, tolerance)
         lasting = lasting_runs(runs, tolerance, exact=tolerance < 1.5 * step)
-        if tolerance <= _PAIR_TOLERANCE:
+        if share == 0 and step < _FINE_STEP:
             drop = np.minimum(runs.before, runs.after)
             lasting |= (runs.length >= 2) & (drop > _PAIR_JUMP)
         if not np.any(lasting):
@@ -104,10 +103,14 @@ def at_rail(samples: Real, sign: float, top: float, middle: float) -> Indices:
 def lasting_runs(runs: Runs, tolerance: float, *, exact: bool) -> NDArray[np.bool_]:
     """(r,) runs that last, entered or left by a jump.
 
-    Where the tolerance is wider than the converter's step, chance makes short runs: more is asked.
+    Where the tolerance is wider than the converter's step, chance makes short runs: those must drop
+    on both sides, by more than even the flat top of two waves in opposition does.
     """
-    shortest = _SHORTEST_RUN if exact or tolerance < _ROUGH else _SHORTEST_ROUGH_RUN
-    return (runs.length >= shortest) & (np.maximum(runs.before, runs.after) > _JUMP * tolerance)
+    deep = _JUMP * tolerance
+    either, both = np.maximum(runs.before, runs.after), np.minimum(runs.before, runs.after)
+    long = (runs.length >= (_SHORTEST_RUN if exact else _LONG_ROUGH_RUN)) & (either > deep)
+    short = (runs.length >= _SHORTEST_RUN) & (both > max(deep, _PAIR_JUMP))
+    return long | short
 
 
 def equal_tops(runs: Runs, in_band: int, tolerance: float, count: int) -> NDArray[np.bool_]:

@@ -28,6 +28,8 @@ _LENGTH = 2 * _HALF + _HOLE
 _LEFTS = (29, 16, 8)
 """Samples before a second blow: the fewer, the sooner after the first it may come."""
 _LEAST_RATE_HZ = 200.0
+_FINE_HZ = 1500.0
+"""Above it every other sample will do: a blow shows over several."""
 _LOOK_S = 0.45
 _LOOK = 3 * _LENGTH
 _MOST_ROWS = 1500
@@ -151,7 +153,9 @@ def weighed(part: Real, stride: int) -> Real:
     top = float(power.max())
     if top <= 0:
         return np.zeros((0, _LENGTH))
-    return np.asarray(rows / (top * np.maximum(power, _LEAST_POWER * top))[:, None] ** 0.25)
+    return np.asarray(
+        rows / (np.sqrt(top) * np.sqrt(np.maximum(power, _LEAST_POWER * top)))[:, None] ** 0.5
+    )
 
 
 def strongest_directions(products: Real) -> Real:
@@ -205,7 +209,7 @@ def after_contact(level: Level, planes: Planes, blow: Stretch) -> Indices:
     rate = level.rate_hz
     first = round(blow.begin_s * rate) + planes.left + _HOLE + _HOLE // 2
     past = min(round((blow.onset_s + LONGEST_GAP_S) * rate), round(blow.until_s * rate) - _AHEAD)
-    at = np.arange(first, min(past, len(level.samples) - _AHEAD))
+    at = np.arange(first, min(past, len(level.samples) - _AHEAD), 2 if rate > _FINE_HZ else 1)
     return at if len(at) >= 3 else at[:0]
 
 

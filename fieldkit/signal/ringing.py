@@ -74,8 +74,8 @@ class Ringing:
         frames = self.between(start_s, limit_s)
         if len(frames) < 2:
             return 0.0
-        first, last = self.excess[frames[0]], self.excess[frames[-1]]
-        return float(10 * np.log10(max(first, 1e-300) / max(last, 1e-300)))
+        ends = np.maximum(self.excess[[frames[0], frames[-1]]], 1e-300)
+        return float(10 * (np.log10(ends[0]) - np.log10(ends[1])))
 
 
 def ringing(level: Level, background_s: tuple[float, float]) -> Ringing:

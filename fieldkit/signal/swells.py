@@ -16,7 +16,7 @@ _JUMP = 8.0
 """Power just after over the highest of the seconds before, in one bin."""
 _OVER_QUIET = 35.0
 """Power just after over the background's."""
-_APART_S = 0.4
+APART_S = 0.4
 _MEMORY_S = 2.0
 """Two lines that beat swell again within this time, but not above where they were."""
 _FINE_S = 0.1
@@ -30,10 +30,12 @@ class Swell:
     at_s: float
     full_s: float
     """When it has reached its height."""
+    middle_s: float
+    """Between the frames before and after it."""
 
 
-def swells(level: Level, picture: Ringing, known_s: list[float]) -> list[Swell]:
-    """Rises that begin at none of the known times, in order."""
+def swells(level: Level, picture: Ringing) -> list[Swell]:
+    """All rises, in order."""
     found: list[Swell] = []
     step = round(picture.frame_s / picture.hop_s) if picture.hop_s > 0 else 0
     if step < 1 or len(picture.power) <= 2 * step:
@@ -45,9 +47,8 @@ def swells(level: Level, picture: Ringing, known_s: list[float]) -> list[Swell]:
         at = int(jump.argmax())
         middle_s = float(picture.time_s[at] + picture.time_s[at + step]) / 2
         centres = (picture.time_s[:-step] + picture.time_s[step:]) / 2
-        jump = np.where(np.abs(centres - middle_s) < _APART_S, 0.0, jump)
-        if all(abs(middle_s - k) > _APART_S for k in known_s):
-            found.append(refined(level, middle_s, float(picture.frequency_hz[line[at]])))
+        jump = np.where(np.abs(centres - middle_s) < APART_S, 0.0, jump)
+        found.append(refined(level, middle_s, float(picture.frequency_hz[line[at]])))
     return sorted(found, key=lambda s: s.at_s)
 
 
@@ -62,8 +63,8 @@ def highest_before(picture: Ringing) -> Real:
 
 def refined(level: Level, about_s: float, frequency_hz: float) -> Swell:
     """Start and top of a rise from the envelope of its line."""
-    first = max(int((about_s - _APART_S) * level.rate_hz), 0)
-    stretch = level.samples[first : int((about_s + _APART_S) * level.rate_hz)]
+    first = max(int((about_s - APART_S) * level.rate_hz), 0)
+    stretch = level.samples[first : int((about_s + APART_S) * level.rate_hz)]
     time_s = (first + np.arange(len(stretch))) / level.rate_hz
     width = max(int(_FINE_S * level.rate_hz), 4)
     window = np.hanning(width + 2)[1:-1]
@@ -72,4 +73,4 @@ def refined(level: Level, about_s: float, frequency_hz: float) -> Swell:
     top = int(envelope.argmax())
     low = np.flatnonzero(envelope[: top + 1] < _REACHED / 2 * envelope[top])
     start_s = float(time_s[low[-1]]) if len(low) else float(time_s[0])
-    return Swell(start_s, float(time_s[top]) + _FINE_S / 2)
+    return Swell(start_s, float(time_s[top]) + _FINE_S / 2, about_s)

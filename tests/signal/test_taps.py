@@ -197,3 +197,81 @@ def test_cut_gives_the_usable_decays_with_their_background() -> None:
     assert all(r.source == "tap-1.flac" and r.rate_hz == 8000.0 for r in records)
     assert len(records[0].background) == search.background[1] - search.background[0]
     assert np.array_equal(records[0].samples, signal[search.taps[0].start : search.taps[0].end])
+
+
+@pytest.mark.parametrize(("gap_s", "share"), [(0.05, 0.3), (0.08, 0.5), (0.12, 0.3), (0.2, 0.3)])
+@pytest.mark.parametrize("seed", range(3))
+def test_double_blow_in_noise_is_refused(gap_s: float, share: float, seed: int) -> None:
+    """No sample stands out at the second blow; that all lines change at once does."""
+    blows = [Blow(2.0), Blow(7.0), Blow(7.0 + gap_s, share), Blow(12.0)]
+    search = find_taps(recorded(blows, density=1.5e-3, seed=seed), 8000.0, full_scale=None)
+    assert [t.usable for t in search.taps] == [True, False, True]
+    assert only_reason(search, 1).startswith("struck twice: ")
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_many_beating_modes_are_no_double_blow(seed: int) -> None:
+    """Sixteen modes, eight of them neighbours of the others, beat while they decay."""
+    rng = np.random.default_rng(seed)
+    some = np.exp(rng.uniform(np.log(6.0), np.log(900.0), 8))
+    both = np.concatenate([some, some * rng.uniform(1.01, 1.06, 8)])
+    modes = tuple(Made(f, rng.uniform(0.004, 0.02), rng.uniform(0.3, 1.0)) for f in both)
+    search = find_taps(recorded(FIVE[:3], modes=modes, seed=seed), 8000.0, full_scale=None)
+    assert [t.usable for t in search.taps] == [True] * 3
+
+
+@pytest.mark.parametrize("contact_s", [0.01, 0.018, 0.025])
+def test_long_contact_is_no_double_blow(contact_s: float) -> None:
+    """A soft head is felt when it lands and when it leaves."""
+    modes = (Made(7.3, 0.012), Made(17.0, 0.01, 0.6), Made(33.0, 0.012, 0.4))
+    blows = [Blow(2.0, 1.0, contact_s), Blow(7.0, 0.6, contact_s), Blow(12.0, 0.8, contact_s)]
+    search = find_taps(recorded(blows, modes=modes), 8000.0, full_scale=None)
+    assert len(search.taps) == 3
+    assert not any("struck twice" in r for t in search.taps for r in t.reasons)
+
+
+def test_two_clipped_samples_are_enough() -> None:
+    """At a low rate a short contact stays at the rail for two samples."""
+    signal = recorded([Blow(2.0), Blow(7.0)], rate_hz=2000.0)
+    first = int(7.0 * 2000) + 8
+    signal[first : first + 4] += [0.6, 3.0, 3.0, 0.4]
+    signal = np.clip(signal, -1.7, 1.7)
+    search = find_taps(signal, 2000.0, full_scale=None)
+    assert search.taps[0].usable
+    assert any(r.startswith("clipped: ") for r in search.taps[1].reasons)
+
+
+def test_single_samples_at_one_rail_are_clipping() -> None:
+    """High modes leave the rail after each sample: tops of one height, none just below it."""
+    modes = (Made(2500.0, 0.002), Made(3100.0, 0.002, 0.8), Made(40.0, 0.01, 0.5))
+    signal = recorded([Blow(2.0, 0.3, 1e-4), Blow(7.0, 1.0, 1e-4)], modes=modes)
+    signal = np.clip(signal, -0.75 * np.abs(signal).max(), 0.75 * np.abs(signal).max())
+    search = find_taps(signal, 8000.0, full_scale=None)
+    assert search.taps[0].usable
+    assert any(r.startswith("clipped: ") for r in search.taps[1].reasons)
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_burst_of_noise_is_no_blow(seed: int) -> None:
+    """A hand on the sensor for a third of a second, some twenty times as loud as the noise."""
+    rng = np.random.default_rng(seed)
+    time_s = np.arange(80000) / 8000.0
+    swell = 1 + 20 * np.exp(-0.5 * ((time_s - 5.0) / 0.15) ** 2)
+    signal = swell * coloured(rng, 80000, 8000.0, 1e-3)
+    assert find_taps(signal, 8000.0, full_scale=None).taps == ()
+
+
+def test_silence_after_a_blow_gives_no_warning() -> None:
+    """A noise-free decay falls by more decibels than a number holds as a ratio."""
+    signal = recorded([Blow(2.0), Blow(7.0)], density=0.0)
+    assert len(find_taps(signal * 1e150, 8000.0, full_scale=None).taps) == 2
+
+
+def test_blow_that_stays_at_the_rail_is_clipped_and_no_noise() -> None:
+    """Far over full scale it is at the rail for a second, and as hard to foresee as noise."""
+    signal = recorded([Blow(3.0, 1.0), Blow(9.0, 0.05), Blow(15.0, 1.0)], duration_s=22.0)
+    signal *= 12 / np.abs(signal).max()
+    search = find_taps(np.clip(signal, -1.0, 1.0), 8000.0)
+    assert times(search) == pytest.approx([3.0, 9.0, 15.0], abs=0.015)
+    assert [t.usable for t in search.taps] == [False, True, False]
+    assert search.background[1] < 3.0 * 8000
