@@ -237,10 +237,26 @@ def _read_spot(
 
 def field(span: Span, model: ReducedModel, z: Array) -> Field:
     """Read the ensemble at every station of a grid and at every support and mass."""
+    central = central_member(z)
+    z = _as_loaded(span, model, z, central)
     stations = np.linspace(0.0, span.length_m, GRID_STEPS + 1)
     ports = _ports(span, model, stations)
     modes = model.modes(z)
-    return Field(model, span, z, modes, stations, ports, central_member(z))
+    return Field(model, span, z, modes, stations, ports, central)
+
+
+def _as_loaded(span: Span, model: ReducedModel, z: Array, central: int) -> Array:
+    """The middle member with its axial supports at the medians the axial force was found with.
+
+    A full re-solve finds the force of its own supports. On a hot line that is another force, and
+    scaling every member by the difference would carry one member's force to all.
+    """
+    if not np.any(model.structure.axial_force_n):
+        return z
+    along = [u.role == "spring" and springs(span)[u.index].axis == "axial" for u in model.unknowns]
+    loaded = z.copy()
+    loaded[central, along] = 0.0
+    return loaded
 
 
 def _ports(span: Span, model: ReducedModel, stations: Array) -> Ports:

@@ -6,7 +6,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from fieldkit.detune.fixes import AddMass, AddSupport, Change, MoveMass, MoveSupport, SetMass
+from fieldkit.detune.fixes import AddMass, AddSupport, AllOf, Change, MoveMass, MoveSupport, SetMass
 from fieldkit.detune.fixes import StiffenSupport as Stiffen
 from fieldkit.detune.unknowns import (
     StationMap,
@@ -94,6 +94,11 @@ def _off(modes: tuple[ExactMode, ...], error: np.ndarray) -> tuple[ExactMode, ..
 
 def installed(change: Change, truth: Truth, job: Described, rng: Draw) -> Span:
     """The plant with a change built into it, as fitters build."""
+    if isinstance(change, AllOf):
+        span = truth.span
+        for part in change.parts:
+            span = installed(part, replace(truth, span=span), job, rng)
+        return span
     stiffer = float(np.exp(STIFFNESS_SCATTER_LN * rng.standard_normal()))
     beside = PLACE_SCATTER_M * rng.standard_normal()
     return _on_site(change, truth, job, stiffer, beside).apply(truth.span)
