@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -84,6 +84,10 @@ def match(
     return _answer(reading, evidence, unknowns, handbook_hz)
 
 
+_Key = tuple[str, str | None, float | None, bool]
+"""State, direction, station, and whether found while running."""
+
+
 @dataclass(frozen=True)
 class Group:
     """Measured modes of one state and direction."""
@@ -110,7 +114,8 @@ def grouped(modes: Sequence[MeasuredMode], up_to_hz: float) -> tuple[Group, ...]
             own[0].state,
             max(highest, 1.02 * float(frequency.max())),
             np.array([_false_rate(m) for m in own]),
-            model_error=RUNNING_MODEL_ERROR if running else MODEL_ERROR,
+            model_error=(RUNNING_MODEL_ERROR if running else MODEL_ERROR)
+            * _places(keys, key) ** 0.5,
             shown=RUNNING_DETECTION if running else 1.0,
             weight=weight if running else 1.0,
         )
@@ -118,8 +123,18 @@ def grouped(modes: Sequence[MeasuredMode], up_to_hz: float) -> tuple[Group, ...]
     return tuple(groups)
 
 
-def _group_key(mode: MeasuredMode) -> tuple[str, str | None, float | None, bool]:
+def _group_key(mode: MeasuredMode) -> _Key:
     return mode.state, mode.direction, mode.at_m, mode.source == RUNNING
+
+
+def _places(keys: Iterable[_Key], key: _Key) -> int:
+    """At how many stations the modes of a group were looked for in its direction.
+
+    The model errs in a mode by the same amount wherever that mode is measured: peaks of one mode
+    from several stations together must not say more of the model than one does.
+    """
+    state, direction, _, running = key
+    return sum((k[0], k[1], k[3]) == (state, direction, running) for k in keys)
 
 
 def running_weight(modes: Sequence[MeasuredMode]) -> float:

@@ -148,3 +148,13 @@ def test_the_same_evidence_gives_the_same_ensemble():
     span, truth, found = booster()
     again = match(span, TAPPED, RUNNING, evidence_of(truth, 6), up_to_hz=UP_TO_HZ)
     assert np.array_equal(found.ensemble.standard, again.ensemble.standard)
+
+
+def test_two_stations_say_no_more_of_the_model_than_one():
+    """The model errs in a mode wherever it is measured: error over root of stations stays."""
+    at = [MeasuredMode(20.0, 0.01, 0.01, 0.001, "vertical", taps=5, at_m=x) for x in (1.0, 2.0)]
+    lateral = MeasuredMode(30.0, 0.01, 0.01, 0.001, "lateral", taps=5, at_m=1.0)
+    one = grouped(at[:1], 100.0)[0].peaks.model_error
+    several = [group.peaks for group in grouped([*at, lateral], 100.0)]
+    assert several[0].model_error / 2**0.5 == pytest.approx(one)
+    assert several[2].model_error == pytest.approx(one)
