@@ -203,6 +203,8 @@ class ChangeSpeed:
     low_hz: float
     """Revolutions per second."""
     high_hz: float
+    manner: str = "keep"
+    """``keep`` to a part of its range, ``slower`` or ``faster``."""
     kind: str = "speed"
 
     def apply(self, span: Span) -> Span:

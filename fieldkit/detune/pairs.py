@@ -50,6 +50,8 @@ STEPS = (-2, -1, 1, 2)
 def pairs(search: Search, singles: Sequence[Candidate], progress: Progress) -> list[Candidate]:
     """The best pairs of single changes, best first."""
     partners = _partners(search, singles)
+    if len(partners) < 2:
+        return []
     progress.step("trying pairs of changes", 0.0)
     counted = _counted(search, partners)
     best = sorted(counted, key=lambda c: _key(search, c))[:COUNTED_IN_FULL]

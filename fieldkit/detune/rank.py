@@ -8,7 +8,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.detune import judge
+from fieldkit.detune import judge, speeds
 from fieldkit.detune.candidates import Candidate, Search, generate
 from fieldkit.detune.cautions import ALWAYS, Resting, at_rest, cautions
 from fieldkit.detune.excitation import Band, Excitation, Goal, bands
@@ -16,14 +16,16 @@ from fieldkit.detune.field import Field, field
 from fieldkit.detune.fixes import Change
 from fieldkit.detune.matched import Match
 from fieldkit.detune.order import order, shortlist
+from fieldkit.detune.other_cures import other_cures
 from fieldkit.detune.pairs import pairs
 from fieldkit.detune.push import parts
 from fieldkit.detune.reduced import build
 from fieldkit.detune.scatter import as_installed
+from fieldkit.detune.speeds import SpeedOffer, speed_offers
 from fieldkit.detune.unknowns import unknowns_of
 from fieldkit.detune.verdict import Detuning, Nearest, Verdict
 from fieldkit.detune.why import fails, why
-from fieldkit.detune.wording import summary
+from fieldkit.detune.wording import speed_summary, summary
 from fieldkit.errors import InputError, Place
 from fieldkit.progress import Progress
 from fieldkit.span.layout import Span, State
@@ -32,8 +34,8 @@ Array = NDArray[np.float64]
 
 SHOWN = 10
 WHAT_ELSE_HELPS = (
-    "what else helps: keep the machine out of part of its speed range, add damping, fit a tuned "
-    "absorber, combine two changes, or narrow the doubt with a better tap"
+    "what else helps: another speed, an absorber or added damping where they are listed, or to "
+    "narrow the doubt with a better tap"
 )
 SEED = 20
 PRIOR_MEMBERS = 256
@@ -67,7 +69,7 @@ def detune(
     """
     progress = progress or Progress()
     search, known = prepare(span, tapped, running, match, excitations, goal, progress)
-    fresh = _afresh(search, match)
+    fresh = afresh(search, match)
     now, _ = _checked(fresh, running, None)
     chance_now = judge.chance_clear(now, search.bands, goal.up_to_hz)
     singles = generate(search, progress.within(0.0, 0.5))
@@ -78,12 +80,17 @@ def detune(
         both = pairs(search, singles, progress.within(0.7, 0.9))
         chosen = shortlist(both, span, goal, max([chance_now, *(j.chance for j in judged)]))
         judged += _re_solved(fresh, running, chosen, progress.within(0.9, 1.0))
+    short = max([chance_now, *(j.chance for j in judged)]) < goal.chance
     judged.sort(key=lambda j: order(j.chance, j.candidate.change, span, goal, j.room))
     resting = at_rest(span, tapped, running)
-    verdicts = tuple(
-        _verdict(fresh, resting, now, j, rank, units)
-        for rank, j in enumerate(judged[:SHOWN], start=1)
-    )
+    shown = [_verdict(fresh, resting, now, j, 0, units) for j in judged[:SHOWN]]
+    if short and "speed" in goal.allow:
+        choosing = judge.now(search.field, goal.up_to_hz)
+        shown += _speed_verdicts(
+            speed_offers(choosing, now, excitations, goal), excitations, now, goal
+        )
+        shown.sort(key=lambda v: order(v.chance, v.change, span, goal, v.nearest.separation))
+    verdicts = tuple(replace(v, rank=rank) for rank, v in enumerate(shown[:SHOWN], start=1))
     modes = judge.judged_modes(now, search.bands, goal.up_to_hz)
     return Detuning(
         state=running.name,
@@ -95,6 +102,7 @@ def detune(
         fixes=verdicts,
         warnings=_warnings(known, verdicts, judged, goal, search.bands),
         tried=len(singles),
+        other_cures=other_cures(fresh, now, match, units) if short else (),
     )
 
 
@@ -124,7 +132,7 @@ def prepare(
     return Search(span, base, bands(excitations, goal.margin), goal, scatter), known
 
 
-def _afresh(search: Search, match: Match | None) -> Search:
+def afresh(search: Search, match: Match | None) -> Search:
     """The same search over members that had no say in what was chosen.
 
     The best of thousands of changes on one ensemble owes part of its chance to that ensemble.
@@ -216,6 +224,34 @@ def _verdict(
     )
 
 
+def _speed_verdicts(
+    offers: Sequence[SpeedOffer],
+    excitations: Sequence[Excitation],
+    now: judge.Spectrum,
+    goal: Goal,
+) -> list[Verdict]:
+    """Speeds as verdicts: the modes stay, the bands move."""
+    found = []
+    for offer in offers:
+        machine = next(e for e in excitations if e.name == offer.change.excitation)
+        modes = judge.judged_modes(now, offer.bands, goal.up_to_hz)
+        found.append(
+            Verdict(
+                rank=0,
+                kind="speed",
+                summary=speed_summary(offer.change),
+                change=offer.change,
+                modes_after=modes,
+                nearest=judge.nearest(modes, offer.bands) or Nearest("", 1.0),
+                chance=offer.chance,
+                cautions=speeds.CAUTIONS,
+                why=speeds.why_speed(offer, machine),
+                fails=speeds.FAILS,
+            )
+        )
+    return found
+
+
 def _cautions(
     change: Change, resting: Resting, least: float | None, goal: Goal, units: str
 ) -> tuple[str, ...]:
@@ -259,8 +295,8 @@ def _warnings(
     best = max((v.chance for v in verdicts), default=0.0)
     if best < goal.chance:
         found.append(
-            f"no single change reaches the wanted chance of {100 * goal.chance:.0f} % "
-            f"(best {100 * best:.0f} %); {WHAT_ELSE_HELPS}"
+            f"no single change reaches the wanted chance of {100 * goal.chance:.0f} %, nor do two "
+            f"together (best {100 * best:.0f} %); {WHAT_ELSE_HELPS}"
         )
     worst = max((j.correction for j in judged), default=0.0)
     if worst > judge.WORST_DISAGREEMENT:

@@ -24,7 +24,7 @@ def summary(change: Change, span: Span, units: str) -> str:
     if isinstance(change, AllOf):
         return " and ".join(summary(part, span, units) for part in change.parts)
     if isinstance(change, ChangeSpeed):
-        return f"keep the {change.excitation} at {_speeds(change)} rpm"
+        return speed_summary(change)
     if isinstance(change, AddAbsorber):
         return _absorber(change, units)
     if isinstance(change, AddSupport):
@@ -48,6 +48,13 @@ def summary(change: Change, span: Span, units: str) -> str:
             f"move the {old.name} from {_length(old.at_m, units)} to {_length(change.to_m, units)}"
         )
     raise TypeError(f"no wording for {type(change).__name__}")
+
+
+def speed_summary(change: ChangeSpeed) -> str:
+    """A speed in words."""
+    if change.manner == "keep":
+        return f"keep the {change.excitation} at {_speeds(change)} rpm"
+    return f"run the {change.excitation} {change.manner}, at {_speeds(change)} rpm"
 
 
 def _speeds(change: ChangeSpeed) -> str:

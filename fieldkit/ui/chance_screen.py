@@ -208,7 +208,7 @@ class ChanceScreen(ModalScreen["Verdict | None"]):
     @work(thread=True, exclusive=True, exit_on_error=False, group="map-adopt")
     def action_adopt(self) -> None:
         """Re-solve the change under the cursor in full and hand it over."""
-        from fieldkit.detune.rank import judged_change
+        from fieldkit.detune.rank import afresh, judged_change
 
         if self.found is None or self.search is None:
             return
@@ -216,7 +216,9 @@ class ChanceScreen(ModalScreen["Verdict | None"]):
             self.app.call_from_thread(self.notify, "Kept out here.", severity="warning")
             return
         change, job = self.found.change(*self.at), self.job
-        verdict = judged_change(self.search, job.tapped, job.running, change, job.units)
+        verdict = judged_change(
+            afresh(self.search, self.matched), job.tapped, job.running, change, job.units
+        )
         self.app.call_from_thread(self.dismiss, replace(verdict, rank=0))
 
     def _read(self) -> None:
