@@ -18,7 +18,7 @@ CELLS = 60
 """Pieces a speed range is cut into; what remains is made of whole pieces."""
 LEAST_KEPT = 0.2
 """Of the range: less than this is no range to run in."""
-SHIFTS = np.arange(0.01, 0.51, 0.01)
+SHIFTS = np.arange(0.01, 0.31, 0.01)
 """How much slower or faster is looked at, relative."""
 
 

@@ -154,6 +154,7 @@ class DetuneView(View):
         return [
             *self._shortfall(found),
             *(_fix_words(fix) if fix else []),
+            *_living_with_it(found),
             *map(sentence, found.warnings),
         ]
 
@@ -203,6 +204,17 @@ def _mode_rows(found: Detuning, fix: Verdict | None) -> list[Row]:
     return rows
 
 
+def _living_with_it(found: Detuning) -> list[str]:
+    """Cures that leave the mode in its band, with what their chance means."""
+    said = []
+    for cure in found.other_cures:
+        said.append(f"~ {sentence(cure.summary)}")
+        if cure.chance is not None:
+            said.append(f"  {percent(cure.chance)} chance that {sentence(cure.chance_means)}")
+    return ["Living with it:", *said] if said else []
+
+
 def _fix_words(fix: Verdict) -> list[str]:
     cautions = [f"! {sentence(caution)}" for caution in fix.cautions]
-    return [sentence(fix.summary), *cautions]
+    reasons = [sentence(text) for text in (fix.why, fix.fails) if text]
+    return [sentence(fix.summary), *reasons, *cautions]

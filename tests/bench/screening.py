@@ -1,0 +1,182 @@
+"""How fast and how true changes are screened: ``python -m tests.bench.screening``.
+
+Processor time, the best of a few runs. An *answer* is one change on one member of the ensemble. The
+same answers are had from scikit-fem, a general-purpose library, one model at a time, in this run.
+"""
+
+from __future__ import annotations
+
+import time
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from typing import Any
+
+import numpy as np
+
+from fieldkit.detune import judge
+from fieldkit.detune.candidates import Search, generate
+from fieldkit.detune.chance_map import chance_map
+from fieldkit.detune.excitation import Excitation, Goal
+from fieldkit.detune.fixes import AddSupport
+from fieldkit.detune.lowrank import condensed, kept_modes
+from fieldkit.detune.rank import prepare
+from fieldkit.detune.unknowns import member_span, station_map
+from fieldkit.progress import Progress
+from fieldkit.span.layout import Leg, Span, State, Support
+from fieldkit.span.materials import material
+from fieldkit.span.pipes import standard_pipe
+from fieldkit.span.supports import springs
+from tests.reference.dynamic_stiffness import Attachment, Beam
+from tests.reference.hermite_beam import natural_frequencies_hz
+
+RUNS = 3
+MEMBERS = 200
+STATIONS, LEVELS = 60, 40
+RE_SOLVED = 24
+UP_TO_HZ = 25.0
+EMPTY = State("running")
+
+
+@dataclass(frozen=True)
+class Figures:
+    """What the table shows."""
+
+    changes: int
+    counted_per_s: float
+    solved_per_s: float
+    library_per_s: float
+    error_library: float
+    """Largest relative difference from the library, slender pipe, all modes up to the limit."""
+    error_anew_median: float
+    error_anew: float
+    """From our own model built anew with the change in it."""
+
+
+def line() -> Span:
+    """A slender straight line, so that the library's slender beam is its equal."""
+    return Span(
+        standard_pipe("NPS 1/2", "40"),
+        material("carbon steel"),
+        (Leg((1.0, 0.0, 0.0), 8.0),),
+        (Support(0.0, "clamp"), Support(3.0, "u-bolt"), Support(8.0, "clamp")),
+    )
+
+
+def searching() -> Search:
+    """Two hundred members of the line, the first at the prior medians, shaken at three orders."""
+    pump = (Excitation("pump", (2.4, 2.6), (1.0, 2.0, 4.0)),)
+    goal = Goal(up_to_hz=UP_TO_HZ)
+    search, _ = prepare(line(), EMPTY, EMPTY, None, pump, goal)
+    z = search.field.z[:MEMBERS].copy()
+    z[0] = 0.0
+    some = replace(search.field, z=z, modes=search.field.model.modes(z), central=0)
+    scatter = replace(
+        search.scatter,
+        stiffness_factor=search.scatter.stiffness_factor[:MEMBERS],
+        place_m=np.zeros(MEMBERS),
+        as_drawn=None,
+    )
+    return replace(search, field=some, scatter=scatter)
+
+
+def figures() -> Figures:
+    """Measure everything."""
+    search = searching()
+    changes = len(generate(search, Progress()))
+    _, counting = timed(lambda: chance_map(search, "support", "vertical", STATIONS, LEVELS))
+    levels = search.stiffness_levels(LEVELS)
+    places = search.attachable()[::4]
+    _, solving = timed(lambda: [_solved(search, at_m, levels) for at_m in places])
+    some = [(at, k) for at in places for k in levels[::9]][:RE_SOLVED]
+    library, alone = timed(lambda: [_by_library(search, at, k) for at, k in some])
+    anew = [_anew(search, at, k) for at, k in some]
+    quick = [_quick(search, at, k) for at, k in some]
+    return Figures(
+        changes,
+        STATIONS * LEVELS * MEMBERS / counting,
+        len(places) * len(levels) * MEMBERS / solving,
+        len(some) / alone,
+        max(_apart(own, exact) for own, exact in zip(quick, library, strict=True)),
+        float(np.median([_apart(own, exact) for own, exact in zip(quick, anew, strict=True)])),
+        max(_apart(own, exact) for own, exact in zip(quick, anew, strict=True)),
+    )
+
+
+def _solved(search: Search, at_m: float, levels: np.ndarray) -> np.ndarray:
+    """(levels, members, q) eigenvalues with a support at a station, every size at once."""
+    push = search.push(AddSupport(at_m, vertical_n_per_m=1.0))
+    base = search.field.modes
+    seen = condensed(base, push.rows, push.residual, kept_modes(base, UP_TO_HZ))
+    return seen.eigenvalues(levels[:, None, None] * search.scatter.stiffness_factor[:, None])
+
+
+def _quick(search: Search, at_m: float, k: float) -> np.ndarray:
+    values = _solved(search, at_m, np.array([k / search.scatter.stiffness_factor[0]]))[0, 0]
+    return np.sqrt(np.maximum(values, 0)) / (2 * np.pi)
+
+
+def _by_library(search: Search, at_m: float, k: float) -> np.ndarray:
+    """The same change on the first member: every spring, length and wall its own."""
+    member = member_span(search.span, search.field.model.unknowns, search.field.z[0])
+    modulus = member.material.modulus_at(EMPTY.temperature_k)
+    pipe = member.pipe
+    beam = Beam(modulus * pipe.second_moment_m4, pipe.wall_area_m2 * 7850.0)
+    moved = station_map(search.span, search.field.model.unknowns, search.field.z[0])
+    held = [Attachment(at, k, turning) for at, k, turning in _held(member)]
+    held.append(Attachment(moved(at_m), k))
+    hertz = natural_frequencies_hz(beam, member.length_m, held, 12)
+    return np.asarray(hertz[hertz < UP_TO_HZ])
+
+
+def _held(member: Span) -> list[tuple[float, float, float]]:
+    """(station, vertical stiffness, stiffness against turning) of each support of a member."""
+    every = springs(member)
+    found = []
+    for index, support in enumerate(member.supports):
+        own = {s.axis: s.stiffness for s in every if s.support == index}
+        found.append((support.at_m, own.get("vertical", 0.0), own.get("rotation", 0.0)))
+    return found
+
+
+def _anew(search: Search, at_m: float, k: float) -> np.ndarray:
+    first = replace(search.field, central=0)
+    change = AddSupport(at_m, vertical_n_per_m=k)
+    found = judge.resolve(first, search.span, EMPTY, change, UP_TO_HZ)
+    return np.asarray(found)
+
+
+def _apart(own: np.ndarray, exact: np.ndarray) -> float:
+    """Largest relative distance of an exact frequency from the nearest of ours."""
+    return float(np.abs(own[None, :] / exact[:, None] - 1).min(axis=1).max())
+
+
+def timed(work: Callable[[], Any]) -> tuple[Any, float]:
+    """(result, least processor seconds)."""
+    least = np.inf
+    for _ in range(RUNS):
+        start = time.process_time()
+        result = work()
+        least = min(least, time.process_time() - start)
+    return result, float(least)
+
+
+def main() -> None:
+    """Print the table."""
+    found = figures()
+    per_full = found.library_per_s
+    print(f"single changes tried           {found.changes:12,}")
+    print(f"bands clear, counted           {found.counted_per_s:12,.0f} answers a second")
+    print(
+        f"all frequencies, solved        {found.solved_per_s:12,.0f} answers a second  "
+        f"{found.solved_per_s / per_full:,.0f} x scikit-fem"
+    )
+    print(f"the same by scikit-fem         {per_full:12,.0f} answers a second")
+    print(f"error against scikit-fem       {100 * found.error_library:12.4f} %")
+    print(
+        f"error against a model anew     {100 * found.error_anew:12.4f} %  "
+        f"median {100 * found.error_anew_median:.4f} %"
+    )
+
+
+if __name__ == "__main__":
+    main()
