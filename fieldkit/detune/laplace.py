@@ -21,7 +21,7 @@ from fieldkit.progress import Progress
 
 Array = NDArray[np.float64]
 
-STARTS = 160
+STARTS = 128
 ANNEALING = (8.0, 5.0, 3.0, 2.0, 1.5, 1.0, 1.0, 1.0, 1.0, 1.0)
 LONGEST_STEP = 1.5
 MIXTURE_SIZE = 24
@@ -105,8 +105,8 @@ class Mixture:
         return np.asarray(centre + kept * (z - centre) + share[:, None] * noise)
 
 
-def proposal(problem: Problem, rng: np.random.Generator, progress: Progress) -> Mixture:
-    """A mixture that covers the posterior as well as a few rounds of looking allow."""
+def proposal(problem: Problem, rng: np.random.Generator, progress: Progress) -> Normals:
+    """Normals that cover the posterior as well as a few rounds of looking allow."""
     starts = rng.standard_normal((STARTS, problem.parameters))
     known = _distinct(optima(problem, starts, progress.within(0.0, 0.6)))
     made = mixture(known)
@@ -118,12 +118,12 @@ def proposal(problem: Problem, rng: np.random.Generator, progress: Progress) -> 
         if weight.sum() ** 2 / np.sum(weight**2) > GOOD_SHARE * DRAWS:
             break
         heavy = np.argsort(-weight)[:ADDED]
-        known = known.beside(_about(problem, z[heavy]))
+        known = known.beside(about(problem, z[heavy]))
         made = mixture(known)
-    return made
+    return known
 
 
-def _about(problem: Problem, z: Array) -> Normals:
+def about(problem: Problem, z: Array) -> Normals:
     """Normals that fit the posterior at some parameter sets, and a little further up from each."""
     found = []
     for _ in range(CLIMBS):

@@ -19,7 +19,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.detune.laplace import Mixture, proposal, shortened
+from fieldkit.detune.laplace import Mixture, about, mixture, proposal, shortened
 from fieldkit.detune.problem import Local, Problem, Seen, alignments, expected, log_likelihood
 from fieldkit.progress import Progress
 
@@ -37,6 +37,13 @@ ELSEWHERE = 0.3
 LOCAL_MOVES = 4
 STRIDES = (0.2, 0.5, 0.9)
 """The same for the moves along the local curvature."""
+ATTEMPTS = 2
+ENOUGH = 40.0
+"""Effective size below which the normals are added to, about members found so far, and the draws
+begun anew: the fewer, the more often a stated interval misses."""
+LEARNT = 40
+MOST_A_FAMILY = 12.0
+"""Independent draws that one family may count for: its own moves cannot prove more."""
 KEPT_EFFECTIVE_SHARE = 0.5
 MOST_LEVELS = 12
 
@@ -72,14 +79,26 @@ def effective_size(values: Array, family: Index) -> float:
     sums = np.zeros((int(family.max()) + 1, values.shape[1]))
     np.add.at(sums, family, centred / spread)
     variance = np.sum(sums**2, axis=0) / len(values) ** 2
-    return float(min(len(values), 1 / np.mean(variance)))
+    size = np.bincount(family)
+    families = float(len(values) ** 2 / np.sum(size.astype(float) ** 2))
+    most = min(float(len(values)), MOST_A_FAMILY * families)
+    return float(min(most, 1 / max(float(np.mean(variance)), 1e-9)))
 
 
 def sample(problem: Problem, rng: np.random.Generator, progress: Progress) -> Population:
     """Draw the posterior; deterministic for a given generator."""
-    made = proposal(problem, rng, progress.within(0.0, 0.5))
-    tempered = _tempered(problem, made, rng, progress.within(0.5, 0.8))
-    return _spread(problem, tempered, rng, progress.within(0.8, 1.0))
+    known = proposal(problem, rng, progress.within(0.0, 0.4))
+    found: list[Population] = []
+    for attempt in range(ATTEMPTS):
+        start = 0.4 + 0.6 * attempt / ATTEMPTS
+        work = progress.within(start, start + 0.6 / ATTEMPTS)
+        tempered = _tempered(problem, mixture(known), rng, work.within(0.0, 0.6))
+        found.append(_spread(problem, tempered, rng, work.within(0.6, 1.0)))
+        if found[-1].effective_size >= ENOUGH:
+            break
+        typical = rng.choice(MEMBERS, LEARNT, replace=False)
+        known = known.beside(about(problem, found[-1].z[typical]))
+    return max(found, key=lambda population: population.effective_size)
 
 
 @dataclass(frozen=True)
@@ -99,18 +118,18 @@ class _Members:
         )
 
 
-def _placed(problem: Problem, mixture: Mixture, z: Array, family: Index) -> _Members:
+def _placed(problem: Problem, made: Mixture, z: Array, family: Index) -> _Members:
     likelihood = log_likelihood(problem, z)
-    ratio = likelihood - 0.5 * np.sum(z**2, axis=1) - mixture.log_density(z)
+    ratio = likelihood - 0.5 * np.sum(z**2, axis=1) - made.log_density(z)
     return _Members(z, likelihood, ratio, family)
 
 
 def _tempered(
-    problem: Problem, mixture: Mixture, rng: np.random.Generator, progress: Progress
+    problem: Problem, made: Mixture, rng: np.random.Generator, progress: Progress
 ) -> tuple[_Members, int]:
     """Carry draws of the mixture to the posterior, level by level."""
     progress.step("drawing the ensemble", 0.0)
-    members = _placed(problem, mixture, mixture.draw(MEMBERS, rng), np.arange(MEMBERS))
+    members = _placed(problem, made, made.draw(MEMBERS, rng), np.arange(MEMBERS))
     level, levels = 0.0, 0
     while level < 1.0:
         rise = _next_rise(members.log_ratio, 1.0 - level)
@@ -120,19 +139,19 @@ def _tempered(
         level, levels = level + rise, levels + 1
         for _ in range(MOVES_PER_LEVEL):
             progress.step("drawing the ensemble", min(level, 1.0))
-            members = _renew(problem, mixture, members, level, rng)
+            members = _renew(problem, made, members, level, rng)
     return members, levels
 
 
 def _renew(
-    problem: Problem, mixture: Mixture, members: _Members, level: float, rng: np.random.Generator
+    problem: Problem, made: Mixture, members: _Members, level: float, rng: np.random.Generator
 ) -> _Members:
     """One Metropolis step of every member towards mixture^(1-level) posterior^level."""
     share = rng.choice(RENEWED, size=len(members.z))
     elsewhere = rng.random(len(members.z)) < ELSEWHERE
-    near = mixture.renewed(members.z, share, rng)
-    z = np.where(elsewhere[:, None], mixture.draw(len(near), rng), near)
-    tried = _placed(problem, mixture, z, members.family)
+    near = made.renewed(members.z, share, rng)
+    z = np.where(elsewhere[:, None], made.draw(len(near), rng), near)
+    tried = _placed(problem, made, z, members.family)
     rise = level * (tried.log_ratio - members.log_ratio)
     taken = np.log(rng.random(len(members.z))) < rise
     return _Members(

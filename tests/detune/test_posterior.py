@@ -80,3 +80,10 @@ def test_a_match_keeps_as_many_members_to_judge_by_as_to_choose_by():
     assert not set(map(tuple, ensemble.standard)) & set(map(tuple, ensemble.fresh))
     assert 30 < ensemble.effective_size <= 400
     assert replace(ensemble, independent=None).effective_size == pytest.approx(200)
+
+
+def test_one_family_proves_little_however_far_it_spread():
+    """All members from one draw, or all but two: the rest of the posterior may be missing."""
+    values = np.random.default_rng(6).standard_normal((400, 12))
+    assert effective_size(values, np.zeros(400, dtype=int)) <= 12
+    assert effective_size(values, np.array([0] * 398 + [1, 2])) <= 13
