@@ -9,6 +9,7 @@ import pytest
 
 from fieldkit.detune.evidence import Evidence
 from fieldkit.detune.match import match
+from fieldkit.detune.scatter import as_installed
 from fieldkit.detune.unknowns import member_span, member_state, unknowns_of
 from fieldkit.signal.modes import MeasuredMode
 from fieldkit.span.layout import Believed, State, Support
@@ -74,3 +75,14 @@ def test_a_member_takes_its_own_fill_and_wall():
     z[[u.role == "fill" for u in unknowns]] = 1.0
     assert member_span(span, unknowns, z).pipe.wall_m < 0.97 * span.pipe.wall_m
     assert member_state(HALF_KNOWN, unknowns, z).fill == pytest.approx((0.841, 0.841), abs=1e-3)
+
+
+def test_installation_scatters_as_far_as_it_is_said_to():
+    """5 and 95 % of two hundred brackets, whatever the seed."""
+    for seed in (20, 21):
+        scatter = as_installed(200, np.random.default_rng(seed))
+        stiffness = np.quantile(np.log(scatter.stiffness_factor), (0.05, 0.95))
+        assert stiffness == pytest.approx((-1.645 * 0.35, 1.645 * 0.35), rel=0.02)
+        assert np.std(scatter.place_m) == pytest.approx(0.015, rel=0.02)
+        tied = np.corrcoef(np.log(scatter.stiffness_factor), scatter.place_m)[0, 1]
+        assert abs(tied) < 0.2
