@@ -36,7 +36,7 @@ Array = NDArray[np.float64]
 
 STIFFNESS_N_PER_M = (0.25e6, 64e6)
 """Brackets that can be built for a 4-inch pipe; scaled with the diameter."""
-LEVELS = 50
+LEVELS = 60
 AXIS_SETS = (("vertical",), ("lateral",), ("vertical", "lateral"), ("axial",))
 MASS_SHARES = (0.03, 0.5)
 """Of the mass of the pipe itself."""

@@ -34,7 +34,8 @@ def test_detune_ranks_changes_of_every_sample(name):
     answer = ran.document
     assert set(answer) == {
         "state", "margin", "bands", "modes", "chance_now", "fixes", "warnings",
-        "diagnosis", "diagnosis_first", "next_blows", "contradictions", "simulated",
+        "diagnosis", "diagnosis_first", "next_blows", "contradictions", "simulated", "tried",
+            "other_cures",
     }  # fmt: skip
     assert set(answer["bands"][0]) == {
         "name", "low_hz", "high_hz", "avoid_low_hz", "avoid_high_hz",
@@ -46,9 +47,12 @@ def test_detune_ranks_changes_of_every_sample(name):
     best = answer["fixes"][0]
     assert set(best) == {
         "rank", "kind", "summary", "change", "modes_after", "nearest", "chance", "cautions",
-        "install",
+        "install", "why", "fails",
     }  # fmt: skip
     assert best["chance"] >= 0.9
+    assert best["why"]
+    assert best["fails"].startswith("fails")
+    assert answer["tried"] >= 10_000
     assert len(best["change"]) == 1
     assert set(best["nearest"]) == {"band", "separation"}
     assert best["cautions"]
