@@ -119,3 +119,11 @@ def test_a_stiffer_bracket_and_a_heavier_mass_are_bigger_changes():
     assert effort(AddSupport(2.0, 1e6), span) < effort(AddSupport(2.0, 1e6, 1e6), span)
     assert effort(AddMass(2.0, 5.0), span) < effort(AddMass(2.0, 50.0), span)
     assert effort(StiffenSupport(1, 1e6), span) < effort(AddSupport(2.0, 1e6), span)
+
+
+def test_steel_nearby_makes_a_bracket_less_work_and_a_mass_not():
+    span, _, _ = booster()
+    goal = Goal(steel_m=((1.5, 2.5),))
+    assert effort(AddSupport(2.0, 1e6), span, goal) < effort(AddSupport(2.0, 1e6), span)
+    assert effort(AddSupport(3.0, 1e6), span, goal) == effort(AddSupport(3.0, 1e6), span)
+    assert effort(AddMass(2.0, 5.0), span, goal) == effort(AddMass(2.0, 5.0), span)
