@@ -89,7 +89,9 @@ def evaluations() -> list[str]:
     search = Search(job.span, base, forbidden, job.goal, as_installed(200, rng))
     candidates, counted = timed(lambda: generate(search, Progress()))
     some = candidates[:: max(1, len(candidates) // 20)]
-    _, solved = timed(lambda: [judge.after(base, search.push(c.change), job.goal.up_to_hz) for c in some])
+    _, solved = timed(
+        lambda: [judge.after(base, search.push(c.change), job.goal.up_to_hz) for c in some]
+    )
     _, fully = timed(
         lambda: [
             judge.resolve(base, job.span, job.running, c.change, job.goal.up_to_hz) for c in some

@@ -47,9 +47,19 @@ def test_the_answer_without_a_tap_rests_on_what_is_usual(job):
     assert ran.status == 0, ran.err
     found = ran.document["spacing"]
     assert set(found) == {
-        "state", "spans", "supports", "clear_above_hz", "chosen_m", "above_m",
-        "above_with_soft_supports_m", "above_with_rigid_supports_m", "between_bands_m", "by_spans", "weight_based", "curve",
-    }  # fmt: skip
+        "state",
+        "spans",
+        "supports",
+        "clear_above_hz",
+        "chosen_m",
+        "above_m",
+        "above_with_soft_supports_m",
+        "above_with_rigid_supports_m",
+        "between_bands_m",
+        "by_spans",
+        "weight_based",
+        "curve",
+    }
     assert found["clear_above_hz"] == pytest.approx(12.0)
     assert found["supports"]["source"] == "prior"
     assert [entry["spans"] for entry in found["by_spans"]] == list(range(2, 11))
