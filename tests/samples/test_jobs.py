@@ -48,6 +48,10 @@ def test_the_simulation_stands_on_its_own() -> None:
             assert {name.split(".")[0] for name in names} <= known | beside, path
 
 
+NOT_OF_THE_PIPEWORK = {"speed", "absorber"}
+"""Cures that the simulation of the plants does not build."""
+
+
 @pytest.mark.parametrize("folder", JOBS)
 def test_the_tape_is_within_one_percent_and_the_scales_within_the_tolerance(folder: str) -> None:
     job, plant = job_of(folder), BY_FOLDER[folder]
@@ -71,7 +75,7 @@ def test_the_goal_and_the_machine_are_those_of_the_simulation(folder: str) -> No
     assert list(excitation.orders) == list(machine.force_n)
     assert job.goal.margin == plant.margin
     assert job.goal.up_to_hz == plant.up_to_hz
-    assert set(job.goal.allow) == set(plant.allow)
+    assert set(job.goal.allow) - NOT_OF_THE_PIPEWORK == set(plant.allow)
     assert np.ravel(job.goal.keep_out_m) == pytest.approx(np.ravel(plant.keep_out_m), abs=1e-3)
 
 
