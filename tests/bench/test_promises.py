@@ -113,15 +113,19 @@ def test_the_interval_of_a_share_holds_it_and_narrows_with_the_number():
 
 
 def test_promises_are_kept_on_a_few_spans():
-    """Seven spans of a fixed seed: of those promised 0.9 or more at most one fails, intervals of
-    90 % hold at least seven times out of ten, and the usual ways do far worse."""
-    few = [p for p in plans((LIKE,), 15, 21) if p.family != "several"][:7]
+    """Fourteen spans of a fixed seed: of those promised 0.9 or more at most a fifth fails.
+
+    Intervals of 90 % hold at least eight times out of ten, and the usual ways do far worse.
+
+    Fewer spans would say little: of six that each keep with 95 %, two fail once in thirty draws.
+    """
+    few = [p for p in plans((LIKE,), 18, 21) if p.family != "several"]
     tally = Tally([run(plan) for plan in few])
     assert tally.refused == 0
-    assert len(tally.offered) >= 5
-    assert sum(tally.offered) >= len(tally.offered) - 1
-    assert abs(tally.mean_promise - tally.mean_kept) < 0.25
-    assert tally.coverage >= 0.7
+    assert len(tally.offered) >= 8
+    assert tally.kept_of_offered >= 0.8
+    assert abs(tally.mean_promise - tally.mean_kept) < 0.2
+    assert tally.coverage >= 0.8
     assert np.mean(tally.usual(NOMINAL)) < tally.mean_kept - 0.3
 
 
