@@ -100,7 +100,8 @@ async def photograph_tap_test(job: Path, folder: Path, size: tuple[int, int]) ->
             await until(pilot, lambda: screen.run.look().guide.phase == "armed")
             await pilot.pause(2.0)
             shoot("guided-enough")
-            await pilot.press("escape")
+            screen.run.stop()
+            screen.run.session.join(PATIENCE_S)
 
 
 def main(job: Path = JOB, folder: Path = FOLDER) -> None:
