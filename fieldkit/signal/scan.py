@@ -130,6 +130,14 @@ def decay_window(count: int, decay: float, rate_hz: float) -> Real:
     return np.asarray(window)
 
 
+def low_quantile(blocks: Real) -> Real:
+    """(b,) the level's quantile of each of (b, _LEVEL_BLOCK) blocks."""
+    below, share = divmod(_LEVEL_QUANTILE * (_LEVEL_BLOCK - 1), 1)
+    at = int(below)
+    ranked = np.partition(blocks, (at, at + 1), axis=1)
+    return np.asarray(ranked[:, at] + share * (ranked[:, at + 1] - ranked[:, at]))
+
+
 def excess(gain: Real, degrees: float) -> Real:
     """How far the surroundings of each bin stand above what noise gives; at least 1.
 
@@ -142,7 +150,7 @@ def excess(gain: Real, degrees: float) -> Real:
     if blocks < 2:
         return np.full_like(gain, max(np.quantile(gain, _LEVEL_QUANTILE) / expected, 1.0))
     used = gain[: blocks * _LEVEL_BLOCK].reshape(blocks, _LEVEL_BLOCK)
-    low = np.quantile(used, _LEVEL_QUANTILE, axis=1)
+    low = low_quantile(used)
     edged = np.pad(low, 1, mode="reflect")
     level = np.minimum(low, np.maximum(edged[:-2], edged[2:]))
     centres = (np.arange(blocks) + 0.5) * _LEVEL_BLOCK
