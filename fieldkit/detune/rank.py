@@ -25,6 +25,7 @@ from fieldkit.detune.speeds import SpeedOffer, speed_offers
 from fieldkit.detune.unknowns import unknowns_of
 from fieldkit.detune.verdict import Detuning, Nearest, Verdict
 from fieldkit.detune.why import fails, why
+from fieldkit.detune.window import scaled
 from fieldkit.detune.wording import speed_summary, summary
 from fieldkit.errors import InputError, Place
 from fieldkit.progress import Progress
@@ -266,14 +267,14 @@ def _cautions(
 
 
 def least_share(search: Search, change: Change) -> float | None:
-    """Smallest share of new brackets' stiffness that still keeps the wanted chance."""
-    push, count = search.push(change), search.counter()
-    if not push.stiffness.any() or push.without_springs:
+    """Smallest share of the stiffness a change states that still keeps the wanted chance."""
+    push = search.push(change)
+    states_none = scaled(change, 0.5) == change
+    if states_none or not push.stiffness.any() or push.without_springs:
         return None
     kept = 1.0
     for share in SOFTENING:
-        softer = count.with_push(replace(push, stiffness=share * push.stiffness))
-        if search.candidate(change, softer).chance < search.goal.chance:
+        if search.counted(scaled(change, float(share))).chance < search.goal.chance:
             return kept
         kept = float(share)
     return kept
