@@ -2,6 +2,10 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
+
+from fieldkit.detune.matched import Match
+from fieldkit.detune.verdict import Detuning
 from fieldkit.sheet import findings, tables
 from fieldkit.sheet.origin import mark
 from fieldkit.sheet.plain import clean, paragraph, percent
@@ -17,18 +21,23 @@ def lines(workup: Workup) -> list[str]:
     """The whole advice: question, answer, evidence, cautions."""
     found = [clean(workup.job.title), "=" * min(len(clean(workup.job.title)), 78), ""]
     found += mark(simulated_notice(workup.simulated))
-    found += ["Is it a resonance?", *_resonance(workup), ""]
+    found += ["Is it a resonance?", *_wrapped(resonance(workup)), ""]
     found += ["What to change", *_cure(workup), ""]
-    found += ["What it rests on", *_evidence(workup)]
-    found += tables.warnings(_all_warnings(workup))
+    found += ["What it rests on", *_wrapped(evidence(workup))]
+    found += tables.warnings(all_warnings(workup))
     found += ["", *paragraph(tables.TAP_CAUTION, 0), *paragraph(RESULTS_CAUTION, 0)]
     return found
 
 
-def _resonance(workup: Workup) -> list[str]:
+def _wrapped(sentences: Sequence[str]) -> list[str]:
+    return [line for text in sentences for line in paragraph(text, 2)]
+
+
+def resonance(workup: Workup) -> list[str]:
+    """Whether modes lie where the machine shakes, in sentences."""
     detuning = workup.detuning
     if detuning is None:
-        return _reasons(workup, "detune", "cannot be said")
+        return reasons(workup, "detune", "cannot be said")
     caught = [
         (mode, band)
         for mode in detuning.modes
@@ -36,17 +45,13 @@ def _resonance(workup: Workup) -> list[str]:
         if mode.chance_clear < 0.5 and band.holds(mode.median_hz)
     ]
     said = [
-        line
+        f"The {mode.direction} mode at {mode.median_hz:.1f} Hz ({mode.low_hz:.1f} to "
+        f"{mode.high_hz:.1f} Hz, {detuning.state}) lies in reach of {band.name} "
+        f"({_range(band.low_hz, band.high_hz)} Hz)."
         for mode, band in caught
-        for line in paragraph(
-            f"The {mode.direction} mode at {mode.median_hz:.1f} Hz ({mode.low_hz:.1f} to "
-            f"{mode.high_hz:.1f} Hz, {detuning.state}) lies in reach of {band.name} "
-            f"({_range(band.low_hz, band.high_hz)} Hz).",
-            2,
-        )
     ]
-    said = said or ["  No computed mode is more likely in a band than out of it."]
-    said += paragraph(f"Chance that every mode is clear now: {percent(detuning.chance_now)}.", 2)
+    said = said or ["No computed mode is more likely in a band than out of it."]
+    said.append(f"Chance that every mode is clear now: {percent(detuning.chance_now)}.")
     return said + _running_lines(workup)
 
 
@@ -57,69 +62,89 @@ def _running_lines(workup: Workup) -> list[str]:
         named = [one for one in running.diagnoses if one.mode or one.excitation]
         for one in named[:3]:
             sensor = f", {one.line.direction} sensor" if one.line.direction else ""
-            said += paragraph(f"Running{sensor}: {one.reason}.", 2)
-        said += paragraph(f"{findings.screening_summary(running)}.", 2)
+            said.append(f"Running{sensor}: {one.reason}.")
+        said.append(f"{findings.screening_summary(running)}.")
     return said
 
 
 def _cure(workup: Workup) -> list[str]:
     detuning = workup.detuning
-    if detuning is None:
-        return _reasons(workup, "detune", "cannot be said")
-    if not detuning.fixes:
-        return ["  No change of the allowed kinds was found."]
+    if detuning is None or not detuning.fixes:
+        return _wrapped(no_cure(workup))
     best = detuning.fixes[0]
     goal = workup.job.goal.chance
-    said = []
-    if best.chance < goal:
-        said += paragraph(
-            f"No single change reaches the wanted chance of {percent(goal)}. The best found:", 2
-        )
+    said = _wrapped(below_goal(workup))
     said += tables.fix(best)
     said += findings.better_measurement(workup.findings, best.chance, goal)
-    others = [f"chance {percent(fix.chance)}: {fix.summary}" for fix in detuning.fixes[1:4]]
+    others = other_changes(detuning)
     if others:
         said += ["", "  Else"]
         said += [line for other in others for line in paragraph(other, 4, "- ")]
     return said
 
 
-def _evidence(workup: Workup) -> list[str]:
+def no_cure(workup: Workup) -> list[str]:
+    """Why there is no change to offer; empty where there is one."""
+    if workup.detuning is None:
+        return reasons(workup, "detune", "cannot be said")
+    if not workup.detuning.fixes:
+        return ["No change of the allowed kinds was found."]
+    return []
+
+
+def below_goal(workup: Workup) -> list[str]:
+    """That the best change is not sure enough, where it is not."""
+    detuning, goal = workup.detuning, workup.job.goal.chance
+    if detuning is None or not detuning.fixes or detuning.fixes[0].chance >= goal:
+        return []
+    return [f"No single change reaches the wanted chance of {percent(goal)}. The best found:"]
+
+
+def other_changes(detuning: Detuning) -> list[str]:
+    """The next best changes with their chances."""
+    return [f"chance {percent(fix.chance)}: {fix.summary}" for fix in detuning.fixes[1:4]]
+
+
+def evidence(workup: Workup) -> list[str]:
+    """What was measured and what it taught, in sentences."""
     said: list[str] = []
     measured, running = workup.evidence.firm, workup.evidence.running
     usable = sum(len(reading.records) for reading in workup.taps)
     if measured:
         listed = ", ".join(f"{mode.frequency_hz:.2f}" for mode in measured)
-        said += paragraph(f"Measured: {listed} Hz, from {usable} usable taps.", 2)
+        said.append(f"Measured: {listed} Hz, from {usable} usable taps.")
     else:
-        said += _reasons(workup, "tap", "nothing was tapped" if running else "nothing was measured")
+        said += reasons(workup, "tap", "nothing was tapped" if running else "nothing was measured")
     if running:
         seen = ", ".join(f"{mode.frequency_hz:.2f}" for mode in running)
-        said += paragraph(f"Seen running: {seen} Hz; {tables.RUNNING_CAUTION}.", 2)
+        said.append(f"Seen running: {seen} Hz; {tables.RUNNING_CAUTION}.")
     if workup.match is not None:
-        learnt = [p.name for p in workup.match.parameters if p.informed]
-        source = "tap" if measured else "running record"
-        said += paragraph(
-            f"Matched: {len(workup.match.pairs)} of {len(workup.evidence.modes)} measured modes; "
-            f"the {source} informed {', '.join(learnt) if learnt else 'none of the unknowns'}.",
-            2,
-        )
-        said += paragraph(f"Next: {workup.match.next_measurement}.", 2)
+        said += matched_words(workup, "tap" if measured else "running record", workup.match)
     else:
-        said += _reasons(workup, "match", "")
+        said += reasons(workup, "match", "")
     for step in ("running", "span"):
-        said += _reasons(workup, step, "")
+        said += reasons(workup, step, "")
     return said
 
 
-def _reasons(workup: Workup, step: str, otherwise: str) -> list[str]:
-    reasons = workup.refusals(step)
-    if not reasons:
-        return paragraph(f"{otherwise}.", 2) if otherwise else []
-    return [line for reason in reasons for line in paragraph(reason, 2)]
+def matched_words(workup: Workup, source: str, match: Match) -> list[str]:
+    """How much was matched, what was learnt, and what to measure next."""
+    learnt = [p.name for p in match.parameters if p.informed]
+    return [
+        f"Matched: {len(match.pairs)} of {len(workup.evidence.modes)} measured modes; "
+        f"the {source} informed {', '.join(learnt) if learnt else 'none of the unknowns'}.",
+        f"Next: {match.next_measurement}.",
+    ]
 
 
-def _all_warnings(workup: Workup) -> tuple[str, ...]:
+def reasons(workup: Workup, step: str, otherwise: str) -> list[str]:
+    """Why a step has no answer."""
+    found = list(workup.refusals(step))
+    return found or ([f"{otherwise}."] if otherwise else [])
+
+
+def all_warnings(workup: Workup) -> tuple[str, ...]:
+    """Everything to mind, each once."""
     found = list(workup.warnings)
     found += workup.match.warnings if workup.match else ()
     found += workup.detuning.warnings if workup.detuning else ()

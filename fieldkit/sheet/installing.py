@@ -7,7 +7,7 @@ from typing import Any
 
 from fieldkit.detune.install import AtRest, Heated, Installation
 from fieldkit.quantity import show
-from fieldkit.sheet.plain import paragraph, table
+from fieldkit.sheet.plain import Cells, paragraph, table
 from fieldkit.span.static import WeightAnswer
 from fieldkit.steel.brackets import Bracket
 
@@ -138,15 +138,32 @@ def bracket_lines(found: Installation, units: str, fold: Fold = paragraph) -> li
     """The lightest bracket of each form, with its longest length."""
     if not found.stiffness_n_per_m:
         return []
-    reach = show(found.reach_m, "length", units, 2)
-    what = "the header" if found.to_header else "steel or concrete"
     if not found.brackets:
-        if "axial" in found.stiffness_n_per_m:
-            return fold("Brackets that hold along the pipe are not designed here.", 0, "")
-        return fold(
-            "No bracket of the table is stiff enough, clamp and base counted: share the stiffness "
-            "between two supports, or design one.", 0, "",
-        )  # fmt: skip
+        return fold(bracket_words(found, units), 0, "")
+    return [
+        *fold(bracket_words(found, units), 0, ""),
+        *table(*bracket_cells(found, units)),
+        *fold(sections_words(found), 2, ""),
+    ]
+
+
+def bracket_words(found: Installation, units: str) -> str:
+    """What the brackets are for, or why there is none."""
+    if found.brackets:
+        reach = show(found.reach_m, "length", units, 2)
+        what = "the header" if found.to_header else "steel or concrete"
+        return f"Brackets that have it, the lightest of each form for {reach} to {what}:"
+    if "axial" in found.stiffness_n_per_m:
+        return "Brackets that hold along the pipe are not designed here."
+    return (
+        "No bracket of the table is stiff enough, clamp and base counted: share the stiffness "
+        "between two supports, or design one."
+    )
+
+
+def bracket_cells(found: Installation, units: str) -> Cells:
+    """The brackets that are stiff enough."""
+    reach = show(found.reach_m, "length", units, 2)
     rows = [
         (
             bracket.form,
@@ -157,27 +174,33 @@ def bracket_lines(found: Installation, units: str, fold: Fold = paragraph) -> li
         )
         for bracket in found.brackets
     ]
+    return Cells(("form", "section", "longest", "mass", ""), rows)
+
+
+def sections_words(found: Installation) -> str:
+    """The standards of the sections, and what else is counted in."""
     standards = ", ".join(dict.fromkeys(bracket.standard for bracket in found.brackets))
-    return [
-        *fold(f"Brackets that have it, the lightest of each form for {reach} to {what}:", 0, ""),
-        *table(("form", "section", "longest", "mass", ""), rows),
-        *fold(f"Sections: {standards}. {BASIS[0].upper()}{BASIS[1:]}.", 2, ""),
-    ]
+    return f"Sections: {standards}. {BASIS[0].upper()}{BASIS[1:]}."
 
 
 def heat_lines(found: Installation, units: str) -> list[str]:
     """Free movement and force in each direction at the station."""
     if not found.heat:
         return []
+    return [HEAT_TITLE, *table(*heat_cells(found, units))]
+
+
+HEAT_TITLE = "From tapped to running, heat and pressure move the pipe here:"
+
+
+def heat_cells(found: Installation, units: str) -> Cells:
+    """Movement by heat and the force of holding it."""
     rows = [
         (axis, movement(heated, units), force(heated.force_n, units),
          "held" if heated.held else "free")
         for axis, heated in found.heat.items()
     ]  # fmt: skip
-    return [
-        "From tapped to running, heat and pressure move the pipe here:",
-        *table(("direction", "free", "force if held", "by this"), rows),
-    ]
+    return Cells(("direction", "free", "force if held", "by this"), rows)
 
 
 def force(newtons: float, units: str) -> str:

@@ -5,8 +5,16 @@ from __future__ import annotations
 import math
 import textwrap
 from collections.abc import Sequence
+from typing import NamedTuple
 
 WIDTH = 78
+
+
+class Cells(NamedTuple):
+    """A table before anybody lays it out: text, HTML and Markdown share it."""
+
+    head: Sequence[str]
+    rows: Sequence[Sequence[str]]
 
 
 def clean(text: str) -> str:
@@ -47,7 +55,7 @@ def table(head: Sequence[str], rows: Sequence[Sequence[str]], indent: int = 2) -
     lines = []
     for row in cells:
         parts = [
-            cell.rjust(width) if _numeric(cells, i) else cell.ljust(width)
+            cell.rjust(width) if numeric(cells[1:], i) else cell.ljust(width)
             for i, (cell, width) in enumerate(zip(row, widths, strict=True))
         ]
         lines.append((" " * indent + "  ".join(parts)).rstrip())
@@ -67,6 +75,7 @@ def paragraph(text: str, indent: int = 2, mark: str = "") -> list[str]:
     )
 
 
-def _numeric(cells: Sequence[Sequence[str]], column: int) -> bool:
-    body = [row[column] for row in cells[1:] if row[column]]
+def numeric(rows: Sequence[Sequence[str]], column: int) -> bool:
+    """Whether a column holds numbers, which are set to the right."""
+    body = [row[column] for row in rows if row[column]]
     return bool(body) and all(cell[0] in "0123456789+-±<>[" or cell == "rigid" for cell in body)
