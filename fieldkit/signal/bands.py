@@ -112,9 +112,17 @@ def transforms(bins: Band, poles: Complex) -> tuple[Complex, Complex]:
 
     ``poles`` are (P, K), or (P, 1) where the taps share them.
     """
-    both = np.stack([poles, np.conj(poles)], axis=1)[..., None] / bins.rate_hz
-    plain, ramp = geometric(np.exp(both) * bins.turn, np.exp(both * bins.count), bins.count)
+    plain, ramp = unweighted(bins, poles)
     return plain * (bins.weight / 2), ramp * (bins.weight / (2 * bins.rate_hz))
+
+
+def unweighted(bins: Band, poles: Complex) -> tuple[Complex, Complex]:
+    """Sums of exp(pt) and of its conjugate over the samples, and both times the sample's number.
+
+    (P, 2, K, B), or (P, 2, 1, B) where all taps have the same bins and share the poles.
+    """
+    both = np.stack([poles, np.conj(poles)], axis=1)[..., None] / bins.rate_hz
+    return geometric(np.exp(both) * bins.turn, np.exp(both * bins.count), bins.count)
 
 
 def combined(pair: Complex, amplitudes: Complex) -> Complex:

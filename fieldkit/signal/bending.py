@@ -14,9 +14,10 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.bands import combined, cosines_sines, real_rows, transforms
+from fieldkit.signal.bands import cosines_sines, real_rows
 from fieldkit.signal.clusters import surroundings
 from fieldkit.signal.likelihood import Fit, Still, fit_before, inverse, less_part_in, orthonormal
+from fieldkit.signal.powers import Powers
 from fieldkit.signal.scan import Region
 from fieldkit.signal.scatter import loosened, scattered
 from fieldkit.signal.search import WANDER_REACH, Found, without
@@ -26,6 +27,8 @@ Real = NDArray[np.float64]
 
 _STEPS = 20
 _FEW_STEPS = 5
+_MORE_TERMS = 3
+"""Of the series than the amplitudes at its start ask for: they change with every fit."""
 _HOPELESS = 4.0
 _MOST_ROWS = 1500
 """Real data of one tap; wider bands hold other things than one mode."""
@@ -183,22 +186,20 @@ class BentPoint:
     @classmethod
     def at(cls, still: Still, part: Component) -> BentPoint:
         """Solve for the amplitudes; the drift uses their last sizes."""
+        weights = bent_weights(part)
+        powers = Powers.of(still.bins, part, len(weights) + _MORE_TERMS)
         for _ in range(2):
-            rows = still.clear(real_rows(cosines_sines(bent_pair(still, part))))
+            rows = still.clear(real_rows(cosines_sines(powers.pair(weights))))
             basis, to_numbers = orthonormal(rows)
             shares = np.matmul(basis, still.left[:, :, None])
             numbers = np.matmul(to_numbers, shares)[:, :, 0]
             part = replace(part, amplitudes=numbers[:, 0] + 1j * numbers[:, 1])
+            weights = bent_weights(part)
+            powers = powers.enough(part, len(weights))
         left = still.left[:, None] - shares.transpose(0, 2, 1) @ basis
         scale = 1 / max(float(np.abs(part.amplitudes).max()), 1e-300)
-        here = bent_model(still, part)
-        spacing = float(np.max(still.bins.rate_hz / still.bins.count))
-        steps = (1e-4 * max(part.decay_per_s, spacing), 1e-4, 1e-4)
-        slopes = [
-            (bent_model(still, changed(part, np.eye(3)[i] * step, scale)) - here) / step
-            for i, step in enumerate(steps)
-        ]
-        tangent = less_part_in(basis, still.clear(real_rows(np.stack(slopes))))
+        slopes = powers.slopes(part, weights, scale)
+        tangent = less_part_in(basis, still.clear(real_rows(slopes)))
         return cls(part, float(np.sum(left**2)), left[:, 0], tangent, scale)
 
     def moved(self, still: Still, damping: float) -> BentPoint:
@@ -243,19 +244,3 @@ def changed(part: Component, move: Real, scale: float) -> Component:
     most = _MOST_RAD * scale
     bend = float(np.clip(part.bend + move[2] * scale, -most, most))
     return replace(part.with_pole(complex(-decay, omega)), bend=bend)
-
-
-def bent_pair(still: Still, part: Component) -> NDArray[np.complex128]:
-    """(1, 2, K, B) transforms of the drifting decay of unit amplitude and of its conjugate."""
-    weights = bent_weights(part)
-    poles = np.full((len(weights), 1), part.pole)
-    poles -= part.decay_per_s * np.arange(len(weights))[:, None]
-    plain = transforms(still.bins, poles)[0]
-    own = np.sum(weights[:, :, None] * plain[:, 0], axis=0)
-    mirrored = np.sum(np.conj(weights)[:, :, None] * plain[:, 1], axis=0)
-    return np.stack([own, mirrored])[None]
-
-
-def bent_model(still: Still, part: Component) -> NDArray[np.complex128]:
-    """(K, B) transform of the drifting decay at its amplitudes."""
-    return np.asarray(combined(bent_pair(still, part), part.amplitudes[None, :, None])[0])

@@ -39,8 +39,9 @@ def away_from_one(
     ratio: Complex, last: Complex, count: Real, gap: Complex
 ) -> tuple[Complex, Complex]:
     """The sums by their closed forms; ``gap`` is 1 - q."""
-    plain = (1 - last) / gap
-    return plain, (ratio * plain - count * last) / gap
+    over_gap = 1 / gap
+    plain = (1 - last) * over_gap
+    return plain, (ratio * plain - count * last) * over_gap
 
 
 def damped(exponent: complex, count: int) -> Complex:
