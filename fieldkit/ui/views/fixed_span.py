@@ -6,8 +6,10 @@ from typing import TYPE_CHECKING
 
 from fieldkit.quantity import show
 from fieldkit.ui.desk import Desk
+from fieldkit.ui.span_marks import measuring_items, mode_items, place_to_tap
 from fieldkit.ui.units import length
 from fieldkit.ui.widgets import SpanDrawing
+from fieldkit.ui.widgets.span_art import Item
 
 if TYPE_CHECKING:
     from fieldkit.detune.fixes import Change
@@ -18,7 +20,7 @@ if TYPE_CHECKING:
 def draw_plain(drawing: SpanDrawing, desk: Desk, mode: Mode | None) -> None:
     """The span as it is described, with a mode shape."""
     drawing.mark_station(None)
-    _show(drawing, desk, desk.job.span if desk.job else None, mode)
+    _show(drawing, desk, desk.job.span if desk.job else None, mode, measuring=True)
 
 
 def draw_fixed(drawing: SpanDrawing, desk: Desk, number: int = 0) -> None:
@@ -46,11 +48,26 @@ def station_of(change: Change, span: Span) -> float | None:
     return None
 
 
-def _show(drawing: SpanDrawing, desk: Desk, span: Span | None, mode: Mode | None) -> None:
+def _show(
+    drawing: SpanDrawing,
+    desk: Desk,
+    span: Span | None,
+    mode: Mode | None,
+    measuring: bool = False,
+) -> None:
     units = desk.units
+
+    def length_text(value_m: float) -> str:
+        return length(value_m, units)
+
+    also: tuple[Item, ...] = mode_items(mode, span, length_text) if span is not None else ()
+    if measuring and desk.job is not None:
+        place = place_to_tap(desk.modes_of("tapped"), desk.job, desk.bands)
+        also = (*measuring_items(desk.job, place, length_text), *also)
     drawing.show(
         span,
         mode,
-        length_text=lambda value_m: length(value_m, units),
+        length_text=length_text,
         mass_text=lambda value_kg: show(value_kg, "mass", units),
+        also=also,
     )

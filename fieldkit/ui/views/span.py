@@ -12,6 +12,8 @@ from textual.widgets import DataTable
 
 from fieldkit.ui.forms import JobRow, rows_of
 from fieldkit.ui.messages import AddWanted, EditWanted, RemoveWanted
+from fieldkit.ui.motion import motion_wanted
+from fieldkit.ui.span_marks import place_to_tap, tap_words
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import length
 from fieldkit.ui.views.base import View, plain
@@ -21,6 +23,7 @@ from fieldkit.ui.words import DASH, hertz, sentence, span_of
 
 if TYPE_CHECKING:
     from fieldkit.span.modes import Mode
+    from fieldkit.span.motion import TapPlace
     from fieldkit.workup import StateModes
 
 
@@ -39,10 +42,18 @@ class SpanView(View):
         Binding("left", "mode(-1)", "Mode", key_display="←→", priority=True, id="span.mode-before",
                 tooltip="Draw the mode before (left) or after (right)"),
         Binding("right", "mode(1)", "Next mode", show=False, priority=True, id="span.mode-after"),
-        Binding("v", "turn", "View", id="span.turn", tooltip="See the span from another side"),
+        Binding("v", "turn", "View", id="span.turn",
+                tooltip="See the span from another side; after the planes comes the free view"),
+        Binding("space", "move", "Move", key_display="spc", id="span.move",
+                tooltip="Let the mode shape swing, or hold it still"),
+        Binding("shift+left", "turn_by(-15, 0)", "Turn", show=False, id="span.turn-left",
+                tooltip="Turn the free view (shift and ←→↑↓)"),
+        Binding("shift+right", "turn_by(15, 0)", "Turn", show=False, id="span.turn-right"),
+        Binding("shift+up", "turn_by(0, 15)", "Tilt", show=False, id="span.tilt-up"),
+        Binding("shift+down", "turn_by(0, -15)", "Tilt", show=False, id="span.tilt-down"),
         Binding("m", "state", "State", id="span.state",
                 tooltip="Draw the span as tapped, as running, or with the chosen change"),
-        Binding("p", "spacing", "Spacing", id="span.spacing",
+        Binding("p", "spacing", "Spacing", show=False, id="span.spacing",
                 tooltip="How far apart equal supports may stand under this line"),
     ]  # fmt: skip
 
@@ -61,6 +72,11 @@ class SpanView(View):
                 yield SpanDrawing(id="drawing")
                 yield Table("mode", "tapped", "running", "direction", "most at", id="computed")
                 yield plain("handbook")
+
+    def on_mount(self) -> None:
+        """The shape swings by itself where that is wanted."""
+        super().on_mount()
+        self.query_one(SpanDrawing).moving = motion_wanted() and not self.app.is_headless
 
     def draw(self) -> None:
         """Rows, modes, drawing, handbook."""
@@ -99,10 +115,22 @@ class SpanView(View):
         if not modes:
             return f"{words}: no mode to draw"
         mode = modes[number]
-        return (
+        drawn = (
             f"{words}, mode {number + 1} of {len(modes)}: "
             f"{hertz(mode.frequency_hz)} Hz {mode.direction}"
         )
+        place = self._place_to_tap
+        if place is None:
+            return drawn
+        return f"{drawn}\n{tap_words(place, lambda at_m: length(at_m, self.desk.units))}"
+
+    @property
+    def _place_to_tap(self) -> TapPlace | None:
+        """Where a tap shows every mode of interest."""
+        tapped = self.desk.modes_of("tapped")
+        if self.desk.job is None or self._shows_fix:
+            return None
+        return place_to_tap(tapped, self.desk.job, self.desk.bands)
 
     def _mode_rows(self) -> list[Row]:
         pairs = zip_longest(self.desk.modes_of("tapped"), self.desk.modes_of("running"))
@@ -150,6 +178,14 @@ class SpanView(View):
     def action_turn(self) -> None:
         """See the span from another side."""
         self.query_one(SpanDrawing).action_turn()
+
+    def action_turn_by(self, turn_deg: int, tilt_deg: int) -> None:
+        """Turn and tilt the free view."""
+        self.query_one(SpanDrawing).action_turn_by(turn_deg, tilt_deg)
+
+    def action_move(self) -> None:
+        """Let the shape swing, or hold it still."""
+        self.query_one(SpanDrawing).action_move()
 
     def action_state(self) -> None:
         """Draw the next state."""

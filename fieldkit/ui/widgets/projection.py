@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -42,6 +43,33 @@ PLANES = (
     Plane("plan x-y", (1, 0, 0), (0, 1, 0), "y↑ x→"),
     Plane("isometric", (COS_30, -COS_30, 0), (0.5, 0.5, 1), "z↑ x↗ y↖"),
 )
+
+ARROWS = "→↗↑↖←↙↓↘"
+UNSEEN = 0.15
+"""An axis that shows less than this share of its length has no direction on the screen."""
+FREE_START = (-45, 35)
+"""Turn and tilt that a free view starts from, degrees: nearly the isometric one."""
+
+
+def turned(turn_deg: float, tilt_deg: float) -> Plane:
+    """The view from a turn about z (0 is elevation x-z, 90 y-z) and a tilt (90 is plan)."""
+    turn, tilt = math.radians(turn_deg), math.radians(tilt_deg)
+    across = (math.cos(turn), math.sin(turn), 0.0)
+    up = (-math.sin(turn) * math.sin(tilt), math.cos(turn) * math.sin(tilt), math.cos(tilt))
+    key = " ".join(
+        f"{name}{_arrow(right, above)}"
+        for name, right, above in zip(
+            "zxy", (across[2], *across[:2]), (up[2], *up[:2]), strict=True
+        )
+    )
+    return Plane(f"turned {turn_deg:.0f}°, from {tilt_deg:.0f}° up", across, up, key)
+
+
+def _arrow(right: float, above: float) -> str:
+    """The way a unit vector points on the screen; a dot where it points at the reader."""
+    if math.hypot(right, above) < UNSEEN:
+        return "·"
+    return ARROWS[round(math.atan2(above, right) / (math.pi / 4)) % 8]
 
 
 def centre_line_points(span: Span) -> tuple[Floats, Floats]:

@@ -31,6 +31,7 @@ KIND_GLYPHS = {
 BESIDE = {"rest": 1, "hanger": -1}
 """Kinds that stand below or hang above the pipe: rows from it, down counted positive."""
 MASS_GLYPH, MARK_GLYPH = "●", "◎"
+FREE_LABELS = ("marked", "tap")
 SHAPE_SHARE, LEAST_SHAPE_DOTS = 0.2, 3.0
 MARGIN_SHARE, MOST_ABOVE, MOST_BELOW = 0.3, 2, 3
 CELL_HEIGHT = 2
@@ -61,6 +62,17 @@ class ShapeLine:
 
 
 @dataclass(frozen=True)
+class Item:
+    """Something at a station: its glyph and its label, longest wording first."""
+
+    at_m: float
+    glyph: str
+    wordings: tuple[str, ...]
+    ink: str
+    rows_off: int = 0
+
+
+@dataclass(frozen=True)
 class Picture:
     """What is to be drawn, and in which words."""
 
@@ -72,17 +84,10 @@ class Picture:
     """None leaves the choice to the drawing."""
     marked: tuple[float, str] | None = None
     """A station to point at, and what for."""
-
-
-@dataclass(frozen=True)
-class Item:
-    """Something at a station: its glyph and its label, longest wording first."""
-
-    at_m: float
-    glyph: str
-    wordings: tuple[str, ...]
-    ink: str
-    rows_off: int = 0
+    also: tuple[Item, ...] = ()
+    """More to show at stations, less important than masses and supports."""
+    swing: float | None = None
+    """How far the shape swings just now, -1 to 1; None draws it at rest at its largest."""
 
 
 def chosen_plane(picture: Picture) -> Plane:
@@ -110,17 +115,30 @@ def draw_span(canvas: Canvas, picture: Picture) -> None:
         4 * (canvas.rows - below) - 1,
     )
     line = onto.dots(flat)
-    if picture.shape is not None:
-        _draw_shape(canvas, picture.shape, plane, stations, line)
-    canvas.polyline(line[:, 0], line[:, 1], "pipe")
     items = _items(picture)
     places = _places(onto, plane, picture.span, items, canvas.rows - bool(below))
-    for item, (column, row) in zip(items, places, strict=True):
-        canvas.write(row, column, item.glyph, item.ink)
-    if roomy:
-        _write_foot(canvas, picture, plane, onto)
-        for item, place in zip(items, places, strict=True):
-            _write_label(canvas, place, item, [other for other in places if other != place])
+
+    def draw_on(paper: Canvas, swings: tuple[float, ...]) -> None:
+        for swing in swings:
+            _draw_shape(paper, picture, plane, stations, line, swing)
+        paper.polyline(line[:, 0], line[:, 1], "pipe")
+        for item, (column, row) in reversed(list(zip(items, places, strict=True))):
+            paper.write(row, column, item.glyph, item.ink)
+
+    still = picture.swing is None
+    draw_on(canvas, (1.0,) if picture.swing is None else (picture.swing,))
+    if not roomy:
+        return
+    room = canvas if still else Canvas(canvas.columns, canvas.rows)
+    if not still:
+        draw_on(room, (-1.0, 1.0))
+    for paper in (canvas,) if still else (canvas, room):
+        _write_foot(paper, picture, plane, onto)
+    for item, place in zip(items, places, strict=True):
+        found = _label_place(room, place, item, [other for other in places if other != place])
+        for paper in (canvas,) if still else (canvas, room):
+            if found is not None:
+                paper.write(*found, item.ink)
 
 
 def _margins(rows: int) -> tuple[int, int]:
@@ -139,10 +157,21 @@ def _displacement(shape: Shape, stations: Floats) -> Floats:
     return moved / largest if math.isfinite(largest) and largest > 0 else np.zeros_like(moved)
 
 
-def _draw_shape(canvas: Canvas, shape: Shape, plane: Plane, stations: Floats, line: Floats) -> None:
+def _draw_shape(
+    canvas: Canvas,
+    picture: Picture,
+    plane: Plane,
+    stations: Floats,
+    line: Floats,
+    swing: float,
+) -> None:
+    shape = picture.shape
+    if shape is None:
+        return
     fine = np.linspace(stations[0], stations[-1], 200)
     seen = plane.project(_displacement(shape, fine)) * np.array([1.0, -1.0])
     reach = max(LEAST_SHAPE_DOTS, SHAPE_SHARE * min(canvas.dot_rows, 0.5 * canvas.dot_columns))
+    reach *= swing
     along = np.column_stack([np.interp(fine, stations, line[:, axis]) for axis in range(2)])
     moved = along + reach * seen
     canvas.polyline(moved[:, 0], moved[:, 1], "shape", dash=2)
@@ -170,7 +199,7 @@ def _items(picture: Picture) -> list[Item]:
     for at, name in ((0.0, "start"), (span.length_m, "end")):
         if not any(abs(at - other) < 1e-3 for other in held):
             items.append(Item(at, "○", (f"{name} {length(at)}", name), "end"))
-    return items
+    return [*items, *picture.also]
 
 
 def _places(
@@ -194,20 +223,21 @@ def _cell(onto: Fit, plane: Plane, span: Span, item: Item) -> tuple[int, int]:
     return int(column), int(row) + (item.rows_off if plane.up[2] else 0)
 
 
-def _write_label(
+def _label_place(
     canvas: Canvas, place: tuple[int, int], item: Item, others: list[tuple[int, int]]
-) -> None:
-    """The longest wording that fits nearer to its glyph than to any other.
+) -> tuple[int, int, str] | None:
+    """(row, column, wording) of the longest that fits nearer to its glyph than to any other.
 
-    The chosen station has an ink of its own, so its label may stand farther off if need be.
+    The chosen station and the place to tap have inks of their own, so their labels may stand
+    farther off if need be.
     """
-    rivalries = (others, []) if item.ink == "marked" else (others,)
+    rivalries = (others, []) if item.ink in FREE_LABELS else (others,)
     for wording in item.wordings:
         for rivals in rivalries:
             found = _label_room(canvas, place, cell_len(wording), rivals)
             if found is not None:
-                canvas.write(*found, wording, item.ink)
-                return
+                return (*found, wording)
+    return None
 
 
 def _label_room(
