@@ -16,6 +16,7 @@ from fieldkit.detune.excitation import Excitation, bands
 from fieldkit.detune.unknowns import Unknown, member_span, member_state, unknowns_of
 from fieldkit.errors import InputError, Refusal
 from fieldkit.job.document import Job
+from fieldkit.quantity import parse
 from fieldkit.span.layout import State
 from fieldkit.span.modes import span_modes
 
@@ -32,6 +33,10 @@ _SENSITIVITY, _FULL_SCALE = "100 mV/g", "0.7 V"
 _HAMMER = "10 kN per unit"
 _TRUE_SENSITIVITY = 1.03
 """Of the rig's sensors, over what is written on them: a calibration finds out."""
+_G = 9.80665
+_WRITTEN = (1.0, 2.0, 2.5, 5.0, 10.0)
+"""Round figures, times a power of ten, that are written on sensors: what a calibration found lies
+near the one of the sensor it was done with, so that it is not calibrated into another."""
 _SENSOR_AT, _STRUCK_AT = 0.42, 0.58
 """Shares of the span where nobody says."""
 _DIRECTIONS = ("vertical", "lateral", "axial")
@@ -139,7 +144,23 @@ def _sensor(setup: ChannelSetup) -> PracticeSensor:
         return PracticeSensor(0.0, "vertical", setup.si_per_unit, hammer=True)
     assert setup.at_m is not None
     assert setup.direction is not None
-    return PracticeSensor(setup.at_m, setup.direction, setup.si_per_unit / _TRUE_SENSITIVITY)
+    return PracticeSensor(setup.at_m, setup.direction, _true_full_scale(setup))
+
+
+def _true_full_scale(setup: ChannelSetup) -> float:
+    """Acceleration at which the input truly reads 1, whether or not that was calibrated before."""
+    assert setup.si_per_unit is not None
+    if setup.full_scale is None:
+        return _written(setup.si_per_unit) / _TRUE_SENSITIVITY
+    volts = parse(setup.full_scale, "voltage")
+    volts_per_g = _written(volts / setup.si_per_unit * _G) * _TRUE_SENSITIVITY
+    return volts / volts_per_g * _G
+
+
+def _written(value: float) -> float:
+    """The round figure that is nearest, in ratio."""
+    decade = 10.0 ** np.floor(np.log10(value))
+    return float(decade * min(_WRITTEN, key=lambda figure: abs(np.log(figure * decade / value))))
 
 
 def _machine(excitations: Sequence[Excitation]) -> PracticeMachine | None:

@@ -197,14 +197,31 @@ def test_the_sidecar_says_simulated(tmp_path) -> None:
     assert (info.simulated, info.device) == (True, "the practice rig")
 
 
-def test_on_the_shaker_its_sensor_reads_three_percent_more_than_is_written_on_it() -> None:
-    """103 mV/g where 100 mV/g is written: a calibration finds out."""
+@pytest.mark.parametrize(
+    ("written", "found"),
+    [
+        (SETUP, "103 mV/g"),
+        (replace(SETUP, sensitivity="98 mV/g"), "103 mV/g"),
+        (replace(SETUP, sensitivity="10 mV/g", full_scale="1.4 V"), "10.3 mV/g"),
+        (replace(SETUP, sensitivity=None, full_scale=None, scale="20 m/s^2"), None),
+    ],
+)
+def test_a_calibration_of_the_rig_finds_what_its_sensor_has_and_finds_it_again(
+    written: ChannelSetup, found: str | None
+) -> None:
+    """3 % more than the round figure on the sensor, to 0.1 %; calibrated again, the same."""
     job = load_job(sample_jobs()[0])
-    rig = practice_source(job, [SETUP])
-    rig.shake(10.0)
-    samples = np.concatenate([rig.block(0).samples[:, 0] for _ in range(200)])
-    found = calibrate(samples, rig.rate_hz, reference_rms=10.0)
-    assert found.setup(SETUP).sensitivity == "103 mV/g"
+    setup = written
+    for _ in range(3):
+        rig = practice_source(job, [setup])
+        rig.shake(10.0)
+        samples = np.concatenate([rig.block(0).samples[:, 0] for _ in range(200)])
+        calibration = calibrate(samples, rig.rate_hz, reference_rms=10.0)
+        assert calibration.si_per_unit == pytest.approx(rig.sensors[0].full_scale, rel=1e-3)
+        setup = calibration.setup(setup)
+        assert setup.si_per_unit == pytest.approx(rig.sensors[0].full_scale, rel=1e-3)
+        if found is not None:
+            assert setup.sensitivity == found
 
 
 def test_what_nobody_said_of_a_channel_is_filled_in() -> None:
