@@ -101,6 +101,16 @@ def known_schedules(size: str) -> tuple[str, ...]:
     return tuple(schedule for schedule in SCHEDULES if _looked_up(nps, schedule) is not None)
 
 
+def is_schedule(schedule: str) -> bool:
+    """Whether any pipe exists in a schedule of this name."""
+    return _schedule(schedule) in SCHEDULES
+
+
+def nominal_diameter_mm(size: str) -> int:
+    """The DN of a nominal size."""
+    return _DN_OF_NPS[_nominal_size(size)]
+
+
 def _nominal_size(size: str) -> str:
     """Nominal pipe size as tabled, from however a person writes it."""
     spoken = str(size).strip().upper().replace("INCHES", "").replace("INCH", "").rstrip('"')

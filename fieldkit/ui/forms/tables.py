@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from fieldkit.span.supports import KINDS
+from fieldkit.ui.forms import offers
 from fieldkit.ui.forms.codecs import (
     Choice,
     Codec,
@@ -15,6 +16,8 @@ from fieldkit.ui.forms.codecs import (
     Several,
     Words,
 )
+from fieldkit.ui.forms.named import MaterialName, PipeSize, Schedule
+from fieldkit.ui.forms.offers import Offer, OffersOf, fixed
 
 LENGTH = Quantity("length")
 SPEED = Quantity("speed")
@@ -28,6 +31,14 @@ SHARE = Number(0.0, 1.0)
 STATE = Choice(("tapped", "running"))
 DIRECTION_OF_MOTION = Choice(("vertical", "lateral", "axial", "x", "y", "z"))
 SUPPORT_KINDS = tuple(KINDS)
+UNITS = fixed(Offer("SI", "m, mm, kg, N/m"), Offer("US", "ft, in, lb, kip/in"))
+RECORDING_KINDS = fixed(Offer("tap", "blows on the pipe"), Offer("running", "the machine runs"))
+QUANTITIES = fixed(
+    Offer("acceleration"),
+    Offer("velocity"),
+    Offer("displacement"),
+    Offer("pressure", "a microphone"),
+)
 
 
 @dataclass(frozen=True)
@@ -43,6 +54,8 @@ class Field:
     """What leaving it out means."""
     said: str | None = None
     """Word before the value in a list; None takes the label, empty is for what needs none."""
+    offers: OffersOf | None = None
+    """What there is to choose from."""
 
 
 @dataclass(frozen=True)
@@ -84,18 +97,22 @@ FORMS: dict[str, Form] = {
             "Job",
             (
                 Field("title", "title", Words(), needed=True, said=""),
-                Field("units", "units shown", Choice(("SI", "US")), when_empty="SI"),
+                Field("units", "units shown", Choice(("SI", "US")), when_empty="SI",
+                      offers=UNITS),
             ),
         ),
         Form(
             "pipe",
             "Pipe",
             (
-                Field("size", "size", Words("NPS 3 or DN 80"), when_empty="by diameter", said=""),
-                Field("schedule", "schedule", Words("40, 80, STD, XS, 10S"), when_empty="by wall"),
+                Field("size", "size", PipeSize(), when_empty="by diameter", said="",
+                      offers=offers.sizes),
+                Field("schedule", "schedule", Schedule(), when_empty="by wall",
+                      offers=offers.schedules()),
                 Field("outside_diameter", "outside diam.", LENGTH, when_empty="by size"),
                 Field("wall", "wall", LENGTH, when_empty="by schedule"),
-                Field("material", "material", Words("carbon steel"), when_empty="own", said=""),
+                Field("material", "material", MaterialName(), when_empty="own", said="",
+                      offers=offers.materials),
                 Field("insulation.thickness", "insulation", LENGTH, when_empty="bare pipe"),
                 Field("insulation.density", "its density", Quantity("density")),
             ),
@@ -104,7 +121,8 @@ FORMS: dict[str, Form] = {
             "contents",
             "Contents",
             (
-                Field("name", "name", Words("water"), when_empty="by density", said=""),
+                Field("name", "name", Words("water"), when_empty="by density", said="",
+                      offers=offers.contents),
                 Field("density", "density", Quantity("density"), when_empty="by name"),
             ),
         ),
@@ -114,7 +132,8 @@ FORMS: dict[str, Form] = {
             "leg",
             "Leg",
             (
-                Field("direction", "direction", Direction(), needed=True, said=""),
+                Field("direction", "direction", Direction(), needed=True, said="",
+                      offers=offers.HEADINGS),
                 Field("length", "length", LENGTH, needed=True, said=""),
                 Field("bend_radius", "bend radius", LENGTH, when_empty="long radius, 1.5 x size"),
             ),
@@ -125,14 +144,20 @@ FORMS: dict[str, Form] = {
             "Support",
             (
                 Field("at", "station", LENGTH, needed=True, said="at"),
-                Field("kind", "kind", Choice(SUPPORT_KINDS), needed=True, said=""),
-                Field("vertical", "vertical", STIFFNESS, when_empty="what the kind implies"),
-                Field("lateral", "lateral", STIFFNESS, when_empty="what the kind implies"),
-                Field("axial", "axial", STIFFNESS, when_empty="what the kind implies"),
-                Field("rotation", "rotation", TURNING, when_empty="what the kind implies"),
-                Field("header.size", "header size", Words("NPS 8"), when_empty="no branch",
-                      said="on header"),
-                Field("header.schedule", "its schedule", Words("40"), when_empty="no branch"),
+                Field("kind", "kind", Choice(SUPPORT_KINDS), needed=True, said="",
+                      offers=offers.support_kinds),
+                Field("vertical", "vertical", STIFFNESS, when_empty="what the kind implies",
+                      offers=offers.STIFFNESSES),
+                Field("lateral", "lateral", STIFFNESS, when_empty="what the kind implies",
+                      offers=offers.STIFFNESSES),
+                Field("axial", "axial", STIFFNESS, when_empty="what the kind implies",
+                      offers=offers.STIFFNESSES),
+                Field("rotation", "rotation", TURNING, when_empty="what the kind implies",
+                      offers=offers.STIFFNESSES),
+                Field("header.size", "header size", PipeSize(), when_empty="no branch",
+                      said="on header", offers=offers.sizes),
+                Field("header.schedule", "its schedule", Schedule(), when_empty="no branch",
+                      offers=offers.schedules("header.size")),
             ),
             repeated=True,
         ),
@@ -140,10 +165,12 @@ FORMS: dict[str, Form] = {
             "mass",
             "Mass",
             (
-                Field("name", "name", Words("check valve"), when_empty="mass", said=""),
+                Field("name", "name", Words("check valve"), when_empty="mass", said="",
+                      offers=offers.MASS_NAMES),
                 Field("at", "station", LENGTH, needed=True, said="at"),
                 Field("mass", "mass", Quantity("mass"), needed=True, said=""),
-                Field("tolerance", "tolerance", SHARE, when_empty="10 %, one standard deviation"),
+                Field("tolerance", "tolerance", SHARE, when_empty="10 %, one standard deviation",
+                      offers=offers.TOLERANCES),
                 Field(
                     "offset",
                     "offset x, y, z",
@@ -169,16 +196,19 @@ FORMS: dict[str, Form] = {
             "Recording",
             (
                 Field("file", "file", Words("as beside the job file"), needed=True, said=""),
-                Field("kind", "kind", Choice(("tap", "running")), needed=True, said=""),
-                Field("state", "state", STATE, when_empty="as its kind says"),
+                Field("kind", "kind", Choice(("tap", "running")), needed=True, said="",
+                      offers=RECORDING_KINDS),
+                Field("state", "state", STATE, when_empty="as its kind says",
+                      offers=offers.STATES),
                 Field("channel", "channel", Number(1, 256, whole=True), when_empty="1"),
                 Field("quantity", "quantity",
                       Choice(("acceleration", "velocity", "displacement", "pressure")),
-                      when_empty="acceleration"),
+                      when_empty="acceleration", offers=QUANTITIES),
                 Field("sensitivity", "sensitivity", SENSITIVITY, when_empty="uncalibrated"),
                 Field("full_scale", "full scale", VOLTAGE, when_empty="of the recorder"),
                 Field("scale", "scale", Words("9.81 m/s^2 per unit"), when_empty="by sensitivity"),
-                Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said"),
+                Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said",
+                      offers=offers.MOTIONS),
                 Field("at", "station", LENGTH, when_empty="nobody said"),
                 Field("rate", "rate", FREQUENCY, when_empty="as the file says"),
                 Field("hammer.channel", "hammer channel", Number(1, 256, whole=True),
@@ -200,8 +230,9 @@ FORMS: dict[str, Form] = {
                 Field("frequency", "frequency", FREQUENCY, needed=True, said=""),
                 Field("sd", "its sd", FREQUENCY),
                 Field("damping", "damping ratio", Number(0.0, 1.0)),
-                Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said"),
-                Field("state", "state", STATE, when_empty="tapped"),
+                Field("direction", "direction", DIRECTION_OF_MOTION, when_empty="nobody said",
+                      offers=offers.MOTIONS),
+                Field("state", "state", STATE, when_empty="tapped", offers=offers.STATES),
                 Field("at", "station", LENGTH, when_empty="nobody said"),
             ),
             repeated=True,

@@ -7,67 +7,20 @@ from typing import ClassVar
 
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
-from textual.containers import Horizontal, Vertical, VerticalScroll
-from textual.events import DescendantFocus
+from textual.containers import Vertical
 from textual.screen import ModalScreen
-from textual.suggester import SuggestFromList
-from textual.widgets import Input, Static
+from textual.widgets import Static
 
-from fieldkit.ui.forms.codecs import Choice, checked
-from fieldkit.ui.forms.tables import Field, Form
+from fieldkit.ui.forms.fields import FieldRow, Fields
+from fieldkit.ui.forms.tables import Form
 from fieldkit.ui.words import safe
+
+__all__ = ["FieldRow", "FormWindow", "Values"]
 
 Values = dict[str, str]
 """Changed keys with what was typed; an empty text takes a key out."""
 Check = Callable[[Values], str]
 """Tries the values on the job; gives a sentence where they do not fit."""
-
-
-class FieldRow(Horizontal):
-    """Label, input, and the value as it was understood."""
-
-    def __init__(self, field: Field, place: tuple[str, ...], text: str, units: str) -> None:
-        super().__init__(classes="field")
-        self.field = field
-        self.place = place
-        self.first_text = text
-        self.units = units
-        self.error = ""
-
-    def compose(self) -> ComposeResult:
-        """The three parts."""
-        star = "*" if self.field.needed else ""
-        codec = self.field.codec
-        words = SuggestFromList(codec.options) if isinstance(codec, Choice) else None
-        yield Static(f"{self.field.label}{star}", markup=False, classes="field-label")
-        yield Input(self.first_text, compact=True, select_on_focus=False, suggester=words)
-        yield Static("", markup=False, classes="field-says")
-
-    def on_mount(self) -> None:
-        """Judge what stood there already."""
-        self.judge()
-
-    @property
-    def text(self) -> str:
-        """As typed, without blanks around it."""
-        return self.query_one(Input).value.strip()
-
-    @property
-    def changed(self) -> bool:
-        """Whether it says something else than before."""
-        return self.text != self.first_text.strip()
-
-    def judge(self) -> None:
-        """Say how the text is understood, or mark it."""
-        shown = ""
-        if self.text:
-            shown, self.error = checked(self.field.codec, self.place, self.text, self.units)
-        else:
-            shown = self.field.when_empty
-            self.error = f"{self.field.label} is needed" if self.field.needed else ""
-        says = "✗ see below" if self.error else (f"✓ {shown}" if self.text else f"  {shown}")
-        self.query_one(".field-says", Static).update(safe(says))
-        self.set_class(bool(self.error), "-wrong")
 
 
 class FormWindow(ModalScreen[Values | None]):
@@ -76,8 +29,6 @@ class FormWindow(ModalScreen[Values | None]):
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("escape", "dismiss", "Leave", id="form.leave"),
         Binding("ctrl+s", "take", "Take", id="form.take"),
-        Binding("down", "app.focus_next", "Next", show=False, id="form.next"),
-        Binding("up", "app.focus_previous", "Before", show=False, id="form.before"),
     ]
 
     def __init__(
@@ -90,58 +41,65 @@ class FormWindow(ModalScreen[Values | None]):
         self.texts = texts
         self.units = units
         self.check = check
+        self.on_typed: Callable[[Values], None] = lambda _values: None
+        """Told of every key press."""
+        self.typed: Values = {}
+        """What was typed into it when it was left behind."""
 
     def compose(self) -> ComposeResult:
         """Title, fields, the sentence about the field in hand, keys."""
         with Vertical(classes="window form-window"):
             yield Static(safe(self.heading), markup=False, classes="window-title")
-            with VerticalScroll(classes="fields", can_focus=False):
-                for field in self.form.fields:
-                    text = self.texts.get(field.key, "")
-                    yield FieldRow(field, self.form.place(field.key), text, self.units)
+            yield Fields(self.form, self.texts, self.units)
             yield Static("", markup=False, id="form-says")
             yield Static("↑↓ fields · enter takes all · esc leaves · * needed", classes="hint")
 
+    def on_mount(self) -> None:
+        """Start in the first field, or go on with what was typed before."""
+        rows = self.fields.rows
+        for row in rows:
+            if row.field.key in self.typed:
+                row.input.value = self.typed[row.field.key]
+        rows[0].input.focus()
+
     @property
-    def rows(self) -> list[FieldRow]:
-        """The fields in order."""
-        return list(self.query(FieldRow))
+    def fields(self) -> Fields:
+        """What is typed into."""
+        return self.query_one(Fields)
 
-    def on_input_changed(self, event: Input.Changed) -> None:
-        """Judge while it is typed."""
-        row = event.input.parent
-        if isinstance(row, FieldRow) and row.is_mounted:
-            row.judge()
-            self._explain(row)
+    @property
+    def changed(self) -> Values:
+        """What was typed anew, by key."""
+        return {row.field.key: row.text for row in self.fields.rows if row.changed}
 
-    def on_descendant_focus(self, event: DescendantFocus) -> None:
-        """Another field is in hand."""
-        if isinstance(event.widget.parent, FieldRow):
-            self._explain(event.widget.parent)
+    def on_fields_typed(self, _message: Fields.Typed) -> None:
+        """Let who wants to keep it."""
+        self.on_typed(self.changed)
 
-    def on_input_submitted(self, _event: Input.Submitted) -> None:
-        """Enter takes the form."""
-        self.action_take()
+    def on_fields_explained(self, message: Fields.Explained) -> None:
+        """The field in hand has something to say."""
+        self._say(message.sentence, message.wrong)
+
+    def on_fields_entered(self, message: Fields.Entered) -> None:
+        """Enter takes the form, or first what was chosen from a list."""
+        if message.chose:
+            self.focus_next()
+        else:
+            self.action_take()
 
     def action_take(self) -> None:
         """Hand the values back, unless a field or the whole job objects."""
-        wrong = next((row for row in self.rows if row.error), None)
+        wrong = self.fields.first_wrong
         if wrong is not None:
-            wrong.query_one(Input).focus()
-            self._explain(wrong)
+            wrong.input.focus()
+            self._say(f"✗ {wrong.error}", wrong=True)
             return
-        values = {row.field.key: row.text for row in self.rows if row.changed}
+        values = self.changed
         objection = self.check(values) if values else ""
         if objection:
             self._say(f"✗ {objection}", wrong=True)
             return
         self.dismiss(values)
-
-    def _explain(self, row: FieldRow) -> None:
-        if row.error:
-            self._say(f"✗ {row.error}", wrong=True)
-        else:
-            self._say(f"{row.field.label}: {row.field.codec.hint}", wrong=False)
 
     def _say(self, text: str, wrong: bool) -> None:
         says = self.query_one("#form-says", Static)
