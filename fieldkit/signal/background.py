@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import cached_property
 
 import numpy as np
@@ -26,10 +26,19 @@ class NoiseDensity:
     """(m,) rising, first one above 0."""
     density: Real
     """(m,) unit squared per hertz, all above 0."""
+    grids: dict[float, Real] = field(init=False, default_factory=dict, compare=False, repr=False)
+    """Densities at multiples of a spacing, kept because each is used in every scan."""
 
     def at(self, frequency_hz: Real) -> Real:
         """Density at the given frequencies, interpolated on a log scale; flat beyond the ends."""
         return np.asarray(np.exp(np.interp(np.abs(frequency_hz), self.frequency_hz, self.log)))
+
+    def on_grid(self, spacing_hz: float, count: int) -> Real:
+        """(count,) density at 0 Hz and the first multiples of a spacing."""
+        known = self.grids.get(spacing_hz)
+        if known is None or len(known) < count:
+            known = self.grids[spacing_hz] = self.at(np.asarray(np.arange(count) * spacing_hz))
+        return known[:count]
 
     def with_lines(self, lines: NoiseDensity | None) -> NoiseDensity:
         """The density with that of narrow lines, 0 between them, added on its finer grid."""

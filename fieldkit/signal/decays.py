@@ -51,6 +51,29 @@ def damped(exponent: complex, count: int) -> Complex:
     return np.outer(coarse, fine).ravel()[:count]
 
 
+def damped_total(exponents: Complex, amplitudes: Complex, slopes: Complex, count: int) -> Real:
+    """(count,) real part of the sum of (a + b n) exp(exponent * n) over some (P,) of them.
+
+    By blocks, so that one product of matrices does the work.
+    """
+    within, starts = np.arange(_BLOCK), _BLOCK * np.arange(-(-count // _BLOCK))
+    fine = np.exp(exponents[:, None] * within)
+    coarse = np.exp(exponents[:, None] * starts)
+    total = real_of_product((amplitudes[:, None] + slopes[:, None] * starts) * coarse, fine)
+    sloping = np.flatnonzero(slopes)
+    if len(sloping):
+        own = slopes[sloping, None] * coarse[sloping]
+        total += real_of_product(own, np.asarray(within * fine[sloping], complex))
+    return np.asarray(total.ravel()[:count])
+
+
+def real_of_product(left: Complex, right: Complex) -> Real:
+    """(M, N) real part of the product of (P, M), turned over, and (P, N)."""
+    return np.asarray(
+        np.concatenate([left.real, -left.imag]).T @ np.concatenate([right.real, right.imag])
+    )
+
+
 def damping_without_window(zeta_measured: float, tau_s: float, frequency_hz: float) -> float:
     """Damping ratio with the share of an exponential window exp(-t / tau_s) taken out."""
     return zeta_measured - 1 / (tau_s * 2 * np.pi * frequency_hz)

@@ -6,6 +6,8 @@ same damped exponential with another amplitude, so nothing rings in and no pole 
 
 from __future__ import annotations
 
+from functools import lru_cache
+
 import numpy as np
 from numpy.typing import NDArray
 
@@ -43,6 +45,7 @@ def by_phases(
     return out
 
 
+@lru_cache(maxsize=64)
 def lowpass(
     rate_hz: float, pass_hz: float, stop_hz: float, stopband_db: float = _STOPBAND_DB
 ) -> NDArray[np.float64]:
@@ -53,4 +56,6 @@ def lowpass(
     at = np.arange(count) - (count - 1) / 2
     ideal = np.sinc((pass_hz + stop_hz) / rate_hz * at)
     weights = ideal * np.kaiser(count, beta)
-    return np.asarray(weights / weights.sum())
+    weights /= weights.sum()
+    weights.flags.writeable = False
+    return np.asarray(weights)

@@ -33,6 +33,8 @@ CLOSELY = 1e-4
 ROUGHLY = 0.02
 """The same where only the cost matters."""
 _RIDGE = 1e-12
+_SINGULAR = 1e-15
+"""Eigenvalue over the largest below which a direction is not known at all."""
 _MOST_DECAY = 0.6
 """Of the angular frequency: what decays faster is no vibration."""
 _LOWEST = 0.3
@@ -197,14 +199,13 @@ def orthonormal(rows: Real) -> tuple[Real, Real]:
 
     By Cholesky's factor of the normalised products; rows that are nearly alike share one direction.
     """
-    size = np.sqrt(np.einsum("kcr,kcr->kc", rows, rows))
-    scaled = rows / np.where(size > 0, size, 1.0)[:, :, None]
-    count = rows.shape[1]
-    products = np.matmul(scaled, scaled.transpose(0, 2, 1)) + _RIDGE * np.eye(count)
-    inverse_factor = np.linalg.inv(np.linalg.cholesky(products))
-    basis = np.matmul(inverse_factor, scaled)
-    to_numbers = inverse_factor.transpose(0, 2, 1) / np.where(size > 0, size, 1.0)[:, :, None]
-    return basis, to_numbers
+    products = np.matmul(rows, rows.transpose(0, 2, 1))
+    size = np.sqrt(np.diagonal(products, axis1=1, axis2=2))
+    scale = 1 / np.where(size > 0, size, 1.0)
+    products *= scale[:, :, None] * scale[:, None, :]
+    factor = np.linalg.cholesky(products + _RIDGE * np.eye(rows.shape[1]))
+    to_basis = np.linalg.inv(factor) * scale[:, None, :]
+    return np.matmul(to_basis, rows), to_basis.transpose(0, 2, 1)
 
 
 def less_part_in(basis: Real, rows: Real) -> Real:
@@ -246,9 +247,12 @@ def passive_amplitudes(still: Still, point: Point) -> tuple[Component, ...]:
 
 
 def inverse(information: Real) -> Real:
-    """Inverse of a Fisher information, also where it is nearly singular."""
-    scale = np.sqrt(np.maximum(np.diag(information), 1e-300))
-    return np.asarray(
-        np.linalg.pinv(information / np.outer(scale, scale), hermitian=True)
-        / np.outer(scale, scale)
-    )
+    """Inverse of a Fisher information, or of (K, n, n) of them, also where nearly singular."""
+    diagonal = np.diagonal(information, axis1=-2, axis2=-1)
+    scale = 1 / np.sqrt(np.maximum(diagonal, 1e-300))
+    both = scale[..., :, None] * scale[..., None, :]
+    values, vectors = np.linalg.eigh(information * both)
+    size = np.abs(values)
+    kept = size > _SINGULAR * size.max(axis=-1, keepdims=True, initial=0.0)
+    over = np.where(kept, 1 / np.where(kept, values, 1.0), 0.0)
+    return np.asarray((vectors * over[..., None, :]) @ np.swapaxes(vectors, -1, -2) * both)

@@ -18,6 +18,7 @@ from fieldkit.signal.decimation import decimate
 from fieldkit.signal.traces import Trace
 
 Real = NDArray[np.float64]
+Complex = NDArray[np.complex128]
 
 FALSE_PER_SCAN = 1e-3
 GREATEST_DAMPING = 0.25
@@ -58,7 +59,7 @@ def scan(leftovers: Sequence[Trace], region: Region, most: int = MOST_AT_ONCE) -
     ``leftovers`` are the taps with what is known already taken out. What decays slowly is looked
     for in and just above the reported range only: farther up it spoils nothing there.
     """
-    found: list[Candidate] = []
+    rows: list[tuple[Complex, Real, Real]] = []
     cells = 0
     decay = region.slowest_per_s
     lowered = [at_lower_rate(t, region.slow_high_hz) for t in leftovers]
@@ -69,10 +70,14 @@ def scan(leftovers: Sequence[Trace], region: Region, most: int = MOST_AT_ONCE) -
         lowest = max(region.low_hz, decay / (2 * np.pi * GREATEST_DAMPING))
         keep = (frequency_hz >= lowest) & (frequency_hz <= top_hz)
         cells += int(np.count_nonzero(keep))
-        found += peaks(frequency_hz[keep], gain[keep], clear[keep], decay)
+        rows.append(peaks(frequency_hz[keep], gain[keep], clear[keep], decay))
         decay *= 2
-    least = threshold(len(leftovers), cells)
-    return apart([c for c in found if c.clear > least], most)
+    if not rows:
+        return []
+    pole, gain, clear = (np.concatenate(column) for column in zip(*rows, strict=True))
+    over = np.flatnonzero(clear > threshold(len(leftovers), cells))
+    found = [Candidate(complex(pole[i]), float(gain[i]), float(clear[i])) for i in over]
+    return apart(found, most)
 
 
 def at_lower_rate(trace: Trace, high_hz: float) -> Trace:
@@ -97,7 +102,9 @@ def gain_over_frequency(
     longest = max(t.duration_s for t in traces)
     span_s = fast_span_s(8 / decay if 8 / decay < longest else 2 * longest, traces[0].rate_hz)
     count = int(min(top_hz * span_s + 2, min(round(span_s * t.rate_hz) // 2 + 1 for t in traces)))
-    gains = [tap_gain(t, decay, span_s, count) for t in traces]
+    rates = {t.rate_hz for t in traces}
+    windows = {rate: decay_window(round(span_s * rate), decay, rate) for rate in rates}
+    gains = [tap_gain(t, windows[t.rate_hz], span_s, count) for t in traces]
     total = np.sum(gains, axis=0)
     return np.arange(count) / span_s, total, total / excess(total, 2.0 * len(traces))
 
@@ -109,13 +116,13 @@ def fast_span_s(span_s: float, rate_hz: float) -> float:
     return next_fast_len(max(int(np.ceil(span_s * rate_hz)), 8), real=True) / rate_hz
 
 
-def tap_gain(trace: Trace, decay: float, span_s: float, count: int) -> Real:
+def tap_gain(trace: Trace, window: Real, span_s: float, count: int) -> Real:
     """(count,) gain of one tap on frequencies 1 / span_s apart."""
-    points = round(span_s * trace.rate_hz)
-    window = decay_window(min(points, len(trace.samples)), decay, trace.rate_hz)
-    power = np.abs(np.fft.rfft(window * trace.samples[: len(window)], points)[:count]) ** 2
-    density = trace.noise.at(np.arange(count) / span_s)
-    return np.asarray(4 * power / (trace.rate_hz * (window @ window) * density))
+    used = window[: len(trace.samples)]
+    spectrum = np.fft.rfft(used * trace.samples[: len(used)], len(window))[:count]
+    power = spectrum.real**2 + spectrum.imag**2
+    density = trace.noise.on_grid(1 / span_s, count)
+    return np.asarray(power * (4 / (trace.rate_hz * (used @ used))) / density)
 
 
 def decay_window(count: int, decay: float, rate_hz: float) -> Real:
@@ -151,25 +158,21 @@ def excess(gain: Real, degrees: float) -> Real:
         return np.full_like(gain, max(np.quantile(gain, _LEVEL_QUANTILE) / expected, 1.0))
     used = gain[: blocks * _LEVEL_BLOCK].reshape(blocks, _LEVEL_BLOCK)
     low = low_quantile(used)
-    edged = np.pad(low, 1, mode="reflect")
+    edged = np.concatenate([low[1:2], low, low[-2:-1]])
     level = np.minimum(low, np.maximum(edged[:-2], edged[2:]))
     centres = (np.arange(blocks) + 0.5) * _LEVEL_BLOCK
     smooth = np.interp(np.arange(len(gain)), centres, level)
     return np.asarray(np.maximum(smooth / expected, 1.0))
 
 
-def peaks(frequency_hz: Real, gain: Real, clear: Real, decay: float) -> list[Candidate]:
-    """Local maxima of one row of the bank."""
+def peaks(frequency_hz: Real, gain: Real, clear: Real, decay: float) -> tuple[Complex, Real, Real]:
+    """(c,) poles, gains, and gains over their surroundings, of local maxima of one bank row."""
     if len(gain) < 3:
-        return []
+        return np.zeros(0, complex), np.zeros(0), np.zeros(0)
     inner = gain[1:-1]
     at = np.flatnonzero((inner > gain[:-2]) & (inner >= gain[2:])) + 1
     at = at[np.argsort(gain[at])[::-1][:60]]
-    poles = -decay + 2j * np.pi * frequency_hz[at]
-    return [
-        Candidate(complex(p), float(gain[i]), float(clear[i]))
-        for p, i in zip(poles, at, strict=True)
-    ]
+    return np.asarray(2j * np.pi * frequency_hz[at] - decay), gain[at], clear[at]
 
 
 def apart(candidates: list[Candidate], most: int) -> list[Candidate]:

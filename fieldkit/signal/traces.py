@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.signal.background import NoiseDensity
-from fieldkit.signal.decays import damped
+from fieldkit.signal.decays import damped, damped_total
 
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
@@ -167,9 +167,15 @@ def unbent(part: Component) -> list[Component]:
 
 def residual(trace: Trace, tap: int, components: Sequence[Component]) -> Real:
     """(n,) what the components leave of tap number ``tap``."""
+    count, rate_hz = len(trace.samples), trace.rate_hz
+    plain = [(p.poles[tap], p.amplitudes[tap], p.slopes[tap]) for p in components if not p.bend]
     left = trace.samples.copy()
+    if plain:
+        poles, amplitudes, slopes = np.array(plain).T
+        left -= damped_total(poles / rate_hz, amplitudes, slopes / rate_hz, count)
     for part in components:
-        left -= sampled(part, tap, len(left), trace.rate_hz)
+        if part.bend:
+            left -= sampled(part, tap, count, rate_hz)
     return left
 
 
