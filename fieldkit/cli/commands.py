@@ -10,7 +10,7 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import capturing, installing, mapping, output, spacing
+from fieldkit.cli import capturing, curves, installing, mapping, output, spacing
 
 OPEN = "open"
 
@@ -257,6 +257,7 @@ def detune(
     reach: installing.Reach = None,
     map_: mapping.MapOption = None,
     holds: mapping.HeldOption = mapping.Held.BOTH,
+    curve: curves.CurveOption = None,
 ) -> None:
     """Rank changes that move every mode out of every excitation band, with what each needs."""
     with output.answering(as_json=as_json):
@@ -273,6 +274,9 @@ def detune(
         output.clear_progress()
         _stop_where_refused(work, as_json=as_json)
         assert work.detuning is not None
+        if curve is not None:
+            curves.answer(work, number, curve, as_json=as_json)
+            return
         matched = work.match.warnings if work.match else ()
         extra = list(dict.fromkeys([*work.warnings, *matched]))
         best = max((one.chance for one in work.detuning.fixes), default=work.detuning.chance_now)
@@ -288,6 +292,9 @@ def detune(
         if number is not None:
             lines = installing.detailed(number, work, installs)
         output.answer(*marked(document, lines, work.job.recordings), as_json=as_json)
+
+
+sheet.register(app)
 
 
 def _print_advice(job_file: Path) -> None:
