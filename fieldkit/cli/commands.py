@@ -294,9 +294,6 @@ def detune(
         output.answer(*marked(document, lines, work.job.recordings), as_json=as_json)
 
 
-sheet.register(app)
-
-
 def _print_advice(job_file: Path) -> None:
     with output.answering(as_json=False):
         from fieldkit import workup
