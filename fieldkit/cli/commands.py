@@ -10,7 +10,7 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import capturing, curves, installing, mapping, output, spacing
+from fieldkit.cli import capturing, curves, installing, mapping, output, sheet, spacing
 
 OPEN = "open"
 
@@ -292,6 +292,9 @@ def detune(
         if number is not None:
             lines = installing.detailed(number, work, installs)
         output.answer(*marked(document, lines, work.job.recordings), as_json=as_json)
+
+
+sheet.register(app)
 
 
 def _print_advice(job_file: Path) -> None:

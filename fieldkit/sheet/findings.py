@@ -148,17 +148,23 @@ def diagnosis_lines(found: Findings) -> list[str]:
     """The verdict on each strong line, recording by recording."""
     said: list[str] = []
     for running in found.running:
-        for one in running.diagnoses:
-            if one.mode is not None or one.excitation is not None:
-                said += paragraph(f"{_sensor(one)}{one.reason}.", 2)
-                said += paragraph(f"Next: {one.measure_next}.", 4)
+        for one in told_diagnoses(running):
+            said += paragraph(f"{diagnosis_words(one)}.", 2)
+            said += paragraph(f"Next: {one.measure_next}.", 4)
     for check in found.band_checks:
         said += paragraph(f"{band_words(check)}.", 2)
     return ["", "Resonance or forced?", *said] if said else []
 
 
-def _sensor(one: Diagnosis) -> str:
-    return f"{one.line.direction} sensor: " if one.line.direction else ""
+def told_diagnoses(running: RunningFindings) -> list[Diagnosis]:
+    """The verdicts of a recording that name a mode or an excitation."""
+    return [one for one in running.diagnoses if one.mode or one.excitation is not None]
+
+
+def diagnosis_words(one: Diagnosis) -> str:
+    """What a running line is, and which sensor saw it."""
+    sensor = f"{one.line.direction} sensor: " if one.line.direction else ""
+    return f"{sensor}{one.reason}"
 
 
 def band_words(check: BandCheck) -> str:
@@ -237,19 +243,26 @@ def _shown(value: float, unit: str, units: str) -> str:
     return show(value, _DIMENSIONS[unit], units, 3)
 
 
+BLOWS_TITLE = "Further blows, the most telling first (expected doubt, one standard deviation)"
+
+
 def blow_lines(found: Findings | None, units: str = "SI") -> list[str]:
     """Further blows, ranked, with what each is expected to leave of the doubt."""
     if found is None or not found.blows:
         return []
-    said = ["", "Further blows, the most telling first (expected doubt, one standard deviation)"]
-    for number, blow in enumerate(found.blows[:4], start=1):
-        said += paragraph(
-            f"{place(blow, units=units)}: {blow.about}, {figure(blow.sd_before)} to "
-            f"{figure(blow.sd_after)}{_settling(blow)}",
-            2,
-            f"{number}. ",
-        )
+    said = ["", BLOWS_TITLE]
+    for number, text in enumerate(blow_words(found, units), start=1):
+        said += paragraph(text, 2, f"{number}. ")
     return said
+
+
+def blow_words(found: Findings | None, units: str = "SI") -> list[str]:
+    """The most telling further blows, each in one sentence."""
+    return [
+        f"{place(blow, units=units)}: {blow.about}, {figure(blow.sd_before)} to "
+        f"{figure(blow.sd_after)}{_settling(blow)}"
+        for blow in (found.blows[:4] if found else ())
+    ]
 
 
 def _settling(blow: Blow) -> str:
@@ -263,9 +276,14 @@ def contradiction_lines(found: Findings | None) -> list[str]:
     if found is None or not found.contradictions:
         return []
     said = ["", "What contradicts the model"]
-    for one in found.contradictions:
-        said += paragraph(f"{one.text}. Check: {one.check}.", 2, "- ")
+    for text in contradiction_words(found):
+        said += paragraph(text, 2, "- ")
     return said
+
+
+def contradiction_words(found: Findings | None) -> list[str]:
+    """What the model does not account for, each with what to check."""
+    return [f"{one.text}. Check: {one.check}." for one in (found.contradictions if found else ())]
 
 
 def detune_top(found: Findings | None) -> list[str]:
@@ -276,6 +294,12 @@ def detune_top(found: Findings | None) -> list[str]:
 
 def better_measurement(found: Findings | None, best: float, goal: float) -> list[str]:
     """Where no change is sure enough: the measurement that would help."""
+    said = better_measurement_words(found, best, goal)
+    return ["", *(line for text in said for line in paragraph(text, 0))] if said else []
+
+
+def better_measurement_words(found: Findings | None, best: float, goal: float) -> list[str]:
+    """The same in one sentence, or nothing."""
     if found is None or best >= goal or not found.next_measurement:
         return []
-    return ["", *paragraph(f"To be surer before anything is bought: {found.next_measurement}.", 0)]
+    return [f"To be surer before anything is bought: {found.next_measurement}."]

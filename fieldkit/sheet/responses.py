@@ -12,7 +12,7 @@ import numpy as np
 
 from fieldkit.errors import InputError
 from fieldkit.quantity import show
-from fieldkit.sheet.plain import clean, paragraph, table, with_doubt
+from fieldkit.sheet.plain import Cells, clean, paragraph, table, with_doubt
 from fieldkit.signal.modal_response import ModeInResponse
 from fieldkit.workup import EffectiveMass, ResponseReading, response_notes
 
@@ -108,20 +108,24 @@ def headline(found: ResponseReading) -> str:
 
 def mode_table(found: ResponseReading, units: str) -> list[str]:
     """Coherence and effective mass at each mode; nothing where no mode is fitted."""
+    cells = mode_cells(found, units)
+    return table(*cells) if cells else []
+
+
+def mode_cells(found: ResponseReading, units: str) -> Cells | None:
+    """The same before it is laid out; None where no mode is fitted."""
     if found.fitted is None:
-        return []
-    return table(
-        ("mode Hz", "coherence", "at its peak", "effective mass", "±"),
-        [
-            (
-                f"{mode.frequency_hz:.2f}",
-                "-" if mode.coherence is None else f"{mode.coherence:.3f}",
-                f"{peak_of(found, mode):.3g}",
-                *shown_mass(mass, units),
-            )
-            for mode, mass in zip(found.fitted.modes, found.masses, strict=True)
-        ],
-    )
+        return None
+    rows = [
+        (
+            f"{mode.frequency_hz:.2f}",
+            "-" if mode.coherence is None else f"{mode.coherence:.3f}",
+            f"{peak_of(found, mode):.3g}",
+            *shown_mass(mass, units),
+        )
+        for mode, mass in zip(found.fitted.modes, found.masses, strict=True)
+    ]
+    return Cells(("mode Hz", "coherence", "at its peak", "effective mass", "±"), rows)
 
 
 def shown_mass(mass: EffectiveMass | None, units: str) -> tuple[str, str]:
