@@ -81,7 +81,8 @@ def lowest_beside(samples: Real, first: Indices, past: Indices) -> Real:
 
 def lone_rail(samples: Real, full_scale: float) -> Indices:
     """Samples at full scale, where there are at least three and one is entered by a jump."""
-    at_rail = np.abs(samples) >= _AT_FULL_SCALE * full_scale
-    jump = np.abs(np.diff(samples, prepend=samples[:1])) > _JUMP_TO_FULL_SCALE * full_scale
-    where = np.flatnonzero(at_rail)
-    return where if len(where) >= _SHORTEST_RUN and bool(np.any(at_rail & jump)) else where[:0]
+    least = _AT_FULL_SCALE * full_scale
+    where = np.flatnonzero((samples >= least) | (samples <= -least))
+    jump = np.abs(samples[where] - samples[np.maximum(where - 1, 0)])
+    entered = bool(np.any(jump > _JUMP_TO_FULL_SCALE * full_scale))
+    return where if len(where) >= _SHORTEST_RUN and entered else where[:0]

@@ -9,6 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.signal.decimation import lowpass
+from fieldkit.signal.filtering import filtered, median
 
 Real = NDArray[np.float64]
 
@@ -45,7 +46,7 @@ class Innovation:
 def levels(signal: Real, rate_hz: float) -> list[Level]:
     """The recording at about 4 kHz (or its own lower rate), half of that, and so on to 60 Hz."""
     level = lowered(Level(signal, rate_hz), _FINEST_RATE_HZ)
-    level = Level(level.samples - np.median(level.samples), level.rate_hz)
+    level = Level(level.samples - median(level.samples), level.rate_hz)
     out = [level]
     while level.rate_hz / _SCALE >= _COARSEST_RATE_HZ and len(level.samples) > 40 * _SCALE:
         level = lowered(level, level.rate_hz / _SCALE)
@@ -91,11 +92,11 @@ def every(step: int, samples: Real, kernel: Real) -> Real:
 def innovation(signal: Real, rate_hz: float, order: int) -> Innovation:
     """Block energies of the error of a linear prediction that weighs loud and quiet parts alike."""
     order = min(order, max(len(signal) // 20, 1))
-    error = np.convolve(signal, predictor(levelled(signal, rate_hz), order))[: len(signal)]
+    error = filtered(signal, predictor(levelled(signal, rate_hz), order))
     error[:order] = 0.0
     blocks = max(len(error) // _BLOCK, 1)
     energy = np.sum(error[: blocks * _BLOCK].reshape(blocks, -1) ** 2, axis=1)
-    typical = float(np.median(energy))
+    typical = median(energy)
     floor = max(typical, float(energy.max(initial=0.0)) * 1e-12, 1e-300)
     return Innovation(energy / floor, _BLOCK / rate_hz, order / rate_hz)
 
@@ -104,17 +105,18 @@ def levelled(signal: Real, rate_hz: float) -> Real:
     """The signal over its short-time level, so that a loud decay does not rule the predictor."""
     width = min(max(int(0.03 * rate_hz), 8), len(signal))
     power = smooth(signal**2, width)
-    floor = max(float(np.median(power)) * 1e-3, float(power.max(initial=0.0)) * 1e-12, 1e-300)
+    floor = max(median(power) * 1e-3, float(power.max(initial=0.0)) * 1e-12, 1e-300)
     return np.asarray(signal / np.sqrt(power + floor))
 
 
 def smooth(values: Real, width: int) -> Real:
     """(n,) running mean, over fewer values at the ends."""
-    total = np.concatenate([[0.0], np.cumsum(values)])
-    first = np.arange(len(values)) - width // 2
-    past = np.minimum(first + width, len(values))
-    first = np.maximum(first, 0)
-    return np.asarray(np.maximum(total[past] - total[first], 0.0) / (past - first))
+    count, before = len(values), width // 2
+    total = np.concatenate([np.zeros(before + 1), np.cumsum(values)])
+    total = np.concatenate([total, np.full(width - before, total[-1])])
+    at = np.arange(count)
+    inside = np.minimum(at - before + width, count) - np.maximum(at - before, 0)
+    return np.asarray(np.maximum(total[width : width + count] - total[:count], 0.0) / inside)
 
 
 def predictor(signal: Real, order: int) -> Real:

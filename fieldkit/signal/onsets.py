@@ -11,6 +11,7 @@ from numpy.typing import NDArray
 from fieldkit.signal.innovation import Innovation, Level, innovations
 
 Real = NDArray[np.float64]
+Indices = NDArray[np.intp]
 
 FALSE_PER_RECORDING = 1e-3
 _OVER_CHANCE = 4.0
@@ -52,15 +53,16 @@ def onsets_of_scale(level: Innovation, scale: int) -> list[Onset]:
     """Onsets at one scale; what follows within a contact and the predictor's memory is its part."""
     energy = level.energy
     least = max(chance_level(len(energy)), _OVER_STRONGEST * float(energy.max()))
-    just_before = highest_before(energy, level.block_s)
-    peak = highest_ahead(energy, level.block_s)
-    sudden = (peak > _OVER_JUST_BEFORE * just_before) & (peak > _OVER_BEFORE * before(level))
-    rising = (energy > least) & sudden
+    at = np.flatnonzero(energy > least)
+    peak = highest_ahead(energy, level.block_s, at)
+    sudden = peak > _OVER_JUST_BEFORE * highest_before(energy, level.block_s, at)
+    at, peak = at[sudden], peak[sudden]
+    rising = peak > _OVER_BEFORE * before(energy, level.block_s, at)
     found: list[Onset] = []
-    for i in np.flatnonzero(rising):
+    for i, height in zip(at[rising], peak[rising], strict=True):
         at_s = float(i * level.block_s)
         if not found or at_s - found[-1].at_s > _ONE_CONTACT_S + level.order_s:
-            found.append(Onset(at_s, float(np.sqrt(peak[i])), scale))
+            found.append(Onset(at_s, float(np.sqrt(height)), scale))
     return found
 
 
@@ -73,32 +75,30 @@ def chance_level(blocks: int) -> float:
     return _OVER_CHANCE * extreme / float(chdtri(degrees, 0.5))
 
 
-def before(level: Innovation) -> Real:
-    """Median energy of the 30 to 5 ms before each block (two blocks at least), never below 1."""
-    from scipy.ndimage import median_filter
-
-    energy = level.energy
-    width = max(round(0.025 / level.block_s), 3)
-    gap = max(round(0.005 / level.block_s), 1)
-    typical = median_filter(energy, size=width, mode="nearest")
-    shifted = np.concatenate([np.full(gap + width // 2, np.inf), typical])[: len(energy)]
-    shifted[: gap + width // 2] = typical[0]
-    return np.asarray(np.maximum(shifted, 1.0))
+def before(energy: Real, block_s: float, at: Indices) -> Real:
+    """Median energy of the 30 to 5 ms before some blocks (two blocks at least), never below 1."""
+    width = max(round(0.025 / block_s), 3)
+    gap = max(round(0.005 / block_s), 1)
+    middle = np.maximum(at - gap - width // 2, 0)
+    ranked = np.sort(windows(energy, middle - width // 2, width), axis=1)
+    return np.asarray(np.maximum(ranked[:, width // 2], 1.0))
 
 
-def highest_before(energy: Real, block_s: float) -> Real:
-    """Highest energy of the 10 to 1.5 ms before each block (two blocks at least)."""
-    from scipy.ndimage import maximum_filter1d
-
+def highest_before(energy: Real, block_s: float, at: Indices) -> Real:
+    """Highest energy of the 10 to 1.5 ms before some blocks (two blocks at least)."""
     width = max(round(0.0085 / block_s), 2)
     gap = max(round(0.0015 / block_s), 1)
-    highest = maximum_filter1d(energy, width, origin=(width - 1) // 2, mode="nearest")
-    return np.concatenate([np.full(gap, 1.0), highest])[: len(energy)]
+    highest = windows(energy, at - gap - width + 1, width).max(axis=1, initial=0.0)
+    return np.where(at < gap, 1.0, highest)
 
 
-def highest_ahead(energy: Real, block_s: float) -> Real:
-    """Highest energy from each block to one contact later (two blocks at least)."""
-    from scipy.ndimage import maximum_filter1d
-
+def highest_ahead(energy: Real, block_s: float, at: Indices) -> Real:
+    """Highest energy from some blocks to one contact later (two blocks at least)."""
     width = max(round(_ONE_CONTACT_S / block_s), 2)
-    return np.asarray(maximum_filter1d(energy, width, origin=-(width // 2), mode="nearest"))
+    return np.asarray(windows(energy, at, width).max(axis=1, initial=0.0))
+
+
+def windows(energy: Real, first: Indices, width: int) -> Real:
+    """(n, width) energies from some blocks on; beyond the ends stand the outermost."""
+    where = np.clip(first[:, None] + np.arange(width), 0, len(energy) - 1)
+    return np.asarray(energy[where])

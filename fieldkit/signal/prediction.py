@@ -12,6 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.filtering import filtered, median
 from fieldkit.signal.innovation import Level
 
 Real = NDArray[np.float64]
@@ -55,9 +56,9 @@ class Predictor:
 
     def errors(self, samples: Real) -> Real:
         """(n,) absolute errors; 0 for the first samples, which have no past."""
-        filtered = np.convolve(samples, np.concatenate([[1.0], -self.weights]))[: len(samples)]
-        filtered[: self.order] = 0.0
-        return np.abs(filtered)
+        missed = filtered(samples, np.concatenate([[1.0], -self.weights]))
+        missed[: self.order] = 0.0
+        return np.abs(missed)
 
 
 @dataclass(frozen=True)
@@ -179,10 +180,10 @@ def learnt(stretches: Sequence[Real]) -> Predictor | None:
         bad = data[error > quantile(error, _KEEP)]
         kept = products - bad.T @ bad
         weights = solved(kept, orders[-1])
-    best = float(np.median(np.abs(now - past @ weights)))
+    best = median(np.abs(now - past @ weights))
     for order in orders[:-1]:
         fewer = solved(kept, order)
-        if float(np.median(np.abs(now - past[:, :order] @ fewer))) <= _NEARLY * best:
+        if median(np.abs(now - past[:, :order] @ fewer)) <= _NEARLY * best:
             return Predictor(fewer)
     return Predictor(weights)
 
