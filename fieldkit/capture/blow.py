@@ -9,35 +9,24 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.capture.calibration import strongest_hz
+from fieldkit.capture.verdict import (
+    CLIPPED,
+    CUT_SHORT,
+    DOUBLE,
+    GAP,
+    MACHINE,
+    NO_BLOW,
+    REFUSED,
+    USABLE,
+    WEAK,
+    Verdict,
+)
 from fieldkit.signal.decimation import decimate
 from fieldkit.signal.modes import TapRecord
 from fieldkit.signal.spectrum import Spectrum, tap_spectrum
 from fieldkit.signal.taps import Tap, TapSearch, cut, find_taps
 
 Real = NDArray[np.float64]
-
-USABLE = "usable"
-CLIPPED = "clipped"
-DOUBLE = "double"
-WEAK = "weak"
-CUT_SHORT = "cut short"
-MACHINE = "machine too loud"
-GAP = "frames missing"
-NO_BLOW = "no blow"
-REFUSED = "not usable"
-
-CHANGES = {
-    USABLE: "",
-    CLIPPED: "lower the input level, or strike softer",
-    DOUBLE: "let the hammer rebound once, held loosely, and wait until it is armed again",
-    WEAK: "strike harder, use a softer tip, or move the sensor nearer",
-    CUT_SHORT: "strike again and touch nothing until it has died away: the next record is longer",
-    MACHINE: "stop the machine, or strike harder",
-    GAP: "strike again",
-    NO_BLOW: "keep the place quiet, then strike once",
-    REFUSED: "strike again",
-}
-"""What to do about each verdict."""
 
 _SAID = {
     "frames are missing": GAP,
@@ -64,30 +53,6 @@ _GUARD_S = 0.03
 _HOP_S = 0.01
 _LEAST_OVER = 4.0
 """Peak of a blow over the median peak of the quiet before it: less tells of few modes."""
-
-
-@dataclass(frozen=True)
-class Verdict:
-    """Whether a blow counts, and if not, what to change."""
-
-    kind: str
-    """``usable``, ``clipped``, ``double``, ``weak``, ``cut short``, ``machine too loud``,
-    ``frames missing``, ``no blow`` or ``not usable``."""
-    what: str = ""
-    """What was seen; empty for a usable one."""
-
-    @property
-    def usable(self) -> bool:
-        """Whether it counts."""
-        return self.kind == USABLE
-
-    @property
-    def change(self) -> str:
-        """What to change before the next blow."""
-        return CHANGES[self.kind]
-
-    def __str__(self) -> str:
-        return f"{self.kind}: {self.what}; {self.change}" if self.what else self.kind
 
 
 @dataclass(frozen=True, eq=False)

@@ -19,6 +19,7 @@ MATTERS = 2e-3
 of what the length of a pipe alone leaves open."""
 FAINT = 0.02
 """Share of the strongest mode's energy below which a mode may have a node nearby."""
+_SAME_SDS = 4.0
 _STILL = 0.35
 """Of a mode's largest motion: what is below is hardly seen."""
 
@@ -70,6 +71,22 @@ def worth(modes: Sequence[MeasuredMode], good: int) -> Worth:
     more = min(max(wanted, 1), MOST_BLOWS - good)
     why = f"the least sure frequency is known to {100 * worst:.1f} %"
     return Worth(more, why, worst, expected)
+
+
+def best_here(
+    modes: Sequence[MeasuredMode], others: Sequence[Sequence[MeasuredMode]]
+) -> tuple[MeasuredMode, ...]:
+    """Modes of one sensor without those that another sensor beside it knows better."""
+    known = [mode for other in others for mode in other]
+    return tuple(mode for mode in modes if not any(_better(other, mode) for other in known))
+
+
+def _better(one: MeasuredMode, than: MeasuredMode) -> bool:
+    """Whether a mode seen in another direction is the same one, and known better."""
+    apart_hz = abs(one.frequency_hz - than.frequency_hz)
+    doubt_hz = float(np.hypot(one.frequency_sd_hz, than.frequency_sd_hz))
+    same = apart_hz <= max(_SAME_SDS * doubt_hz, MATTERS * than.frequency_hz)
+    return same and one.frequency_sd_hz < than.frequency_sd_hz
 
 
 def with_more(sd: float, good: int, more: int) -> float:

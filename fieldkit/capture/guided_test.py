@@ -13,7 +13,11 @@ from numpy.typing import NDArray
 
 from fieldkit.capture.blow import read_blow
 from fieldkit.capture.enough import Expected
-from fieldkit.capture.guide import Guide, GuideSnapshot, Place, snapshot_of
+from fieldkit.capture.force import coherence_at, response_of
+from fieldkit.capture.guide import Estimated, Guide
+from fieldkit.capture.guide_snapshot import GuideSnapshot, snapshot_of
+from fieldkit.capture.joint import read_joint
+from fieldkit.capture.places import Ear, Place
 from fieldkit.capture.ring import Ring
 from fieldkit.capture.source import Block
 from fieldkit.capture.trigger import (
@@ -42,8 +46,9 @@ class _Record:
     """A record that waits to be judged."""
 
     samples: NDArray[np.float32]
+    """(n, channels)"""
     event: RecordDone
-    place: Place
+    ears: tuple[Ear, ...]
 
 
 class GuidedTest:
@@ -53,26 +58,29 @@ class GuidedTest:
         self,
         *,
         rate_hz: float,
-        place: Place,
-        channel: int = 0,
+        ears: Sequence[Ear],
+        hammer: int | None = None,
         directions: Sequence[str] = ("vertical", "lateral"),
         up_to_hz: float = 200.0,
         expected: Sequence[Expected] = (),
         mark: Mark | None = None,
     ) -> None:
-        """``channel`` (from 0) is the one that is judged; ``expected`` are modes of a model."""
+        """``ears`` are the channels that are judged, ``hammer`` the one of the force, from 0;
+        ``expected`` are modes of a model."""
         self._rate_hz = rate_hz
-        self._channel = channel
+        self._channels = [ear.channel for ear in ears]
+        self._hammer = hammer
         self._expected = tuple(expected)
         self._mark = mark
-        self._trigger = Trigger(rate_hz=rate_hz)
-        self._ring = Ring(frames=round(_RING_S * rate_hz), channels=1)
+        self._trigger = Trigger(rate_hz=rate_hz, channels=len(ears))
+        self._width = 1 + max([*self._channels, -1 if hammer is None else hammer])
+        self._ring = Ring(frames=round(_RING_S * rate_hz), channels=self._width)
         self._listen_anew = self._stopped = False
         self._frame = 0
         self._published_frame = 0
         self._lock = threading.Lock()
         up_to_hz = min(up_to_hz, _OF_RATE * rate_hz)
-        self._guide = Guide(place=place, directions=tuple(directions), up_to_hz=up_to_hz)
+        self._guide = Guide(ears=tuple(ears), directions=tuple(directions), up_to_hz=up_to_hz)
         self._snapshot = snapshot_of(self._guide, 0, rate_hz, self._expected)
         self._queue: SimpleQueue[_Record | str] = SimpleQueue()
         self._thread = threading.Thread(target=self._work, name="guided test", daemon=True)
@@ -82,20 +90,22 @@ class GuidedTest:
         """Take a block of the session."""
         if self._stopped:
             return
-        samples = block.samples[:, self._channel : self._channel + 1]
+        samples = block.samples[:, : self._width]
         if self._listen_anew:
             self._listen_anew = False
             self._trigger.listen_anew()
         lost = block.cause or "frames went missing" if block.lost_frames != 0 else ""
         self._ring.feed(replace(block, samples=samples))
-        events = self._trigger.feed(block.first_frame, samples[:, 0].astype(float), lost)
+        events = self._trigger.feed(
+            block.first_frame, samples[:, self._channels].astype(float), lost
+        )
         self._frame = block.first_frame + len(samples)
         for event in events:
             self._take(event)
         due = self._frame - self._published_frame >= _PUBLISH_S * self._rate_hz
         if events or due or self._guide.phase != self._trigger.phase:
-            phase, threshold = self._trigger.phase, self._trigger.threshold
-            self._change(lambda guide: guide.heard(phase, threshold))
+            phase, thresholds = self._trigger.phase, self._trigger.thresholds
+            self._change(lambda guide: guide.heard(phase, thresholds))
 
     def snapshot(self) -> GuideSnapshot:
         """How things are."""
@@ -112,10 +122,13 @@ class GuidedTest:
         """Take a blow that was set aside in again."""
         self._put_aside(number, aside=False)
 
-    def move_to(self, place: Place, expected: Sequence[Expected] | None = None) -> None:
-        """Go on at another place or in another direction, with the modes a model expects there."""
+    def move_to(self, ears: Sequence[Ear], expected: Sequence[Expected] | None = None) -> None:
+        """Go on at another place or in another direction, with the modes a model expects there.
+
+        The channels stay the same.
+        """
         self._expected = self._expected if expected is None else tuple(expected)
-        self._change(lambda guide: guide.moved_to(place))
+        self._change(lambda guide: guide.moved_to(tuple(ears)))
         self._queue.put("")
 
     def listen_anew(self) -> None:
@@ -136,11 +149,11 @@ class GuidedTest:
             self._change(lambda guide: guide.broken(event))
         else:
             self._change(lambda guide: guide.rung_out(event))
-            self._queue.put(_Record(self._slice(event), event, self._guide.place))
+            self._queue.put(_Record(self._slice(event), event, self._guide.ears))
 
     def _slice(self, event: RecordDone) -> NDArray[np.float32]:
         first, samples = self._ring.latest(self._frame - event.first)
-        return samples[max(event.first - first, 0) : event.end - first, 0]
+        return samples[max(event.first - first, 0) : event.end - first]
 
     def _put_aside(self, number: int | None, *, aside: bool) -> None:
         counted = [b.number for b in self._guide.blows if b.counts]
@@ -170,31 +183,48 @@ class GuidedTest:
                 self._estimate()
 
     def _judge(self, record: _Record) -> None:
-        event, longest = record.event, self._guide.quiet()
+        event = record.event
         try:
-            reading = read_blow(
+            reading = read_joint(
                 record.samples,
                 self._rate_hz,
                 event.blow - event.first,
+                record.ears,
+                hammer=self._hammer,
                 frame=event.blow,
                 up_to_hz=self._guide.up_to_hz,
-                quiet=longest.background if longest is not None else None,
+                quiet=self._guide.quiet(),
             )
         except Exception as error:
             told = f"a blow could not be read ({type(error).__name__}: {error})"
             self._change(lambda guide: guide.unreadable(event.blow, told))
             return
-        self._change(lambda guide: guide.read(reading, record.place))
+        self._change(lambda guide: guide.read(reading))
 
     def _estimate(self) -> None:
         while (place := self._guide.outdated()) is not None and self._queue.empty():
             self._estimate_at(place)
 
     def _estimate_at(self, place: Place) -> None:
-        guide = self._guide
-        numbers = tuple(blow.number for blow in guide.counted(place))
-        estimate = estimate_of(guide, place)
-        self._change(lambda guide: guide.estimated(place, numbers, estimate))
+        found = estimated(self._guide, place, self._rate_hz)
+        self._change(lambda guide: guide.estimated(place, found))
+
+
+def estimated(guide: Guide, place: Place, rate_hz: float) -> Estimated | None:
+    """Modes and coherence of the blows that count at a place; None where there is none."""
+    estimate = estimate_of(guide, place)
+    if estimate is None:
+        return None
+    numbers = tuple(blow.number for blow in guide.counted(place))
+    pairs = [
+        joint.struck[i]
+        for joint in (blow.joint for blow in guide.counted(place))
+        if joint is not None and joint.struck
+        for i in joint.at(place)
+    ]
+    response = response_of(pairs, rate_hz, guide.up_to_hz)
+    modes = [(m.frequency_hz, m.damping_ratio or 0.0) for m in estimate.modes]
+    return Estimated(place, numbers, estimate, coherence_at(response, modes) if response else ())
 
 
 def estimate_of(guide: Guide, place: Place) -> ModeEstimate | None:

@@ -1,7 +1,8 @@
 """A streaming trigger: hears the background, is armed by it, and cuts a record out of every blow.
 
-Everything is decided on hops of 10 ms counted from the first frame, so that blocks of any size give
-the same records, each exact to the sample.
+It listens to all channels together: a blow is seen as soon as any of them shows it, and has rung
+out when none of them rings any more. Everything is decided on hops of 10 ms counted from the first
+frame, so that blocks of any size give the same records, each exact to the sample.
 """
 
 from __future__ import annotations
@@ -79,7 +80,7 @@ Event = BlowSeen | RecordDone | RecordBroken
 
 @dataclass(frozen=True, slots=True)
 class Threshold:
-    """What the background says a blow must pass, in the samples' unit."""
+    """What the background of a channel says a blow must pass, in the samples' unit."""
 
     level: float
     """Median of the peaks of the background's hops."""
@@ -99,12 +100,13 @@ def proposed_length_s(decays_per_s: Real) -> float:
 
 
 class Trigger:
-    """One channel, from the first frame on; one thread feeds it."""
+    """Some channels, from the first frame on; one thread feeds it."""
 
     def __init__(
         self,
         *,
         rate_hz: float,
+        channels: int = 1,
         pre_trigger_s: float = PRE_TRIGGER_S,
         quiet_s: float = QUIET_S,
         least: float = LEAST_THRESHOLD,
@@ -112,88 +114,95 @@ class Trigger:
         self.record_s = LONGEST_S
         """Longest record from the blow on; may be set at any time."""
         self.phase = LISTENING
-        self.threshold: Threshold | None = None
+        self.thresholds: tuple[Threshold, ...] = ()
+        """Of each channel; empty until the background is known."""
         self._rate_hz = rate_hz
         self._hop = max(round(HOP_S * rate_hz), 1)
         self._reach = max(round(_STEP_S * rate_hz), 1)
         self._before = round((pre_trigger_s + quiet_s) * rate_hz)
         self._least = least
-        self._sizes: deque[tuple[float, float, float]] = deque(maxlen=round(_BACKGROUND_S / HOP_S))
-        self._last: deque[float] = deque(maxlen=_LAST_HOPS)
-        self._waiting: Real = np.zeros(0)
-        self._tail: Real = np.zeros(0)
+        self._channels = channels
+        self._past: deque[Real] = deque(maxlen=round(_BACKGROUND_S / HOP_S))
+        """Of each quiet hop (3, k): largest deviation and step, mean."""
+        self._last: deque[Real] = deque(maxlen=_LAST_HOPS)
+        self._waiting: Real = np.zeros((0, channels))
+        self._tail: Real = np.zeros((0, channels))
         self._frame = 0
         self._earliest = 0
         self._blow = 0
-        self._centre = 0.0
+        self._centre: Real = np.zeros(channels)
         self._hops = self._calm_hops = self._phase_hops = 0
 
     def listen_anew(self) -> None:
         """Forget the background, as where the machine was switched."""
-        self._sizes.clear()
+        self._past.clear()
         self._enter(LISTENING)
 
     def feed(self, first_frame: int, samples: Real, lost_before: str = "") -> list[Event]:
-        """Take (n,) samples in; ``lost_before`` says why frames are missing before them."""
+        """Take (n,) samples in, or (n, channels).
+
+        ``lost_before`` says why frames are missing before them.
+        """
         events = list(self._cut_off(first_frame, lost_before)) if lost_before else []
-        self._waiting = np.concatenate([self._waiting, samples])
+        self._waiting = np.concatenate([self._waiting, samples.reshape(-1, self._channels)])
         whole = len(self._waiting) // self._hop * self._hop
         hops, self._waiting = self._waiting[:whole], self._waiting[whole:]
-        for hop in hops.reshape(-1, self._hop):
+        for hop in hops.reshape(-1, self._hop, self._channels):
             events += self._take(hop)
         return events
 
     def _cut_off(self, first_frame: int, cause: str) -> Iterator[Event]:
         if self.phase == RECORDING:
             yield RecordBroken(self._blow, first_frame, cause)
-        self._waiting, self._tail = np.zeros(0), np.zeros(0)
+        self._waiting, self._tail = np.zeros((2, 0, self._channels))
         self._frame = self._earliest = first_frame
         if self.phase in (RECORDING, ARMED):
             self._enter(SETTLING)
 
     def _take(self, hop: Real) -> Iterator[Event]:
-        size, step, mean = self._deviations(hop)
+        size, step = self._deviations(hop)
+        largest = np.stack([size.max(axis=0), step.max(axis=0), hop.mean(axis=0)])
         self._hops += 1
         self._phase_hops += 1
         if self.phase == RECORDING:
-            yield from self._go_on(float(size.max()))
+            yield from self._go_on(largest[0])
         elif self.phase == ARMED:
-            yield from self._watch(size, step, mean)
+            yield from self._watch(size, step, largest)
         elif self.phase == SETTLING:
-            self._settle(size, step)
+            self._settle(largest)
         else:
-            self._listen(size, step, mean)
+            self._listen(largest)
         self._frame += self._hop
 
-    def _deviations(self, hop: Real) -> tuple[Real, Real, float]:
-        """Distance from the background's mean, and from half a millisecond before."""
-        mean = float(hop.mean())
+    def _deviations(self, hop: Real) -> tuple[Real, Real]:
+        """(n, k) distances from the background's mean, and from half a millisecond before."""
         if self._hops % _REFRESH_HOPS == 0:
-            self._centre = float(np.median([m for _, _, m in self._sizes] or [mean]))
-        past = self._tail if len(self._tail) else np.full(self._reach, hop[0])
+            means = [mean for _, _, mean in self._past] or [hop.mean(axis=0)]
+            self._centre = np.median(means, axis=0)
+        past = self._tail if len(self._tail) else np.repeat(hop[:1], self._reach, axis=0)
         joined = np.concatenate([past, hop])
         self._tail = joined[-self._reach :]
-        return np.abs(hop - self._centre), np.abs(hop - joined[: self._hop]), mean
+        return np.abs(hop - self._centre), np.abs(hop - joined[: self._hop])
 
-    def _listen(self, size: Real, step: Real, mean: float) -> None:
-        self._sizes.append((float(size.max()), float(step.max()), mean))
+    def _listen(self, largest: Real) -> None:
+        self._past.append(largest)
         enough = round(_LISTEN_S / HOP_S)
-        while len(self._sizes) > enough:
-            self._sizes.popleft()
-        if len(self._sizes) == enough and self._steady():
+        while len(self._past) > enough:
+            self._past.popleft()
+        if len(self._past) == enough and self._steady():
             self._refresh()
             self._enter(ARMED)
 
     def _steady(self) -> bool:
-        peaks = np.array([size for size, _, _ in self._sizes])
-        ratio = float(np.median(peaks[-_LAST_HOPS:])) / max(float(np.median(peaks)), self._least)
-        return ratio < _UNSTEADY
+        peaks = np.array(self._past)[:, 0]
+        usual = np.maximum(np.median(peaks, axis=0), self._least)
+        return bool(np.all(np.median(peaks[-_LAST_HOPS:], axis=0) < _UNSTEADY * usual))
 
-    def _watch(self, size: Real, step: Real, mean: float) -> Iterator[Event]:
-        assert self.threshold is not None
-        over = (size > self.threshold.size) | (step > self.threshold.step)
+    def _watch(self, size: Real, step: Real, largest: Real) -> Iterator[Event]:
+        sizes, steps = self._passed()
+        over = np.any((size > sizes) | (step > steps), axis=1)
         if not over.any():
-            self._sizes.append((float(size.max()), float(step.max()), mean))
+            self._past.append(largest)
             if self._hops % _REFRESH_HOPS == 0:
                 self._refresh()
             return
@@ -202,7 +211,12 @@ class Trigger:
         self._enter(RECORDING)
         yield BlowSeen(self._blow)
 
-    def _go_on(self, peak: float) -> Iterator[Event]:
+    def _passed(self) -> tuple[Real, Real]:
+        """(k,) deviations and (k,) steps that a blow passes."""
+        sizes = np.array([threshold.size for threshold in self.thresholds])
+        return sizes, np.array([threshold.step for threshold in self.thresholds])
+
+    def _go_on(self, peak: Real) -> Iterator[Event]:
         self._last.append(peak)
         end = self._frame + self._hop
         limit = self._blow + round(self.record_s * self._rate_hz)
@@ -216,15 +230,15 @@ class Trigger:
         yield RecordDone(first, self._blow, end, died)
 
     def _died_away(self) -> bool:
-        assert self.threshold is not None
-        quiet = self.threshold.level + _DIED_SPREADS * self.threshold.spread
-        return float(np.median(self._last)) <= max(quiet, self._least / 2)
+        quiet = [t.level + _DIED_SPREADS * t.spread for t in self.thresholds]
+        return bool(np.all(np.median(self._last, axis=0) <= np.maximum(quiet, self._least / 2)))
 
-    def _settle(self, size: Real, step: Real) -> None:
-        if self.threshold is None:
+    def _settle(self, largest: Real) -> None:
+        if not self.thresholds:
             self._enter(LISTENING)
             return
-        over = float(size.max()) > self.threshold.size or float(step.max()) > self.threshold.step
+        sizes, steps = self._passed()
+        over = np.any(largest[0] > sizes) or np.any(largest[1] > steps)
         self._calm_hops = 0 if over else self._calm_hops + 1
         if self._calm_hops >= _SETTLED_HOPS:
             self._enter(ARMED)
@@ -232,12 +246,13 @@ class Trigger:
             self.listen_anew()
 
     def _refresh(self) -> None:
-        peaks = np.array(self._sizes)[:, :2]
+        peaks = np.array(self._past)[:, :2]
         level = np.median(peaks, axis=0)
         spread = _SPREAD_OF_MAD * np.median(np.abs(peaks - level), axis=0)
         passed = np.maximum(_OVER_MEDIAN * level, level + _OVER_SPREAD * spread)
-        size, step = np.maximum(passed, self._least)
-        self.threshold = Threshold(float(level[0]), float(spread[0]), float(size), float(step))
+        sizes, steps = np.maximum(passed, self._least)
+        values = np.stack([level[0], spread[0], sizes, steps], axis=1)
+        self.thresholds = tuple(Threshold(*map(float, row)) for row in values)
 
     def _enter(self, phase: str) -> None:
         self.phase = phase

@@ -4,8 +4,9 @@ from __future__ import annotations
 
 import numpy as np
 
-from fieldkit.capture.guide import GuideSnapshot, Place
+from fieldkit.capture.guide_snapshot import GuideSnapshot
 from fieldkit.capture.guided_test import GuidedTest
+from fieldkit.capture.places import Ear, Place
 from fieldkit.capture.practice import PracticeSensor, PracticeSource, Surroundings
 from fieldkit.capture.practice_plant import PracticeMachine, PracticePlant
 from tests.capture.rig import until
@@ -45,9 +46,17 @@ class Rig:
             plant(), [PracticeSensor(1.0, "vertical")], rate_hz=RATE_HZ, surroundings=around
         )
         self.marks: list[tuple[int, bool]] = []
+        sensors = self.source.sensors
+        hammers = [i for i, sensor in enumerate(sensors) if sensor.hammer]
+        ears = [
+            Ear(i, Place(sensor.direction, sensor.at_m), sensor.full_scale)
+            for i, sensor in enumerate(sensors)
+            if not sensor.hammer
+        ]
         self.test = GuidedTest(
             rate_hz=self.source.rate_hz,
-            place=AT,
+            ears=ears,
+            hammer=hammers[0] if hammers else None,
             mark=lambda frame, aside: self.marks.append((frame, aside)),
             **more,  # type: ignore[arg-type]
         )

@@ -7,9 +7,12 @@ from dataclasses import replace
 import numpy as np
 import pytest
 
-from fieldkit.capture.blow import CUT_SHORT, MACHINE, NO_BLOW, read_blow
+from fieldkit.capture.blow import read_blow
 from fieldkit.capture.enough import Expected, best_station, next_place, with_more, worth
-from fieldkit.capture.guide import Guide, Place
+from fieldkit.capture.guide import Guide
+from fieldkit.capture.joint import JointReading
+from fieldkit.capture.places import Ear, Place
+from fieldkit.capture.verdict import CUT_SHORT, MACHINE, NO_BLOW
 from fieldkit.signal.modes import MeasuredMode
 from fieldkit.signal.taps import TapSearch, find_taps
 from tests.capture.practice_rig import AT, Rig
@@ -123,7 +126,8 @@ def test_a_decay_that_is_cut_while_it_rings_is_short() -> None:
     assert reading.verdict.kind == CUT_SHORT
     assert "the next record is longer" in reading.verdict.change
     guide = replace(Guide(), record_s=2.5)
-    assert guide.read(reading, guide.place).record_s == 5.0
+    joint = JointReading(0, reading.verdict, guide.ears, (reading,), 0, ())
+    assert guide.read(joint).record_s == 5.0
 
 
 def test_every_reason_not_to_use_a_tap_refuses_the_blow(monkeypatch) -> None:
@@ -169,9 +173,9 @@ def test_another_direction_is_estimated_on_its_own() -> None:
     rig.struck()
     sideways = Place("lateral", 1.0)
     rig.source.move([type(rig.source.sensors[0])(1.0, "lateral")])
-    rig.test.move_to(sideways)
+    rig.test.move_to([Ear(0, sideways)])
     shot = rig.struck()
-    assert shot.place == sideways
+    assert shot.places == (sideways,)
     assert shot.estimate is not None
     assert [round(m.frequency_hz, 1) for m in shot.estimate.modes] == [19.2, 48.8]
     assert {place for place, _ in shot.estimates} == {AT, sideways}
@@ -186,7 +190,7 @@ def test_a_record_that_cannot_be_read_is_told_and_the_next_one_counts(monkeypatc
         raise ArithmeticError("made to fail")
 
     with monkeypatch.context() as patch:
-        patch.setattr("fieldkit.capture.guided_test.read_blow", broken)
+        patch.setattr("fieldkit.capture.guided_test.read_joint", broken)
         rig.armed()
         rig.source.tap()
         rig.run(6.0)

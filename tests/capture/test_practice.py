@@ -9,8 +9,8 @@ import numpy as np
 import pytest
 
 from fieldkit.capture.calibration import calibrate
-from fieldkit.capture.guide import Place
 from fieldkit.capture.guided_test import GuidedTest
+from fieldkit.capture.places import Ear, Place
 from fieldkit.capture.practice import PracticeSensor, PracticeSource, Surroundings
 from fieldkit.capture.session import Session
 from fieldkit.capture.setup import ChannelSetup
@@ -73,7 +73,9 @@ def test_from_the_rig_through_session_disk_and_guide_to_its_modes(tmp_path) -> N
     source = practice_source(job, [SETUP], rate_hz=RATE_HZ, pace=pace)
     session = Session(source)
     pace.taken = lambda: session.snapshot().frames
-    test = GuidedTest(rate_hz=RATE_HZ, place=Place("vertical", 1.95), up_to_hz=job.goal.up_to_hz)
+    test = GuidedTest(
+        rate_hz=RATE_HZ, ears=[Ear(0, Place("vertical", 1.95))], up_to_hz=job.goal.up_to_hz
+    )
     session.record(tmp_path / "tap-1.wav", [SETUP])
     session.add(test)
     session.add(Striker(source, test, 3))

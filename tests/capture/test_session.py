@@ -126,7 +126,7 @@ def test_a_pause_outlasts_an_absence_of_the_source(tmp_path):
     session.pause()
     until(lambda: session.snapshot().state == PAUSED)
     paused.set()
-    until(lambda: "is back" in session.snapshot().message)
+    until(lambda: session.snapshot().message.startswith("made up is back"))
     assert session.snapshot().state == PAUSED
     session.resume()
     until(lambda: session.snapshot().state == RUNNING)

@@ -93,8 +93,8 @@ def test_the_threshold_is_never_below_some_steps_of_the_converter() -> None:
     """A dead input has a background of nothing."""
     trigger = Trigger(rate_hz=RATE_HZ)
     events(np.zeros(3 * RATE_HZ), [], trigger)
-    assert trigger.threshold is not None
-    assert trigger.threshold.size == LEAST_THRESHOLD
+    (threshold,) = trigger.thresholds
+    assert threshold.size == LEAST_THRESHOLD
 
 
 def test_a_blow_amid_a_running_machine_is_seen_by_its_suddenness() -> None:
@@ -120,8 +120,8 @@ def test_a_level_that_rises_for_good_is_listened_to_anew() -> None:
     trigger.record_s = 3.0
     events(samples, [], trigger)
     assert trigger.phase == ARMED
-    assert trigger.threshold is not None
-    assert trigger.threshold.level == pytest.approx(0.1, rel=0.1)
+    (threshold,) = trigger.thresholds
+    assert threshold.level == pytest.approx(0.1, rel=0.1)
 
 
 def test_frames_that_are_lost_break_the_record() -> None:
@@ -150,3 +150,23 @@ def test_record_length_is_six_time_constants_of_the_slowest_mode() -> None:
     assert proposed_length_s(np.array([2.513, 8.0])) == pytest.approx(6 / 2.513)
     assert proposed_length_s(np.array([0.01])) == 30.0
     assert proposed_length_s(np.array([50.0])) == 2.0
+
+
+def test_the_loudest_of_several_channels_decides() -> None:
+    """A blow that only the second one shows is seen, its record lasts until that one is quiet."""
+    rng = np.random.default_rng(3)
+    alone = 1e-3 * rng.standard_normal((12 * RATE_HZ, 2))
+    time_s = np.arange(6 * RATE_HZ) / RATE_HZ
+    alone[5 * RATE_HZ : 11 * RATE_HZ, 1] += (
+        0.3 * np.exp(-1.5 * time_s) * np.cos(2 * np.pi * 30 * time_s)
+    )
+    trigger = Trigger(rate_hz=RATE_HZ, channels=2)
+    events = trigger.feed(0, alone)
+    assert [type(event) for event in events] == [BlowSeen, RecordDone]
+    seen, done = events
+    assert seen.frame == 5 * RATE_HZ
+    assert done.died_away
+    assert done.end - done.blow > 2.5 * RATE_HZ
+    assert len(trigger.thresholds) == 2
+    first = Trigger(rate_hz=RATE_HZ).feed(0, alone[:, 0])
+    assert first == []

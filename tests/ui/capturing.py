@@ -3,38 +3,49 @@
 from __future__ import annotations
 
 import threading
+import time
 from collections.abc import Callable
 from pathlib import Path
+from typing import ClassVar
 
 from textual.app import App
+from textual.binding import Binding, BindingType
 from textual.pilot import Pilot
 
 from fieldkit.capture.practice import PracticeSensor, PracticeSource, Surroundings
+from fieldkit.capture.session import Session
 from fieldkit.capture.setup import ChannelSetup
 from fieldkit.ui import app as app_module
 from fieldkit.ui.app import FieldkitApp
 from fieldkit.ui.capture.tap_run import TapRun
 from tests.capture.practice_rig import RATE_HZ, plant
+from tests.capture.rig import GENEROUS_S
 
 CHANNEL = ChannelSetup(sensitivity="100 mV/g", full_scale="0.7 V", direction="vertical", at="1.0 m")
 
 
 class StepPace:
-    """Time for the practice rig that passes only as far as it is granted."""
+    """Time for the practice rig that passes only as far as it is granted, and as it is heard."""
 
     def __init__(self) -> None:
+        self.unheard: Callable[[], int] = lambda: 0
+        """Frames that were delivered and that nobody has taken yet."""
         self._now_s = self._granted_s = 0.0
+        self._wanted_s: float | None = None
         self._changed = threading.Condition()
 
     def now_s(self) -> float:
         return self._now_s
 
     def wait(self, seconds: float, stop: threading.Event) -> None:
-        target_s = self._now_s + max(seconds, 0.0)
         with self._changed:
-            while self._granted_s < target_s and not stop.is_set():
+            wanted_s = self._wanted_s = self._now_s + max(seconds, 0.0)
+            while self._granted_s < wanted_s and not stop.is_set():
                 self._changed.wait(0.02)
-        self._now_s = target_s
+            if not stop.is_set():
+                self._now_s = wanted_s
+            if self._wanted_s == wanted_s:
+                self._wanted_s = None
 
     def grant(self, seconds: float) -> None:
         with self._changed:
@@ -43,7 +54,10 @@ class StepPace:
 
     @property
     def used_up(self) -> bool:
-        return self._now_s >= self._granted_s - 0.03
+        """Whether the rig waits for more time, and all that it delivered was taken."""
+        with self._changed:
+            waits = self._wanted_s is not None and self._wanted_s > self._granted_s
+        return waits and self.unheard() == 0
 
 
 class Host(App[object]):
@@ -52,6 +66,7 @@ class Host(App[object]):
     CSS_PATH = Path(app_module.__file__).with_name("app.tcss")
     HORIZONTAL_BREAKPOINTS = FieldkitApp.HORIZONTAL_BREAKPOINTS
     VERTICAL_BREAKPOINTS = FieldkitApp.VERTICAL_BREAKPOINTS
+    BINDINGS: ClassVar[list[BindingType]] = [Binding("ctrl+q", "quit", show=False)]
 
     def __init__(self, held: Callable[[], object]) -> None:
         super().__init__()
@@ -79,19 +94,38 @@ def rig(pace: StepPace, **more: object) -> PracticeSource:
 
 def tap_run(folder: Path, pace: StepPace) -> TapRun:
     """A guided tap test on that beam."""
-    return TapRun(rig(pace), (CHANNEL,), folder / "job.toml", 100.0)
+    run = TapRun(rig(pace), (CHANNEL,), folder / "job.toml", 100.0)
+    followed(run.session, pace)
+    return run
 
 
-async def play(
-    pilot: Pilot[None], pace: StepPace, wanted: Callable[[], bool], most_s: float = 90.0
-) -> None:
+def followed(session: Session, pace: StepPace) -> None:
+    """Let the rig wait for a session that is slow to hear it."""
+    inbox = session._inbox
+    pace.unheard = lambda: inbox._arrived - inbox._taken
+
+
+async def play(pilot: Pilot[None], pace: StepPace, wanted: Callable[[], bool]) -> None:
     """Let the rig's time pass until something holds."""
-    passed_s = 0.0
+    end_s = time.monotonic() + GENEROUS_S
     while not wanted():
-        assert passed_s < most_s, "it never came"
+        assert time.monotonic() < end_s, "it never came"
         pace.grant(0.2)
-        passed_s += 0.2
         for _ in range(200):
             await pilot.pause(0.005)
-            if pace.used_up:
+            if pace.used_up or wanted():
                 break
+
+
+async def until(pilot: Pilot[None], wanted: Callable[[], bool]) -> None:
+    """Handle messages until something holds, however slow the computer is."""
+    end_s = time.monotonic() + GENEROUS_S
+    while not wanted():
+        assert time.monotonic() < end_s, "it never came"
+        await pilot.pause(0.01)
+
+
+async def on_screen(pilot: Pilot[None], kind: type) -> None:
+    """Handle messages until a screen of a kind has the keys."""
+    await until(pilot, lambda: isinstance(pilot.app.screen, kind) and pilot.app.screen.is_mounted)
+    await pilot.pause()

@@ -4,19 +4,24 @@ from __future__ import annotations
 
 import numpy as np
 
-from fieldkit.capture.blow import BlowReading, Trace, Verdict
+from fieldkit.capture.blow import BlowReading, Trace
 from fieldkit.capture.enough import Worth
-from fieldkit.capture.guide import Blow, GuideSnapshot, Place
+from fieldkit.capture.guide import Blow
+from fieldkit.capture.guide_snapshot import GuideSnapshot
+from fieldkit.capture.joint import JointReading
 from fieldkit.capture.live import LivePicture
 from fieldkit.capture.meter import ChannelLevel
+from fieldkit.capture.places import Ear, Place
 from fieldkit.capture.setup import ChannelSetup
 from fieldkit.capture.snapshot import RUNNING, Snapshot
 from fieldkit.capture.trigger import Threshold
+from fieldkit.capture.verdict import Verdict
 from fieldkit.signal.modes import MeasuredMode, ModeEstimate
 from fieldkit.ui.capture.takes import Take
 from fieldkit.ui.capture.tap_run import TapLook
 
 PLACE = Place("vertical", 1.9)
+EAR = Ear(0, PLACE)
 FREQUENCY_HZ = np.arange(0.0, 100.0, 0.25)
 
 
@@ -28,8 +33,10 @@ def decay() -> Trace:
 
 
 def blow(number: int, kind: str = "usable", what: str = "", *, aside: bool = False) -> Blow:
-    reading = BlowReading(1000 * number, Verdict(kind, what), 0.4, decay(), None, None, np.empty(0))
-    return Blow(number, 1000 * number, PLACE, Verdict(kind, what), reading, aside)
+    verdict = Verdict(kind, what)
+    reading = BlowReading(1000 * number, verdict, 0.4, decay(), None, None, np.empty(0))
+    joint = JointReading(1000 * number, verdict, (EAR,), (reading,), 0, (PLACE,))
+    return Blow(number, 1000 * number, (PLACE,), verdict, joint, aside)
 
 
 BLOWS = (
@@ -50,13 +57,14 @@ def guide(phase: str = "armed") -> GuideSnapshot:
         phase=phase,
         instruction="armed: strike once",
         advice="1 more good blow wanted: three blows must agree before they are believed",
-        place=PLACE,
-        threshold=Threshold(0.005, 0.001, 0.02, 0.01),
+        ears=(EAR,),
+        thresholds=(Threshold(0.005, 0.001, 0.02, 0.01),),
         ringing_s=None,
         record_s=8.0,
         blows=BLOWS,
         estimate=ModeEstimate(MODES, (), (), ()),
         estimated_from=2,
+        wanted=PLACE,
         worth=Worth(1, "three blows must agree", 1e-3, 8e-4),
         estimating=False,
         estimates=(),

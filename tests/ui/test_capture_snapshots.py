@@ -8,8 +8,7 @@ import pytest
 from textual.pilot import Pilot
 
 from fieldkit.ui.capture.tap_screen import TapScreen
-from tests.ui.capturing import Host
-from tests.ui.driving import until
+from tests.ui.capturing import Host, until
 from tests.ui.made_look import StillRun, look
 
 

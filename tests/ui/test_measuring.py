@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import asyncio
 from pathlib import Path
 
 import pytest
@@ -19,10 +18,11 @@ from fieldkit.ui.capture.setup_screen import SetupScreen
 from fieldkit.ui.capture.takes import Result, Take
 from fieldkit.ui.capture.tap_screen import TapScreen
 from fieldkit.ui.capture.wiring import Wiring
-from fieldkit.ui.dialogs import PathScreen, PickScreen
+from fieldkit.ui.dialogs import AskScreen, PathScreen, PickScreen
+from fieldkit.ui.forms import FormWindow
 from tests.capture.rig import require
-from tests.ui.capturing import StepPace, play
-from tests.ui.driving import opened, rows_of, said, settled, text_of, until
+from tests.ui.capturing import StepPace, on_screen, play, until
+from tests.ui.driving import opened, rows_of, said, settled, text_of
 
 INTERFACE = Input(3, "Interface 2 in", "ALSA", 2, 48000, (48000,), True)
 
@@ -34,11 +34,6 @@ def no_input() -> tuple[Input, ...]:
 def bench_of(folder: Path, pace: StepPace | None = None, *inputs: Input) -> Bench:
     lister = (lambda: inputs) if inputs else no_input
     return Bench(list_inputs=lister, pace=pace, presets_path=folder / "presets.toml")
-
-
-async def on_screen(pilot: Pilot[None], kind: type) -> None:
-    await until(pilot, lambda: isinstance(pilot.app.screen, kind))
-    await pilot.pause()
 
 
 async def struck(pilot: Pilot[None], pace: StepPace, blows: int) -> None:
@@ -72,7 +67,7 @@ async def test_the_practice_rig_leads_from_the_start_to_a_ranked_change(
         screen = app.screen
         await struck(pilot, pace, 3)
         await pilot.press("d")
-        await pilot.pause()
+        await on_screen(pilot, FormWindow)
         await pilot.press("enter")
         await on_screen(pilot, TapScreen)
         await play(pilot, pace, lambda: screen.run.look().guide.phase == "listening")
@@ -104,6 +99,31 @@ async def test_the_practice_rig_leads_from_the_start_to_a_ranked_change(
     ]
 
 
+async def test_ctrl_q_while_tapping_saves_into_the_job_and_ends_the_app(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.chdir(tmp_path)
+    pace = StepPace()
+    app = FieldkitApp()
+    app.bench = bench_of(tmp_path, pace)
+    async with app.run_test(size=(80, 24)) as pilot:
+        await on_screen(pilot, PickScreen)
+        await pilot.press("down", "down", "down", "enter")
+        await on_screen(pilot, PathScreen)
+        await pilot.press("enter")
+        await on_screen(pilot, SetupScreen)
+        await pilot.press("g")
+        await on_screen(pilot, TapScreen)
+        await struck(pilot, pace, 1)
+        await pilot.press("ctrl+q")
+        await on_screen(pilot, AskScreen)
+        await pilot.press("enter")
+        await until(pilot, lambda: app._exit)
+    assert [entry.path.name for entry in load_job(tmp_path / "practice.toml").recordings] == [
+        "tap-1.wav"
+    ]
+
+
 async def test_practising_on_a_measured_job_goes_to_a_copy(job_path: Path, quick: None) -> None:
     """What was measured on a pipe stays out of it, and its own file is not touched."""
     before = job_path.read_bytes()
@@ -113,14 +133,14 @@ async def test_practising_on_a_measured_job_goes_to_a_copy(job_path: Path, quick
         await pilot.press("m")
         await on_screen(pilot, SetupScreen)
         await pilot.press("g")
+        await until(pilot, lambda: any("what was measured stays out" in x for x in said(app)))
         await on_screen(pilot, TapScreen)
         await pilot.press("escape")
         await on_screen(pilot, SetupScreen)
         await pilot.press("escape")
-        await pilot.pause()
+        await until(pilot, lambda: len(app.screen_stack) == 1)
         assert app.open_job is not None
         assert app.open_job.path == job_path.with_name("job-practice.toml")
-        assert any("what was measured stays out" in text for text in said(app))
     assert job_path.read_bytes() == before
     copy = load_job(job_path.with_name("job-practice.toml"))
     assert copy.recordings == copy.measured == ()
@@ -200,16 +220,10 @@ async def test_a_real_input_is_recorded_through_the_app(
                 await on_screen(pilot, SetupScreen)
                 screen = app.screen
                 assert isinstance(screen, SetupScreen)
-                for _ in range(100):
-                    await asyncio.sleep(0.1)
-                    if not screen.looking:
-                        break
+                await until(pilot, lambda: not screen.looking)
                 assert screen.inputs, screen.refused
                 await pilot.press("down", "g")
-                for _ in range(150):
-                    await pilot.pause(0.1)
-                    if len(app.screen_stack) == 1:
-                        break
+                await until(pilot, lambda: len(app.screen_stack) == 1)
                 await settled(pilot)
                 assert app.here == "running"
         finally:

@@ -20,8 +20,7 @@ from fieldkit.ui.capture.takes import Result, with_takes
 from fieldkit.ui.capture.wiring import Wiring
 from fieldkit.ui.widgets import SpectrumPlot
 from tests.ui import glycol
-from tests.ui.capturing import CHANNEL, Host, StepPace, play, rig
-from tests.ui.driving import until
+from tests.ui.capturing import CHANNEL, Host, StepPace, play, rig, until
 from tests.ui.job_text import JOB_TEXT
 
 WIRING = Wiring("running", rig_setups=(CHANNEL,), seconds=3.0, speeds_hz={"pump": 1480 / 60})

@@ -18,11 +18,12 @@ from fieldkit.errors import Refusal
 from fieldkit.ui.capture.bench import Bench
 from fieldkit.ui.capture.setup_screen import SetupScreen
 from fieldkit.ui.capture.wiring import LAST, Wiring
+from fieldkit.ui.dialogs import PickScreen
 from fieldkit.ui.forms import FormWindow
 from fieldkit.ui.table import Table
 from tests.ui import glycol
-from tests.ui.capturing import Host, StepPace
-from tests.ui.driving import SIZES, fill, until
+from tests.ui.capturing import Host, StepPace, on_screen, until
+from tests.ui.driving import SIZES, fill
 
 INTERFACE = Input(3, "Interface 2 in", "ALSA", 2, 48000, (44100, 48000, 96000), True)
 Lister = Callable[[], tuple[Input, ...]]
@@ -115,8 +116,7 @@ async def test_a_stuck_audio_system_keeps_nobody_waiting(tmp_path: Path) -> None
         await pilot.press("enter")
         await until(pilot, lambda: shown.rows("#channels")[0][2] == "50 mV/g")
         await pilot.press("escape")
-        await pilot.pause()
-        assert len(shown.app.screen_stack) == 1
+        await until(pilot, lambda: len(shown.app.screen_stack) == 1)
     free.set()
 
 
@@ -129,11 +129,10 @@ async def test_an_input_is_chosen_by_the_cursor_and_kept_for_the_next_visit(
         await shown.listed(pilot)
         assert shown.rows("#inputs")[1] == ["Interface 2 in", "2", "44.1 48 96", "ALSA, default"]
         await pilot.press("down")
-        await pilot.pause()
-        assert shown.screen.wiring.device == INTERFACE
+        await until(pilot, lambda: shown.screen.wiring.device == INTERFACE)
         assert shown.rows("#channels")[0][2] == "uncalibrated"
         await pilot.press("r")
-        await pilot.pause()
+        await on_screen(pilot, FormWindow)
         await fill(pilot, channels="2", rate="96 kHz")
         await pilot.press("enter")
         await until(pilot, lambda: len(shown.rows("#channels")) == 2)
@@ -148,14 +147,17 @@ async def test_a_rate_that_the_input_does_not_take_is_refused(tmp_path: Path) ->
     shown = Shown(tmp_path, lambda: (INTERFACE,))
     async with shown.app.run_test(size=(80, 24)) as pilot:
         await shown.listed(pilot)
-        await pilot.press("down", "r")
-        await pilot.pause()
+        await pilot.press("down")
+        await until(pilot, lambda: shown.screen.wiring.device == INTERFACE)
+        await pilot.press("r")
+        await on_screen(pilot, FormWindow)
         await fill(pilot, rate="50 kHz")
         await pilot.press("enter")
-        await pilot.pause()
-        assert isinstance(shown.app.screen, FormWindow)
-        says = str(shown.app.screen.query_one("#form-says", Static).render())
-        assert "choose one of 44.1, 48, 96 kHz" in says
+        window = shown.app.screen
+        assert isinstance(window, FormWindow)
+        says = window.query_one("#form-says", Static)
+        await until(pilot, lambda: "choose one of 44.1, 48, 96 kHz" in str(says.render()))
+        assert shown.app.screen is window
 
 
 async def test_the_last_set_up_comes_back(tmp_path: Path) -> None:
@@ -174,15 +176,15 @@ async def test_a_set_up_is_kept_and_taken_by_name(tmp_path: Path) -> None:
     async with shown.app.run_test(size=(80, 24)) as pilot:
         await shown.listed(pilot)
         await pilot.press("k")
-        await pilot.pause()
+        await on_screen(pilot, FormWindow)
         await fill(pilot, name="sensor A")
         await pilot.press("enter")
         await until(pilot, lambda: "sensor A" in shown.words("#setup-said"))
         assert list(presets(shown.presets)) == ["sensor A"]
         await pilot.press("p")
-        await pilot.pause()
+        await on_screen(pilot, PickScreen)
         await pilot.press("enter")
-        await pilot.pause()
+        await on_screen(pilot, SetupScreen)
         assert len(shown.app.screen_stack) == 2
 
 
@@ -192,7 +194,7 @@ async def test_length_and_speed_of_a_running_recording_are_typed(tmp_path: Path)
         await shown.listed(pilot)
         assert "60 s" in shown.words("#setup-said")
         await pilot.press("r")
-        await pilot.pause()
+        await on_screen(pilot, FormWindow)
         await fill(pilot, seconds="90", **{"speed of pump": "1480 rpm"})
         await pilot.press("enter")
         await until(pilot, lambda: "90 s, pump 1480 rpm" in shown.words("#setup-said"))

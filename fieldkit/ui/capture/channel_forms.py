@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from fieldkit.capture.setup import CAPTURED, ChannelSetup
+from fieldkit.capture.setup import CAPTURED, FORCE, ChannelSetup
 from fieldkit.errors import InputError
 from fieldkit.quantity import parse
 from fieldkit.ui.capture.wiring import Wiring
@@ -62,6 +62,7 @@ CHANNEL = Form(
     ),
 )
 PLACE = Form("recording", "Next", (_known("direction"), _known("at")))
+OTHER_WAY = {"vertical": "lateral", "lateral": "vertical"}
 REFERENCE = Form(
     "recording",
     "Reference shaker",
@@ -80,6 +81,38 @@ def setup_with(setup: ChannelSetup, values: Mapping[str, str]) -> ChannelSetup:
     if "quantity" in changed:
         changed["quantity"] = changed["quantity"] or "acceleration"
     return replace(setup, **changed)  # type: ignore[arg-type]
+
+
+def place_form(channels: Sequence[ChannelSetup]) -> tuple[Form, dict[str, str]]:
+    """What is asked where the sensors go elsewhere, and what it starts with.
+
+    A single sensor may be turned too, the other way is offered; of several only the stations.
+    """
+    sensors = [(i, setup) for i, setup in enumerate(channels) if setup.quantity != FORCE]
+    if len(sensors) == 1:
+        setup = sensors[0][1]
+        way = OTHER_WAY.get(setup.direction or "", "vertical")
+        return PLACE, texts_of(replace(setup, direction=way))
+    if len({setup.at for _, setup in sensors}) == 1:
+        at = sensors[0][1].at
+        form = Form("recording", "Next", (_known("at"),))
+        return form, {"at": at} if at else {}
+    fields = [
+        replace(_known("at"), key=f"at {i}", label=f"{i + 1} {setup.direction or ''} at".strip())
+        for i, setup in sensors
+    ]
+    texts = {f"at {i}": setup.at for i, setup in sensors if setup.at}
+    return Form("recording", "Next", tuple(fields)), texts
+
+
+def placed(channels: Sequence[ChannelSetup], values: Mapping[str, str]) -> tuple[ChannelSetup, ...]:
+    """The channels with what was typed into that form; raises InputError."""
+    out = []
+    for i, setup in enumerate(channels):
+        at = values.get(f"at {i}", values.get("at", ""))
+        typed = {"at": at} | {key: values[key] for key in ("direction",) if key in values}
+        out.append(setup if setup.quantity == FORCE else setup_with(setup, typed))
+    return tuple(out)
 
 
 def recording_form(wiring: Wiring, job: Job) -> Form:

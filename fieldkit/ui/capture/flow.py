@@ -58,11 +58,13 @@ async def measure(app: Measuring, kind: str, bench: Bench) -> None:
         if not await _kept_apart(app, wiring):
             continue
         result = await app.push_screen_wait(_live(app, wiring, bench))
-        if result.again:
+        if result.again and not result.quits:
             if result.trouble:
                 app.tell(result.trouble, wrong=True)
             continue
         _finish(app, wiring, result)
+        if result.quits:
+            app.action_quit()
         return
 
 

@@ -15,7 +15,7 @@ from fieldkit.errors import FieldkitError
 from fieldkit.job.recorded import next_recording
 from fieldkit.ui.capture.channel_forms import machines
 from fieldkit.ui.capture.takes import Take, remove_empty
-from fieldkit.ui.capture.wiring import Wiring, judged_channel, source_of
+from fieldkit.ui.capture.wiring import Wiring, ears_of, source_of
 
 if TYPE_CHECKING:
     from fieldkit.capture.source import Source
@@ -72,7 +72,7 @@ class RunningRun:
         self._path = next_recording(job_path, "running")
         self._asked = False
         self._trouble = ""
-        self._shown = judged_channel(channels)
+        self._shown = ears_of(channels)[0].channel
         setup = channels[self._shown]
         self._orders = _order_lines(wiring, job)
         top_hz = max([job.goal.up_to_hz, *(_OVER * hz for _, hz in self._orders)])

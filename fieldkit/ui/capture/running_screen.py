@@ -5,7 +5,6 @@ from __future__ import annotations
 from collections.abc import Sequence
 from typing import TYPE_CHECKING, ClassVar
 
-from textual import work
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal
@@ -14,11 +13,9 @@ from textual.widgets import Footer
 
 from fieldkit.capture.snapshot import ENDED, OPENING, PAUSED, WAITING
 from fieldkit.ui.capture.level_meter import meter_line
-from fieldkit.ui.capture.live_screen import Begin, LiveScreen
+from fieldkit.ui.capture.live_screen import LEAVING_KEYS, Begin, LiveScreen
 from fieldkit.ui.capture.running_run import RunningRun
 from fieldkit.ui.capture.tap_words import BAD, CALM, GO, GOOD
-from fieldkit.ui.commands import help_text
-from fieldkit.ui.dialogs import AskScreen, TextScreen
 from fieldkit.ui.units import AMPLITUDES, level
 from fieldkit.ui.views.base import plain
 from fieldkit.ui.widgets import BandShade, Curve, Mark, SpectrumPlot
@@ -27,8 +24,6 @@ from fieldkit.ui.words import seconds, sentence
 if TYPE_CHECKING:
     from fieldkit.ui.capture.running_run import RunningLook
 
-TITLE = "Running recording"
-LEAVING = (("keep", "Keep it so far"), ("leave", "Leave, job unchanged"), ("back", "Go on"))
 _WORDS = {
     OPENING: ("one moment", "Opening the input.", CALM),
     WAITING: ("input gone", "Plug it in again: it goes on by itself, the gap is marked.", BAD),
@@ -40,13 +35,13 @@ _LEAST_S = 1.0
 class RunningScreen(LiveScreen[RunningRun]):
     """Records for its length, then keeps it by itself."""
 
+    TITLE = "Running recording"
+    KEEP = "Keep it so far"
+    GO_ON = "Go on"
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("s,enter", "keep", "Stop and keep", key_display="s", id="recording.keep",
                 tooltip="Stop now, and add what was recorded to the job"),
-        Binding("question_mark", "help", "Keys", key_display="?", id="recording.help",
-                tooltip="List these keys"),
-        Binding("escape", "leave", "Leave", priority=True, id="recording.leave",
-                tooltip="Leave; the recording stays on the disk"),
+        *LEAVING_KEYS,
     ]  # fmt: skip
 
     def __init__(
@@ -77,7 +72,7 @@ class RunningScreen(LiveScreen[RunningRun]):
         if self.adding is not None:
             self.say_big("saving", CALM)
             return
-        title = f"{TITLE}  {self.job_title}"
+        title = f"{self.TITLE}  {self.job_title}"
         if self.run is None:
             self.say("#live-title", self.title_line(title, False))
             self.say_big("not now" if self.refused else "one moment",
@@ -127,28 +122,13 @@ class RunningScreen(LiveScreen[RunningRun]):
             return
         self.end(add=True)
 
-    @work
-    async def action_leave(self) -> None:
-        """Leave; asks where something would not reach the job."""
-        if self.run is None or self._seconds < _LEAST_S:
-            self.end(add=False)
-            return
-        question = (
-            f"{seconds(self._seconds)} would not reach the job. The recording stays on the disk "
-            "either way."
-        )
-        answer = await self.app.push_screen_wait(AskScreen(question, LEAVING))
-        if answer != "back":
-            self.end(add=answer == "keep")
+    def unsaved(self) -> str:
+        """What leaving would keep from the job."""
+        return seconds(self._seconds) if self._seconds >= _LEAST_S else ""
 
     @property
     def _seconds(self) -> float:
         return self.run.look().done_s if self.run else 0.0
-
-    def action_help(self) -> None:
-        """List every key."""
-        plot = ("In the spectrum", self.query_one("#live-spectrum", SpectrumPlot).BINDINGS)
-        self.app.push_screen(TextScreen("Keys", help_text([(TITLE, self.BINDINGS), plot])))
 
 
 def headline(look: RunningLook) -> tuple[str, str, str]:

@@ -26,7 +26,7 @@ from fieldkit.ui.capture.channel_forms import (
     texts_of,
     wiring_with,
 )
-from fieldkit.ui.capture.wiring import LAST, Wiring, judged_channel
+from fieldkit.ui.capture.wiring import LAST, Wiring, ears_of
 from fieldkit.ui.commands import help_text
 from fieldkit.ui.dialogs import PickScreen, TextScreen
 from fieldkit.ui.forms import Form, FormWindow, Values
@@ -149,7 +149,7 @@ class SetupScreen(ModalScreen[Wiring | None]):
     def _objection(self) -> str:
         """Why this set-up cannot begin."""
         try:
-            judged_channel(self.wiring.channels(self.job))
+            ears_of(self.wiring.channels(self.job))
         except FieldkitError as error:
             return str(error)
         return ""

@@ -46,6 +46,8 @@ class Result:
     """Whether to go back to the set-up."""
     trouble: str = ""
     """What ended it early, one sentence."""
+    quits: bool = False
+    """Whether the app is to end too."""
 
     @property
     def useful(self) -> tuple[Take, ...]:

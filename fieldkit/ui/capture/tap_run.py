@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from fieldkit.capture.guide import GuideSnapshot, Place
+from fieldkit.capture.guide_snapshot import GuideSnapshot
 from fieldkit.capture.guided_test import GuidedTest
 from fieldkit.capture.live import LivePicture, LiveSpectrum
 from fieldkit.capture.practice import PracticeSource
@@ -21,7 +21,7 @@ from fieldkit.capture.snapshot import RUNNING, Snapshot
 from fieldkit.errors import FieldkitError
 from fieldkit.job.recorded import next_recording
 from fieldkit.ui.capture.takes import Take, remove_empty
-from fieldkit.ui.capture.wiring import Wiring, judged_channel, source_of
+from fieldkit.ui.capture.wiring import Wiring, ears_of, hammer_of, source_of
 from fieldkit.workup.expected import expected_modes
 
 if TYPE_CHECKING:
@@ -51,8 +51,8 @@ class TapLook:
     guide: GuideSnapshot
     picture: LivePicture | None
     channels: tuple[ChannelSetup, ...]
-    judged: int
-    """The channel that is judged, from 0."""
+    heard: int = 0
+    """The channel whose spectrum it is, from 0."""
     trouble: str = ""
     """Why nothing is written, one sentence."""
 
@@ -73,30 +73,33 @@ class TapRun:
         self._source = source
         self._job_path = job_path
         self._channels = channels
-        self._judged = judged_channel(channels)
         self._takes: list[Take] = []
         self._trouble = ""
         self._machine = False
-        setup = channels[self._judged]
+        ears = ears_of(channels)
         self.session = Session(source, keep_s=_KEPT_S)
         self._guide = GuidedTest(
             rate_hz=source.rate_hz,
-            place=Place(setup.direction, setup.at_m),
-            channel=self._judged,
+            ears=ears,
+            hammer=hammer_of(channels),
             directions=DIRECTIONS,
             up_to_hz=up_to_hz,
-            expected=self._expected.get(setup.direction, ()),
+            expected=self._expected.get(ears[0].place.direction, ()),
             mark=self.session.set_aside,
         )
-        self._live = LiveSpectrum(
-            rate_hz=source.rate_hz,
-            channel=self._judged,
-            top_hz=up_to_hz,
-            quantity=setup.quantity,
-            scale=setup.si_per_unit,
-        )
+        self._live = {
+            ear.channel: LiveSpectrum(
+                rate_hz=source.rate_hz,
+                channel=ear.channel,
+                top_hz=up_to_hz,
+                quantity=channels[ear.channel].quantity,
+                scale=channels[ear.channel].si_per_unit,
+            )
+            for ear in ears
+        }
         self.session.add(self._guide)
-        self.session.add(self._live)
+        for live in self._live.values():
+            self.session.add(live)
         self.session.start()
 
     @classmethod
@@ -118,17 +121,13 @@ class TapRun:
         shot = self.session.snapshot()
         if shot.state == RUNNING and not self._takes and not self._trouble:
             self._record(_KEPT_S)
-        return TapLook(
-            shot,
-            self._guide.snapshot(),
-            self._live.picture,
-            self._channels,
-            self._judged,
-            self._trouble,
-        )
+        guide = self._guide.snapshot()
+        heard = next(ear.channel for ear in guide.ears if ear.place == guide.wanted)
+        return TapLook(shot, guide, self._live[heard].picture, self._channels, heard, self._trouble)
 
     def strike(self, fault: str = "", strength: float = 1.0) -> bool:
-        """Strike the practice rig, or do one of FAULTS to it; False where there is none."""
+        """Strike the practice rig as it is asked for, or do one of FAULTS to it; False where there
+        is none."""
         rig = self._source
         if not isinstance(rig, PracticeSource):
             return False
@@ -138,7 +137,7 @@ class TapRun:
             rig.machine(on=not self._machine)
             self._machine = not self._machine
         else:
-            rig.tap(strength, fault=fault)
+            rig.tap(strength, fault=fault, direction=self._guide.snapshot().wanted.direction)
         return True
 
     def undo(self) -> bool:
@@ -168,27 +167,27 @@ class TapRun:
         self.session.resume()
 
     @property
-    def setup(self) -> ChannelSetup:
-        """Of the channel that is judged."""
-        return self._channels[self._judged]
+    def channels(self) -> tuple[ChannelSetup, ...]:
+        """As they are wired and placed now."""
+        return self._channels
 
-    def move_to(self, setup: ChannelSetup) -> None:
-        """Go on with the judged sensor elsewhere, in a recording of its own."""
-        channels = list(self._channels)
-        channels[self._judged] = setup
-        self._channels = tuple(channels)
+    def move_to(self, channels: tuple[ChannelSetup, ...]) -> None:
+        """Go on with the sensors elsewhere, in a recording of its own."""
+        self._channels = channels
+        ears = ears_of(channels)
         rig = self._source
         if isinstance(rig, PracticeSource):
             sensors = list(rig.sensors)
-            at_m = sensors[self._judged].at_m if setup.at_m is None else setup.at_m
-            sensors[self._judged] = replace(
-                sensors[self._judged], at_m=at_m, direction=setup.direction or "vertical"
-            )
+            for ear in ears:
+                before = sensors[ear.channel]
+                sensors[ear.channel] = replace(
+                    before,
+                    at_m=before.at_m if ear.place.at_m is None else ear.place.at_m,
+                    direction=ear.place.direction or before.direction,
+                )
             rig.move(sensors, rig.struck_m)
         self._record(0.0)
-        self._guide.move_to(
-            Place(setup.direction, setup.at_m), self._expected.get(setup.direction, ())
-        )
+        self._guide.move_to(ears, self._expected.get(ears[0].place.direction, ()))
         self._guide.listen_anew()
 
     def stop(self) -> None:

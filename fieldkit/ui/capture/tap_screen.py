@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import replace
 from typing import TYPE_CHECKING, ClassVar
 
 import numpy as np
@@ -16,13 +15,11 @@ from textual.widgets import Footer
 
 from fieldkit.errors import FieldkitError
 from fieldkit.ui.capture import tap_words as words
-from fieldkit.ui.capture.channel_forms import PLACE, setup_with, texts_of
+from fieldkit.ui.capture.channel_forms import place_form, placed
 from fieldkit.ui.capture.level_meter import meter_line
-from fieldkit.ui.capture.live_screen import Begin, LiveScreen
-from fieldkit.ui.capture.takes import Result
+from fieldkit.ui.capture.live_screen import LEAVING_KEYS, Begin, LiveScreen
 from fieldkit.ui.capture.tap_run import FAULTS, TapRun
-from fieldkit.ui.commands import help_text
-from fieldkit.ui.dialogs import AskScreen, PickScreen, TextScreen
+from fieldkit.ui.dialogs import PickScreen
 from fieldkit.ui.forms import FormWindow, Values
 from fieldkit.ui.plots import mode_marks, spectrum_curve, unit_of
 from fieldkit.ui.units import AMPLITUDES
@@ -34,18 +31,15 @@ if TYPE_CHECKING:
     from fieldkit.capture.guide import Blow
     from fieldkit.ui.capture.tap_run import TapLook
 
-TITLE = "Guided tap test"
-LEAVING = (
-    ("keep", "Stop and keep"),
-    ("leave", "Leave, job unchanged"),
-    ("back", "Go on tapping"),
-)
 NO_RIG = "Space strikes the practice rig; here the pipe is real: strike it with the hammer."
 
 
 class TapScreen(LiveScreen[TapRun]):
     """Blow by blow to modes that can be believed."""
 
+    TITLE = "Guided tap test"
+    KEEP = "Stop and keep"
+    GO_ON = "Go on tapping"
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("space,enter", "strike", "Tap", key_display="space", id="guided.strike",
                 tooltip="Strike the practice rig (enter does too)"),
@@ -63,10 +57,7 @@ class TapScreen(LiveScreen[TapRun]):
                 tooltip="Spectrum of the latest blow instead of its decay, or back"),
         Binding("s", "keep", "Keep", id="guided.keep",
                 tooltip="Stop, and add what was recorded to the job"),
-        Binding("question_mark", "help", "Keys", show=False, id="guided.help",
-                tooltip="List these keys"),
-        Binding("escape", "leave", "Leave", priority=True, id="guided.leave",
-                tooltip="Leave; the recording stays on the disk"),
+        *LEAVING_KEYS,
     ]  # fmt: skip
 
     def __init__(
@@ -76,7 +67,8 @@ class TapScreen(LiveScreen[TapRun]):
         self.job_title = job_title
         self.units = units
         self.bands = tuple(bands)
-        self._picture = self._blow = 0
+        self._picture = (0, 0)
+        self._blow = 0
         self._verdict_frame = self._news_frame = 0
         self._news = ""
 
@@ -117,7 +109,7 @@ class TapScreen(LiveScreen[TapRun]):
         self._draw_blow(look)
 
     def _say_not_begun(self) -> None:
-        self.say("#live-title", self.title_line(f"{TITLE}  {self.job_title}", False))
+        self.say("#live-title", self.title_line(f"{self.TITLE}  {self.job_title}", False))
         self.say_big("not now" if self.refused else "one moment",
                      words.BAD if self.refused else words.CALM)  # fmt: skip
         self.say("#now", self.refused or "Getting the input ready.")
@@ -129,8 +121,8 @@ class TapScreen(LiveScreen[TapRun]):
             self._verdict_frame = look.session.frames
         age_s = (look.session.frames - self._verdict_frame) / look.session.rate_hz
         large, below, tone = words.headline(look, age_s if number else np.inf)
-        self.say("#live-title",
-                 self.title_line(f"{TITLE}  {self.job_title}", look.session.simulated))  # fmt: skip
+        title = f"{self.TITLE}  {self.job_title}"
+        self.say("#live-title", self.title_line(title, look.session.simulated))
         self.say_big(large, tone)
         self.say("#side", "\n".join(words.side_lines(look)))
         self.say("#now", below)
@@ -143,25 +135,25 @@ class TapScreen(LiveScreen[TapRun]):
         self.say("#live-modes", "\n".join(words.mode_lines(look.guide, rows)))
 
     def _say_levels(self, look: TapLook) -> None:
-        threshold = look.guide.threshold.size if look.guide.threshold else None
+        sizes = [threshold.size for threshold in look.guide.thresholds]
+        passed = dict(zip([ear.channel for ear in look.guide.ears], sizes, strict=False))
         width = self.size.width - 2
         lines = []
         for index, level in enumerate(look.session.levels):
             setup = look.channels[index]
             what = setup.direction or setup.quantity
-            mine = threshold if index == look.judged else None
-            lines.append(meter_line(level, f"{index + 1} {what}", width, mine))
+            lines.append(meter_line(level, f"{index + 1} {what}", width, passed.get(index)))
         self.say("#meters", Content("\n").join(lines))
 
     def _draw_live(self, look: TapLook) -> None:
         picture = look.picture
-        if picture is None or picture.number == self._picture:
+        if picture is None or (look.heard, picture.number) == self._picture:
             return
-        self._picture = picture.number
+        self._picture = (look.heard, picture.number)
         factor, unit = AMPLITUDES.get(picture.unit, (1.0, picture.unit))
         estimate = look.guide.estimate
         self.query_one("#live-spectrum", SpectrumPlot).show(
-            (Curve(picture.frequency_hz, factor * picture.now, "live"),),
+            (Curve(picture.frequency_hz, factor * picture.now, words.heard(look)),),
             mode_marks(estimate.modes) if estimate else (),
             self.bands,
             amplitude_unit=f"{unit} rms",
@@ -231,37 +223,29 @@ class TapScreen(LiveScreen[TapRun]):
         if run is None or self.adding is not None:
             return
         run.hands_on()
-        before = run.setup
-        offered = replace(before, direction=self._direction_after(before.direction))
+        before = run.channels
+        form, texts = place_form(before)
         title = "Move sensor and hammer, then enter: nothing is recorded meanwhile"
 
         def objection(values: Values) -> str:
             try:
-                setup_with(offered, values)
+                placed(before, texts | values)
             except FieldkitError as error:
                 return str(error)
             return ""
 
         values = await self.app.push_screen_wait(
-            FormWindow(PLACE, title, texts_of(offered), self.units, objection)
+            FormWindow(form, title, texts, self.units, objection)
         )
         if values is not None:
-            moved = setup_with(offered, values)
-            if (moved.direction, moved.at) != (before.direction, before.at):
+            moved = placed(before, texts | values)
+            if moved != before:
                 run.move_to(moved)
         run.hands_off()
-
-    def _direction_after(self, direction: str | None) -> str:
-        return "lateral" if direction == "vertical" else "vertical"
 
     def action_other_plot(self) -> None:
         """Decay or spectrum of the latest blow."""
         self.toggle_class("-after")
-
-    def action_help(self) -> None:
-        """List every key."""
-        plot = ("In the spectrum", self.query_one("#live-spectrum", SpectrumPlot).BINDINGS)
-        self.app.push_screen(TextScreen("Keys", help_text([(TITLE, self.BINDINGS), plot])))
 
     def action_keep(self) -> None:
         """Stop, and let the job have it."""
@@ -270,22 +254,9 @@ class TapScreen(LiveScreen[TapRun]):
             return
         self.end(add=True)
 
-    @work
-    async def action_leave(self) -> None:
-        """Leave; asks where blows would not reach the job."""
-        if self.run is None:
-            self.dismiss(Result(again=True))
-            return
-        if self._good == 0:
-            self.end(add=False)
-            return
-        question = (
-            f"{count(self._good, 'usable blow')} would not reach the job. The recording stays on "
-            "the disk either way."
-        )
-        answer = await self.app.push_screen_wait(AskScreen(question, LEAVING))
-        if answer != "back":
-            self.end(add=answer == "keep")
+    def unsaved(self) -> str:
+        """What leaving would keep from the job."""
+        return count(self._good, "usable blow") if self._good else ""
 
     @property
     def _good(self) -> int:

@@ -2,19 +2,24 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from fieldkit.capture import blow as verdicts
+from fieldkit.capture import verdict as verdicts
 from fieldkit.capture.guide import READING
 from fieldkit.capture.meter import decibels
+from fieldkit.capture.places import together
 from fieldkit.capture.snapshot import ENDED, OPENING, PAUSED, RUNNING, WAITING
 from fieldkit.capture.trigger import ARMED, LISTENING, RECORDING
 from fieldkit.ui.plots import SHORT, mode_cells
 from fieldkit.ui.words import count, sentence
 
 if TYPE_CHECKING:
-    from fieldkit.capture.guide import Blow, GuideSnapshot
+    from fieldkit.capture.guide import Blow
+    from fieldkit.capture.guide_snapshot import GuideSnapshot
+    from fieldkit.capture.places import Place
     from fieldkit.capture.snapshot import Snapshot
+    from fieldkit.signal.modes import MeasuredMode
     from fieldkit.ui.capture.tap_run import TapLook
 
 VERDICT_S = 1.5
@@ -33,6 +38,8 @@ _VERDICTS = {
     verdicts.MACHINE: "too loud",
     verdicts.GAP: "frames lost",
     verdicts.NO_BLOW: "no blow",
+    verdicts.NO_FORCE: "no force",
+    verdicts.REFUSED: "not usable",
 }
 _SESSION = {
     OPENING: ("one moment", "Opening the input.", CALM),
@@ -41,6 +48,7 @@ _SESSION = {
     PAUSED: ("paused", "What comes now is not recorded.", CALM),
 }
 _TOO_LOUD = 0.5
+_CORNER = 30
 
 
 def headline(look: TapLook, verdict_age_s: float) -> tuple[str, str, str]:
@@ -63,30 +71,52 @@ def _phase(guide: GuideSnapshot) -> tuple[str, str, str]:
         return "ringing", f"Keep away, touch nothing:{rung} {guide.record_s:.1f} s at most.", CALM
     if guide.phase == READING:
         return "judging", "Reading the blow.", CALM
-    if guide.threshold is not None and guide.threshold.size > _TOO_LOUD:
+    if guide.loudest > _TOO_LOUD:
         return "too loud", "Stop the machine, or lower the input level.", BAD
     if guide.phase == ARMED and guide.worth.more == 0 and not guide.estimating:
         return "enough", "d goes to the next direction or place, s keeps it all.", GOOD
     if guide.phase == ARMED:
-        return "tap now", f"Strike once, then let it ring.{_armed_at(guide)}", GO
+        return "tap now", f"{_strike(guide)}{_armed_at(guide)}", GO
     return "wait", "Until it is quiet again.", CALM
+
+
+def _strike(guide: GuideSnapshot) -> str:
+    way = guide.wanted.direction
+    which = f" {way}" if way and len(guide.ears) > 1 else ""
+    return f"Strike once{which}, then let it ring."
 
 
 def _armed_at(guide: GuideSnapshot) -> str:
     """Where the line in the level meter stands."""
-    if guide.threshold is None:
-        return ""
-    return f" Armed at ┊ {decibels(guide.threshold.size):.0f} dB."
+    if len(guide.thresholds) != 1:
+        return " Armed at ┊." if guide.thresholds else ""
+    return f" Armed at ┊ {decibels(guide.loudest):.0f} dB."
+
+
+def heard(look: TapLook) -> str:
+    """Whose spectrum is shown."""
+    if len(look.guide.ears) == 1:
+        return "live"
+    return f"live {look.heard + 1} {look.channels[look.heard].direction or ''}".rstrip()
 
 
 def side_lines(look: TapLook) -> list[str]:
     """Place and counts, three lines."""
     guide = look.guide
-    good = sum(1 for blow in guide.blows if blow.counts and blow.place == guide.place)
-    here = sum(1 for blow in guide.blows if blow.place == guide.place)
+    here = [blow for blow in guide.blows if blow.places == guide.places]
+    good = sum(blow.counts for blow in here)
     more = guide.worth.more
     worth = "no more needed" if more == 0 and good else f"{count(more, 'more blow')} worth it"
-    return [str(guide.place), f"{good} good of {count(here, 'blow')}", worth]
+    return [_site(guide.places), f"{good} good of {count(len(here), 'blow')}", worth]
+
+
+def _site(places: tuple[Place, ...]) -> str:
+    """Where the sensors sit, in what the corner of a narrow screen holds."""
+    long = together(places)
+    if len(long) <= _CORNER:
+        return long
+    short = [replace(place, direction=SHORT.get(place.direction or "")) for place in places]
+    return together(short)[:_CORNER]
 
 
 def told(look: TapLook, news_age_s: float = 0.0) -> list[str]:
@@ -101,7 +131,18 @@ def told(look: TapLook, news_age_s: float = 0.0) -> list[str]:
     wrong = look.trouble or news or look.guide.notice
     if wrong and not running:
         return [f"! {sentence(wrong)}"]
-    return [first, f"! {sentence(wrong)}" if wrong else f"Next: {look.guide.advice}"]
+    then = f"! {sentence(wrong)}" if wrong else f"Next: {look.guide.advice}"
+    return [first, then, *_response(look.guide)]
+
+
+def _response(guide: GuideSnapshot) -> list[str]:
+    """How good the response to the hammer is so far, one line."""
+    state = guide.response
+    if state is None or not state.coherence:
+        return []
+    hz, least = min(state.coherence, key=lambda pair: pair[1])
+    reach = "" if state.reaches_hz is None else f"; the force reaches {state.reaches_hz:.0f} Hz"
+    return [f"Response of {state.blows} blows: least coherence {least:.2f}, at {hz:.1f} Hz{reach}."]
 
 
 def _news(session: Snapshot) -> str:
@@ -118,7 +159,8 @@ def _result(blow: Blow) -> str:
     if blow.set_aside:
         return "Set aside by you; U takes it in again."
     if verdict.usable:
-        return "Usable."
+        remark = blow.joint.remark if blow.joint else ""
+        return f"Usable. {sentence(remark)}".strip()
     return f"{sentence(verdict.what)} {sentence(verdict.change)}"
 
 
@@ -130,11 +172,18 @@ def blow_lines(guide: GuideSnapshot, rows: int) -> list[str]:
     """Every blow with its verdict, the latest first, as many as fit."""
     lines = [
         f"{blow.number:3} {_glyph(blow)} "
-        f"{SHORT.get(blow.place.direction or '', '?'):4} "
+        f"{_struck_way(blow):4} "
         f"{'set aside' if blow.set_aside else blow.verdict.kind}"
         for blow in reversed(guide.blows)
     ]
     return _fitting(["blows", *lines], rows)
+
+
+def _struck_way(blow: Blow) -> str:
+    """Where it was struck for, or of what did not count, where it was to be heard."""
+    places = blow.rang or blow.places
+    ways = [SHORT.get(place.direction or "", place.direction or "?") for place in places]
+    return ways[0] if len(ways) == 1 else "+".join(way[0] for way in ways)
 
 
 def mode_lines(guide: GuideSnapshot, rows: int) -> list[str]:
@@ -143,9 +192,17 @@ def mode_lines(guide: GuideSnapshot, rows: int) -> list[str]:
     if estimate is None or not (estimate.modes or estimate.warnings):
         return ["modes Hz, damping %", "  none yet" if not guide.estimating else "  reading ..."]
     head = f"modes from {count(guide.estimated_from, 'blow')}: Hz, %"
-    lines = [f"{hz:>14}  {damping}" for hz, damping in map(mode_cells, estimate.modes)]
+    several = len(guide.ears) > 1
+    lines = [_mode_line(mode, several) for mode in estimate.modes]
     lines += [sentence(warning) for warning in estimate.warnings if not estimate.modes]
     return _fitting([head, *lines], rows)
+
+
+def _mode_line(mode: MeasuredMode, several: bool) -> str:
+    hz, damping = mode_cells(mode)
+    if not several:
+        return f"{hz:>14}  {damping}"
+    return f"{SHORT.get(mode.direction or '', mode.direction or '?'):4} {hz:>12} {damping}"
 
 
 def _fitting(lines: list[str], rows: int) -> list[str]:

@@ -6,6 +6,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING
 
+from fieldkit.capture.places import Ear, Place
 from fieldkit.capture.setup import FORCE, ChannelSetup
 from fieldkit.errors import InputError
 
@@ -101,12 +102,24 @@ class Wiring:
         return found.on(device)._with_typed(preset.channels)
 
 
-def judged_channel(channels: Sequence[ChannelSetup]) -> int:
-    """The first that is no hammer; raises InputError where there is none."""
-    for index, setup in enumerate(channels):
-        if setup.quantity != FORCE:
-            return index
-    raise InputError("every channel is a hammer's", "connect a sensor to one of them")
+def ears_of(channels: Sequence[ChannelSetup]) -> tuple[Ear, ...]:
+    """The channels that hear the response; raises InputError where there is none."""
+    heard = [(i, setup) for i, setup in enumerate(channels) if setup.quantity != FORCE]
+    if not heard:
+        raise InputError("every channel is a hammer's", "connect a sensor to one of them")
+    alike = len({setup.quantity for _, setup in heard}) == 1
+    scales = [setup.si_per_unit for _, setup in heard]
+    if not alike or None in scales:
+        scales = [1.0] * len(heard)
+    return tuple(
+        Ear(i, Place(setup.direction, setup.at_m), scale or 1.0)
+        for (i, setup), scale in zip(heard, scales, strict=True)
+    )
+
+
+def hammer_of(channels: Sequence[ChannelSetup]) -> int | None:
+    """The channel of the hammer's force, from 0."""
+    return next((i for i, setup in enumerate(channels) if setup.quantity == FORCE), None)
 
 
 def source_of(job: Job, wiring: Wiring, bench: Bench) -> Source | PracticeSource:
