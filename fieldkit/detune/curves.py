@@ -192,7 +192,7 @@ def _place(search: Search, part: Change, steps: int) -> Varied | None:
         thing = "support" if isinstance(part, AddSupport) else "added mass"
         low, high = _inside(search, 0.0, search.span.length_m)
         value, drawn = _with_drawn(np.linspace(low, high, steps), part.at_m)
-        changes = tuple(replace(part, at_m=x) for x in value.tolist())
+        changes: tuple[Change, ...] = tuple(replace(part, at_m=x) for x in value.tolist())
         return Varied("place", f"place of the new {thing}", value, changes, drawn)
     if isinstance(part, MoveSupport | MoveMass):
         low, high = 0.0, search.span.length_m
@@ -234,7 +234,7 @@ def _mass(search: Search, part: Change, steps: int) -> Varied | None:
     if isinstance(part, AddMass):
         top = max(float(search.mass_levels()[-1]), 1.5 * part.mass_kg)
         value, drawn = _with_drawn(np.linspace(top / steps, top, steps), part.mass_kg)
-        changes = tuple(replace(part, mass_kg=kg) for kg in value.tolist())
+        changes: tuple[Change, ...] = tuple(replace(part, mass_kg=kg) for kg in value.tolist())
         return Varied("mass", "mass clamped on", value, changes, drawn)
     if isinstance(part, SetMass):
         own = search.span.masses[part.index]

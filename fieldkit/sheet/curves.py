@@ -82,11 +82,10 @@ def read_out(found: FixCurve, i: int, units: str) -> str:
     drawn = found.varied.drawn
     if i == drawn:
         return f"{said} (as drawn)"
-    was = f"{value_text(found, drawn, units)}, {percent(float(found.chance[drawn]))}"
-    return f"{said} (drawn: {was})"
+    return f"{said} (drawn: {percent(float(found.chance[drawn]))})"
 
 
-def modes_text(found: FixCurve, i: int, most: int = 6) -> str:
+def modes_text(found: FixCurve, i: int, most: int = 4) -> str:
     """The modes at a value, each with its doubt, and ``!`` where one is likely in a band."""
     return " · ".join(
         f"{number}{'' if mode.chance_clear >= found.wanted else '!'} {mode.median_hz:.1f} "

@@ -33,6 +33,8 @@ class DetuneView(View):
                 tooltip="Write the chosen change into the job, after asking"),
         Binding("m", "map", "Map", id="detune.map",
                 tooltip="The chance of every place and size of a new support or mass"),
+        Binding("c", "curves", "Curves", id="detune.curves",
+                tooltip="Modes and chance as the chosen change is moved, stiffer or heavier"),
         Binding("i", "install", "Install", key_display="enter", id="detune.install",
                 tooltip="What it takes to install the chosen change (enter or i)"),
     ]  # fmt: skip
@@ -101,6 +103,16 @@ class DetuneView(View):
             self.notify("The map comes with the ranked changes.", severity="warning")
             return
         self.app.push_screen(ChanceScreen(self.desk.job, work.match), self._from_map)
+
+    def action_curves(self) -> None:
+        """The curves of the chosen change; a value taken from them goes the way of any change."""
+        from fieldkit.ui.curve_screen import CurveScreen
+
+        work = self.desk.workup
+        if self.desk.job is None or work is None or self.chosen is None:
+            self.notify("No change is chosen.", severity="warning")
+            return
+        self.app.push_screen(CurveScreen(self.desk.job, work.match, self.chosen), self._from_map)
 
     def _from_map(self, verdict: Verdict | None) -> None:
         if verdict is not None:
