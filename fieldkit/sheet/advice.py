@@ -35,6 +35,11 @@ def _wrapped(sentences: Sequence[str]) -> list[str]:
 
 def resonance(workup: Workup) -> list[str]:
     """Whether modes lie where the machine shakes, in sentences."""
+    return [*reached(workup), *_running_lines(workup)]
+
+
+def reached(workup: Workup) -> list[str]:
+    """Which computed modes lie in a band, and the chance that none does."""
     detuning = workup.detuning
     if detuning is None:
         return reasons(workup, "detune", "cannot be said")
@@ -52,7 +57,7 @@ def resonance(workup: Workup) -> list[str]:
     ]
     said = said or ["No computed mode is more likely in a band than out of it."]
     said.append(f"Chance that every mode is clear now: {percent(detuning.chance_now)}.")
-    return said + _running_lines(workup)
+    return said
 
 
 def _running_lines(workup: Workup) -> list[str]:

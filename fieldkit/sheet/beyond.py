@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, field
 from typing import TypeVar
 
 from fieldkit.detune.install import Installation
+from fieldkit.detune.verdict import Verdict
 from fieldkit.errors import InputError, Refusal
 from fieldkit.progress import Progress
 from fieldkit.sheet.basis import Basis
@@ -19,6 +20,14 @@ Found = TypeVar("Found")
 
 DETAILED = 3
 """Changes told with their installation; the others stand in a table."""
+
+
+def detailed(fixes: Sequence[Verdict]) -> list[Verdict]:
+    """The first change, then the best of other kinds, then whatever comes next; in rank."""
+    firsts = {fix.kind: fix for fix in reversed(fixes)}.values()
+    others = sorted(firsts, key=lambda fix: fix.rank)
+    chosen = [*others, *(fix for fix in fixes if fix not in others)][:DETAILED]
+    return sorted(chosen, key=lambda fix: fix.rank)
 
 
 @dataclass(frozen=True)
@@ -43,7 +52,7 @@ class Results:
 def results(work: Workup, basis: Basis, progress: Progress | None = None) -> Results:
     """Work out what else the sheet says; a part that cannot be had is missing with its reason."""
     tries = _Tries(progress or Progress(), [])
-    fixes = work.detuning.fixes[:DETAILED] if work.detuning else ()
+    fixes = detailed(work.detuning.fixes) if work.detuning else []
     mesh = tries.get("mesh", 0.0, lambda: convergence(work.job)) or ()
     weights, notes = tries.get("weight", 0.2, lambda: at_rest(work.job)) or ({}, ())
     installs = tries.get("installation", 0.3, lambda: installing(work, fixes)) or {}

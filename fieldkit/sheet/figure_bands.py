@@ -37,7 +37,7 @@ def bands_figure(found: Detuning, measured: Sequence[MeasuredMode], up_to_hz: fl
     with drawn(0.75 + ROW_IN * count) as figure:
         axes = figure.subplots()
         figure.subplots_adjust(
-            left=0.17, right=0.99, top=1 - 0.28 / figure.get_figheight(),
+            left=0.17, right=0.975, top=1 - 0.28 / figure.get_figheight(),
             bottom=0.38 / figure.get_figheight(),
         )  # fmt: skip
         axes.set_xlim(0, up_to_hz)
@@ -102,6 +102,6 @@ def _legend(axes: Any) -> None:
     ]
     axes.legend(
         handles, [name for name, _ in kinds], loc="upper right", ncols=3,
-        bbox_to_anchor=(1.0, -0.02), bbox_transform=axes.transAxes, borderaxespad=0.9,
+        bbox_to_anchor=(1.0, -0.02), bbox_transform=axes.transAxes, borderaxespad=1.5,
         labelcolor=INK, handlelength=1.4,
     )  # fmt: skip

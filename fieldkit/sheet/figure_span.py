@@ -26,6 +26,7 @@ from fieldkit.sheet.drawing import (
     drawn,
     svg_of,
 )
+from fieldkit.sheet.label_room import Box, Wish, places
 from fieldkit.span.layout import Span
 
 Array = NDArray[np.float64]
@@ -102,8 +103,7 @@ def span_figure(job: Job, change_at_m: Sequence[float] = ()) -> Figure:
         axes.set_ylim(middle[1] - half[1], middle[1] + half[1])
         _pipe(axes, flat, 72 * per_m * job.span.pipe.outside_diameter_m)
         _keep_out(axes, job, stations, flat)
-        for item in _stacked(items(job, change_at_m), job.span.length_m):
-            _draw(axes, item, stations, flat, job.units)
+        _draw_items(axes, job, items(job, change_at_m), Drawn(stations, flat, per_m))
         _scale_bar(axes, per_m, job.units)
         shown = _caption(job, view, bool(change_at_m))
         return Figure(shown, svg_of(figure, "span", shown))
@@ -160,50 +160,58 @@ def _keep_out(axes: Any, job: Job, stations: Array, flat: Array) -> None:
         axes.plot(*line.T, color=BAND_CORE, linewidth=2.2, zorder=2.3, alpha=0.8)
 
 
-def _stacked(found: Sequence[Item], length_m: float) -> list[Item]:
-    """Labels of one side that would lie over each other moved farther out."""
-    placed: list[Item] = []
-    for item in found:
-        off = item.off_pt
-        while any(
-            abs(other.at_m - item.at_m) < 0.11 * length_m and abs(other.off_pt - off) < 11
-            for other in placed
-        ):
-            off += 12 * math.copysign(1, item.off_pt)
-        placed.append(Item(item.at_m, item.label, item.marker, item.colour, off))
-    return placed
+@dataclass(frozen=True)
+class Drawn:
+    """The drawn centre line: stations (n,), where they lie (n, 2) in metres, inches to a metre."""
+
+    stations: Array
+    flat: Array
+    per_m: float
+
+    def at(self, station_m: float) -> Array:
+        """Where a station lies, metres right and up."""
+        return np.array([np.interp(station_m, self.stations, self.flat[:, i]) for i in range(2)])
+
+    def points(self) -> Array:
+        """(n, 2) of the line close enough to see whether a label lies on it, in points."""
+        fine = np.linspace(self.stations[0], self.stations[-1], 240)
+        return 72 * self.per_m * np.array([self.at(float(station)) for station in fine])
 
 
-def _draw(axes: Any, item: Item, stations: Array, flat: Array, units: str) -> None:
-    at = np.array([np.interp(item.at_m, stations, flat[:, i]) for i in range(2)])
-    normal = _normal(item.at_m, stations, flat)
-    axes.plot(
-        *at, item.marker, color=item.colour, markersize=7.5, zorder=4,
-        markeredgecolor=PAPER, markeredgewidth=0.8,
-    )  # fmt: skip
-    axes.annotate(
-        f"{item.label}  {show(item.at_m, 'length', units, 3)}", at, tuple(item.off_pt * normal),
-        textcoords="offset points", fontsize=7.5, color=item.colour, zorder=5,
-        ha=_side(item.off_pt * normal[0]), va="center",
-        arrowprops={
-            "arrowstyle": "-", "color": item.colour, "linewidth": 0.5, "shrinkA": 0, "shrinkB": 3,
-        },
-    )  # fmt: skip
-
-
-def _side(right: float) -> str:
-    if abs(right) < 4:
-        return "center"
-    return "left" if right > 0 else "right"
-
-
-def _normal(at_m: float, stations: Array, flat: Array) -> Array:
-    """Across the drawn line, up or to the left where that is level."""
-    step = 0.02 * (stations[-1] - stations[0])
-    ends = [
-        np.array([np.interp(at, stations, flat[:, i]) for i in range(2)])
-        for at in (at_m - step, at_m + step)
+def _draw_items(axes: Any, job: Job, found: Sequence[Item], drawn_line: Drawn) -> None:
+    half_pt = 36 * drawn_line.per_m * job.span.pipe.outside_diameter_m
+    wishes = [
+        Wish(
+            f"{item.label}  {show(item.at_m, 'length', job.units, 3)}",
+            72 * drawn_line.per_m * drawn_line.at(item.at_m),
+            _normal(item.at_m, drawn_line),
+            item.off_pt + math.copysign(half_pt, item.off_pt),
+        )
+        for item in found
     ]
+    scale = 72 * drawn_line.per_m
+    page = Box(*(scale * np.array([*axes.get_xlim(), *axes.get_ylim()])))
+    chosen = places(wishes, drawn_line.points(), half_pt, page)
+    for item, wish, place in zip(found, wishes, chosen, strict=True):
+        at = drawn_line.at(item.at_m)
+        axes.plot(
+            *at, item.marker, color=item.colour, markersize=7.5, zorder=4,
+            markeredgecolor=PAPER, markeredgewidth=0.8,
+        )  # fmt: skip
+        axes.annotate(
+            wish.text, at, tuple(place.offset), textcoords="offset points", fontsize=7.5,
+            color=item.colour, zorder=5, ha=place.side, va="center",
+            arrowprops={
+                "arrowstyle": "-", "color": item.colour, "linewidth": 0.5,
+                "shrinkA": 0, "shrinkB": 3,
+            },
+        )  # fmt: skip
+
+
+def _normal(at_m: float, line: Drawn) -> Array:
+    """Across the drawn line, up or to the left where that is level."""
+    step = 0.02 * (line.stations[-1] - line.stations[0])
+    ends = [line.at(at_m - step), line.at(at_m + step)]
     along = ends[1] - ends[0]
     along = along / max(float(np.linalg.norm(along)), 1e-12)
     normal = np.array([-along[1], along[0]])

@@ -34,8 +34,10 @@ COLUMNS = 900
 DECADES_SHOWN = 4.0
 DECAY_DECADES = 2.5
 HEIGHT_IN = 2.35
-NEIGHBOUR = 0.06
-"""Half width, relative to its frequency, of the filter that takes one mode out of a decay."""
+WIDTHS = (0.01, 0.06)
+"""Least and most half width, relative to its frequency, of the filter that takes one mode out."""
+NEIGHBOUR_SHARE = 0.3
+"""Half width over the distance to the nearest other mode: what is left of that is under 1 %."""
 
 
 @dataclass(frozen=True)
@@ -57,7 +59,7 @@ def tap_figure(reading: TapReading, marks: Marks, up_to_hz: float, number: int) 
         figure.subplots_adjust(left=0.1, right=0.995, top=0.83, bottom=0.17, wspace=0.2)
         _spectrum(left, reading.spectrum, marks, up_to_hz)
         left.set_title(clean(reading.file), pad=14)
-        _decay(right, reading, strongest)
+        _decay(right, reading, strongest, marks.modes)
         shown = caption(reading, strongest)
         return Figure(shown, svg_of(figure, f"tap {number}", shown))
 
@@ -159,7 +161,9 @@ def _outline(hz: Array, amplitude: Array) -> tuple[Array, Array]:
     return hz[chosen], amplitude[chosen]
 
 
-def _decay(axes: Any, reading: TapReading, mode: MeasuredMode | None) -> None:
+def _decay(
+    axes: Any, reading: TapReading, mode: MeasuredMode | None, others: Sequence[MeasuredMode]
+) -> None:
     if mode is None or mode.damping_ratio is None or not mode.damping_ratio > 0:
         axes.set_axis_off()
         axes.text(0, 0.9, "no measured mode to follow", va="top", color=MUTED)
@@ -167,7 +171,8 @@ def _decay(axes: Any, reading: TapReading, mode: MeasuredMode | None) -> None:
     rate = 2 * np.pi * mode.frequency_hz * mode.damping_ratio
     end_s = DECAY_DECADES * np.log(10) / rate
     for record in reading.records:
-        time_s, envelope = envelope_of(record.samples, record.rate_hz, mode.frequency_hz)
+        filtered = mode.frequency_hz, half_width_hz(mode, others)
+        time_s, envelope = envelope_of(record.samples, record.rate_hz, *filtered, rate)
         shown = time_s <= end_s
         axes.plot(*_thinned(time_s[shown], envelope[shown]), color=MUTED, linewidth=0.7)
     at = np.array([0.0, end_s])
@@ -181,25 +186,34 @@ def _decay(axes: Any, reading: TapReading, mode: MeasuredMode | None) -> None:
     axes.set_title(f"decay at {mode.frequency_hz:.1f} Hz", pad=14)
 
 
-def envelope_of(samples: Array, rate_hz: float, frequency_hz: float) -> tuple[Array, Array]:
-    """Time in seconds and envelope of one mode in a free decay (n,), its straight part begun at 1.
+def half_width_hz(mode: MeasuredMode, others: Sequence[MeasuredMode]) -> float:
+    """Standard deviation of the filter that takes one mode and leaves its neighbours."""
+    apart = [abs(other.frequency_hz - mode.frequency_hz) for other in others if other != mode]
+    share = NEIGHBOUR_SHARE * min(apart, default=np.inf)
+    least, most = (width * mode.frequency_hz for width in WIDTHS)
+    return float(min(max(share, least), most))
 
-    The analytic signal behind a Gaussian filter about the mode, in the frequency domain; the
-    level is that of the line fitted to the first third of what stands above a tenth.
+
+def envelope_of(
+    samples: Array, rate_hz: float, frequency_hz: float, half_width_hz: float, decay_rate: float
+) -> tuple[Array, Array]:
+    """Time in seconds and envelope of one mode in a free decay (n,), where the filter has filled.
+
+    The analytic signal behind a Gaussian filter about the mode, in the frequency domain. Its level
+    is such that exp(-decay_rate t) lies through the first half of what stands above a tenth.
     """
     length = 2 * len(samples)
     hz = np.fft.fftfreq(length, 1 / rate_hz)
-    gain = 2 * np.exp(-0.5 * ((hz - frequency_hz) / (NEIGHBOUR * frequency_hz)) ** 2)
+    gain = 2 * np.exp(-0.5 * ((hz - frequency_hz) / half_width_hz) ** 2)
     transform = np.fft.fft(samples - samples.mean(), length)
     envelope = np.abs(np.fft.ifft(transform * gain * (hz > 0)))[: len(samples)]
     time_s = np.arange(len(samples)) / rate_hz
-    begun = int(rate_hz / (2 * np.pi * NEIGHBOUR * frequency_hz) * 2)
+    begun = min(int(2 * rate_hz / (2 * np.pi * half_width_hz)), len(samples) // 2)
     above = envelope > 0.1 * envelope.max()
     last = max(int(np.flatnonzero(above)[-1]), begun + 8)
     part = slice(begun, begun + max((last - begun) // 2, 8))
-    slope, level = np.polyfit(time_s[part], np.log(np.maximum(envelope[part], 1e-300)), 1)
-    del slope
-    return time_s, envelope / np.exp(level)
+    level = np.mean(np.log(np.maximum(envelope[part], 1e-300)) + decay_rate * time_s[part])
+    return time_s[begun:], envelope[begun:] / np.exp(level)
 
 
 def _thinned(time_s: Array, envelope: Array) -> tuple[Array, Array]:

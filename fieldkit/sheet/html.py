@@ -9,6 +9,7 @@ from fieldkit.sheet.plain import clean
 
 MARK = "fieldkit sheet"
 """What tells a sheet from any other file, in its first lines."""
+HASH_LENGTH, LONGEST_WORD = 64, 22
 
 
 def html(document: Document) -> str:
@@ -29,6 +30,7 @@ def _template() -> Any:
     made.filters["plain"] = clean
     made.filters["svg"] = _svg
     made.filters["kind"] = _kind
+    made.filters["looks"] = _looks
     return made.get_template("sheet.html")
 
 
@@ -37,6 +39,18 @@ def _svg(figure: Figure) -> Any:
     from markupsafe import Markup
 
     return Markup(figure.svg)
+
+
+def _looks(cell: str, to_right: bool) -> Any:
+    """The class of a cell: a number, a hash, or text with words that must be broken."""
+    from markupsafe import Markup
+
+    if to_right:
+        return Markup(' class="number"')
+    longest = max(map(len, cell.split()), default=0)
+    if longest == HASH_LENGTH and cell.isalnum():
+        return Markup(' class="hash"')
+    return Markup(' class="long"') if longest > LONGEST_WORD else ""
 
 
 def _kind(block: object) -> str:

@@ -32,7 +32,7 @@ def answer(found: Results) -> Section:
     blocks.append(Table("", ("question", "answer"), tuple(_rows(found)), keyed=True))
     if work.detuning is not None and work.detuning.bands:
         blocks.append(bands_figure(work.detuning, work.evidence.modes, work.job.goal.up_to_hz))
-    blocks += bullets(dict.fromkeys([*advice.resonance(work), *advice.evidence(work)]))
+    blocks += bullets(dict.fromkeys([*advice.reached(work), *advice.evidence(work)]))
     blocks += paragraphs(
         findings.better_measurement_words(work.findings, _best_chance(found), work.job.goal.chance)
     )
@@ -49,7 +49,7 @@ def _rows(found: Results) -> list[tuple[str, str]]:
     work = found.work
     top = work.findings.top if work.findings else None
     rows = [
-        ("Is it a resonance?", sentence(top.reason if top else advice.resonance(work)[0])),
+        ("Is it a resonance?", sentence(top.reason if top else advice.reached(work)[0])),
     ]
     detuning = work.detuning
     if detuning is not None:

@@ -5,11 +5,10 @@ from __future__ import annotations
 from collections.abc import Sequence
 from itertools import zip_longest
 
-from fieldkit.detune.cautions import ALWAYS
 from fieldkit.detune.install import Installation
 from fieldkit.detune.verdict import Detuning, JudgedMode, Verdict
 from fieldkit.sheet import findings, installing, tables
-from fieldkit.sheet.beyond import DETAILED, Results
+from fieldkit.sheet.beyond import Results, detailed
 from fieldkit.sheet.content import (
     CAUTION,
     Block,
@@ -63,14 +62,28 @@ def changes(found: Results) -> Section:
         why = work.refusals("detune") or ("no change of the allowed kinds was found",)
         return section("Changes", paragraphs(why))
     blocks: list[Block] = [_ranking(detuning)]
-    for verdict in detuning.fixes[:DETAILED]:
-        blocks += _change(found, detuning, verdict)
+    told = detailed(detuning.fixes)
+    common = _common(found, told)
+    for verdict in told:
+        blocks += _change(found, detuning, verdict, common)
     blocks += paragraphs(found.why_not("installation"))
+    blocks.append(Heading("For every change"))
+    blocks += bullets(map(sentence, common), CAUTION)
     blocks += _other_cures(detuning)
-    blocks.append(Heading("Expected response"))
-    blocks.append(Paragraph(NO_RESPONSE))
-    blocks.append(Paragraph(sentence(ALWAYS), CAUTION))
+    blocks += [Heading("Expected response"), Paragraph(NO_RESPONSE)]
     return section("Changes", blocks)
+
+
+def _common(found: Results, told: Sequence[Verdict]) -> list[str]:
+    """Cautions that hold for each of these changes: told once."""
+    each = [_cautions(found, verdict) for verdict in told]
+    return [text for text in each[0] if all(text in others for others in each)]
+
+
+def _cautions(found: Results, verdict: Verdict) -> list[str]:
+    parts = found.installs.get(verdict.rank, ())
+    of_parts = [text for part in parts for text in part.cautions]
+    return list(dict.fromkeys([*verdict.cautions, *of_parts]))
 
 
 def _ranking(detuning: Detuning) -> Table:
@@ -89,7 +102,9 @@ def _ranking(detuning: Detuning) -> Table:
     return Table(f"Changes, best first{tried}", head, rows)
 
 
-def _change(found: Results, detuning: Detuning, verdict: Verdict) -> list[Block]:
+def _change(
+    found: Results, detuning: Detuning, verdict: Verdict, common: Sequence[str]
+) -> list[Block]:
     chosen = "the chosen change" if verdict.rank == 1 else "runner-up"
     blocks: list[Block] = [
         Heading(f"Change {verdict.rank}, {chosen}: {verdict.summary}"),
@@ -102,9 +117,8 @@ def _change(found: Results, detuning: Detuning, verdict: Verdict) -> list[Block]
         if len(parts) > 1:
             blocks.append(Paragraph(f"Part {number} of {len(parts)}:"))
         blocks += _installation(part, found.work.job.units)
-    of_parts = [text for part in parts for text in part.cautions]
-    cautions = [text for text in dict.fromkeys([*verdict.cautions, *of_parts]) if text != ALWAYS]
-    return blocks + bullets(map(sentence, cautions), CAUTION)
+    own = [text for text in _cautions(found, verdict) if text not in common]
+    return blocks + bullets(map(sentence, own), CAUTION)
 
 
 def _installation(part: Installation, units: str) -> list[Block]:
@@ -133,7 +147,7 @@ def _before_and_after(now: Sequence[JudgedMode], after: Sequence[JudgedMode]) ->
         )
         rows += [(direction, _told(before), _told(then)) for before, then in pairs]
     head = ("direction", "now, Hz (5 to 95 %)", "after, Hz (5 to 95 %)")
-    return Table("In order within each direction", head, tuple(rows))
+    return Table("Modes now and after, in order within each direction", head, tuple(rows))
 
 
 def _told(mode: JudgedMode | None) -> str:

@@ -54,18 +54,26 @@ def recordings(found: Results) -> Section:
         direction = entry.direction or "not stated"
         where = _place(entry, job.units)
         placed.append(
-            (f"R{i}", entry.path.name + mark, entry.kind, entry.state, direction, where, length)
+            (
+                f"R{i}",
+                entry.path.name + mark,
+                entry.kind,
+                entry.state,
+                direction,
+                where,
+                length,
+                basis.recordings[entry.path].sha256[:12] or "cannot be read",
+            )
         )
         said = sensitivity(entry, _typed(basis, i - 1))
         meant.append((f"R{i}", str(entry.channel), entry.quantity, said, _hammer(entry, job.units)))
-    where_from = ("", "file", "kind", "state", "direction", "sensor at", "length")
+    where_from = ("", "file", "kind", "state", "direction", "sensor at", "length", "sha-256 begins")
     sensors = ("", "channel", "quantity", "sensitivity used", "hammer")
     return section(
         "Recordings",
         [
             Table("What was recorded", where_from, tuple(placed)),
             Table("With which sensor", sensors, tuple(meant)),
-            _hashes(basis),
         ],
     )
 
@@ -77,14 +85,6 @@ def _hammer(entry: RecordingEntry, units: str) -> str:
     at = "not stated where" if hammer.at_m is None else f"at {show(hammer.at_m, 'length', units)}"
     scale = "uncalibrated" if hammer.scale is None else f"{hammer.scale:.4g} N per unit"
     return f"channel {hammer.channel}, {scale}, struck {at}"
-
-
-def _hashes(basis: Basis) -> Table:
-    rows = tuple(
-        (one.name, one.sha256 or "cannot be read")
-        for one in (*basis.recordings.values(), *basis.sidecars)
-    )
-    return Table("SHA-256 of the files", ("file", "sha-256"), rows)
 
 
 def _typed(basis: Basis, index: int) -> Mapping[str, Any]:

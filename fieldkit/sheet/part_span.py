@@ -3,8 +3,9 @@
 from __future__ import annotations
 
 import math
+from itertools import zip_longest
 
-from fieldkit.detune.fixes import Change
+from fieldkit.detune.fixes import Change, SetMass, StiffenSupport
 from fieldkit.detune.push import parts
 from fieldkit.quantity import show
 from fieldkit.sheet.beyond import Results
@@ -32,11 +33,16 @@ def change_stations(found: Results) -> tuple[float, ...]:
     detuning = found.work.detuning
     if detuning is None or not detuning.fixes:
         return ()
-    stations = [_station(part) for part in parts(detuning.fixes[0].change)]
+    of = found.work.job.span
+    stations = [_station(of, part) for part in parts(detuning.fixes[0].change)]
     return tuple(station for station in stations if station is not None)
 
 
-def _station(change: Change) -> float | None:
+def _station(of: Span, change: Change) -> float | None:
+    if isinstance(change, StiffenSupport):
+        return of.supports[change.index].at_m
+    if isinstance(change, SetMass):
+        return of.masses[change.index].at_m
     for name in ("to_m", "at_m"):
         at_m = getattr(change, name, None)
         if isinstance(at_m, float | int):
@@ -67,7 +73,10 @@ def _pipe(found: Results) -> Table:
         ("contents", _contents(found)),
         ("length of the span", show(job.span.length_m, "length", units)),
     ]  # fmt: skip
-    return Table("Pipe", ("property", "value"), tuple(rows), keyed=True)
+    half = -(-len(rows) // 2)
+    pairs = zip_longest(rows[:half], rows[half:], fillvalue=("", ""))
+    beside = tuple((*left, *right) for left, right in pairs)
+    return Table("Pipe", ("property", "value", "property", "value"), beside, keyed=True)
 
 
 def _contents(found: Results) -> str:
