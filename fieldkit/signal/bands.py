@@ -19,6 +19,9 @@ from fieldkit.signal.traces import Component, Trace, unbent
 Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
+_NEARLY = 0.99
+"""Of the longest tap's samples: so few left out of the others' ends tell nothing more."""
+
 
 @dataclass(frozen=True)
 class Band:
@@ -58,9 +61,18 @@ class Band:
         return float(used.min()) - spacing, float(used.max())
 
 
-def band(traces: Sequence[Trace], low_hz: float, high_hz: float, duration_s: float) -> Band:
-    """Bins from low to high of about the first ``duration_s`` of every tap."""
-    counts = [t.fast_count(duration_s) for t in traces]
+def band(
+    traces: Sequence[Trace],
+    low_hz: float,
+    high_hz: float,
+    duration_s: float,
+    enough_s: float = np.inf,
+) -> Band:
+    """Bins from low to high of about the first ``duration_s`` of every tap.
+
+    Where every tap lasts ``enough_s``, all are cut to the shortest.
+    """
+    counts = alike_where_enough([t.fast_count(duration_s) for t in traces], traces, enough_s)
     edges = [bin_edges(t, n, low_hz, high_hz) for t, n in zip(traces, counts, strict=True)]
     widest = max(b - a for a, b in edges)
     shape = (len(traces), widest)
@@ -76,6 +88,18 @@ def band(traces: Sequence[Trace], low_hz: float, high_hz: float, duration_s: flo
     count = np.array([[float(n)] for n in counts])[used]
     turn = np.exp(-2j * np.pi * frequency[used] / rate)
     return Band(turn, count, rate, frequency, weight, data)
+
+
+def alike_where_enough(
+    counts: Sequence[int], traces: Sequence[Trace], enough_s: float
+) -> list[int]:
+    """Samples of each tap to transform: the least for all where hardly anything is lost by it.
+
+    Taps with the same bins share the transforms of a model.
+    """
+    least, rate_hz = min(counts), max(t.rate_hz for t in traces)
+    enough = min(_NEARLY * max(counts), enough_s * rate_hz)
+    return [least] * len(counts) if least >= enough else list(counts)
 
 
 def bin_edges(trace: Trace, count: int, low_hz: float, high_hz: float) -> tuple[int, int]:

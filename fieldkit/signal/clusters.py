@@ -11,6 +11,8 @@ from fieldkit.signal.likelihood import Fit, Still, fit_before
 from fieldkit.signal.traces import Component, Trace
 
 DECAYS_USED = 8.0
+ENOUGH_DECAYS = 5.5
+"""What comes later, 48 dB below the start, tells next to nothing more of a pole."""
 _BANDWIDTHS = 16.0
 _LEAST_BINS = 16.0
 _TOGETHER = 4.0
@@ -27,10 +29,13 @@ _TONE_SHARE = 0.4
 
 def span_s(parts: Sequence[Component], traces: Sequence[Trace]) -> float:
     """How much of the record serves these poles: eight decays of the slowest."""
-    longest = max(t.duration_s for t in traces)
+    return min(wanted_s(parts), max(t.duration_s for t in traces))
+
+
+def wanted_s(parts: Sequence[Component]) -> float:
+    """Eight decays of the slowest of these poles; without end where none decays."""
     slowest = min((p.decay_per_s for p in parts if not p.steady), default=0.0)
-    enough = max(DECAYS_USED / slowest, _SHORTEST_S) if slowest > 0 else longest
-    return min(enough, longest)
+    return max(DECAYS_USED / slowest, _SHORTEST_S) if slowest > 0 else np.inf
 
 
 def limits_hz(parts: Sequence[Component], duration_s: float, top_hz: float) -> tuple[float, float]:
@@ -103,7 +108,8 @@ def prepared(
     """The band around some poles, free of what stands outside, and what else stands inside."""
     duration_s = span_s(around, traces)
     low, high = limits_hz(around, duration_s, top_hz)
-    bins = band(traces, low, high, duration_s)
+    enough_s = ENOUGH_DECAYS / DECAYS_USED * wanted_s(around)
+    bins = band(traces, low, high, duration_s, enough_s)
     longest = max(t.duration_s for t in traces)
     free = [o for o in others if not o.steady or duration_s > _TONE_SHARE * longest]
     inside = [o for o in free if low <= o.frequency_hz <= high and not o.bend]
