@@ -118,6 +118,7 @@ def _caption(job: Job, view: str, changed: bool) -> str:
     return (
         f"The span to scale, {view}, the pipe as thick as it is: {', '.join(others)}; stations "
         "run along the centre line, corner to corner"
+        + (", and a red stretch is one where nothing may be attached" * bool(job.goal.keep_out_m))
     )
 
 
@@ -182,7 +183,7 @@ def _draw_items(axes: Any, job: Job, found: Sequence[Item], drawn_line: Drawn) -
     half_pt = 36 * drawn_line.per_m * job.span.pipe.outside_diameter_m
     wishes = [
         Wish(
-            f"{item.label}  {show(item.at_m, 'length', job.units, 3)}",
+            f"{item.label}, {show(item.at_m, 'length', job.units, 3)}",
             72 * drawn_line.per_m * drawn_line.at(item.at_m),
             _normal(item.at_m, drawn_line),
             item.off_pt + math.copysign(half_pt, item.off_pt),

@@ -31,7 +31,7 @@ def words(found: Sequence[OrderResponse]) -> str:
         for one in found
         if one.now is not None
     ]
-    return f"Amplified {'; '.join(told)}{_damping(found)}." if told else ""
+    return f"Amplified at the worst speed: {'; '.join(told)}{_damping(found)}." if told else ""
 
 
 def _damping(found: Sequence[OrderResponse]) -> str:

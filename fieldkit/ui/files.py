@@ -8,8 +8,7 @@ from textual import work
 
 from fieldkit.errors import FieldkitError
 from fieldkit.ui.dialogs import AskScreen, PathScreen, PickScreen
-from fieldkit.ui.job_app import JobApp
-from fieldkit.ui.views.sheet import sheet_text
+from fieldkit.ui.sheet_writing import SheetWriting
 
 SAVE_QUESTION = (("save", "Save"), ("discard", "Leave unsaved"), ("back", "Back"))
 WELCOME = (
@@ -20,7 +19,7 @@ WELCOME = (
 )
 
 
-class Files(JobApp):
+class Files(SheetWriting):
     """The app's dealings with files."""
 
     @work
@@ -112,25 +111,6 @@ class Files(JobApp):
         if picked is not None:
             self.say_progress("opening")
             self.read_job(jobs[int(picked)])
-
-    @work
-    async def action_write_sheet(self) -> None:
-        """Save the sheet as a text file."""
-        text = sheet_text(self.desk)
-        if not text:
-            self.tell("There is no result to write down yet.")
-            return
-        place = self.open_job.path.parent if self.open_job and self.open_job.path else Path.cwd()
-        start = str(place / "advice.txt")
-        path = await self.push_screen_wait(PathScreen("Save the sheet as", start, must_exist=False))
-        if path is None:
-            return
-        try:
-            path.write_text(text + "\n", encoding="utf-8")
-        except OSError as error:
-            self.tell(f"{path} could not be written: {error}", wrong=True)
-            return
-        self.tell(f"Saved {path}")
 
     @work
     async def action_quit(self) -> None:  # type: ignore[override]

@@ -166,15 +166,3 @@ async def test_markup_and_control_codes_in_a_job_are_plain_text(
         assert "[red]\\u001b[31mtitle[/]" in text_of(app, "#job-title")
         assert rows_of(app, "#rows")[0][1].startswith("[red]\\u001b")
         assert "\x1b" not in app.export_screenshot()
-
-
-async def test_the_sheet_is_saved_as_a_text_file(app: FieldkitApp, tmp_path: Path) -> None:
-    async with opened(app) as pilot:
-        await pilot.press("6")
-        await pilot.pause()
-        await pilot.press("w")
-        await pilot.pause()
-        app.screen.query_one(Input).value = str(tmp_path / "advice.txt")
-        await pilot.press("enter")
-        await settled(pilot)
-        assert "Glycol booster" in (tmp_path / "advice.txt").read_text(encoding="utf-8")

@@ -1,4 +1,4 @@
-"""Sheet: the advice as text that another engineer can check, and a key to save it."""
+"""Sheet: the advice as text, and a key to write the whole sheet to a file."""
 
 from __future__ import annotations
 
@@ -19,7 +19,7 @@ class SheetView(View):
     HOME = "#sheet-scroll"
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("w", "app.write_sheet", "Write to file", id="sheet.write",
-                tooltip="Save this text as a file"),
+                tooltip="Write the whole sheet: a page with figures, Markdown, or a bundle"),
     ]  # fmt: skip
 
     def compose(self) -> ComposeResult:
