@@ -102,6 +102,13 @@ def known_modes(
     return tuple(sorted(known, key=lambda mode: mode.hz))
 
 
+def computed_modes(
+    measured: Sequence[MeasuredMode], computed: Sequence[Spread]
+) -> tuple[KnownMode, ...]:
+    """Modes that only the model knows, as after a change; damping is carried over from the taps."""
+    return tuple(_computed(mode, measured) for mode in computed)
+
+
 def _measured(mode: MeasuredMode) -> KnownMode:
     running = mode.source == RUNNING
     least = 1e-4 if running or mode.state == "running" else TAP_TO_RUNNING

@@ -165,10 +165,17 @@ class DetuneView(View):
             return [sentence(text) for text in self.desk.refusals("detune")]
         return [
             *self._shortfall(found),
-            *(_fix_words(fix) if fix else []),
+            *(_fix_words(fix, self._answer_to_orders(fix)) if fix else []),
             *_living_with_it(found),
             *map(sentence, found.warnings),
         ]
+
+    def _answer_to_orders(self, fix: Verdict) -> str:
+        """Amplification of each order now and with the change."""
+        from fieldkit.sheet.order_response import words
+        from fieldkit.workup.order_response import order_response
+
+        return words(order_response(self.desk.workup, fix)) if self.desk.workup else ""
 
     def _shortfall(self, found: Detuning) -> list[str]:
         """Said plainly when nothing reaches what was wanted."""
@@ -226,7 +233,13 @@ def _living_with_it(found: Detuning) -> list[str]:
     return ["Living with it:", *said] if said else []
 
 
-def _fix_words(fix: Verdict) -> list[str]:
+def _fix_words(fix: Verdict, amplified: str) -> list[str]:
     cautions = [f"! {sentence(caution)}" for caution in fix.cautions]
     reasons = [sentence(text) for text in (fix.why, fix.fails) if text]
-    return [sentence(fix.summary), *reasons, *cautions]
+    return [
+        sentence(fix.summary),
+        *reasons[:1],
+        *([amplified] if amplified else []),
+        *reasons[1:],
+        *cautions,
+    ]
