@@ -10,7 +10,7 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import capturing, curves, installing, mapping, output, sheet, spacing
+from fieldkit.cli import capturing, curves, installing, mapping, output, rechecking, sheet, spacing
 
 OPEN = "open"
 
@@ -295,6 +295,7 @@ def detune(
 
 
 sheet.register(app)
+rechecking.register(app)
 
 
 def _print_advice(job_file: Path) -> None:

@@ -22,18 +22,17 @@ from fieldkit.detune.match import FEW_EFFECTIVE, LEAST_EFFECTIVE, Group, grouped
 from fieldkit.detune.matched import Ensemble, Match
 from fieldkit.detune.posterior import Population, Problem
 from fieldkit.detune.push import parts
-from fieldkit.detune.rank import PRIOR_MEMBERS, detune
+from fieldkit.detune.rank import PRIOR_MEMBERS
 from fieldkit.detune.recheck_answer import UNSURE, WORKED, PromisedMode, Recheck
 from fieldkit.detune.recheck_joint import believed, embedded, lowered
 from fieldkit.detune.recheck_modes import Taken, Tracked, along_path, linked, taken, tracked
-from fieldkit.detune.recheck_next import measure_next
+from fieldkit.detune.recheck_next import Standing, measure_next, mended, offers
 from fieldkit.detune.recheck_reasons import found_in, found_of, reasons
 from fieldkit.detune.recheck_spans import AS_DRAWN, NOTHING, OTHER, PLACE, STIFFNESS, pinned
 from fieldkit.detune.recheck_verdict import Judged, Now, judged, verdict
 from fieldkit.detune.recheck_ways import Known, Way, Weighed, drawn, probabilities, ways_of, weighed
 from fieldkit.detune.reduced import build
 from fieldkit.detune.unknowns import unknowns_of
-from fieldkit.detune.verdict import Detuning
 from fieldkit.detune.wording import summary
 from fieldkit.errors import Refusal
 from fieldkit.progress import Progress
@@ -266,7 +265,8 @@ def _answer(
     progress.step("looking for the next change", 0.0)
     after = Match(asked.after.modes, (), (), (), ensemble, (), "", ())
     settled = said == WORKED or updated.way.name == NOTHING
-    offered = None if settled else _next(asked, span_now, after, excitations, progress)
+    there = Standing(span_now, asked.tapped, asked.running, after, excitations, asked.goal)
+    offered = None if settled else offers(there, asked.units, progress)
     return Recheck(
         change=asked.change,
         summary=summary(asked.change, asked.span, asked.units),
@@ -288,6 +288,7 @@ def _answer(
         reasons=reasons(likely, stray, by_way, asked.units) if odd else (),
         effective_members=updated.population.effective_size,
         span_now=span_now,
+        mended=None if settled else mended(there, updated.way.found, brought, asked.units),
         next_fixes=offered,
         warnings=_warnings(asked, likely, updated.population, found),
     )
@@ -314,18 +315,6 @@ def _installed(updated: _Updated, states: tuple[State, State, State]) -> tuple[S
     names = tuple(unknown.name for unknown in unknowns)
     even = np.full(len(chosen), 1.0 / len(chosen))
     return way.found.after, Ensemble(names, chosen, even, fresh, population.effective_size)
-
-
-def _next(
-    asked: Question,
-    span: Span,
-    match: Match,
-    excitations: tuple[Excitation, ...],
-    progress: Progress,
-) -> Detuning:
-    return detune(
-        span, asked.tapped, asked.running, match, excitations, asked.goal, asked.units, progress
-    )
 
 
 def _warnings(

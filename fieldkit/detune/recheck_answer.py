@@ -6,7 +6,7 @@ from dataclasses import dataclass
 
 from fieldkit.detune.excitation import Band
 from fieldkit.detune.fixes import Change
-from fieldkit.detune.verdict import Detuning
+from fieldkit.detune.verdict import Detuning, Verdict
 from fieldkit.signal.modes import MeasuredMode
 from fieldkit.span.layout import Span
 
@@ -124,6 +124,8 @@ class Recheck:
     effective_members: float
     span_now: Span
     """The span as it is found, each stiffness of the change with its doubt."""
+    mended: Verdict | None
+    """The support brought to what was drawn, where it was found softer."""
     next_fixes: Detuning | None
     """The ranked changes on the span as found; None where none is needed, or nothing was changed
     yet."""

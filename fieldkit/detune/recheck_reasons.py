@@ -106,7 +106,7 @@ def as_found(found: AsFound, units: str) -> str:
         share = f"{100 * found.median / found.drawn:.0f} %"
         drawn = show(found.drawn, dimension, units, 2)
         return f"{found.name} {low} to {high}, about {share} of the {drawn} drawn"
-    return f"{found.name} {low} to {high}"
+    return f"{found.name}, {low} to {high}"
 
 
 def found_of(
@@ -123,7 +123,7 @@ def found_of(
         name, unit = unknown.name, unknown.unit
         if key[0] == "place":
             value, drawn = value - 1.0, 0.0
-            name = f"further along than {key[1]:g} m by"
+            name = f"place, from {key[1]:.2f} m on"
         elif key[1] == "spring":
             support, axis = int(str(key[2])), str(key[3])
             drawn = way.own_springs[(support, axis)]

@@ -28,7 +28,7 @@ def percent(chance: float) -> str:
     """A chance as people say it; never quite certain."""
     if chance >= 0.995:
         return ">99 %"
-    return "<1 %" if chance < 0.005 else f"{100 * chance:.0f} %"
+    return "<1 %" if chance <= 0.005 else f"{100 * chance:.0f} %"
 
 
 def share(part: float) -> str:

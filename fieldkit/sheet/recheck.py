@@ -70,6 +70,7 @@ def document(found: Rechecked) -> Document:
             {"reason": r.name, "probability": r.probability, "says": r.says, "check": r.check}
             for r in answer.reasons
         ],
+        "mended": _mended(answer),
         "next_fixes": documents.detune(answer.next_fixes)["fixes"] if answer.next_fixes else [],
         "effective_members": answer.effective_members,
         "recordings": [
@@ -88,6 +89,13 @@ def _state(found: Rechecked) -> Document:
         "pressure_pa": state.pressure_pa,
         "as_running": found.answer.same_state,
     }
+
+
+def _mended(answer: Recheck) -> Document | None:
+    fix = answer.mended
+    if fix is None:
+        return None
+    return {"summary": fix.summary, "change": fix.change.as_json(), "chance": fix.chance}
 
 
 def _promised(mode: PromisedMode) -> Document:
@@ -242,6 +250,9 @@ def _next(answer: Recheck, fold: Fold) -> list[str]:
     if answer.next_fixes is None:
         return []
     text = ["", "Next change, on the pipe as it is found"]
+    if answer.mended is not None:
+        mended = f"chance {percent(answer.mended.chance)}: {answer.mended.summary}, as was drawn"
+        text += fold(mended, 2, "-  ")
     for fix in answer.next_fixes.fixes[:NEXT_SHOWN]:
         text += fold(f"chance {percent(fix.chance)}: {fix.summary}", 2, f"{fix.rank}. ")
         text += [line for caution in fix.cautions for line in fold(caution, 5, "- ")]
