@@ -82,9 +82,19 @@ def cut_from(
     longest = int(LONGEST_BACKGROUND_S * source.rate_hz)
     quiet = source.stretch(channel, max(background[0], background[1] - longest), background[1])
     with source.reading(channel) as read:
-        return tuple(
-            TapRecord(read(tap.start, tap.end), source.rate_hz, quiet, name) for tap in chosen
+        firsts = [tap.onset_guarded(source.rate_hz) for tap in chosen]
+        stretches = [read(first, tap.end) for first, tap in zip(firsts, chosen, strict=True)]
+    return tuple(
+        TapRecord(
+            stretch[tap.start - first :],
+            source.rate_hz,
+            quiet,
+            name,
+            before=stretch[: tap.start - first],
+            since_blow_s=tap.start / source.rate_hz - tap.at_s,
         )
+        for tap, first, stretch in zip(chosen, firsts, stretches, strict=True)
+    )
 
 
 def what_was_cut(search: TapSearch, records: Sequence[TapRecord]) -> tuple[str, ...]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,7 @@ from fieldkit.signal.polish import Fitted, polished
 from fieldkit.signal.preparation import Prepared, prepare
 from fieldkit.signal.pruning import pruned
 from fieldkit.signal.search import Found, overcrowded, search
+from fieldkit.signal.second_blows import SecondBlow, second_blows
 from fieldkit.signal.settling import with_later
 from fieldkit.signal.tones import tone_components
 from fieldkit.signal.traces import Component
@@ -38,6 +39,10 @@ class TapRecord:
     background: NDArray[np.float64]
     """(m,) samples of the same channel without any blow; may be empty."""
     source: str = ""
+    before: NDArray[np.float64] = field(default_factory=lambda: np.zeros(0))
+    """(p,) samples directly before the free decay, from before the blow on; may be empty."""
+    since_blow_s: float = 0.0
+    """From the blow to the first sample of the free decay."""
 
 
 @dataclass(frozen=True)
@@ -86,6 +91,8 @@ class ModeEstimate:
     tones: tuple[Tone, ...]
     refused: tuple[RefusedMode, ...] = ()
     warnings: tuple[str, ...] = ()
+    struck_twice: tuple[int, ...] = ()
+    """Records, counted from 0, whose decay the modes show to be struck twice."""
 
 
 def estimate_modes(
@@ -97,18 +104,26 @@ def estimate_modes(
     weighted by the background. Frequencies are undamped natural frequencies. Raises Refusal where
     there is no record.
     """
-    long_enough = [r for r in records if len(r.samples) >= _LEAST_SAMPLES and np.any(r.samples)]
-    if not long_enough:
+    used = [
+        k for k, r in enumerate(records) if len(r.samples) >= _LEAST_SAMPLES and np.any(r.samples)
+    ]
+    if not used:
         raise Refusal(
             "no usable tap in these recordings",
             "record at least three taps with a quiet second before the first and let each ring out",
         )
-    ready, found, fitted = fitted_modes(long_enough, low_hz, high_hz)
-    odd = odd_taps(fitted, len(long_enough))
+    ready, found, fitted = fitted_modes([records[k] for k in used], low_hz, high_hz)
+    odd = odd_taps(fitted, len(used))
     odd[list(found.odd)] = True
+    said = [without_tap(used[i] + 1, len(records)) for i in np.flatnonzero(odd)]
     if odd.any():
-        kept = [r for r, left_out in zip(long_enough, odd, strict=True) if not left_out]
-        ready, found, fitted = fitted_modes(kept, low_hz, high_hz)
+        used = [k for k, left_out in zip(used, odd, strict=True) if not left_out]
+        ready, found, fitted = fitted_modes([records[k] for k in used], low_hz, high_hz)
+    twice = struck_twice([records[k] for k in used], used, found, ready.region.high_hz)
+    whole = [k for k in used if k not in twice or twice[k].after_s < records[k].since_blow_s]
+    said += [struck_again(k + 1, len(records), blow) for k, blow in twice.items()]
+    if 0 < len(whole) < len(used):
+        ready, found, fitted = fitted_modes([records[k] for k in whole], low_hz, high_hz)
     verdicts = judged(
         fitted,
         ready.traces,
@@ -119,8 +134,7 @@ def estimate_modes(
         crowded=found.crowded,
     )
     estimate = told(verdicts, found, ready, low_hz, high_hz)
-    left_out = tuple(without_tap(int(i) + 1, len(long_enough)) for i in np.flatnonzero(odd))
-    return replace(estimate, warnings=left_out + estimate.warnings)
+    return replace(estimate, warnings=(*said, *estimate.warnings), struck_twice=tuple(twice))
 
 
 def fitted_modes(
@@ -140,6 +154,28 @@ def fitted_modes(
     if found.crowded:
         fitted = with_later(ready.traces, found.parts, fitted, ready.region)
     return ready, found, fitted
+
+
+def struck_twice(
+    records: Sequence[TapRecord], numbers: Sequence[int], found: Found, top_hz: float
+) -> dict[int, SecondBlow]:
+    """Second blows that the modes show, by the numbers of the records.
+
+    Decays that are not quite exponential would feign them: there none is looked for.
+    """
+    if found.crowded:
+        return {}
+    blows = second_blows(records, found.parts, top_hz)
+    return {k: blow for k, blow in zip(numbers, blows, strict=True) if blow}
+
+
+def struck_again(number: int, count: int, blow: SecondBlow) -> str:
+    """A second blow that only the modes show."""
+    return (
+        f"usable tap {number} of {count} was struck twice: a second blow "
+        f"{1000 * blow.after_s:.0f} ms after the first; let the hammer rebound freely, or use a "
+        "lighter one"
+    )
 
 
 def without_tap(number: int, count: int) -> str:

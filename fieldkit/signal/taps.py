@@ -44,6 +44,10 @@ class Tap:
     reasons: tuple[str, ...] = ()
     """Why it is not usable, in words for the user; empty when it is."""
 
+    def onset_guarded(self, rate_hz: float) -> int:
+        """First sample surely before the blow."""
+        return min(max(int((self.at_s - GUARD_S) * rate_hz), 0), self.start)
+
 
 @dataclass(frozen=True)
 class TapSearch:
@@ -112,7 +116,14 @@ def cut(
     samples = np.asarray(signal, float)
     background = samples[slice(*search.background)]
     return tuple(
-        TapRecord(samples[t.start : t.end], rate_hz, background, source)
+        TapRecord(
+            samples[t.start : t.end],
+            rate_hz,
+            background,
+            source,
+            before=samples[t.onset_guarded(rate_hz) : t.start],
+            since_blow_s=t.start / rate_hz - t.at_s,
+        )
         for t in search.taps
         if t.usable
     )

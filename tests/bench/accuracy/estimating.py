@@ -5,7 +5,7 @@ from __future__ import annotations
 import time
 import traceback
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 from fieldkit.errors import Refusal
@@ -35,9 +35,21 @@ def automatic(made: Simulated) -> Estimated:
     def read() -> tuple[ModeEstimate, tuple[Tap, ...]]:
         search = find_taps(made.samples, made.rate_hz, full_scale=FULL_SCALE)
         records = cut(made.samples, made.rate_hz, search)
-        return modes_of(records, made.high_hz), search.taps
+        estimate = modes_of(records, made.high_hz)
+        return estimate, with_said(search.taps, estimate.struck_twice)
 
     return watched(read)
+
+
+def with_said(taps: tuple[Tap, ...], struck_twice: tuple[int, ...]) -> tuple[Tap, ...]:
+    """The taps, those that the estimate says are struck twice with that as a reason."""
+    usable = [i for i, tap in enumerate(taps) if tap.usable]
+    twice = {usable[k] for k in struck_twice}
+    reason = ("struck twice, as the modes show",)
+    return tuple(
+        replace(tap, usable=False, reasons=reason) if i in twice else tap
+        for i, tap in enumerate(taps)
+    )
 
 
 def with_taps_known(made: Simulated) -> Estimated:
