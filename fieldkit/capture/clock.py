@@ -27,7 +27,8 @@ class FrameClock:
     """How far the frames lag behind the clock.
 
     Frames arrive late for many reasons, but lost ones never come: the least lag within a window
-    steps up. The base it is compared with may rise by no more than a clock's drift.
+    steps up, and is no less in the next one. The base it is compared with may rise by no more than
+    a clock's drift.
     """
 
     def __init__(self, rate_hz: float) -> None:
@@ -43,6 +44,7 @@ class FrameClock:
         self._least_s = float("inf")
         self._window_end_s = 0.0
         self._whole_frames = 0
+        self._suspected = False
 
     def lag_s(self, at_s: float) -> float:
         """Seconds of frames that are missing beside the clock, over the base; 0 before it is
@@ -78,6 +80,10 @@ class FrameClock:
         risen_s = least_s - self._base_s
         if risen_s < LEAST_LOSS_S:
             self._base_s = min(least_s, self._base_s + DRIFT * WINDOW_S)
+            self._suspected = False
+            return None
+        self._suspected = not self._suspected
+        if self._suspected:
             return None
         self._base_s = least_s
         within, self._whole_frames = self._frames - self._whole_frames, self._frames

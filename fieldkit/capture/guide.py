@@ -78,6 +78,21 @@ class Estimated:
 
 
 @dataclass(frozen=True)
+class Loss:
+    """Frames that went missing somewhere in a range of frames."""
+
+    first: int
+    last: int
+    cause: str
+
+    def spoils(self, reading: JointReading) -> Verdict | None:
+        """The verdict on a blow that they may lie in; None where they do not."""
+        if self.last <= reading.frame or self.first >= reading.end:
+            return None
+        return Verdict(GAP, f"frames may be missing inside it ({self.cause})")
+
+
+@dataclass(frozen=True)
 class Guide:
     """Everything the test knows; every event gives a new one."""
 
@@ -97,6 +112,8 @@ class Guide:
     blows: tuple[Blow, ...] = ()
     estimates: tuple[Estimated, ...] = ()
     """Of every place."""
+    losses: tuple[Loss, ...] = ()
+    """Found by the clock when what they lie in may have been judged already."""
     record_s: float = LONGEST_S
     notice: str = ""
     """What went wrong inside, as a sentence."""
@@ -127,7 +144,8 @@ class Guide:
     def read(self, reading: JointReading) -> Guide:
         """A record was judged."""
         places = tuple(ear.place for ear in reading.ears)
-        blow = Blow(len(self.blows) + 1, reading.frame, places, reading.verdict, reading)
+        verdict = next((v for v in (one.spoils(reading) for one in self.losses) if v), None)
+        blow = Blow(len(self.blows) + 1, reading.frame, places, verdict or reading.verdict, reading)
         record_s = self.record_s
         if reading.verdict.kind == CUT_SHORT:
             record_s = min(2 * record_s, LONGEST_S)
@@ -139,6 +157,16 @@ class Guide:
             seen_frame=seen,
             record_s=record_s,
         )
+
+    def missed(self, loss: Loss) -> Guide:
+        """Frames went missing somewhere before: a blow they may lie in no longer counts."""
+        blows = tuple(
+            replace(blow, verdict=verdict)
+            if blow.joint and (verdict := loss.spoils(blow.joint))
+            else blow
+            for blow in self.blows
+        )
+        return replace(self, blows=blows, losses=(*self.losses, loss))
 
     def unreadable(self, frame: int, why: str) -> Guide:
         """A record could not be judged."""

@@ -14,7 +14,7 @@ from numpy.typing import NDArray
 from fieldkit.capture.blow import read_blow
 from fieldkit.capture.enough import Expected
 from fieldkit.capture.force import coherence_at, response_of
-from fieldkit.capture.guide import Estimated, Guide
+from fieldkit.capture.guide import Estimated, Guide, Loss
 from fieldkit.capture.guide_snapshot import GuideSnapshot, snapshot_of
 from fieldkit.capture.joint import read_joint
 from fieldkit.capture.places import Ear, Place
@@ -95,6 +95,11 @@ class GuidedTest:
             self._listen_anew = False
             self._trigger.listen_anew()
         lost = block.cause or "frames went missing" if block.lost_frames != 0 else ""
+        if block.within_frames:
+            first = block.first_frame
+            missed = Loss(first - block.within_frames, first, lost)
+            self._change(lambda guide: guide.missed(missed))
+            self._queue.put("")
         self._ring.feed(replace(block, samples=samples))
         events = self._trigger.feed(
             block.first_frame, samples[:, self._channels].astype(float), lost

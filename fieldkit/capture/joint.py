@@ -37,6 +37,8 @@ class JointReading:
     force: ForceReading | None = None
     remark: str = ""
     """What to change though it counts."""
+    end: int = 0
+    """Frame behind its record, in the count of the session."""
     struck: tuple[Struck, ...] = ()
     """Force and response of each ear; empty where it does not count, or there is no hammer."""
 
@@ -98,6 +100,7 @@ def read_joint(
         tuple(dict.fromkeys(rang)),
         force,
         force.remark(up_to_hz) if force else "",
+        frame - blow + len(signal),
         tuple(pairs),
     )
 

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
+from hypothesis import example, given, settings
 from hypothesis import strategies as st
 
 from fieldkit.capture.clock import LEAST_LOSS_S, FrameClock
@@ -49,6 +49,7 @@ def test_late_frames_and_slow_clocks_are_no_losses(seed, drift, late_s, silence_
 
 
 @settings(max_examples=25)
+@example(seed=0, late_s=0.078125, at=197281, lost=3840)
 @given(
     seed=st.integers(0, 1000),
     late_s=st.floats(0.0, 0.1),
@@ -67,3 +68,12 @@ def test_small_losses_add_up():
     losses = {(3 + k) * RATE_HZ: RATE_HZ // 100 for k in range(15)}
     told = found(losses)
     assert sum(count for _, count, _ in told) == pytest.approx(0.15 * RATE_HZ, rel=0.4)
+
+
+def test_frames_that_are_late_for_a_second_and_a_half_are_no_loss():
+    """A computer that is busy for so long delivers everything 0.2 s late, and then catches up."""
+    clock = FrameClock(RATE_HZ)
+    for number in range(1000):
+        due_s = (number + 1) * BLOCK / RATE_HZ
+        late_s = 0.2 if 4.2 < due_s < 5.7 else 0.0
+        assert clock.feed(due_s + late_s, BLOCK) is None

@@ -230,3 +230,22 @@ def test_a_place_where_a_mode_stands_still_is_left() -> None:
     assert min(abs(best - 4 * 0.3333), abs(best - 4 * 0.6667)) < 0.15
     assert next_place((mode(20, 0.01),), 3, best, beam) == ""
     assert "node" in next_place((mode(20, 0.01), mode(80, 0.1, strength=0.01)), 3, 2.0)
+
+
+def test_a_loss_that_the_clock_finds_late_takes_the_blow_back() -> None:
+    """Judged usable already, and then frames turn out to be missing within it; the one before it
+    still counts."""
+    rig = Rig()
+    rig.struck()
+    usable = rig.struck().latest
+    assert usable is not None
+    assert usable.verdict.usable
+    assert usable.joint is not None
+    late = rig.source.block(rig.frame)
+    within = rig.frame - usable.joint.end + 10
+    rig.test.feed(replace(late, lost_frames=400, cause="silence", within_frames=within))
+    shot = rig.thought()
+    assert [blow.verdict.kind for blow in shot.blows] == ["usable", "frames missing"]
+    assert "silence" in shot.blows[1].verdict.what
+    until(lambda: rig.test.snapshot().estimated_from == 1)
+    rig.test.stop()

@@ -7,6 +7,8 @@ import os
 import subprocess
 import sys
 
+import pytest
+
 from tests.capture.rig import GENEROUS_S, RATE_HZ, jack_bench, until
 
 STALL_S = 0.3
@@ -49,13 +51,18 @@ pcm.default "rig"
 """
 
 
+@pytest.mark.timeout(900)
 def test_every_overflow_is_flagged_and_nothing_is_lost_untold(tmp_path):
+    """How much an overflow cost is not known where the computer was so busy that another one came
+    just before; then only the flag is asked for, and all is done again."""
     (tmp_path / "asound.conf").write_text(ALSA)
-    blocks = json.loads(until(lambda: listened(tmp_path), 2 * GENEROUS_S, why="JACK delivers"))
-    for stalled in STALLED:
-        _, _, lost, cause = blocks[stalled]
-        assert cause == "the input overflowed"
-        assert lost > 0.5 * STALL_S * RATE_HZ
+    known = False
+    while not known:
+        blocks = json.loads(until(lambda: listened(tmp_path), 5 * GENEROUS_S, why="JACK delivers"))
+        stalls = [blocks[stalled] for stalled in STALLED]
+        assert {cause for _, _, _, cause in stalls} == {"the input overflowed"}
+        known = all(lost is not None for _, _, lost, _ in blocks)
+    assert min(lost for _, _, lost, _ in stalls) > 0.5 * STALL_S * RATE_HZ
     before, after = lag_s(blocks, 50, STALLED[0]), lag_s(blocks, STALLED[-1], len(blocks))
     assert abs(after - before) < 0.1
 

@@ -140,19 +140,22 @@ class TapRun:
             rig.tap(strength, fault=fault, direction=self._guide.snapshot().wanted.direction)
         return True
 
-    def undo(self) -> bool:
-        """Set the latest blow aside that counts; False where there is none."""
-        if not any(blow.counts for blow in self._guide.snapshot().blows):
-            return False
-        self._guide.set_aside()
-        return True
+    def undo(self) -> int | None:
+        """Set the latest blow aside that counts; its number, None where there is none."""
+        counting = [blow.number for blow in self._guide.snapshot().blows if blow.counts]
+        if not counting:
+            return None
+        self._guide.set_aside(counting[-1])
+        return counting[-1]
 
-    def redo(self) -> bool:
-        """Take the latest blow in again that was set aside."""
-        aside = [blow for blow in self._guide.snapshot().blows if blow.set_aside]
-        if aside:
-            self._guide.take_in(aside[-1].number)
-        return bool(aside)
+    def redo(self) -> int | None:
+        """Take the latest blow in again that was set aside; its number, None where there is
+        none."""
+        aside = [blow.number for blow in self._guide.snapshot().blows if blow.set_aside]
+        if not aside:
+            return None
+        self._guide.take_in(aside[-1])
+        return aside[-1]
 
     def listen_anew(self) -> None:
         """Measure the background again."""

@@ -203,13 +203,21 @@ class TapScreen(LiveScreen[TapRun]):
 
     def action_undo(self) -> None:
         """The latest blow that counts no longer does."""
-        if self.run is not None and not self.run.undo():
+        if self.run is None:
+            return
+        number = self.run.undo()
+        if number is None:
             self.notify("No blow counts yet: there is nothing to set aside.", markup=False)
+        else:
+            self.notify(f"Blow {number} is set aside; U takes it in again.", markup=False)
 
     def action_redo(self) -> None:
         """And does again."""
-        if self.run is not None and not self.run.redo():
-            self.notify("No blow was set aside.", markup=False)
+        if self.run is None:
+            return
+        number = self.run.redo()
+        said = "No blow was set aside." if number is None else f"Blow {number} counts again."
+        self.notify(said, markup=False)
 
     def action_listen(self) -> None:
         """Measure the background again."""

@@ -125,7 +125,8 @@ def told(look: TapLook, news_age_s: float = 0.0) -> list[str]:
     What the session said ``news_age_s`` ago is told while it matters, for NEWS_S at most.
     """
     latest = look.guide.latest
-    first = _numbered(latest) if latest else "No blow yet."
+    here = latest is not None and latest.places == look.guide.places
+    first = _numbered(latest) if latest and here else "No blow here yet."
     running = look.session.state == RUNNING
     news = _news(look.session) if not running or news_age_s < NEWS_S else ""
     wrong = look.trouble or news or look.guide.notice
