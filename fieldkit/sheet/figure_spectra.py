@@ -208,7 +208,7 @@ def envelope_of(
     transform = np.fft.fft(samples - samples.mean(), length)
     envelope = np.abs(np.fft.ifft(transform * gain * (hz > 0)))[: len(samples)]
     time_s = np.arange(len(samples)) / rate_hz
-    begun = min(int(2 * rate_hz / (2 * np.pi * half_width_hz)), len(samples) // 2)
+    begun = min(int(3 * rate_hz / (2 * np.pi * half_width_hz)), len(samples) // 2)
     above = envelope > 0.1 * envelope.max()
     last = max(int(np.flatnonzero(above)[-1]), begun + 8)
     part = slice(begun, begun + max((last - begun) // 2, 8))

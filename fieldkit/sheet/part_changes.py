@@ -22,8 +22,13 @@ from fieldkit.sheet.content import (
     sentence,
     table,
 )
+from fieldkit.sheet.order_response import HOW, times_text
 from fieldkit.sheet.plain import percent, unwrapped
+from fieldkit.workup.order_response import order_response
 
+NO_BANDS = (
+    "No band was held against the modes: name the excitation in the job, its speed range and orders"
+)
 NO_RESPONSE = (
     "How much less the pipe will move is not promised: the forces are not known. What is promised "
     "is that no natural frequency is left in a band; measure the level again after the change."
@@ -35,7 +40,8 @@ def bands(found: Results) -> Section:
     work = found.work
     detuning = work.detuning
     if detuning is None:
-        return section("Bands and margin", paragraphs(work.refusals("detune")))
+        why = work.refusals("detune") or (NO_BANDS,)
+        return section("Bands and margin", paragraphs(why))
     goal = work.job.goal
     title = f"To stay clear of, with a margin of {100 * detuning.margin:.0f} %, Hz"
     blocks: list[Block] = [table(title, tables.band_cells(detuning.bands))]
@@ -59,7 +65,8 @@ def changes(found: Results) -> Section:
     work = found.work
     detuning = work.detuning
     if detuning is None or not detuning.fixes:
-        why = work.refusals("detune") or ("no change of the allowed kinds was found",)
+        nothing = NO_BANDS if detuning is None else "no change of the allowed kinds was found"
+        why = work.refusals("detune") or (nothing,)
         return section("Changes", paragraphs(why))
     blocks: list[Block] = [_ranking(detuning)]
     told = detailed(detuning.fixes)
@@ -70,8 +77,26 @@ def changes(found: Results) -> Section:
     blocks.append(Heading("For every change"))
     blocks += bullets(map(sentence, common), CAUTION)
     blocks += _other_cures(detuning)
-    blocks += [Heading("Expected response"), Paragraph(NO_RESPONSE)]
+    blocks += [Heading("Expected response"), *_response(found, told), Paragraph(NO_RESPONSE)]
     return section("Changes", blocks)
+
+
+def _response(found: Results, told: Sequence[Verdict]) -> list[Block]:
+    """How strongly the pipe answers to each order, now and after each of these changes."""
+    each = [order_response(found.work, verdict) for verdict in told]
+    if not each[0]:
+        return []
+    rows = tuple(
+        (
+            orders[0].band.name,
+            times_text(orders[0].now),
+            *(times_text(order.after) for order in orders),
+        )
+        for orders in zip(*each, strict=True)
+    )
+    head = ("order", "now", *(f"after change {verdict.rank}" for verdict in told))
+    title = "Amplification of a steady force, nearest mode, worst speed (5 to 95 %)"
+    return [Table(title, head, rows, keyed=True), Paragraph(HOW)]
 
 
 def _common(found: Results, told: Sequence[Verdict]) -> list[str]:

@@ -22,7 +22,7 @@ from fieldkit.span.mesh import MESH_ERROR
 from fieldkit.workup import StateModes
 from fieldkit.workup.convergence import Convergence
 
-NO_STATES = "The span could not be solved"
+NO_STATES = "The span was not solved: describe legs and supports, and work the job out again"
 
 
 def handbook(found: Results) -> Section:
@@ -72,7 +72,7 @@ def computed(found: Results) -> Section:
         )
     blocks += paragraphs(found.why_not("mesh"))
     blocks += bullets(sentence(note) for note in found.weight_notes)
-    return section("Computed modes", blocks)
+    return section("Computed modes", blocks or [Paragraph(sentence(NO_STATES))])
 
 
 def _of_state(found: Results, entry: StateModes) -> list[Block]:
