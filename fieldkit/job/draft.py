@@ -46,6 +46,14 @@ class Draft:
         """Finished rows of a table."""
         return self.rows.get(table, ())
 
+    def with_answers(self, table: str, answers: Answers) -> Draft:
+        """With other answers to ``pipe`` or ``goal``."""
+        return replace(self, pipe=answers) if table == "pipe" else replace(self, goal=answers)
+
+    def with_rows(self, table: str, rows: tuple[Answers, ...]) -> Draft:
+        """With other finished rows of a table."""
+        return replace(self, rows={**self.rows, table: rows})
+
     @property
     def title(self) -> str:
         """What the job is called."""
@@ -120,7 +128,7 @@ def _pipe(draft: Draft) -> Iterator[str]:
     answers = draft.pipe
     size, schedule = answers.get("size", "").strip(), answers.get("schedule", "").strip()
     yield "[pipe]"
-    yield _pair("outside_diameter" if measured_size(size) else "size", size)
+    yield _pair("outside_diameter" if measured_size(size) else "size", _named_size(size))
     yield _pair("wall" if measured_wall(schedule) else "schedule", schedule)
     yield _pair("material", answers.get("material") or "carbon steel")
     yield ""
@@ -132,6 +140,11 @@ def _pipe(draft: Draft) -> Iterator[str]:
     else:
         yield _pair("name", contents)
     yield ""
+
+
+def _named_size(size: str) -> str:
+    """``4`` is NPS 4: who reads the file must not wonder."""
+    return f"NPS {size.strip()}" if re.fullmatch(r"[\d\s./-]+", size) else size
 
 
 def _states(draft: Draft) -> Iterator[str]:

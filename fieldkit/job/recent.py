@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import json
 import os
+import threading
 import time
 from contextlib import suppress
 from dataclasses import asdict, dataclass
@@ -21,6 +22,7 @@ from fieldkit.job.folders import state_folder
 MOST = 20
 NO_RECORDINGS = "no recordings yet"
 GONE = "no longer there"
+_ONE_AT_A_TIME = threading.Lock()
 
 
 @dataclass(frozen=True)
@@ -47,7 +49,11 @@ def recents(folder: Path | None = None) -> tuple[Recent, ...]:
 
 def remember(path: Path, state: str = "", folder: Path | None = None) -> None:
     """Put a job at the head of the list; an empty ``state`` keeps the one known before."""
-    full = os.path.realpath(path)
+    with _ONE_AT_A_TIME:
+        _remember(os.path.realpath(path), state, folder)
+
+
+def _remember(full: str, state: str, folder: Path | None) -> None:
     listed = recents(folder)
     before = next((entry for entry in listed if entry.path == full), None)
     stamp = _stamp(Path(full)) if state else ""

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Awaitable, Callable, Iterable
-from pathlib import Path
+from pathlib import Path, PurePath
 from typing import ClassVar
 
 from textual.app import ComposeResult, SystemCommand
@@ -36,7 +36,10 @@ class FieldkitApp(Measuring):
     """Six views in the order of the work, over one job."""
 
     TITLE = "fieldkit"
-    CSS_PATH = Path(__file__).with_name("app.tcss")
+    CSS_PATH: ClassVar[list[str | PurePath]] = [
+        Path(__file__).with_name("app.tcss"),
+        Path(__file__).parent / "start" / "start.tcss",
+    ]
     HORIZONTAL_BREAKPOINTS = [(0, "-narrow"), (100, "-wide")]  # noqa: RUF012
     VERTICAL_BREAKPOINTS = [(0, "-short"), (34, "-tall")]  # noqa: RUF012
     BINDINGS: ClassVar[list[BindingType]] = [
@@ -45,13 +48,20 @@ class FieldkitApp(Measuring):
         Binding("S", "save_as", "Save as", show=False, id="file.save-as",
                 tooltip="Write the job under another name"),
         Binding("o", "open", "Open", show=False, id="file.open", tooltip="Open a job file"),
-        Binding("n", "new", "New", show=False, id="file.new", tooltip="Start a new job"),
+        Binding("n", "new", "New", show=False, id="file.new",
+                tooltip="Describe a new pipe, step by step"),
         Binding("s", "sample", "Sample", show=False, id="file.sample",
                 tooltip="Copy the sample jobs out and open one"),
         Binding("m", "measure('tap')", "Measure", show=False, id="capture.tap",
                 tooltip="Guided tap test with an input or the practice rig"),
-        Binding("u", "undo", "Undo", show=False, id="edit.undo",
+        Binding("u,ctrl+z", "undo", "Undo", show=False, id="edit.undo",
                 tooltip="Take the last change of the job back"),
+        Binding("U,ctrl+y", "redo", "Redo", show=False, id="edit.redo",
+                tooltip="Make the change again that was taken back"),
+        Binding("E", "edit_text", "Edit file", show=False, id="edit.text",
+                tooltip="Edit the job file in your own editor"),
+        Binding("y", "units", "SI/US", show=False, id="look.units",
+                tooltip="Show everything in SI or in US units"),
         Binding("r", "rerun", "Rework", show=False, id="work.again",
                 tooltip="Work the whole job out again"),
         Binding("escape", "stop", "Stop", show=False, priority=True, id="work.stop",
@@ -83,6 +93,8 @@ class FieldkitApp(Measuring):
     def on_mount(self) -> None:
         """First paint, then the job: nothing slow may come before."""
         self.refresh_desk()
+        if self.job_path is None:
+            self.welcome()
         self.call_after_refresh(self.go_on)
 
     async def go_on(self) -> None:
@@ -97,13 +109,12 @@ class FieldkitApp(Measuring):
         self.open_or_ask()
 
     def open_or_ask(self) -> None:
-        """Open the job that was named, or ask where to start."""
+        """Open the job that was named; without one the start screen is there already."""
         if self.job_path is not None:
             self.say_progress("opening")
             self.read_job(self.job_path)
             return
         self.warm_libraries()
-        self.welcome()
 
     def view(self, name: str) -> View:
         """One of the six."""

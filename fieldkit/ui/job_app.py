@@ -29,10 +29,26 @@ class JobApp(App[None]):
 
     def __init__(self) -> None:
         super().__init__()
-        self.open_job: OpenJob | None = None
+        self._open_job: OpenJob | None = None
         self.desk = Desk()
         self.ticket = 0
         """Number of the work under way; a result with another number is dropped."""
+
+    @property
+    def open_job(self) -> OpenJob | None:
+        """The text of the job, and the way back."""
+        return self._open_job
+
+    @open_job.setter
+    def open_job(self, opened: OpenJob | None) -> None:
+        self._open_job = opened
+        self.job_changed(opened)
+
+    def job_changed(self, opened: OpenJob | None) -> None:
+        """The text of the job is another, or it was saved."""
+
+    def begin_afresh(self) -> None:
+        """Another job is about to come on the desk."""
 
     def refresh_desk(self) -> None:
         """Show what lies on the desk."""
@@ -57,16 +73,17 @@ class JobApp(App[None]):
 
     def begin(self, opened: OpenJob, job: Job) -> None:
         """Lay another job on an empty desk and work it out."""
-        self.open_job = opened
+        self.begin_afresh()
         self.desk = Desk(job=job, text=opened.text)
+        self.open_job = opened
         self.start_work()
 
     def take(self, opened: OpenJob, job: Job) -> None:
         """Go on with a changed text of the same job; results stand until newer ones come."""
-        self.open_job = opened
         self.desk = replace(
             self.desk, job=job, text=opened.text, chosen=None, chosen_modes=(), traces={}
         )
+        self.open_job = opened
         self.start_work()
 
     def start_work(self) -> None:
@@ -114,15 +131,6 @@ class JobApp(App[None]):
         """A thread that fell over is told in a sentence."""
         if event.state is WorkerState.ERROR and isinstance(event.worker.error, Exception):
             self.tell(core.unexpected(event.worker.error), wrong=True)
-
-    def on_job_opened(self, message: say.JobOpened) -> None:
-        """A job file was read."""
-        self.begin(OpenJob(message.text, message.text), message.job)
-
-    def on_open_failed(self, message: say.OpenFailed) -> None:
-        """A job file could not be read: the one on the desk stays."""
-        self.say_progress("")
-        self.tell(message.sentence, wrong=True)
 
     def on_work_step(self, message: say.WorkStep) -> None:
         """Progress of the newest work only."""

@@ -13,7 +13,7 @@ from textual import work
 from fieldkit.errors import FieldkitError
 from fieldkit.ui.dialogs import PathScreen, PickScreen
 from fieldkit.ui.document import OpenJob
-from fieldkit.ui.editing import Editing
+from fieldkit.ui.text_editing import TextEditing
 
 if TYPE_CHECKING:
     from fieldkit.ui.capture.bench import Bench
@@ -26,7 +26,7 @@ WITHOUT_JOB = (
 )
 
 
-class Measuring(Editing):
+class Measuring(TextEditing):
     """The app's dealings with inputs."""
 
     def __init__(self) -> None:

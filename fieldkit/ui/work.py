@@ -25,7 +25,16 @@ Stop = Callable[[], bool]
 
 
 def warm() -> None:
-    """Load the slow libraries, so that the first answer does not wait for them."""
+    """Load the slow libraries, so that the first answer does not wait for them.
+
+    What reads a job and its quantities comes first: it is needed while one is typed.
+    """
+    import fieldkit.job.convert  # noqa: F401
+    from fieldkit.quantity import show
+    from fieldkit.span.pipes import known_sizes
+
+    show(1.0, "length")
+    known_sizes()
     import scipy.linalg
     import scipy.ndimage
     import scipy.optimize
@@ -34,9 +43,6 @@ def warm() -> None:
     import scipy.special  # noqa: F401
 
     from fieldkit import workup  # noqa: F401
-    from fieldkit.quantity import show
-
-    show(1.0, "length")
 
 
 def open_job(path: Path, post: Post) -> None:

@@ -19,6 +19,16 @@ from tests.ui.job_text import JOB_TEXT
 Run = Callable[[Job, Progress], chain.Workup]
 
 
+@pytest.fixture(autouse=True)
+def state_folder(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
+    """Recent jobs and unsaved work of the test alone; empty at its start."""
+    home = tmp_path / "state"
+    monkeypatch.setattr("fieldkit.job.folders.state_folder", lambda: home)
+    for module in ("recent", "journal"):
+        monkeypatch.setattr(f"fieldkit.job.{module}.state_folder", lambda: home)
+    return home
+
+
 @pytest.fixture
 def job_path(tmp_path: Path) -> Path:
     """The made-up job on the disk."""

@@ -5,10 +5,15 @@ from __future__ import annotations
 from pathlib import Path
 
 import pytest
-from textual.widgets import Button, Input
+from textual.widgets import Button, Input, Static
 
 from fieldkit.ui.app import FieldkitApp
-from fieldkit.ui.dialogs import AskScreen, PathScreen, PickScreen
+from fieldkit.ui.broken_screen import BrokenScreen
+from fieldkit.ui.dialogs import AskScreen, PathScreen
+from fieldkit.ui.start.guided import GuidedScreen
+from fieldkit.ui.start.picker import FilePicker
+from fieldkit.ui.start.start_screen import StartScreen
+from fieldkit.ui.table import Table
 from tests.ui.driving import (
     change_something,
     choose_row,
@@ -97,21 +102,23 @@ async def test_a_file_that_is_no_job_is_one_sentence(tmp_path: Path, quick: None
     path = tmp_path / "job.toml"
     path.write_text("title = 3 metres", encoding="utf-8")
     app = FieldkitApp(path)
-    async with opened(app):
+    async with opened(app) as pilot:
+        await until(pilot, lambda: isinstance(app.screen, BrokenScreen))
         assert app.desk.job is None
         assert str(path) in said(app)[-1]
         assert "No job is open" in text_of(app, "#reading")
+        assert "▶    1  title = 3 metres" in str(app.screen.query_one("#excerpt", Static).render())
+        await pilot.press("escape")
+        await until(pilot, lambda: isinstance(app.screen, StartScreen))
 
 
 async def test_without_a_job_the_app_offers_a_start(quick: None) -> None:
     app = FieldkitApp()
     async with opened(app) as pilot:
-        assert isinstance(app.screen, PickScreen)
-        await pilot.press("down", "down", "enter")
+        assert isinstance(app.screen, StartScreen)
+        await pilot.press("enter")
         await settled(pilot)
-        assert app.desk.job is not None
-        assert app.desk.job.title == "New job"
-        assert app.here == "span"
+        assert isinstance(app.screen, GuidedScreen)
 
 
 async def test_samples_are_copied_out_and_one_is_opened(
@@ -126,8 +133,8 @@ async def test_samples_are_copied_out_and_one_is_opened(
     monkeypatch.setattr("fieldkit.cli.samples.copy_samples", copy)
     app = FieldkitApp()
     async with opened(app) as pilot:
-        await pilot.press("enter")
-        await pilot.pause()
+        await pilot.press("s")
+        await until(pilot, lambda: isinstance(app.screen, PathScreen))
         app.screen.query_one(Input).value = str(tmp_path / "samples")
         await pilot.press("enter")
         await pilot.pause()
@@ -137,15 +144,14 @@ async def test_samples_are_copied_out_and_one_is_opened(
         assert app.desk.job is not None
 
 
-async def test_open_asks_for_a_path_and_completes_it(app: FieldkitApp, job_path: Path) -> None:
+async def test_open_lists_the_folder_and_completes_a_path(app: FieldkitApp, job_path: Path) -> None:
     async with opened(app) as pilot:
         await pilot.press("o")
         await pilot.pause()
-        assert isinstance(app.screen, PathScreen)
+        assert isinstance(app.screen, FilePicker)
         typed = app.screen.query_one(Input)
         typed.value = str(job_path)[:-3]
-        typed.cursor_position = len(typed.value)
-        await until(pilot, lambda: typed._suggestion != "")
+        await until(pilot, lambda: app.screen.query_one(Table).row_count == 1)
         await pilot.press("tab")
         assert typed.value == str(job_path)
         await pilot.press("enter")

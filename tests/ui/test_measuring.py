@@ -20,6 +20,7 @@ from fieldkit.ui.capture.tap_screen import TapScreen
 from fieldkit.ui.capture.wiring import Wiring
 from fieldkit.ui.dialogs import AskScreen, PathScreen, PickScreen
 from fieldkit.ui.forms import FormWindow
+from fieldkit.ui.start.start_screen import StartScreen
 from tests.capture.rig import require
 from tests.ui.capturing import StepPace, on_screen, play, until
 from tests.ui.driving import opened, rows_of, said, settled, text_of
@@ -57,8 +58,8 @@ async def test_the_practice_rig_leads_from_the_start_to_a_ranked_change(
     app = FieldkitApp()
     app.bench = bench_of(tmp_path, pace)
     async with app.run_test(size=(80, 24)) as pilot:
-        await on_screen(pilot, PickScreen)
-        await pilot.press("down", "down", "down", "enter")
+        await on_screen(pilot, StartScreen)
+        await pilot.press("p")
         await on_screen(pilot, PathScreen)
         await pilot.press("enter")
         await on_screen(pilot, SetupScreen)
@@ -107,8 +108,8 @@ async def test_ctrl_q_while_tapping_saves_into_the_job_and_ends_the_app(
     app = FieldkitApp()
     app.bench = bench_of(tmp_path, pace)
     async with app.run_test(size=(80, 24)) as pilot:
-        await on_screen(pilot, PickScreen)
-        await pilot.press("down", "down", "down", "enter")
+        await on_screen(pilot, StartScreen)
+        await pilot.press("p")
         await on_screen(pilot, PathScreen)
         await pilot.press("enter")
         await on_screen(pilot, SetupScreen)
@@ -169,7 +170,7 @@ async def test_an_input_is_refused_for_a_job_with_simulated_recordings(
 async def test_m_asks_for_a_job_where_there_is_none(tmp_path: Path, quick: None) -> None:
     app = FieldkitApp()
     async with app.run_test(size=(80, 24)) as pilot:
-        await on_screen(pilot, PickScreen)
+        await on_screen(pilot, StartScreen)
         await pilot.press("escape", "m")
         await on_screen(pilot, PickScreen)
         assert app.screen.heading == "Measure for which job?"  # type: ignore[attr-defined]

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+import asyncio
+from collections.abc import Awaitable, Callable, Mapping, Sequence
+from contextlib import suppress
 from dataclasses import dataclass
 from typing import ClassVar
 
@@ -15,10 +17,18 @@ from textual.message import Message
 from textual.widgets import Input, OptionList, Static
 from textual.widgets.option_list import Option
 
-from fieldkit.ui.forms.codecs import checked
+from fieldkit.ui.forms.codecs import Choice, checked
 from fieldkit.ui.forms.offers import Offer, ranked
 from fieldkit.ui.forms.tables import Field, Form
 from fieldkit.ui.words import safe
+
+Entered = Callable[["FieldRow", bool], Awaitable[None]]
+LONGEST_WAIT_S = 5.0
+CHOOSE = "type to narrow the list, ↓ and enter choose from it"
+
+
+async def _nothing(_row: FieldRow, _chose: bool) -> None:
+    """Enter means nothing until somebody says what."""
 
 
 class FieldRow(Horizontal):
@@ -31,6 +41,8 @@ class FieldRow(Horizontal):
         self.first_text = text
         self.units = units
         self.error = ""
+        self.implied = ""
+        """What the other fields make of this one while it is empty."""
 
     def compose(self) -> ComposeResult:
         """The three parts."""
@@ -75,33 +87,44 @@ class FieldRow(Horizontal):
     @property
     def when_empty(self) -> str:
         """What leaving it out means."""
-        return self.field.when_empty
+        return self.implied or self.field.when_empty
 
 
 class Choices(OptionList, can_focus=False):
     """What the field in hand offers; the keyboard stays in the field."""
 
+    ROOM = 26
+    """Columns where it has not been laid out yet."""
+
     def show(self, offers: Sequence[Offer]) -> None:
         """Fill it, or hide it where nothing is offered."""
+        room = (self.content_size.width or self.ROOM) - 1
         self.clear_options()
-        self.add_options([Option(_line(offer), id=f"o{i}") for i, offer in enumerate(offers)])
+        self.add_options([Option(_line(offer, room), id=f"o{i}") for i, offer in enumerate(offers)])
         self.display = bool(offers)
 
 
-def _line(offer: Offer) -> Content:
-    said = f"  {offer.said}" if offer.said else ""
-    return Content(safe(offer.value)) + Content.styled(safe(said), "$text-muted")
+def _line(offer: Offer, room: int) -> Content:
+    """One line, cut where it is too long."""
+    value = safe(offer.value)
+    said = f"  {safe(offer.said)}" if offer.said else ""
+    if len(value) + len(said) > room:
+        said = f"{said[: max(0, room - len(value) - 1)]}…" if room > len(value) + 4 else ""
+    return Content(value) + Content.styled(said, "$text-muted")
 
 
 class Fields(Container):
     """The fields of a form; arrows walk among them, or among what the field in hand offers."""
 
     BINDINGS: ClassVar[list[BindingType]] = [
-        Binding("down", "step(1)", "Next", show=False, id="fields.next"),
-        Binding("up", "step(-1)", "Before", show=False, id="fields.before"),
-        Binding("tab", "leave(1)", "Next", show=False, id="fields.leave"),
-        Binding("shift+tab", "leave(-1)", "Before", show=False, id="fields.leave-back"),
-    ]
+        Binding("down", "step(1)", "Next", show=False, priority=True, id="fields.next"),
+        Binding("up", "step(-1)", "Before", show=False, priority=True, id="fields.before"),
+        Binding("tab", "leave(1)", "Next", show=False, priority=True, id="fields.leave"),
+        Binding("shift+tab", "leave(-1)", "Before", show=False, priority=True,
+                id="fields.leave-back"),
+        Binding("enter", "enter", "Take", show=False, priority=True, id="fields.enter"),
+    ]  # fmt: skip
+    """They are looked at before the field gets the key, so that fast typing keeps its order."""
 
     @dataclass
     class Explained(Message):
@@ -113,14 +136,6 @@ class Fields(Container):
     class Typed(Message):
         """Something else stands in a field."""
 
-    @dataclass
-    class Entered(Message):
-        """Enter was pressed in a field; what was chosen from the list stands in it."""
-
-        key: str
-        chose: bool
-        """Whether something was taken from the list."""
-
     def __init__(
         self, form: Form, texts: Mapping[str, str], units: str, *, id: str | None = None
     ) -> None:
@@ -128,7 +143,10 @@ class Fields(Container):
         self.form = form
         self.texts = texts
         self.units = units
+        self.entered: Entered = _nothing
+        """Told of enter in a field, and whether it took something from the list."""
         self._offers: list[Offer] = []
+        self._offered_for = ""
         self._typed_here = False
 
     def compose(self) -> ComposeResult:
@@ -147,6 +165,7 @@ class Fields(Container):
     def on_mount(self) -> None:
         """Nothing is offered before a field is in hand."""
         self.choices.display = False
+        self._imply()
 
     @property
     def choices(self) -> Choices:
@@ -198,7 +217,16 @@ class Fields(Container):
         if row is self.here:
             self.explain(row)
             self._offer(row)
+        self._imply()
         self.post_message(self.Typed())
+
+    def _imply(self) -> None:
+        """What the fields say of those that are empty."""
+        for row in self.rows:
+            if row.field.implied is not None:
+                row.implied = row.field.implied(self.values)
+                if not row.text:
+                    row.judge()
 
     def on_descendant_focus(self, event: events.DescendantFocus) -> None:
         """Another field is in hand."""
@@ -214,10 +242,13 @@ class Fields(Container):
         if row.error and row.text:
             self.post_message(self.Explained(f"✗ {row.error}", wrong=True))
         else:
-            hint = f"{row.field.label}: {row.field.codec.hint}"
+            listed = row.field.offers is not None and isinstance(row.field.codec, Choice)
+            hint = CHOOSE if listed else row.field.codec.hint
+            hint = f"{row.field.label}: {hint}"
             self.post_message(self.Explained(hint, wrong=False))
 
     def _offer(self, row: FieldRow) -> None:
+        self._offered_for = row.text
         offered = row.field.offers(self.values) if row.field.offers else ()
         exact = any(offer.value == row.text for offer in offered)
         self._offers = ranked(offered, "" if exact else row.text)
@@ -241,8 +272,22 @@ class Fields(Container):
             return True
         return (row.field.needed and not row.text) or (self._typed_here and not exact)
 
-    def action_step(self, step: int) -> None:
+    async def caught_up(self) -> None:
+        """Wait until the field in hand holds every key that was pressed before this one."""
+        row = self.here
+        if row is None:
+            return
+        caught = asyncio.Event()
+        row.input.call_later(caught.set)
+        with suppress(TimeoutError):
+            await asyncio.wait_for(caught.wait(), LONGEST_WAIT_S)
+        if row.text != self._offered_for:
+            row.judge()
+            self._offer(row)
+
+    async def action_step(self, step: int) -> None:
         """To another field, or through what is offered."""
+        await self.caught_up()
         if not self._choosing:
             self._walk(step)
             return
@@ -254,8 +299,9 @@ class Fields(Container):
         else:
             self._walk(step)
 
-    def action_leave(self, step: int) -> None:
+    async def action_leave(self, step: int) -> None:
         """To another field, with what was chosen."""
+        await self.caught_up()
         self._take_choice()
         self._walk(step)
 
@@ -277,20 +323,19 @@ class Fields(Container):
         row.input.cursor_position = len(chosen)
         row.judge()
 
-    def on_option_list_option_selected(self, event: OptionList.OptionSelected) -> None:
+    async def on_option_list_option_selected(self, event: OptionList.OptionSelected) -> None:
         """A click takes what it points at."""
         event.stop()
         row = self.here
         if row is not None and event.option_index < len(self._offers):
             self._put_choice(row, self._offers[event.option_index].value)
-            self.post_message(self.Entered(row.field.key, chose=True))
+            await self.entered(row, True)
 
-    def on_input_submitted(self, event: Input.Submitted) -> None:
-        """Enter takes what is chosen; what comes next the owner says."""
-        event.stop()
-        row = event.input.parent
-        if isinstance(row, FieldRow):
-            self.post_message(self.Entered(row.field.key, chose=self._take_choice()))
+    async def action_enter(self) -> None:
+        """Take what is chosen; what comes next the owner says."""
+        await self.caught_up()
+        if (row := self.here) is not None:
+            await self.entered(row, self._take_choice())
 
     def focus_on(self, key: str) -> None:
         """Put the keyboard into a field."""

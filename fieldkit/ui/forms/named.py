@@ -32,13 +32,13 @@ class PipeSize:
                 raise InputError(
                     f"there is no standard pipe size {quoted(text)}", f"write {self.hint}"
                 ) from None
-            return f"{show(parse(text, 'length'), 'length', units)} outside"
-        return f"{show(pipe.outside_diameter_m, 'length', units)} outside"
+            return f"OD {show(parse(text, 'length'), 'length', units)}"
+        return f"OD {show(pipe.outside_diameter_m, 'length', units)}"
 
 
 @dataclass(frozen=True)
 class Schedule:
-    """A schedule, or a measured wall where that is allowed; whether it fits the size, the job says."""
+    """A schedule of any size, or a measured wall where that is allowed."""
 
     measured: bool = False
 
@@ -56,7 +56,7 @@ class Schedule:
         if is_schedule(text):
             return ""
         if self.measured and measured_wall(text):
-            return f"{show(parse(text, 'length'), 'length', units)} wall"
+            return f"wall {show(parse(text, 'length'), 'length', units)}"
         raise InputError(f"there is no schedule {quoted(text)}", f"write {self.hint}")
 
 

@@ -137,8 +137,8 @@ MOTIONS = fixed(
 HEADINGS = fixed(
     Offer("+x", "level"),
     Offer("-x", "level, back"),
-    Offer("+y", "level, to the left of +x"),
-    Offer("-y", "level, to the right of +x"),
+    Offer("+y", "level, left of +x"),
+    Offer("-y", "level, right of +x"),
     Offer("+z", "up"),
     Offer("-z", "down"),
 )
@@ -165,10 +165,6 @@ def machines(_values: Values) -> Sequence[Offer]:
     from fieldkit.job.machines import FIXED, MACHINES
 
     return [
-        Offer(
-            name, "mains, vortex, pulses" if name == FIXED else f"count {machine.counted}".strip()
-        )
-        if machine.counted or name == FIXED
-        else Offer(name)
+        Offer(name, "mains, vortex" if name == FIXED else machine.counted)
         for name, machine in MACHINES.items()
     ]

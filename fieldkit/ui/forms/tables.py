@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 
 from fieldkit.span.supports import KINDS
@@ -56,6 +57,8 @@ class Field:
     """Word before the value in a list; None takes the label, empty is for what needs none."""
     offers: OffersOf | None = None
     """What there is to choose from."""
+    implied: Callable[[Mapping[str, str]], str] | None = None
+    """What it means when it is empty, as far as the other fields say."""
 
 
 @dataclass(frozen=True)

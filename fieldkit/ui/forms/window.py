@@ -28,7 +28,7 @@ class FormWindow(ModalScreen[Values | None]):
 
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding("escape", "dismiss", "Leave", id="form.leave"),
-        Binding("ctrl+s", "take", "Take", id="form.take"),
+        Binding("ctrl+s", "take", "Take", priority=True, id="form.take"),
     ]
 
     def __init__(
@@ -56,6 +56,7 @@ class FormWindow(ModalScreen[Values | None]):
 
     def on_mount(self) -> None:
         """Start in the first field, or go on with what was typed before."""
+        self.fields.entered = self.entered
         rows = self.fields.rows
         for row in rows:
             if row.field.key in self.typed:
@@ -80,15 +81,16 @@ class FormWindow(ModalScreen[Values | None]):
         """The field in hand has something to say."""
         self._say(message.sentence, message.wrong)
 
-    def on_fields_entered(self, message: Fields.Entered) -> None:
+    async def entered(self, _row: FieldRow, chose: bool) -> None:
         """Enter takes the form, or first what was chosen from a list."""
-        if message.chose:
+        if chose:
             self.focus_next()
         else:
-            self.action_take()
+            await self.action_take()
 
-    def action_take(self) -> None:
+    async def action_take(self) -> None:
         """Hand the values back, unless a field or the whole job objects."""
+        await self.fields.caught_up()
         wrong = self.fields.first_wrong
         if wrong is not None:
             wrong.input.focus()
