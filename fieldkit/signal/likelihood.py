@@ -28,6 +28,9 @@ Real = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
 _MOST_STEPS = 25
+_STEPS_AT_LEAST = 3
+_MORE_LIKE_IT = 10.0
+"""Steps as good as the next one that may still come."""
 CLOSELY = 1e-4
 """Cost a further step would save, over the noise variance, at which a fit stops."""
 ROUGHLY = 0.02
@@ -97,17 +100,25 @@ def fit(
     return fit_before(Still(bins, passive, leftover_terms), active)
 
 
-def fit_before(still: Still, active: Sequence[Component], enough: float = CLOSELY) -> Fit:
+def fit_before(
+    still: Still,
+    active: Sequence[Component],
+    enough: float = CLOSELY,
+    useful: float = np.inf,
+) -> Fit:
     """Fit the active poles, the same in every tap, before a still background.
 
-    The residual cost is a local minimum or, after many steps, close to one.
+    The residual cost is a local minimum or, after many steps, close to one. A fit is also left
+    where many more steps as good as the next would not bring its cost down to a ``useful`` one.
     """
     omega = np.array([p.pole.imag for p in active])
     decay = np.array([p.decay_per_s for p in active])
     point, damping = Point.at(still, omega, decay), 1e-3
-    for _ in range(_MOST_STEPS if len(active) else 0):
+    for number in range(_MOST_STEPS if len(active) else 0):
         move, promise = point.step(damping)
         if promise < enough * max(point.cost / max(still.bins.rows, 1), 1.0):
+            break
+        if number >= _STEPS_AT_LEAST and point.cost - _MORE_LIKE_IT * promise > useful:
             break
         trial = Point.at(still, *moved(point.omega, point.decay, move, still.bins))
         if trial.cost < point.cost:

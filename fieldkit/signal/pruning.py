@@ -95,13 +95,16 @@ def without_if_idle(
     left = [p for p in firm if p is not current]
     if scattered(current):
         still = surroundings(traces, around, without(held, [current]), top_hz)
-    alone = fit_before(still, left, ROUGHLY)
+    freedom = with_it.freedom + 2 + 2 * len(traces)
+    worth = needed_gain(freedom, len(traces), threshold(len(traces), 100))
+    if scattered(current):
+        worth += freedom_price([current], len(traces), freedom)
+    useful = np.inf if must_go else with_it.cost + worth * max(with_it.variance, 1.0)
+    alone = fit_before(still, left, ROUGHLY, useful)
     saved = alone.cost - with_it.cost
     loose = looser(traces, near, rest, top_hz, alone, around, least=saved)
     noise = max(min(with_it.variance, loose.variance if loose else np.inf), 1.0)
-    worth = needed_gain(alone.freedom, len(traces), threshold(len(traces), 100)) * noise
-    if scattered(current):
-        worth += freedom_price([current], len(traces), alone.freedom) * noise
+    worth *= noise
     kept = np.inf if must_go else with_it.cost + worth
     if loose is not None:
         price = freedom_price(near, len(traces), alone.freedom) * noise

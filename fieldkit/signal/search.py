@@ -113,14 +113,16 @@ def add(traces: Sequence[Trace], found: Found, candidate: Candidate, region: Reg
     around = [*near, new]
     still = surroundings(traces, around, held, region.high_hz)
     before = fit_before(still, firm, ROUGHLY)
-    after = fit_before(still, [*before.active, new], ROUGHLY)
+    needed = needed_gain(before.freedom, len(traces), threshold(len(traces), 100))
+    useful = before.cost - needed
+    after = fit_before(still, [*before.active, new], ROUGHLY, useful)
     if after.variance > _AS_NOISE:
-        others = [fit_before(still, s, ROUGHLY) for s in split(before.active, new, traces)]
+        halves = split(before.active, new, traces)
+        others = [fit_before(still, pair, ROUGHLY, useful) for pair in halves]
         after = min([after, *others], key=lambda fit: fit.cost)
     saved = before.cost - after.cost
     loose = looser(traces, near, rest, region.high_hz, before, around, least=saved)
     noise = max(min(after.variance, loose.variance if loose else np.inf), 1.0)
-    needed = needed_gain(before.freedom, len(traces), threshold(len(traces), 100))
     gain = saved - needed * noise
     if loose is not None:
         price = freedom_price(near, len(traces), before.freedom)
