@@ -2,15 +2,21 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterable
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from fieldkit.detune.excitation import excitation_band
 from fieldkit.ui.units import AMPLITUDES
-from fieldkit.ui.widgets import BandShade, Curve, Mark, TapMark
+from fieldkit.ui.widgets import BandShade, Curve, DecayLine, Mark, TapMark
+from fieldkit.ui.widgets.spectrum_data import ROLES
 from fieldkit.ui.words import DASH, plus_minus, safe
 
 if TYPE_CHECKING:
+    import numpy as np
+    from numpy.typing import NDArray
+
     from fieldkit.signal.modes import MeasuredMode
     from fieldkit.signal.running import RunningLine
     from fieldkit.signal.spectrum import Spectrum
@@ -20,6 +26,9 @@ if TYPE_CHECKING:
 SHORT = {"vertical": "vert", "lateral": "lat", "axial": "ax", "vertical+lateral": "v+l"}
 """Directions where there is little room."""
 MOST_MARKS = 8
+LETTERS = "ABCDEFGH"
+RUNG_OUT = 4.0
+"""Time constants after which 2 % of a decay are left."""
 SAME = 0.02
 """A computed mode this near to one that was seen needs no mark of its own."""
 
@@ -57,12 +66,55 @@ def _in_short(reasons: tuple[str, ...]) -> str:
     return safe(reasons[0].partition(":")[0]) if reasons else ""
 
 
-def mode_marks(modes: Iterable[MeasuredMode]) -> tuple[Mark, ...]:
-    """Measured modes, with their direction where it is known."""
+def overlaid(spectra: Iterable[tuple[Spectrum, str]]) -> tuple[Curve, ...]:
+    """Several spectra over each other, told apart by letter and by the way the line is broken."""
     return tuple(
-        Mark(mode.frequency_hz, SHORT.get(mode.direction or "", mode.direction or ""))
-        for mode in modes
+        replace(
+            spectrum_curve(spectrum, label),
+            role=ROLES[number % len(ROLES)],
+            letter=LETTERS[number % len(LETTERS)],
+        )
+        for number, (spectrum, label) in enumerate(spectra)
     )
+
+
+def decay_lines(
+    reading: TapReading | None, samples: NDArray[np.float64] | None, modes: Iterable[MeasuredMode]
+) -> tuple[DecayLine, ...]:
+    """The envelope of the strongest mode of a recording over each of its usable blows."""
+    from fieldkit.signal.decay_line import decay_height
+
+    if reading is None or samples is None or not len(samples):
+        return ()
+    entry = reading.entry
+    own = [m for m in modes if m.damping_ratio and m.direction in (entry.direction, None)]
+    mode = max(own, key=lambda m: m.strength, default=None)
+    if mode is None or mode.damping_ratio is None:
+        return ()
+    rate_hz = len(samples) / reading.duration_s
+    decay = mode.damping_ratio * 2 * math.pi * mode.frequency_hz
+    word = f"decay of {mode.frequency_hz:.1f} Hz, {100 * mode.damping_ratio:.2g} %"
+    found = []
+    for tap in reading.search.taps:
+        start_s, end_s = tap.start / reading.rate_hz, tap.end / reading.rate_hz
+        height = decay_height(
+            samples[round(start_s * rate_hz) : round(end_s * rate_hz)], rate_hz, decay
+        )
+        if tap.usable and height is not None:
+            rung_out_s = min(end_s, start_s + RUNG_OUT / decay)
+            found.append(DecayLine(start_s, rung_out_s, height, decay, word))
+    return tuple(found)
+
+
+def mode_marks(modes: Iterable[MeasuredMode]) -> tuple[Mark, ...]:
+    """Measured modes, with their direction where it is known, and their damping."""
+    return tuple(Mark(mode.frequency_hz, _mode_label(mode)) for mode in modes)
+
+
+def _mode_label(mode: MeasuredMode) -> str:
+    direction = SHORT.get(mode.direction or "", mode.direction or "")
+    damping = f"{100 * mode.damping_ratio:.2g} %" if mode.damping_ratio else ""
+    return " ".join(word for word in (direction, damping) if word)
 
 
 def tap_marks(desk: Desk) -> tuple[Mark, ...]:

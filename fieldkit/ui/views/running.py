@@ -13,12 +13,19 @@ from fieldkit.detune.excitation import excitation_band
 from fieldkit.ui.diagnosis_words import details, in_short, times
 from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.messages import AddWanted, EditWanted
-from fieldkit.ui.plots import mode_cells, running_marks, shaded, spectrum_curve, unit_of
+from fieldkit.ui.plots import (
+    mode_cells,
+    overlaid,
+    running_marks,
+    shaded,
+    spectrum_curve,
+    unit_of,
+)
 from fieldkit.ui.readings import nearest_mode
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.units import level
 from fieldkit.ui.views.base import View, plain
-from fieldkit.ui.widgets import SpectrumPlot
+from fieldkit.ui.widgets import Curve, SpectrumPlot
 from fieldkit.ui.words import DASH, hertz, ratio_percent, seconds, sentence
 
 if TYPE_CHECKING:
@@ -43,6 +50,8 @@ class RunningView(View):
         Binding("e", "edit", "Edit", id="running.edit", tooltip="Change the recording on screen"),
         Binding("v", "next", "Next recording", show=False, id="running.next",
                 tooltip="Show the next running recording"),
+        Binding("w", "overlay", "With others", show=False, id="running.overlay",
+                tooltip="All running recordings over each other, told apart by letter"),
         Binding("x", "refused", "Refused", show=False, id="running.refused",
                 tooltip="Peaks that were not accepted as modes, with reasons"),
         Binding("l", "severity", "Level", show=False, id="running.severity",
@@ -53,6 +62,8 @@ class RunningView(View):
         super().__init__()
         self.number = 0
         """Which of the running recordings is on screen."""
+        self.overlay = False
+        """Whether all of them are drawn over each other."""
 
     def compose(self) -> ComposeResult:
         """Plot, text, table."""
@@ -75,7 +86,7 @@ class RunningView(View):
         plot = self.query_one(SpectrumPlot)
         plot.empty_sentence = self._missing
         plot.show(
-            (spectrum_curve(spectrum, found.file),) if found and spectrum else (),
+            self._curves(found),
             running_marks(found.picture.lines, self._seen, self.desk) if found else (),
             shaded(self.desk),
             amplitude_unit=unit_of(spectrum),
@@ -86,6 +97,20 @@ class RunningView(View):
         seen.display = bool(self._seen)
         seen.fill([(str(i), mode_cells(mode)) for i, mode in enumerate(self._seen)])
         self.write("#running-text", "\n".join(self._words(found)))
+
+    def _curves(self, found: RunningReading | None) -> tuple[Curve, ...]:
+        if found is None:
+            return ()
+        own = found.picture.spectrum
+        if not self.overlay or self.desk.workup is None:
+            return (spectrum_curve(own, found.file),)
+        every = [(one.picture.spectrum, one.file) for one in self.desk.workup.running]
+        return overlaid([(s, file) for s, file in every if s.unit == own.unit])
+
+    def action_overlay(self) -> None:
+        """All recordings over each other, or one."""
+        self.overlay = not self.overlay
+        self.draw()
 
     @property
     def _seen(self) -> tuple[MeasuredMode, ...]:

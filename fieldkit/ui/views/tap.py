@@ -11,10 +11,19 @@ from textual.widgets import DataTable
 
 from fieldkit.ui.dialogs import TextScreen
 from fieldkit.ui.messages import AddWanted, EditWanted, RemoveWanted, TraceWanted
-from fieldkit.ui.plots import blow_marks, mode_cells, shaded, spectrum_curve, tap_marks, unit_of
+from fieldkit.ui.plots import (
+    blow_marks,
+    decay_lines,
+    mode_cells,
+    overlaid,
+    shaded,
+    spectrum_curve,
+    tap_marks,
+    unit_of,
+)
 from fieldkit.ui.table import Row, Table
 from fieldkit.ui.views.base import View, plain
-from fieldkit.ui.widgets import SpectrumPlot, TimePlot
+from fieldkit.ui.widgets import Curve, SpectrumPlot, TimePlot
 from fieldkit.ui.words import seconds, sentence
 
 if TYPE_CHECKING:
@@ -23,6 +32,10 @@ if TYPE_CHECKING:
     from fieldkit.workup import TapReading
 
 
+BEFORE_BLOW = 0.08
+"""Of the time a blow rings: what is shown before it."""
+NEAR_S = 0.1
+"""From a blow to somewhere in its decay."""
 NO_TAP = (
     "No tap recording yet: press m to tap now (a practice rig is built in), a to name a recording, "
     "or p to type in a peak read elsewhere"
@@ -66,12 +79,20 @@ class TapView(View):
                 tooltip="Take the recording under the cursor out of the job"),
         Binding("v", "other_plot", "Plot", id="tap.plot",
                 tooltip="Show the signal instead of the spectrum, or back"),
+        Binding("w", "overlay", "With others", show=False, id="tap.overlay",
+                tooltip="All tap recordings over each other, told apart by letter"),
         Binding("x", "refused", "Refused", id="tap.refused",
                 tooltip="Tones, and the peaks and blows that were not accepted, with reasons"),
         Binding("h", "response", "Hammer", show=False, id="tap.response",
                 tooltip="Frequency response and coherence, where the hammer is on record"),
         Binding("c", "caution", "Caution", id="tap.caution", tooltip="Before you strike a pipe"),
     ]  # fmt: skip
+
+    def __init__(self) -> None:
+        super().__init__()
+        self.overlay = False
+        """Whether all recordings are drawn over each other."""
+        self._looked_at = ""
 
     def compose(self) -> ComposeResult:
         """Caution, two plots, two tables."""
@@ -116,13 +137,27 @@ class TapView(View):
         plot = self.query_one(SpectrumPlot)
         plot.empty_sentence = self._missing
         plot.show(
-            (spectrum_curve(spectrum, found.file),) if found and spectrum else (),
+            self._curves(found),
             tap_marks(self.desk),
             shaded(self.desk),
             amplitude_unit=unit_of(spectrum),
             up_to_hz=self.desk.up_to_hz,
         )
         self._draw_trace(found)
+
+    def _curves(self, found: TapReading | None) -> tuple[Curve, ...]:
+        """The recording under the cursor, or all that can be compared with it."""
+        spectrum = found.spectrum if found else None
+        if found is None or spectrum is None:
+            return ()
+        if not self.overlay or self.desk.workup is None:
+            return (spectrum_curve(spectrum, found.file),)
+        every = [
+            (one.spectrum, one.file)
+            for one in self.desk.workup.taps
+            if one.spectrum is not None and one.spectrum.unit == spectrum.unit
+        ]
+        return overlaid(every)
 
     def _draw_trace(self, found: TapReading | None) -> None:
         plot = self.query_one(TimePlot)
@@ -131,9 +166,32 @@ class TapView(View):
         if found is None or signal is None:
             plot.show((), 1.0)
         else:
-            plot.show(signal, len(signal) / found.duration_s or 1.0, blow_marks(found))
+            plot.show(
+                signal,
+                len(signal) / found.duration_s or 1.0,
+                blow_marks(found),
+                decays=decay_lines(found, signal, self.desk.workup.evidence.firm)
+                if self.desk.workup
+                else (),
+            )
+            self._look_at_blow(found)
         if found is not None and signal is None:
             self.post_message(TraceWanted(found.entry))
+
+    def _look_at_blow(self, found: TapReading) -> None:
+        """The blow under the cursor fills the plot; on the recording's own row the whole does."""
+        plot, key = self.query_one(TimePlot), self.table("#blows").chosen or ""
+        if key == self._looked_at:
+            return
+        self._looked_at = key
+        number = int(key.partition(".")[2] or -1)
+        if not 0 <= number < len(found.search.taps):
+            plot.action_home()
+            return
+        blow = found.search.taps[number]
+        ringing = [d.end_s for d in plot.trace.decays if d.start_s <= blow.at_s + NEAR_S <= d.end_s]
+        end_s = min([*ringing, blow.end / found.rate_hz])
+        plot.look_at(blow.at_s - BEFORE_BLOW * (end_s - blow.at_s), end_s)
 
     def on_data_table_row_highlighted(self, event: DataTable.RowHighlighted) -> None:
         """Another recording or blow is under the cursor."""
@@ -168,6 +226,11 @@ class TapView(View):
         if entry is None or self.desk.job is None or entry not in self.desk.job.recordings:
             return None
         return self.desk.job.recordings.index(entry)
+
+    def action_overlay(self) -> None:
+        """All recordings over each other, or one."""
+        self.overlay = not self.overlay
+        self._draw_plots()
 
     def action_other_plot(self) -> None:
         """On a small screen one plot at a time is shown."""

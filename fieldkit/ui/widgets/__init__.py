@@ -5,11 +5,12 @@ from fieldkit.ui.widgets.ruler import FrequencyRuler, RulerData
 from fieldkit.ui.widgets.span_drawing import ShapeLine, SpanDrawing
 from fieldkit.ui.widgets.spectrum_data import Curve, Mark
 from fieldkit.ui.widgets.spectrum_plot import SpectrumPlot
-from fieldkit.ui.widgets.time_plot import TapMark, TimePlot
+from fieldkit.ui.widgets.time_plot import DecayLine, TapMark, TimePlot
 
 __all__ = [
     "BandShade",
     "Curve",
+    "DecayLine",
     "FrequencyRuler",
     "Mark",
     "RulerData",

@@ -66,6 +66,10 @@ class AxisPlot(Drawing, can_focus=True):
         """Places the cursor can jump to."""
         raise NotImplementedError
 
+    _held: tuple[int, Axis] | None = None
+    """Column that the pointer took hold of, and the view it had then."""
+    _dragged = False
+
     def axis_changed(self) -> None:
         """Tell the world; does nothing here."""
 
@@ -131,8 +135,34 @@ class AxisPlot(Drawing, can_focus=True):
         """Take the cursor away."""
         self.cursor = None
 
+    def on_mouse_down(self, event: events.MouseDown) -> None:
+        """Take hold of the picture."""
+        offset = event.get_content_offset(self)
+        if offset is not None and event.button == 1:
+            self._held, self._dragged = (event.screen_x, self.axis), False
+            self.capture_mouse()
+
+    def on_mouse_move(self, event: events.MouseMove) -> None:
+        """What was taken hold of follows the pointer."""
+        columns = self.frame().columns
+        if self._held is None or not columns:
+            return
+        column, axis = self._held
+        moved = event.screen_x - column
+        self._dragged = self._dragged or moved != 0
+        if self._dragged:
+            self.axis = axis.panned(-moved / columns).kept_within(self.limits())
+
+    def on_mouse_up(self, _event: events.MouseUp) -> None:
+        """Let go."""
+        self._held = None
+        self.release_mouse()
+
     def on_click(self, event: events.Click) -> None:
-        """The cursor goes where the pointer is."""
+        """The cursor goes where the pointer is, unless it has just dragged the picture."""
+        if self._dragged:
+            self._dragged = False
+            return
         value = self._value_under(event)
         if value is not None:
             self.cursor = value

@@ -31,6 +31,8 @@ GLYPHS = {"mode": "▼", "tone": "≈", "refused": "×", "model": "△"}
 DASHES = {"second": 6, "background": 1, "model": 3}
 SAMPLES = {"second": "╌╌", "background": "··", "model": "╌ "}
 KEYS = "←→ pan  +− zoom  ,. cursor  [] marks  l f scales"
+LETTER_STEP = 24
+"""Columns between two letters of one curve."""
 LEAST_GUTTER, MOST_GUTTER = 5, 9
 DEEPEST = 1e-6
 """Of the largest value: below it a logarithmic axis shows nothing unless moved there."""
@@ -82,6 +84,7 @@ def draw_spectrum(canvas: Canvas, data: SpectrumData, view: View) -> None:
     _draw_cursor(canvas, view, frame)
     for curve, (low, high) in zip(data.curves, reduced, strict=True):
         _draw_curve(canvas, frame, amplitude, low, high, curve.role)
+    _write_letters(canvas, data, frame, amplitude, [high for _, high in reduced])
     _draw_axes(canvas, data, frame, amplitude)
     if _readout_rows(canvas.rows):
         _write_head(canvas, data, view, frame)
@@ -125,6 +128,21 @@ def _draw_curve(
     canvas.columns_filled(
         2 * frame.left, top, np.minimum(bottom, first + height), ink, dash=DASHES.get(role, 0)
     )
+
+
+def _write_letters(
+    canvas: Canvas, data: SpectrumData, frame: Frame, amplitude: Axis, highs: Sequence[Floats]
+) -> None:
+    """Each curve's letter on its line here and there, staggered so that they keep apart."""
+    lettered = [(c, high) for c, high in zip(data.curves, highs, strict=True) if c.letter]
+    for number, (curve, high) in enumerate(lettered):
+        ink = curve.role if curve.role in DASHES else "measured"
+        first = LETTER_STEP * (number + 1) // (len(lettered) + 1)
+        for column in range(first, frame.columns, LETTER_STEP):
+            share = float(amplitude.share(high[2 * column]))
+            if math.isfinite(share) and 0 <= share <= 1:
+                row = frame.bottom - 1 - round(share * (frame.rows - 1))
+                canvas.write(row, frame.left + column, curve.letter, ink)
 
 
 def _draw_bands(canvas: Canvas, data: SpectrumData, frame: Frame) -> None:
@@ -236,7 +254,9 @@ def read_cursor(data: SpectrumData, view: View, frame: Frame) -> tuple[float, fl
 
 def _write_legend(canvas: Canvas, data: SpectrumData, from_column: int) -> int:
     """Names of the curves at the right end, where there is room; returns where they start."""
-    entries = [(SAMPLES.get(c.role, "──"), c.label, c.role) for c in data.curves if c.label]
+    entries = [
+        (c.letter or SAMPLES.get(c.role, "──"), c.label, c.role) for c in data.curves if c.label
+    ]
     width = sum(cell_len(sample) + cell_len(label) + 3 for sample, label, _ in entries) - 2
     start = canvas.columns - max(0, width)
     if start < from_column:

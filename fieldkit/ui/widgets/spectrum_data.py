@@ -29,6 +29,8 @@ class Curve:
     label: str = ""
     role: str = "measured"
     """One of ROLES; any other is drawn like ``measured``."""
+    letter: str = ""
+    """Stands on the curve and in the legend where several are drawn."""
 
 
 @dataclass(frozen=True)

@@ -39,7 +39,7 @@ class SpectrumPlot(AxisPlot):
     SpectrumPlot {
         height: 1fr; min-height: 3;
         & > .spectrum--measured { color: $foreground; }
-        & > .spectrum--second { color: $secondary; }
+        & > .spectrum--second { color: $text-secondary; }
         & > .spectrum--background { color: $text-muted; }
         & > .spectrum--model { color: $text-accent; }
         & > .spectrum--mode { color: $text-success; text-style: bold; }

@@ -31,6 +31,19 @@ class TapMark:
 
 
 @dataclass(frozen=True)
+class DecayLine:
+    """The envelope of one mode over one tap."""
+
+    start_s: float
+    end_s: float
+    height: float
+    """At its start."""
+    decay_per_s: float
+    word: str = ""
+    """Which mode, for the read-out."""
+
+
+@dataclass(frozen=True)
 class Trace:
     """One channel of a recording with its taps."""
 
@@ -39,13 +52,19 @@ class Trace:
     rate_hz: float
     taps: tuple[TapMark, ...] = ()
     unit: str = ""
+    decays: tuple[DecayLine, ...] = ()
 
     @classmethod
     def of(
-        cls, samples: Floats, rate_hz: float, taps: Sequence[TapMark] = (), unit: str = ""
+        cls,
+        samples: Floats,
+        rate_hz: float,
+        taps: Sequence[TapMark] = (),
+        unit: str = "",
+        decays: Sequence[DecayLine] = (),
     ) -> Trace:
         """A trace whose rate makes sense."""
-        return cls(samples, rate_hz if rate_hz > 0 else 1.0, tuple(taps), unit)
+        return cls(samples, rate_hz if rate_hz > 0 else 1.0, tuple(taps), unit, tuple(decays))
 
     @property
     def duration_s(self) -> float:
@@ -67,6 +86,12 @@ class Trace:
         extremes = np.abs(np.concatenate([low, high]))
         largest = float(extremes[np.isfinite(extremes)].max(initial=0.0))
         return largest if largest > 0 else 1.0
+
+    def largest_between(self, edges_s: Floats) -> float:
+        """Largest absolute sample of a stretch; of all where it is empty or still."""
+        extremes = np.abs(np.concatenate(self.between(edges_s)))
+        largest = float(extremes[np.isfinite(extremes)].max(initial=0.0))
+        return largest if largest > 0 else self.largest
 
     def between(self, edges_s: Floats) -> tuple[Floats, Floats]:
         """Lowest and highest sample between neighbouring times; NaN where there is none.
@@ -120,10 +145,24 @@ def draw_trace(canvas: Canvas, trace: Trace, axis: Axis, cursor_s: float | None)
 
 def _draw_signal(canvas: Canvas, trace: Trace, frame: Frame) -> None:
     low, high = trace.between(frame.edges)
+    largest = trace.largest_between(frame.edges)
     half = (4 * frame.rows - 1) / 2
     middle = 4 * frame.top + half
-    top, bottom = middle - half * high / trace.largest, middle - half * low / trace.largest
+    top, bottom = middle - half * high / largest, middle - half * low / largest
     canvas.columns_filled(2 * frame.left, top, bottom, "signal")
+    times = frame.axis.value((np.arange(2 * frame.columns) + 0.5) / (2 * frame.columns))
+    for decay in trace.decays:
+        with np.errstate(over="ignore"):
+            line = decay.height * np.exp(-decay.decay_per_s * (times - decay.start_s))
+        line = np.minimum(line, largest)
+        line[(times < decay.start_s) | (times > decay.end_s)] = np.nan
+        for side in (line, -line):
+            canvas.polyline(
+                2 * frame.left + np.arange(len(times)),
+                middle - half * side / largest,
+                "decay",
+                dash=3,
+            )
 
 
 def _draw_marks(canvas: Canvas, trace: Trace, frame: Frame, cursor_s: float | None) -> None:
@@ -168,7 +207,8 @@ def _draw_axes(canvas: Canvas, trace: Trace, frame: Frame) -> None:
 def _draw_amplitudes(canvas: Canvas, trace: Trace, frame: Frame) -> None:
     line = frame.left - 1
     canvas.rule(frame.height, slice(line, line + 1), "│", "axis")
-    numbers = {frame.bottom - 1: -trace.largest, frame.top: trace.largest}
+    largest = trace.largest_between(frame.edges)
+    numbers = {frame.bottom - 1: -largest, frame.top: largest}
     if frame.rows >= 5:
         numbers[(frame.top + frame.bottom - 1) // 2] = 0.0
     for row, value in numbers.items():
@@ -183,7 +223,8 @@ def readout(trace: Trace, cursor_s: float | None) -> str:
     """How many taps are usable, or what the cursor stands on."""
     if cursor_s is None:
         usable = sum(tap.usable for tap in trace.taps)
-        return f"{usable} of {len(trace.taps)} taps usable, {trace.duration_s:.1f} s"
+        words = f"{usable} of {len(trace.taps)} taps usable, {trace.duration_s:.1f} s"
+        return f"{words}  ╌╌ {trace.decays[0].word}" if trace.decays else words
     for tap in trace.taps:
         if tap.at_s == cursor_s:
             verdict = "usable" if tap.usable else f"not usable: {tap.word}"

@@ -14,10 +14,10 @@ from fieldkit.ui.widgets.axis_plot import AxisPlot
 from fieldkit.ui.widgets.drawing import write_empty
 from fieldkit.ui.widgets.frame import Frame
 from fieldkit.ui.widgets.raster import Canvas
-from fieldkit.ui.widgets.time_art import TapMark, Trace, draw_trace, trace_frame
+from fieldkit.ui.widgets.time_art import DecayLine, TapMark, Trace, draw_trace, trace_frame
 from fieldkit.ui.widgets.view_range import Axis
 
-__all__ = ["TapMark", "TimePlot"]
+__all__ = ["DecayLine", "TapMark", "TimePlot"]
 
 
 class TimePlot(AxisPlot):
@@ -26,7 +26,7 @@ class TimePlot(AxisPlot):
     COMPONENT_PREFIX = "time"
     COMPONENT_CLASSES: ClassVar[set[str]] = {
         f"time--{name}"
-        for name in ("signal", "usable", "refused", "axis", "cursor", "readout", "note")
+        for name in ("signal", "usable", "refused", "axis", "cursor", "readout", "note", "decay")
     }
     DEFAULT_CSS = """
     TimePlot {
@@ -38,6 +38,7 @@ class TimePlot(AxisPlot):
         & > .time--cursor { color: $text-warning; text-style: bold; }
         & > .time--readout { color: $text; }
         & > .time--note { color: $text-muted; }
+        & > .time--decay { color: $text-accent; text-style: bold; }
     }
     """
 
@@ -72,10 +73,12 @@ class TimePlot(AxisPlot):
         taps: Sequence[TapMark] = (),
         *,
         unit: str = "",
+        decays: Sequence[DecayLine] = (),
     ) -> None:
-        """Draw one channel (n,) with its taps; an empty one says what is missing."""
+        """Draw one channel (n,) with its taps and envelopes; an empty one says what is missing."""
         before = self.limits()
-        self.trace = Trace.of(np.asarray(samples, dtype=float).ravel(), rate_hz, tuple(taps), unit)
+        values = np.asarray(samples, dtype=float).ravel()
+        self.trace = Trace.of(values, rate_hz, tuple(taps), unit, decays)
         if self.limits() != before:
             self.action_home()
             self.cursor = None
@@ -87,6 +90,10 @@ class TimePlot(AxisPlot):
             write_empty(canvas, self.empty_sentence)
         else:
             draw_trace(canvas, self.trace, self.axis, self.cursor)
+
+    def look_at(self, start_s: float, end_s: float) -> None:
+        """Bring one stretch into view."""
+        self.axis = Axis(start_s, end_s).kept_within(self.limits())
 
     def limits(self) -> Axis:
         """The whole recording."""
