@@ -13,6 +13,7 @@ from typing import Any
 
 from fieldkit.capture.devices import Input, find_input, list_inputs
 from fieldkit.capture.portaudio import PortAudioSource
+from fieldkit.capture.practice import NAME as RIG
 from fieldkit.capture.practice import PracticeSource
 from fieldkit.capture.presets import Preset, presets, save_preset
 from fieldkit.capture.quiet import libraries_kept_quiet
@@ -26,6 +27,7 @@ from fieldkit.errors import InputError, Refusal
 from fieldkit.job.recorded import next_recording, with_recording
 from fieldkit.job.store import JobText, load_text
 from fieldkit.quantity import chosen
+from fieldkit.workup.simulated import check_not_mixed
 
 _TICK_S = 0.1
 
@@ -61,14 +63,14 @@ class Plan:
     ) -> Plan:
         """Checked as far as it can be without the input; raises InputError."""
         chosen(kind, "kind of recording", ("tap", "running"))
-        kept = _preset(preset)
+        kept = _preset(preset, practice)
         setups = _setups(channels, words, kept)
         job = target if target.suffix.lower() == ".toml" else None
         plan = Plan(
             path=target if job is None else next_recording(job, kind),
             kind=kind,
             channels=setups,
-            device=device if device is not None else (kept.device or None if kept else None),
+            device=device or (kept.device or None if kept and not practice else None),
             rate_hz=rate_hz or (kept.rate_hz if kept else None),
             seconds=seconds,
             job=job,
@@ -76,6 +78,7 @@ class Plan:
         )
         plan = practising(plan) if practice else plan
         if job is not None:
+            check_not_mixed(load_text(job).job(), practice=practice)
             plan.in_job().job()
         return plan
 
@@ -136,13 +139,19 @@ def practising(plan: Plan) -> Plan:
     return replace(plan, practice=True, channels=channels)
 
 
-def _preset(name: str | None) -> Preset | None:
+def _preset(name: str | None, practice: bool) -> Preset | None:
+    """What was kept; raises InputError where there is no such, or it is not for a real sensor."""
     if name is None:
         return None
     kept = presets()
     if name not in kept:
         raise InputError(
             f"there is no preset {name!r}", f"there are: {', '.join(kept) or 'none yet'}"
+        )
+    if kept[name].device == RIG and not practice:
+        raise InputError(
+            f"the preset {name!r} was kept on {RIG}, whose sensor is simulated",
+            "add --practice, or use another preset",
         )
     return kept[name]
 

@@ -8,7 +8,8 @@ import threading
 import pytest
 
 from fieldkit.capture.clock import now_s
-from fieldkit.capture.sidecar import read_info
+from fieldkit.capture.setup import ChannelSetup
+from fieldkit.capture.sidecar import RecordingInfo, read_info, write_info
 from fieldkit.cli.samples import sample_jobs
 from fieldkit.job.schema import load_job
 from tests.cli.running import fieldkit
@@ -72,6 +73,8 @@ def test_a_calibration_stands_in_the_job_with_date_and_result(job) -> None:
         "[goal]", '[[recording]]\nfile = "old.wav"\nkind = "tap"\n\n[goal]'
     )
     job.write_text(text, "utf-8")
+    made = RecordingInfo("the practice rig", 8000, (ChannelSetup(),), "2026-01-01", simulated=True)
+    write_info(job.parent / "old.wav", made)
     ran = fieldkit("record", job, "--practice", "--calibrate", "--reference", "1 g", "--json")
     assert ran.status == 0, ran.err
     assert ran.document["sensitivity"] == "103 mV/g"
@@ -89,3 +92,32 @@ def test_what_does_not_go_together_is_refused(job) -> None:
     ran = fieldkit("record", job, "--practice", "--calibrate", "--channel", 3)
     assert (ran.status, "no channel 3" in ran.err) == (2, True)
     assert fieldkit("record", job, "--practice", "--calibrate", "--reference", "0 g").status == 2
+
+
+def test_a_set_up_kept_on_the_rig_serves_the_rig_alone(job, monkeypatch) -> None:
+    """Its sensitivity was found on no sensor; calibrated again on the rig it is the same."""
+    monkeypatch.setenv("XDG_CONFIG_HOME", str(job.parent / "settings"))
+    words = ("record", job, "--practice", "--calibrate", "--json")
+    first = fieldkit(*words, "--keep", "mine")
+    assert first.status == 0, first.err
+    again = fieldkit(*words, "--preset", "mine")
+    assert again.status == 0, again.err
+    assert again.document["sensitivity"] == first.document["sensitivity"] == "103 mV/g"
+    real = fieldkit("record", job.parent / "x.wav", "--preset", "mine", "--seconds", 1)
+    assert (real.status, "was kept on the practice rig" in real.err) == (2, True)
+
+
+@pytest.mark.parametrize("words", [("--seconds", 1), ("--calibrate",)])
+def test_simulated_and_measured_data_never_meet_in_a_job(job, words) -> None:
+    """Neither way round, and nothing is written."""
+    text = job.read_text("utf-8").replace(
+        "[goal]", '[[recording]]\nfile = "real.wav"\nkind = "tap"\n\n[goal]'
+    )
+    job.write_text(text, "utf-8")
+    ran = fieldkit("record", job, "--practice", *words)
+    assert (ran.status, "what was measured" in ran.err) == (2, True)
+    made = RecordingInfo("the practice rig", 8000, (ChannelSetup(),), "2026-01-01", simulated=True)
+    write_info(job.parent / "real.wav", made)
+    ran = fieldkit("record", job, *words)
+    assert (ran.status, "holds simulated recordings" in ran.err) == (2, True)
+    assert job.read_text("utf-8") == text

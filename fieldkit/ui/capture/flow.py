@@ -17,8 +17,6 @@ from fieldkit.ui.capture.setup_screen import SetupScreen
 from fieldkit.ui.capture.takes import (
     Result,
     free_path,
-    holds_practice,
-    measured_for_real,
     practice_copy,
     with_takes,
 )
@@ -28,6 +26,7 @@ from fieldkit.ui.capture.wiring import Wiring
 from fieldkit.ui.document import OpenJob
 from fieldkit.ui.plots import shaded
 from fieldkit.ui.words import count
+from fieldkit.workup.simulated import holds_practice, measured_for_real
 
 if TYPE_CHECKING:
     from fieldkit.job.document import Job

@@ -8,13 +8,11 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from fieldkit.capture.sidecar import read_info, sidecar_path
-from fieldkit.errors import FieldkitError
+from fieldkit.capture.sidecar import sidecar_path
 from fieldkit.job.recorded import with_note, with_recording
 
 if TYPE_CHECKING:
     from fieldkit.capture.setup import ChannelSetup
-    from fieldkit.job.document import Job
     from fieldkit.job.store import JobText
 
 PRACTICE_TITLE = "practice"
@@ -69,24 +67,6 @@ def remove_empty(path: Path) -> None:
     for file in (path, sidecar_path(path)):
         with suppress(OSError):
             file.unlink()
-
-
-def measured_for_real(job: Job) -> bool:
-    """Whether a job holds anything that was measured on a pipe."""
-    return bool(job.measured) or any(not _simulated(one.path) for one in job.recordings)
-
-
-def holds_practice(job: Job) -> bool:
-    """Whether a job holds anything that the practice rig made."""
-    return any(_simulated(entry.path) for entry in job.recordings)
-
-
-def _simulated(path: Path) -> bool:
-    try:
-        info = read_info(path)
-    except FieldkitError:
-        return False
-    return info is not None and info.simulated
 
 
 def practice_copy(text: JobText, path: Path) -> JobText:
