@@ -27,6 +27,15 @@ def filtered(samples: Real, weights: Real) -> Real:
     return np.asarray((pairs @ toeplitz).ravel()[:count])
 
 
+def medians(rows: Real) -> Real:
+    """(n,) medians of (n, m) rows, m at least 1 and no value NaN."""
+    half = rows.shape[1] // 2
+    ranked = np.partition(rows, half, axis=1)
+    if rows.shape[1] % 2:
+        return np.asarray(ranked[:, half])
+    return np.asarray((ranked[:, :half].max(axis=1) + ranked[:, half]) / 2)
+
+
 def median(values: Real) -> float:
     """Median of (n,) values, n at least 1 and none of them NaN."""
     half = len(values) // 2

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.filtering import filtered, median
+from fieldkit.signal.filtering import filtered, median, medians
 from fieldkit.signal.innovation import Level
 
 Real = NDArray[np.float64]
@@ -122,9 +122,9 @@ def typical(raw: Real, rate_hz: float) -> Real:
     block = min(max(int(_TYPICAL_S * rate_hz), _TYPICAL), len(raw))
     count = len(raw) // block
     stride = max(block // _ENOUGH, 1)
-    medians = np.median(raw[: count * block].reshape(count, block)[:, ::stride], axis=1)
-    padded = np.pad(medians, _AROUND // 2, mode="reflect" if count > _AROUND else "edge")
-    around = np.median(np.lib.stride_tricks.sliding_window_view(padded, _AROUND), axis=1)
+    each = medians(raw[: count * block].reshape(count, block)[:, ::stride])
+    padded = np.pad(each, _AROUND // 2, mode="reflect" if count > _AROUND else "edge")
+    around = medians(np.lib.stride_tricks.sliding_window_view(padded, _AROUND))
     return np.concatenate([np.repeat(around, block), np.full(len(raw) - count * block, around[-1])])
 
 

@@ -14,6 +14,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.filtering import median, medians
 from fieldkit.signal.innovation import Level
 
 Real = NDArray[np.float64]
@@ -242,11 +243,12 @@ def outstanding(
     if not len(one.after_s):
         return []
     needed = _OVER_REST * (1 + 3 / np.sqrt(planes.freedom))
-    usual = max(float(np.median(one.over_rest)), 1.0)
+    usual = max(median(one.over_rest), 1.0)
     clear = (one.over_rest > max(needed, _OVER_USUAL * usual)) & (one.share > _LEAST_SHARE)
-    if others and np.any(clear):
-        elsewhere = [np.interp(one.after_s, t.after_s, t.share) for t in others]
-        clear &= one.share > _OVER_OTHERS * np.median(elsewhere, axis=0)
+    at = np.flatnonzero(clear)
+    if others and len(at):
+        elsewhere = [np.interp(one.after_s[at], t.after_s, t.share) for t in others]
+        clear[at] = one.share[at] > _OVER_OTHERS * medians(np.array(elsewhere).T)
     if not np.any(clear):
         return []
     top = int(np.argmax(np.where(clear, one.over_rest, 0.0)))

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 
-from fieldkit.signal.filtering import filtered, median
+from fieldkit.signal.filtering import filtered, median, medians
 
 
 @pytest.mark.parametrize("count", [1, 5, 31, 32, 33, 1000])
@@ -22,3 +22,10 @@ def test_median_of_odd_and_even_counts(count: int) -> None:
     """The same value as numpy's median."""
     values = np.random.default_rng(count).normal(size=count)
     assert median(values) == np.median(values)
+
+
+@pytest.mark.parametrize("width", [1, 2, 5, 34])
+def test_medians_of_rows(width: int) -> None:
+    """The same values as numpy's medians along the rows."""
+    rows = np.random.default_rng(width).normal(size=(7, width))
+    assert medians(rows) == pytest.approx(np.median(rows, axis=1), rel=0, abs=0)
