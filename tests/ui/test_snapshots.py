@@ -40,6 +40,9 @@ class StillApp(FieldkitApp):
             chosen_modes=glycol.states()[1].modes,
         )
 
+    def welcome(self) -> None:
+        """The job is there already."""
+
     def shape_fix(self, *_: object) -> None:
         """The shapes lie on the desk already."""
 
