@@ -44,6 +44,8 @@ MASS_LEVELS = 40
 KEPT_MASS_SHARES = (0.0, 0.15, 0.3, 0.45, 0.6, 0.75, 0.9, 1.1, 1.25, 1.5, 1.75, 2.0)
 NEAR_SUPPORT_DIAMETERS = 2.0
 NEAR_M = 1e-3
+CHECKED_EVERY = 100
+"""Candidates between two looks at whether the user wants to stop."""
 STIFFER = 1.5
 """A support is stiffened to at least this many times what it is."""
 
@@ -130,7 +132,10 @@ def generate(search: Search, progress: Progress) -> list[Candidate]:
     allowed = [name for name in FAMILIES if name in search.goal.allow]
     for i, name in enumerate(allowed):
         progress.step(f"trying changes: {name}", i / max(1, len(allowed)))
-        found.extend(FAMILIES[name](search))
+        for candidate in FAMILIES[name](search):
+            found.append(candidate)
+            if len(found) % CHECKED_EVERY == 0:
+                progress.step(f"trying changes: {name}", i / len(allowed))
     return found
 
 

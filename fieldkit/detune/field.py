@@ -137,6 +137,12 @@ class Field:
             mass = mass - self.mass_value(i)[:, None, None] * (rows.T @ rows)
         return replace(self, modes=solve_blocks(stiffness, mass, self.model.blocks))
 
+    def of(self, z: Array) -> Field:
+        """Other members (members, parameters) of the same span."""
+        central = central_member(z)
+        z = _as_loaded(self.span, self.model, z, central)
+        return replace(self, z=z, modes=self.model.modes(z), central=central)
+
     def some(self, members: NDArray[np.intp]) -> Field:
         """The field of some members only; the first of them counts as the middle one."""
         chosen = Modes(self.modes.eigenvalue[members], self.modes.vector[members])
@@ -241,8 +247,7 @@ def field(span: Span, model: ReducedModel, z: Array) -> Field:
     z = _as_loaded(span, model, z, central)
     stations = np.linspace(0.0, span.length_m, GRID_STEPS + 1)
     ports = _ports(span, model, stations)
-    modes = model.modes(z)
-    return Field(model, span, z, modes, stations, ports, central)
+    return Field(model, span, z, model.modes(z), stations, ports, central)
 
 
 def _as_loaded(span: Span, model: ReducedModel, z: Array, central: int) -> Array:

@@ -17,13 +17,13 @@ class Modes:
     """Modes of many members in the coordinates of the basis."""
 
     eigenvalue: Array
-    """(members, r) rad^2/s^2, rising."""
+    """(members, modes) rad^2/s^2, rising."""
     vector: Array
-    """(members, r, r) mass-normalised columns."""
+    """(members, r, modes) mass-normalised columns."""
 
     @property
     def frequency_hz(self) -> Array:
-        """(members, r)."""
+        """(members, modes)."""
         return np.sqrt(np.maximum(self.eigenvalue, 0.0)) / (2 * np.pi)
 
 

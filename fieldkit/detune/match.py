@@ -16,7 +16,7 @@ from fieldkit.detune.matched import Ensemble, Match, Pair, ParameterReading
 from fieldkit.detune.pairing import BELONGS, model_modes, next_measurement, pairs_of
 from fieldkit.detune.peak_groups import SENSED_STATIONS, Group, grouped, running_weight, seen_by
 from fieldkit.detune.posterior import Population, Problem
-from fieldkit.detune.reduced import ReducedModel, build
+from fieldkit.detune.reduced import ReducedModel, build, same_mesh
 from fieldkit.detune.unknowns import Unknown, unknowns_of
 from fieldkit.errors import Refusal
 from fieldkit.progress import Progress
@@ -67,16 +67,31 @@ def match(
         )
     unknowns = unknowns_of(span, (tapped, running))
     states = (tapped, running)
-    models = tuple(build(span, state, unknowns, up_to_hz) for state in states)
+    models = _models(span, states, unknowns, up_to_hz, progress)
     groups = grouped(evidence.modes, up_to_hz)
     number = {state.name: i for i, state in enumerate(states)}
     seen = tuple(seen_by(span, models, number[group.peaks.state], group) for group in groups)
-    problem = Problem(models, seen)
-    population = posterior.sample(problem, np.random.default_rng(SEED), progress)
-    reading = _Reading(span, tapped, running, models, groups, problem, population)
+    problem = Problem(models, seen, alike=same_mesh(models))
+    sampling, reading_it = progress.within(0.1, 0.9), progress.within(0.9, 1.0)
+    population = posterior.sample(problem, np.random.default_rng(SEED), sampling)
+    reading = _Reading(span, models, groups, problem, population, reading_it)
     _require_plausible(reading)
     _require_enough(population)
     return _answer(reading, evidence, unknowns, handbook_hz)
+
+
+def _models(
+    span: Span,
+    states: Sequence[State],
+    unknowns: Sequence[Unknown],
+    up_to_hz: float,
+    progress: Progress,
+) -> tuple[ReducedModel, ...]:
+    models = []
+    for i, state in enumerate(states):
+        progress.step(f"setting up the model, {state.name}", 0.1 * i / len(states))
+        models.append(build(span, state, unknowns, up_to_hz))
+    return tuple(models)
 
 
 @dataclass(frozen=True)
@@ -84,24 +99,25 @@ class _Reading:
     """The finished population with everything needed to read it."""
 
     span: Span
-    tapped: State
-    running: State
     models: tuple[ReducedModel, ...]
     groups: tuple[Group, ...]
     problem: Problem
     population: Population
+    progress: Progress
 
     @cached_property
     def fields(self) -> dict[int, Field]:
         """The ensemble as seen as tapped, and in every other state something was measured in."""
-        return {
-            i: field(self.span, self.models[i], self.population.z)
-            for i in sorted({0, *self.problem.used})
-        }
+        found = {}
+        for i in sorted({0, *self.problem.used}):
+            self.progress.step("reading the ensemble", 0.4)
+            found[i] = field(self.span, self.models[i], self.population.z)
+        return found
 
     @cached_property
     def belonging(self) -> list[Array]:
         """(members, peaks, modes) of each group."""
+        self.progress.step("reading the ensemble", 0.0)
         found, _, _ = posterior.alignments(self.problem, self.population.z)
         return [alignment.responsibility for alignment in found]
 
@@ -145,8 +161,10 @@ def _answer(
 ) -> Match:
     z = reading.population.z
     seen = [reading.fields[group.model] for group in reading.problem.seen]
+    reading.progress.step("pairing peaks with modes", 0.7)
     pairs, unpaired = pairs_of(reading.groups, seen, reading.belonging, handbook_hz)
     parameters = tuple(_parameter(unknown, z[:, i]) for i, unknown in enumerate(unknowns))
+    reading.progress.step("reading the ensemble", 0.9)
     modes = model_modes(reading.fields[0])
     return Match(
         measured=evidence.modes,

@@ -53,17 +53,20 @@ def pairs(search: Search, singles: Sequence[Candidate], progress: Progress) -> l
     if len(partners) < 2:
         return []
     progress.step("trying pairs of changes", 0.0)
-    counted = _counted(search, partners)
+    counted = _counted(search, partners, progress.within(0.0, 0.4))
     best = sorted(counted, key=lambda c: _key(search, c))[:COUNTED_IN_FULL]
-    progress.step("trying pairs of changes", 0.5)
-    whole = sorted((search.counted(c.change) for c in best), key=lambda c: _key(search, c))
+    whole = []
+    for i, candidate in enumerate(best):
+        progress.step("trying pairs of changes", 0.4 + 0.2 * i / len(best))
+        whole.append(search.counted(candidate.change))
+    whole.sort(key=lambda c: _key(search, c))
     improved: list[Candidate] = []
     for candidate in whole:
         if len(improved) == IMPROVED:
             break
         if not any(alike(c.change, candidate.change, search.span) for c in improved):
-            progress.step("improving the best pairs", 0.6 + 0.4 * len(improved) / IMPROVED)
-            improved.append(_improved(search, candidate))
+            share = 0.6 + 0.4 * len(improved) / IMPROVED
+            improved.append(_improved(search, candidate, progress.within(share, share)))
     return sorted([*improved, *whole], key=lambda c: _key(search, c))
 
 
@@ -92,7 +95,7 @@ def _partners(search: Search, singles: Sequence[Candidate]) -> list[Candidate]:
     return chosen
 
 
-def _counted(search: Search, partners: Sequence[Candidate]) -> list[Candidate]:
+def _counted(search: Search, partners: Sequence[Candidate], progress: Progress) -> list[Candidate]:
     """Every pair of partners, counted on some members."""
     every = np.arange(search.field.members) if search.pick is None else search.pick
     members = every[np.unique(np.linspace(0, len(every) - 1, FIRST_MEMBERS).astype(int))]
@@ -104,10 +107,12 @@ def _counted(search: Search, partners: Sequence[Candidate]) -> list[Candidate]:
     own = [np.arange(a, b) for a, b in pairwise(ends)]
     count = search.counter().some(members)
     rows = np.concatenate([push.rows[members] for push in pushes], axis=1)
+    progress.step("trying pairs of changes", 0.0)
     receptance = _all_receptances(count, rows @ count.field.modes.vector)
+    progress.step("trying pairs of changes", 0.0)
     receptance += _residual(search, pushes, own)
     softness = np.concatenate([search.counter().softness(p)[members] for p in pushes], axis=2)
-    found = []
+    found: list[Candidate] = []
     possible = [
         (i, j, AllOf((partners[i].change, partners[j].change)))
         for i, j in combinations(range(len(partners)), 2)
@@ -116,6 +121,7 @@ def _counted(search: Search, partners: Sequence[Candidate]) -> list[Candidate]:
     for size in sorted({len(own[i]) + len(own[j]) for i, j, _ in possible}):
         alike_sized = [p for p in possible if len(own[p[0]]) + len(own[p[1]]) == size]
         for first in range(0, len(alike_sized), AT_ONCE):
+            progress.step("trying pairs of changes", len(found) / len(possible))
             some = alike_sized[first : first + AT_ONCE]
             at = np.stack([np.concatenate([own[i], own[j]]) for i, j, _ in some])
             block = np.moveaxis(receptance[:, :, at[:, :, None], at[:, None, :]], 2, 0)
@@ -158,13 +164,14 @@ def _possible(search: Search, first: Change, second: Change) -> bool:
     return len(supports) == len(set(supports)) and len(masses) == len(set(masses))
 
 
-def _improved(search: Search, candidate: Candidate) -> Candidate:
+def _improved(search: Search, candidate: Candidate, progress: Progress) -> Candidate:
     """The pair with each part made softer, lighter, stiffer, heavier or set beside, if better."""
     best = candidate
     for _ in range(ROUNDS):
         before = best
         for i in range(len(parts(best.change))):
             for variant in _variants(search, parts(best.change)[i]):
+                progress.step("improving the best pairs", 0.0)
                 others = list(parts(best.change))
                 others[i] = variant
                 if not _possible(search, *others):

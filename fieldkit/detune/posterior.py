@@ -209,6 +209,7 @@ def _spread(
 ) -> Population:
     """Metropolis-Hastings steps of every member along the local curvature."""
     members, levels = tempered
+    progress.step("drawing the ensemble", 0.0)
     here = _stand(problem, members.z)
     accepted = []
     for i in range(LOCAL_MOVES):

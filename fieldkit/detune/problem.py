@@ -15,8 +15,11 @@ from fieldkit.detune.reduced import Modes, ReducedModel
 
 Array = NDArray[np.float64]
 
-DAMPED_RANGE = 1.6
-"""Modes up to this many times the highest analysed frequency enter the alignment."""
+DAMPED_RANGE = 1.25
+"""Modes up to this many times the highest analysed frequency enter the alignment; beyond, the
+chance to show is below one in a hundred thousand."""
+BESIDE = 8
+"""Modes above those, among which the shapes of another state are sought."""
 
 
 @dataclass(frozen=True)
@@ -38,6 +41,10 @@ class Problem:
 
     models: tuple[ReducedModel, ...]
     seen: tuple[Seen, ...]
+    alike: bool = False
+    """Whether the models are one pipe on one mesh in several states: the modes of all but the first
+    used are then sought among those of the first (Ritz), whose shapes contents and temperature
+    hardly change."""
 
     @property
     def parameters(self) -> int:
@@ -48,6 +55,27 @@ class Problem:
     def used(self) -> tuple[int, ...]:
         """Models of the states in which something was measured."""
         return tuple(sorted({seen.model for seen in self.seen}))
+
+    def modes(self, z: Array) -> dict[int, Modes]:
+        """Modes of the used models for every member (members, parameters)."""
+        first, *others = self.used
+        found = {first: self.models[first].modes(z)}
+        if not self.alike:
+            return found | {i: self.models[i].modes(z) for i in others}
+        for i in others:
+            wanted = max(self.mode_count(state, found[first]) for state in (first, i)) + BESIDE
+            shapes = self._carried[i] @ found[first].vector[:, :, :wanted]
+            found[i] = self.models[i].modes_among(z, shapes)
+        return found
+
+    @cached_property
+    def _carried(self) -> dict[int, Array]:
+        """(r', r) for each model but the first used: from the coordinates of the first to its."""
+        first, *others = self.used
+        own = [(i, self.models[i]) for i in others]
+        return {
+            i: np.asarray(m.basis.T @ (m.middle_mass @ self.models[first].basis)) for i, m in own
+        }
 
     def mode_count(self, model: int, modes: Modes) -> int:
         """How many modes of a model can matter to its peaks."""
@@ -94,7 +122,7 @@ class Shown:
 
 def shown(problem: Problem, z: Array) -> Shown:
     """Solve the used models and tell what each group of peaks could see."""
-    modes = {i: problem.models[i].modes(z) for i in problem.used}
+    modes = problem.modes(z)
     count = {i: problem.mode_count(i, m) for i, m in modes.items()}
     frequency, detected = [], []
     for seen in problem.seen:

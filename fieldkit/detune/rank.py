@@ -71,6 +71,7 @@ def detune(
     progress = progress or Progress()
     search, known = prepare(span, tapped, running, match, excitations, goal, progress)
     fresh = afresh(search, match)
+    progress.step("solving the running state", 0.0)
     now, _ = _checked(fresh, running, None)
     chance_now = judge.chance_clear(now, search.bands, goal.up_to_hz)
     singles = generate(search, progress.within(0.0, 0.5))
@@ -80,11 +81,11 @@ def detune(
     if max([chance_now, *(j.chance for j in judged)]) < goal.chance:
         both = pairs(search, singles, progress.within(0.7, 0.9))
         chosen = shortlist(both, span, goal, max([chance_now, *(j.chance for j in judged)]))
-        judged += _re_solved(fresh, running, chosen, progress.within(0.9, 1.0))
+        judged += _re_solved(fresh, running, chosen, progress.within(0.9, 0.95))
     short = max([chance_now, *(j.chance for j in judged)]) < goal.chance
     judged.sort(key=lambda j: order(j.chance, j.candidate.change, span, goal, j.room))
-    resting = at_rest(span, tapped, running)
-    shown = [_verdict(fresh, resting, now, j, 0, units) for j in judged[:SHOWN]]
+    describing = progress.within(0.95, 1.0)
+    shown = _described(fresh, at_rest(span, tapped, running), now, judged, units, describing)
     if short and "speed" in goal.allow:
         choosing = judge.now(search.field, goal.up_to_hz)
         shown += _speed_verdicts(
@@ -93,6 +94,7 @@ def detune(
         shown.sort(key=lambda v: order(v.chance, v.change, span, goal, v.nearest.separation))
     verdicts = tuple(replace(v, rank=rank) for rank, v in enumerate(shown[:SHOWN], start=1))
     modes = judge.judged_modes(now, search.bands, goal.up_to_hz)
+    describing.step("describing the best changes", 1.0)
     return Detuning(
         state=running.name,
         margin=goal.margin,
@@ -127,8 +129,10 @@ def prepare(
             Place(field="excitation"),
         )
     rng = np.random.default_rng(SEED)
-    (progress or Progress()).step("solving the running state", 0.0)
+    progress = progress or Progress()
+    progress.step("solving the running state", 0.0)
     base, known = _ensemble_field(span, tapped, running, match, goal, rng)
+    progress.step("solving the running state", 0.0)
     scatter = as_installed(base.members, rng).exact(base.central)
     return Search(span, base, bands(excitations, goal.margin), goal, scatter), known
 
@@ -140,7 +144,7 @@ def afresh(search: Search, match: Match | None) -> Search:
     """
     if match is None or match.ensemble.fresh is None:
         return search
-    base = field(search.span, search.field.model, match.ensemble.fresh)
+    base = search.field.of(match.ensemble.fresh)
     scatter = as_installed(base.members, np.random.default_rng(SEED + 1)).exact(base.central)
     return replace(search, field=base, scatter=scatter)
 
@@ -198,6 +202,22 @@ def _judge(search: Search, running: State, candidate: Candidate) -> _Judged:
     modes = judge.judged_modes(spectrum, search.bands, up_to_hz)
     nearest = judge.nearest(modes, search.bands)
     return _Judged(candidate, spectrum, chance, correction, nearest.separation if nearest else 1.0)
+
+
+def _described(
+    search: Search,
+    resting: Resting,
+    now: judge.Spectrum,
+    judged: Sequence[_Judged],
+    units: str,
+    progress: Progress,
+) -> list[Verdict]:
+    """The best as verdicts, in the order given."""
+    found = []
+    for i, one in enumerate(judged[:SHOWN]):
+        progress.step("describing the best changes", i / SHOWN)
+        found.append(_verdict(search, resting, now, one, 0, units))
+    return found
 
 
 def _verdict(

@@ -27,6 +27,7 @@ __all__ = [
     "build",
     "mass_rows",
     "project",
+    "same_mesh",
     "solve_blocks",
     "solve_many",
     "spring_rows",
@@ -77,6 +78,13 @@ class ReducedModel:
             solve_many(_sum(K, value, dK), _sum(M, value, dM)) for K, dK, M, dM in self._parts
         ]
         return in_order(solved, self.blocks)
+
+    def modes_among(self, z: Array, shapes: Array) -> Modes:
+        """Modes of every member as sums of its own shapes (members, r, count): Ritz's method."""
+        stiffness, mass = self.matrices(z)
+        across = np.swapaxes(shapes, 1, 2)
+        found = solve_many(across @ (stiffness @ shapes), across @ (mass @ shapes))
+        return Modes(found.eigenvalue, shapes @ found.vector)
 
     @cached_property
     def _parts(self) -> list[tuple[Array, Array, Array, Array]]:
@@ -140,6 +148,13 @@ def build(span: Span, state: State, unknowns: Sequence[Unknown], up_to_hz: float
     terms = full_terms(span, state, unknowns, up_to_hz)
     parts = basis_parts(terms, unknowns, up_to_hz)
     return project(terms, unknowns, parts)
+
+
+def same_mesh(models: Sequence[ReducedModel]) -> bool:
+    """Whether models of one span in several states have their nodes at the same places."""
+    first = models[0].structure.station_m
+    stations = [model.structure.station_m for model in models]
+    return all(len(own) == len(first) and np.allclose(own, first) for own in stations)
 
 
 def project(terms: FullTerms, unknowns: Sequence[Unknown], parts: Sequence[Array]) -> ReducedModel:
