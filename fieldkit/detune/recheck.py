@@ -28,7 +28,7 @@ from fieldkit.detune.recheck_joint import believed, embedded, lowered
 from fieldkit.detune.recheck_modes import Taken, Tracked, along_path, linked, taken, tracked
 from fieldkit.detune.recheck_next import Standing, measure_next, mended, offers
 from fieldkit.detune.recheck_reasons import found_in, found_of, reasons
-from fieldkit.detune.recheck_spans import AS_DRAWN, NOTHING, OTHER, PLACE, STIFFNESS, pinned
+from fieldkit.detune.recheck_spans import AS_DRAWN, LOOSE, NOTHING, OTHER, PLACE, STIFFNESS, pinned
 from fieldkit.detune.recheck_verdict import Judged, Now, judged, verdict
 from fieldkit.detune.recheck_ways import Known, Way, Weighed, drawn, probabilities, ways_of, weighed
 from fieldkit.detune.reduced import build
@@ -47,6 +47,11 @@ RETAPPED = "re-tapped"
 PATH_STEPS = 13
 SURE = 0.5
 """Below this probability of the likeliest way the user is told that others explain it too."""
+NOT_THERE = {
+    LOOSE: "the support seems to hold nothing: once it does, the modes move",
+    NOTHING: "nothing of the change shows",
+}
+"""Ways of standing on which no success can be built."""
 WHAT_TO_TAP = (
     "record three taps or more in each direction, where and how the taps before the change were "
     "made, and name the recordings"
@@ -254,8 +259,7 @@ def _answer(
     excitations = _excitations(asked)
     found = judged(updated.now, excitations, asked.goal)
     said, because = verdict(found, asked.goal)
-    if said != UNSURE and next(iter(likely)) == OTHER:
-        said, because = UNSURE, "what was tapped is hardly explained by this span at all"
+    said, because = _as_it_stands(said, because, next(iter(likely)))
     odd = any(mode.inside is False for mode in promised) or bool(updated.now.stray)
     odd |= next(iter(likely)) != AS_DRAWN
     brought = found_of(updated.way.found, updated.way.joint, updated.population.z)
@@ -282,7 +286,7 @@ def _answer(
         chance_now=found.chance,
         verdict=said,
         because=because,
-        measure_next=measure_next(updated.now, found, asked.goal) if said == UNSURE else "",
+        measure_next=_measure(updated, found, asked.goal, said),
         ways=tuple(likely.items()),
         found=brought,
         reasons=reasons(likely, stray, by_way, asked.units) if odd else (),
@@ -292,6 +296,26 @@ def _answer(
         next_fixes=offered,
         warnings=_warnings(asked, likely, updated.population, found),
     )
+
+
+def _as_it_stands(said: str, because: str, name: str) -> tuple[str, str]:
+    """The verdict, held back where the change does not stand so that it can be relied on."""
+    if said != UNSURE and name == OTHER:
+        return UNSURE, "what was tapped is hardly explained by this span at all"
+    if said == WORKED and name in NOT_THERE:
+        return UNSURE, f"every mode is clear as it stands, but {NOT_THERE[name]}"
+    if said == WORKED and name != AS_DRAWN:
+        return said, f"{because}, though the change does not stand as drawn"
+    return said, because
+
+
+def _measure(updated: _Updated, found: Judged, goal: Goal, said: str) -> str:
+    """What to tap where nothing can be said yet."""
+    if said != UNSURE:
+        return ""
+    if updated.way.name in NOT_THERE and found.chance >= goal.chance:
+        return "see that the change is in place and tight, then tap again"
+    return measure_next(updated.now, found, goal)
 
 
 def _excitations(asked: Question) -> tuple[Excitation, ...]:

@@ -79,6 +79,8 @@ class AsFound:
     """95 %."""
     informed: bool
     """Whether the re-tap narrowed it."""
+    at_m: float | None = None
+    """Station, where the name alone does not tell what is meant."""
 
 
 @dataclass(frozen=True)

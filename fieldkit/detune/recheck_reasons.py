@@ -98,15 +98,24 @@ def _listed(found: Sequence[AsFound], unit: str, units: str) -> str:
     return f": {', '.join(told)}" if told else ""
 
 
+def name_of(found: AsFound, units: str) -> str:
+    """What a value is, in the units of the job."""
+    if found.at_m is None:
+        return found.name
+    at = show(found.at_m, "length", units, 3)
+    return f"further along than {at}" if found.name == "place" else f"{found.name} at {at}"
+
+
 def as_found(found: AsFound, units: str) -> str:
     """A value of the change as found against as drawn, in the units of the job."""
     dimension = DIMENSIONS[found.unit]
+    name = name_of(found, units)
     low, high = (show(value, dimension, units, 2) for value in (found.low, found.high))
     if found.unit in ("N/m", "N m/rad"):
         share = f"{100 * found.median / found.drawn:.0f} %"
         drawn = show(found.drawn, dimension, units, 2)
-        return f"{found.name} {low} to {high}, about {share} of the {drawn} drawn"
-    return f"{found.name}, {low} to {high}"
+        return f"{name} {low} to {high}, about {share} of the {drawn} drawn"
+    return f"{name}, {low} to {high}"
 
 
 def found_of(
@@ -120,18 +129,18 @@ def found_of(
         key, unknown = joint.keys[j], joint.unknowns[j]
         value: Array = unknown.at(z[:, j])
         drawn = unknown.centre
-        name, unit = unknown.name, unknown.unit
+        name, unit, at_m = unknown.name, unknown.unit, None
         if key[0] == "place":
             value, drawn = value - 1.0, 0.0
-            name = f"place, from {key[1]:.2f} m on"
+            name, at_m = "place", float(str(key[1]))
         elif key[1] == "spring":
             support, axis = int(str(key[2])), str(key[3])
             drawn = way.own_springs[(support, axis)]
-            name = f"{axis} at {way.after.supports[support].at_m:g} m" if several else axis
+            name, at_m = axis, way.after.supports[support].at_m if several else None
         low, median, high = weighted_quantiles(value, share)
         mean = float(share @ z[:, j])
         sd = float(share @ (z[:, j] - mean) ** 2) ** 0.5
-        told.append(AsFound(name, unit, drawn, low, median, high, sd < INFORMED_SD))
+        told.append(AsFound(name, unit, drawn, low, median, high, sd < INFORMED_SD, at_m))
     return tuple(told)
 
 

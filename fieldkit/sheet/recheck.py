@@ -14,7 +14,7 @@ from fieldkit.detune.recheck_answer import (
     Recheck,
     RunningMode,
 )
-from fieldkit.detune.recheck_reasons import DIMENSIONS
+from fieldkit.detune.recheck_reasons import DIMENSIONS, name_of
 from fieldkit.quantity import show
 from fieldkit.sheet import documents, tables
 from fieldkit.sheet.installing import Fold
@@ -220,7 +220,7 @@ def found_cells(answer: Recheck, units: str) -> Cells:
     """Everything the change brought, as drawn and as found."""
     rows = [
         (
-            one.name,
+            name_of(one, units),
             _shown(one.drawn, one, units),
             f"{_shown(one.low, one, units)} to {_shown(one.high, one, units)}",
             "yes" if one.informed else "no",

@@ -42,11 +42,15 @@ def retaps(job: Job, files: Sequence[Path], kind: str = "tap", like: Sequence[in
         if not own:
             model = known[like[i] - 1] if like else _alike(path, i, files, known, kind)
             own = [replace(entry, path=path) for entry in model]
-            taken.append(f"{path.name} as {model[0].path.name}")
+            old = model[0].path.name
+            taken.append(old if old == path.name else f"{path.name} as {old}")
         entries += own
         notes += _told_before(path, job)
     if taken:
-        notes.append(f"set-up taken over from the recordings before the change: {', '.join(taken)}")
+        notes.append(
+            "sensor, place and direction are taken to be those of the recordings before the "
+            f"change: {', '.join(taken)}"
+        )
     return Retaps(tuple(entries), tuple(notes))
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, ClassVar
 
+from textual import work
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical, VerticalScroll
@@ -37,6 +38,8 @@ class DetuneView(View):
                 tooltip="Modes and chance as the chosen change is moved, stiffer or heavier"),
         Binding("i", "install", "Install", key_display="enter", id="detune.install",
                 tooltip="What it takes to install the chosen change (enter or i)"),
+        Binding("p", "recheck", "Recheck", id="detune.recheck",
+                tooltip="Hold the chosen change, once installed, against taps made after it"),
     ]  # fmt: skip
 
     def compose(self) -> ComposeResult:
@@ -93,6 +96,13 @@ class DetuneView(View):
             self.notify("No change is chosen.", severity="warning")
             return
         self.app.push_screen(install_window(self.desk.workup, self.chosen))
+
+    @work
+    async def action_recheck(self) -> None:
+        """Taps made after the chosen change was installed, held against the promise."""
+        from fieldkit.ui.recheck_screen import open_recheck
+
+        await open_recheck(self.app, self.desk, self.chosen)
 
     def action_map(self) -> None:
         """The chance map; the change chosen on it goes the way of any other."""

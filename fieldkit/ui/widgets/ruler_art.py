@@ -26,6 +26,8 @@ class RulerData:
     measured_hz: Sequence[float] = ()
     now: Sequence[float | Spread] = ()
     after: Sequence[float | Spread] = ()
+    names: tuple[str, str, str] = ("measured", "now", "after")
+    """What the three rows are called."""
 
     @property
     def shades(self) -> tuple[BandShade, ...]:
@@ -44,7 +46,6 @@ class RulerData:
 class Row:
     """One row of modes; the glyph tells clear of the bands, touching one, and inside."""
 
-    name: str
     ink: str
     clear: str
     touching: str
@@ -53,9 +54,9 @@ class Row:
 
 
 ROWS = (
-    Row("measured", "measured", "◇", "◈", "◆", "nothing measured yet"),
-    Row("now", "now", "○", "◐", "●", "not computed yet"),
-    Row("after", "after", "△", "◭", "▲", "no change chosen"),
+    Row("measured", "◇", "◈", "◆", "nothing measured yet"),
+    Row("now", "○", "◐", "●", "not computed yet"),
+    Row("after", "△", "◭", "▲", "no change chosen"),
 )
 GUTTER = 9
 KEPT = {1: (1,), 2: (1,), 3: (1, 2)}
@@ -78,7 +79,7 @@ def draw_ruler(canvas: Canvas, data: RulerData) -> None:
     kept = KEPT.get(canvas.rows, (0, 1, 2))
     for index, row in enumerate(kept, start=names):
         spreads = [_spread(value) for value in (data.measured_hz, data.now, data.after)[row]]
-        canvas.write(index, 0, ROWS[row].name[: max(0, gutter - 1)], "name")
+        canvas.write(index, 0, data.names[row][: max(0, gutter - 1)], "name")
         _draw_row(canvas, frame, index, ROWS[row], spreads, data.shades)
     if numbers:
         _draw_axis(canvas, frame)
