@@ -72,11 +72,12 @@ def sheet(
 
 
 def _tell(work: Any, target: Path | None, bundle: Path | None, *, as_json: bool) -> None:
+    """Where it was written, and what could not be answered."""
     files = [path for path in (target, bundle) if path is not None]
     document = {
         "sheet": str(target) if target else None,
         "bundle": str(bundle) if bundle else None,
-        "refused": [f"{refusal.step}: {refusal.reason}" for refusal in work.refused],
+        "missing": [f"{refusal.step}: {refusal.reason}" for refusal in work.refused],
         "simulated": bool(work.simulated),
     }
     output.answer(document, [f"Written to {clean(str(p))}" for p in files], as_json=as_json)
