@@ -22,6 +22,8 @@ _RATE_OVER_TOP = 5.0
 _STOPBAND_DB = 50.0
 _SMEAR = 0.75
 """Periods of the highest frequency over which lowering the rate spreads a contact."""
+_MOST_DAMPING = 0.2
+"""What dies away sooner is more likely what a second blow has left in the fit than a mode."""
 _STRONG = 0.1
 _ORDERS = (0, 2, 4, 8)
 _NEARLY = 1.3
@@ -124,7 +126,7 @@ def heard_of(record: Record, tap: int, parts: Sequence[Component], top_hz: float
 def poles_of(parts: Sequence[Component], tap: int) -> Complex:
     """(m,) poles in one tap; where a frequency drifts, those of faster decays with it."""
     out = []
-    for part in (p for p in parts if not p.steady):
+    for part in (p for p in parts if not p.steady and p.damping_ratio < _MOST_DAMPING):
         pole = part.poles[tap]
         out += [pole + n * pole.real for n in range(3 if part.bend else 1)]
     return np.array(out)

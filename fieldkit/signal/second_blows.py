@@ -16,7 +16,7 @@ from functools import cached_property
 import numpy as np
 from numpy.typing import NDArray
 
-from fieldkit.signal.heard_taps import Heard, Record, heard_of, whitened, whitener
+from fieldkit.signal.heard_taps import Heard, Record, heard_of, poles_of, whitened, whitener
 from fieldkit.signal.normal_equations import Sums, real_columns, sums
 from fieldkit.signal.restrikes import LONGEST_GAP_S
 from fieldkit.signal.traces import Component
@@ -26,7 +26,7 @@ Complex = NDArray[np.complex128]
 
 _SHORTEST_GAP_S = 0.0075
 _DELAYS = 48
-_BEST = 2
+_BEST = 3
 _ABOUT = 0.07
 _PER_PERIOD = 8.0
 _MOST_SHARE = 1.3
@@ -41,12 +41,12 @@ _LEARN_S = 0.15
 _WORTH_A_LOOK = 25.0
 """Twice the log-likelihood that free decay lacks."""
 _SURE = 80.0
-_SURE_SOON = 450.0
+_SURE_SOON = 150.0
 _SAME_SHAPE = 0.8
 _EXPLAINED = 0.6
 _SOON_S = 0.016
 """Until then it may be the end of a long contact, which the same hammer makes at every tap."""
-_SOON_OVER_OTHERS = 10.0
+_SOON_OVER_OTHERS = 4.0
 
 
 @dataclass(frozen=True)
@@ -113,8 +113,7 @@ def second_blows(
     ``parts`` are all modes and tones up to ``top_hz``. Raises nothing: a tap too short to say
     anything says nothing.
     """
-    modes = [part for part in parts if not part.steady]
-    if not modes:
+    if not len(poles_of(parts, 0)):
         return [None for _ in records]
     heard = [heard_of(r, tap, parts, top_hz) for tap, r in enumerate(records)]
     weights = whitener([h.left[h.after(h.free_s)][: int(_LEARN_S * h.rate_hz)] for h in heard if h])
