@@ -25,6 +25,7 @@ RATE_HZ = 48000
 LEAD_S = 0.5
 """Silence at the start of what is played: the first frames of a player may be cut."""
 GENEROUS_S = 60.0
+JACK_READY_S, JACK_ANSWER_S = 20.0, 5.0
 JACK_NAME = "fieldkit-rig"
 """Always the same: JACK knows eight servers at most, and forgets one that was killed only when
 another of its name starts."""
@@ -195,7 +196,10 @@ def end_portaudio() -> None:
 
 @contextmanager
 def jack_bench() -> Iterator[dict[str, str]]:
-    """The environment of a JACK server with a dummy driver, ended whatever happens."""
+    """The environment of a JACK server with a dummy driver, ended whatever happens.
+
+    On a busy computer it may come up stuck: then its clients fail, and another is to be started.
+    """
     require("jackd", "setpriv")
     environment = {
         "JACK_DEFAULT_SERVER": JACK_NAME,
@@ -207,7 +211,11 @@ def jack_bench() -> Iterator[dict[str, str]]:
         ["jackd", "-n", JACK_NAME, "-r", "-t", "20000", *driver], environment, signal_name="TERM"
     )
     try:
-        until(lambda: jack_answers(environment) or server.poll() is not None, why="JACK answers")
+        ready = time.monotonic() + JACK_READY_S
+        while not jack_answers(environment) and server.poll() is None:
+            if time.monotonic() > ready:
+                break
+            time.sleep(0.05)
         yield environment
     finally:
         put_down(server)
@@ -216,5 +224,14 @@ def jack_bench() -> Iterator[dict[str, str]]:
 def jack_answers(environment: dict[str, str]) -> bool:
     """Whether the server takes clients."""
     waiting = ["jack_wait", "-s", environment["JACK_DEFAULT_SERVER"], "-c"]
-    ran = subprocess.run(waiting, env=os.environ | environment, capture_output=True, check=False)
+    try:
+        ran = subprocess.run(
+            waiting,
+            env=os.environ | environment,
+            capture_output=True,
+            timeout=JACK_ANSWER_S,
+            check=False,
+        )
+    except subprocess.TimeoutExpired:
+        return False
     return b"running" in ran.stdout and b"not" not in ran.stdout

@@ -10,13 +10,12 @@ from textual import work
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
 from textual.containers import Horizontal, Vertical
-from textual.content import Content
 from textual.widgets import Footer
 
 from fieldkit.errors import FieldkitError
 from fieldkit.ui.capture import tap_words as words
 from fieldkit.ui.capture.channel_forms import place_form, placed
-from fieldkit.ui.capture.level_meter import meter_line
+from fieldkit.ui.capture.level_meter import MOST_METERS, SHORT_METERS, meters
 from fieldkit.ui.capture.live_screen import LEAVING_KEYS, Begin, LiveScreen
 from fieldkit.ui.capture.tap_run import FAULTS, TapRun
 from fieldkit.ui.dialogs import PickScreen
@@ -137,13 +136,10 @@ class TapScreen(LiveScreen[TapRun]):
     def _say_levels(self, look: TapLook) -> None:
         sizes = [threshold.size for threshold in look.guide.thresholds]
         passed = dict(zip([ear.channel for ear in look.guide.ears], sizes, strict=False))
+        rows = SHORT_METERS if self.has_class("-short") else MOST_METERS
+        labels = words.meter_labels(look, short=len(look.session.levels) > rows)
         width = self.size.width - 2
-        lines = []
-        for index, level in enumerate(look.session.levels):
-            setup = look.channels[index]
-            what = setup.direction or setup.quantity
-            lines.append(meter_line(level, f"{index + 1} {what}", width, passed.get(index)))
-        self.say("#meters", Content("\n").join(lines))
+        self.say("#meters", meters(look.session.levels, labels, width, passed, rows=rows))
 
     def _draw_live(self, look: TapLook) -> None:
         picture = look.picture
@@ -170,6 +166,7 @@ class TapScreen(LiveScreen[TapRun]):
         self.query_one("#live-after", SpectrumPlot).show(
             (spectrum_curve(spectrum, f"blow {latest.number}"),) if spectrum else (),
             amplitude_unit=unit_of(spectrum),
+            up_to_hz=float(spectrum.frequency_hz[-1]) if spectrum else 1.0,
         )
 
     def _draw_decay(self, blow: Blow) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
@@ -9,6 +10,7 @@ from fieldkit.capture import verdict as verdicts
 from fieldkit.capture.guide import READING
 from fieldkit.capture.meter import decibels
 from fieldkit.capture.places import together
+from fieldkit.capture.setup import FORCE
 from fieldkit.capture.snapshot import ENDED, OPENING, PAUSED, RUNNING, WAITING
 from fieldkit.capture.trigger import ARMED, LISTENING, RECORDING
 from fieldkit.ui.plots import SHORT, mode_cells
@@ -93,6 +95,15 @@ def _armed_at(guide: GuideSnapshot) -> str:
     return f" Armed at ┊ {decibels(guide.loudest):.0f} dB."
 
 
+def meter_labels(look: TapLook, *, short: bool) -> list[str]:
+    """Number and direction of every channel, or what it measures."""
+    ways = [
+        FORCE if setup.quantity == FORCE else setup.direction or setup.quantity
+        for setup in look.channels
+    ]
+    return [f"{i + 1} {SHORT.get(way, way) if short else way}" for i, way in enumerate(ways)]
+
+
 def heard(look: TapLook) -> str:
     """Whose spectrum is shown."""
     if len(look.guide.ears) == 1:
@@ -133,17 +144,20 @@ def told(look: TapLook, news_age_s: float = 0.0) -> list[str]:
     if wrong and not running:
         return [f"! {sentence(wrong)}"]
     then = f"! {sentence(wrong)}" if wrong else f"Next: {look.guide.advice}"
-    return [first, then, *_response(look.guide)]
+    response = _response(look.guide)
+    if latest and here and latest.counts:
+        return [f"{first} {response}".rstrip(), then]
+    return [first, then, response]
 
 
-def _response(guide: GuideSnapshot) -> list[str]:
-    """How good the response to the hammer is so far, one line."""
+def _response(guide: GuideSnapshot) -> str:
+    """How good the response to the hammer is so far, in a few words; empty without one."""
     state = guide.response
     if state is None or not state.coherence:
-        return []
-    hz, least = min(state.coherence, key=lambda pair: pair[1])
-    reach = "" if state.reaches_hz is None else f"; the force reaches {state.reaches_hz:.0f} Hz"
-    return [f"Response of {state.blows} blows: least coherence {least:.2f}, at {hz:.1f} Hz{reach}."]
+        return ""
+    least = math.floor(100 * min(coherence for _, coherence in state.coherence)) / 100
+    reach = "" if state.reaches_hz is None else f", force to {state.reaches_hz:.0f} Hz"
+    return f"Coherence {least:.2f} or more at the modes{reach}."
 
 
 def _news(session: Snapshot) -> str:
