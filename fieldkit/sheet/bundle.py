@@ -7,24 +7,29 @@ import io
 import json
 import re
 import zipfile
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path, PurePosixPath
+from typing import BinaryIO
 
 from fieldkit import __version__
 from fieldkit.capture.sidecar import sidecar_path
 from fieldkit.errors import InputError, Place
+from fieldkit.files import replacing
 from fieldkit.job.document import Job
 from fieldkit.job.store import JobText, load_text
 from fieldkit.sheet.content import Document
 from fieldkit.sheet.html import html
 from fieldkit.sheet.markdown import markdown
-from fieldkit.sheet.writing import written
+from fieldkit.sheet.writing import unwritable
 
 MANIFEST = "manifest.json"
 KIND = "fieldkit bundle"
 FOLDER = "recordings"
 _SAFE = re.compile(r"[\w .,+()=@-]*[\w,+()=@-]")
 _DATE = (1980, 1, 1, 0, 0, 0)
+_COMPRESSED = {".flac", ".ogg", ".opus", ".mp3"}
+_PIECE = 1 << 20
 _RESERVED = {"manifest.json", "sheet.html", "sheet.md"}
 
 
@@ -77,12 +82,13 @@ def write_bundle(job: Job, document: Document, path: Path, text: str | None = No
     as_worked = stored if text is None else JobText(text, job.path)
     packed = packed_recordings(job)
     own = _safe_name(job.path.name, "job.toml")
-    contents = {
-        own: _with_new_places(as_worked, job, packed).text.encode("utf-8"),
-        "sheet.html": html(document).encode("utf-8", "replace"),
-        "sheet.md": markdown(document).encode("utf-8", "replace"),
+    texts = {
+        own: _with_new_places(as_worked, job, packed).text,
+        "sheet.html": html(document),
+        "sheet.md": markdown(document),
     }
-    written(path, _zipped(contents, packed, own))
+    with unwritable(path), replacing(path) as file:
+        _zip(file, texts, packed, own)
 
 
 def packed_recordings(job: Job) -> tuple[Packed, ...]:
@@ -129,36 +135,43 @@ def _with_new_places(text: JobText, job: Job, packed: tuple[Packed, ...]) -> Job
     return text
 
 
-def _zipped(contents: dict[str, bytes], packed: tuple[Packed, ...], own: str) -> bytes:
+def _zip(file: BinaryIO, texts: Mapping[str, str], packed: Sequence[Packed], own: str) -> None:
     """The zip file: the same contents give the same bytes."""
-    files: list[dict[str, object]] = []
-    out = io.BytesIO()
-    with zipfile.ZipFile(out, "w", zipfile.ZIP_DEFLATED) as held:
-
-        def add(name: str, content: bytes) -> None:
-            held.writestr(_entry(name), content)
-            digest = hashlib.sha256(content).hexdigest()
-            files.append({"file": name, "bytes": len(content), "sha256": digest})
-
-        for name, content in contents.items():
-            add(name, content)
+    with zipfile.ZipFile(file, "w", zipfile.ZIP_DEFLATED) as held:
+        files = [_add(held, name, _as_file(text)) for name, text in texts.items()]
         for one in packed:
-            add(one.name, _read(one.path))
+            with _opened(one.path) as source:
+                files.append(_add(held, one.name, source))
         told = {"kind": KIND, "program": f"fieldkit {__version__}", "job": own, "files": files}
         held.writestr(_entry(MANIFEST), json.dumps(told, indent=1, ensure_ascii=False) + "\n")
-    return out.getvalue()
+
+
+def _as_file(text: str) -> BinaryIO:
+    return io.BytesIO(text.encode("utf-8", "replace"))
+
+
+def _add(held: zipfile.ZipFile, name: str, source: BinaryIO) -> dict[str, object]:
+    """Copy one file in, piece by piece; what the manifest says of it."""
+    digest, size = hashlib.sha256(), 0
+    with held.open(_entry(name), "w", force_zip64=True) as target:
+        while piece := source.read(_PIECE):
+            target.write(piece)
+            digest.update(piece)
+            size += len(piece)
+    return {"file": name, "bytes": size, "sha256": digest.hexdigest()}
 
 
 def _entry(name: str) -> zipfile.ZipInfo:
     entry = zipfile.ZipInfo(name, _DATE)
-    entry.compress_type = zipfile.ZIP_DEFLATED
+    packed_already = PurePosixPath(name).suffix.lower() in _COMPRESSED
+    entry.compress_type = zipfile.ZIP_STORED if packed_already else zipfile.ZIP_DEFLATED
     entry.external_attr = 0o644 << 16
     return entry
 
 
-def _read(path: Path) -> bytes:
+def _opened(path: Path) -> BinaryIO:
     try:
-        return path.read_bytes()
+        return path.open("rb")
     except OSError as error:
         raise InputError(
             f"it cannot be read ({(error.strerror or str(error)).lower()})",

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from pathlib import Path
 
 from fieldkit.errors import InputError, Place
@@ -56,13 +57,15 @@ def is_sheet(path: Path) -> bool:
 def write_sheet(document: Document, path: Path) -> None:
     """Render by the suffix and write in one piece; InputError where that cannot be."""
     check_target(path)
-    written(path, FORMATS[path.suffix.lower()](document).encode("utf-8", "replace"))
+    with unwritable(path):
+        replace_file(path, FORMATS[path.suffix.lower()](document).encode("utf-8", "replace"))
 
 
-def written(path: Path, content: bytes) -> None:
-    """Write in one piece; InputError in place of an error of the system."""
+@contextmanager
+def unwritable(path: Path) -> Iterator[None]:
+    """InputError in place of an error of the system while a file is written."""
     try:
-        replace_file(path, content)
+        yield
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or str(error)
         raise InputError(

@@ -5,12 +5,14 @@ from __future__ import annotations
 import hashlib
 import json
 import zipfile
+from dataclasses import replace
 from pathlib import Path, PurePosixPath
 
 import pytest
 
 from fieldkit.errors import InputError
 from fieldkit.job.schema import load_job
+from fieldkit.sheet import bundle
 from fieldkit.sheet.bundle import check_bundle, write_bundle
 from tests.cli.test_bad_input import JOB
 from tests.sheet import made_up
@@ -76,8 +78,6 @@ def test_the_packed_job_finds_its_recordings(folder: Path, tmp_path: Path):
 def test_names_inside_are_relative_and_safe(name: str, folder: Path, tmp_path: Path):
     path = folder / "job.toml"
     path.write_text(JOB + RECORDING.format("tap.flac"), encoding="utf-8")
-    from dataclasses import replace
-
     (folder / name).write_bytes(b"sound")
     job = load_job(path)
     job = replace(job, recordings=(replace(job.recordings[0], path=folder / name),))
@@ -116,4 +116,18 @@ def test_the_same_bundle_gives_the_same_bytes_and_replaces_itself(folder: Path, 
     first = out.read_bytes()
     bundled(path, out).close()
     assert out.read_bytes() == first
+    assert [one.name for one in tmp_path.iterdir() if one.is_file()] == ["out.zip"]
+
+
+def test_a_recording_that_goes_while_it_is_packed_leaves_the_older_bundle_whole(
+    folder: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+):
+    path, out = job_with(folder, "tap.flac"), tmp_path / "out.zip"
+    bundled(path, out).close()
+    older = out.read_bytes()
+    (folder / "tap.flac").unlink()
+    monkeypatch.setattr(bundle, "check_bundle", lambda _job, _path: None)
+    with pytest.raises(InputError, match=r"tap\.flac.*cannot be read"):
+        bundled(path, out)
+    assert out.read_bytes() == older
     assert [one.name for one in tmp_path.iterdir() if one.is_file()] == ["out.zip"]
