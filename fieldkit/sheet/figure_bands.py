@@ -51,7 +51,8 @@ def bands_figure(found: Detuning, measured: Sequence[MeasuredMode], up_to_hz: fl
         axes.set_yticks(range(count), labels)
         axes.tick_params(axis="y", length=0)
         axes.set_xlabel("frequency, Hz (chance that all modes are clear in brackets)", loc="left")
-        _legend(axes)
+        others = {mode.direction for mode in measured} - {*DIRECTION_COLOURS}
+        _legend(axes, bool(others))
         shown = (
             "Modes beside the bands to avoid (shaded; the excitation itself darker): median as a "
             "dot, 5 to 95 % as a bar, now and after each of the best changes"
@@ -92,16 +93,16 @@ def _intervals(axes: Any, row: int, modes: Sequence[JudgedMode]) -> None:
         axes.plot([mode.median_hz], [row], "o", color=colour, markersize=4.2)
 
 
-def _legend(axes: Any) -> None:
+def _legend(axes: Any, others: bool) -> None:
     from matplotlib.lines import Line2D
 
-    kinds = [*DIRECTION_COLOURS.items()]
+    kinds = [*DIRECTION_COLOURS.items(), *([("other", MUTED)] if others else [])]
     handles = [
         Line2D([], [], color=colour, marker="o", linewidth=2.4, markersize=4.2)
         for _, colour in kinds
     ]
     axes.legend(
-        handles, [name for name, _ in kinds], loc="upper right", ncols=3,
+        handles, [name for name, _ in kinds], loc="upper right", ncols=4,
         bbox_to_anchor=(1.0, -0.02), bbox_transform=axes.transAxes, borderaxespad=1.5,
         labelcolor=INK, handlelength=1.4,
     )  # fmt: skip

@@ -56,7 +56,7 @@ def tap_figure(reading: TapReading, marks: Marks, up_to_hz: float, number: int) 
     strongest = max(marks.modes, key=lambda mode: mode.strength, default=None)
     with drawn(HEIGHT_IN) as figure:
         left, right = figure.subplots(1, 2, gridspec_kw={"width_ratios": [1.75, 1]})
-        figure.subplots_adjust(left=0.1, right=0.995, top=0.83, bottom=0.17, wspace=0.2)
+        figure.subplots_adjust(left=0.1, right=0.985, top=0.83, bottom=0.17, wspace=0.2)
         _spectrum(left, reading.spectrum, marks, up_to_hz)
         left.set_title(clean(reading.file), pad=14)
         _decay(right, reading, strongest, marks.modes)
@@ -86,7 +86,7 @@ def running_figure(
     """Spectrum of a running recording with its strongest lines and the excitations."""
     with drawn(HEIGHT_IN) as figure:
         axes = figure.subplots()
-        figure.subplots_adjust(left=0.1, right=0.995, top=0.83, bottom=0.17)
+        figure.subplots_adjust(left=0.1, right=0.985, top=0.83, bottom=0.17)
         modes = reading.modes.modes if reading.modes else ()
         highest = min(up_to_hz, float(reading.picture.spectrum.frequency_hz[-1]))
         highest = max([highest, *(1.1 * b.high_hz for b in bands if b.high_hz < 2 * up_to_hz)])
@@ -140,7 +140,7 @@ def _bands(axes: Any, bands: Sequence[Band]) -> None:
 def _name_peaks(axes: Any, peaks: Sequence[tuple[float, str]]) -> None:
     """The frequency over each line, none over another."""
     low, high = axes.get_xlim()
-    clear, last = 0.055 * (high - low), -np.inf
+    clear, last = 0.07 * (high - low), -np.inf
     for hz, colour in sorted(peaks):
         if hz - last < clear or not low <= hz <= high:
             continue

@@ -121,7 +121,7 @@ def taps(found: Results) -> Section:
         used = sum(tap.usable for tap in reading.search.taps)
         title = f"{reading.file}: {len(rows)} taps, {used} used"
         if rows:
-            blocks.append(Table(title, ("tap", "at s", "peak of full scale", "verdict"), rows))
+            blocks.append(Table(title, ("tap", "at s", "peak, of the samples", "verdict"), rows))
         else:
             blocks.append(Paragraph(f"{reading.file}: no tap was found in it."))
         blocks += bullets(sentence(note) for note in reading.notes)
