@@ -57,8 +57,10 @@ def test_late_frames_and_slow_clocks_are_no_losses(seed, drift, late_s, silence_
     lost=st.integers(round(1.6 * LEAST_LOSS_S * RATE_HZ), 5 * RATE_HZ),
 )
 def test_a_loss_is_found_where_it_is(seed, late_s, at, lost):
+    """How much it was is known within a part of how late frames come: in no second are all late."""
     told = found({at: lost}, late_s=late_s, seed=seed)
-    assert sum(count for _, count, _ in told) == pytest.approx(lost, abs=0.02 * RATE_HZ)
+    within = (0.01 + 0.3 * late_s) * RATE_HZ
+    assert sum(count for _, count, _ in told) == pytest.approx(lost, abs=within)
     frame, _, within = told[0]
     assert frame - within <= at + 2 * BLOCK
     assert told[-1][0] >= at
