@@ -45,6 +45,8 @@ SEED = 41
 DRAWS = 400
 RETAPPED = "re-tapped"
 PATH_STEPS = 13
+ABOVE = 1.05
+"""Modes are followed this far above the highest peak."""
 SURE = 0.5
 """Below this probability of the likeliest way the user is told that others explain it too."""
 NOT_THERE = {
@@ -90,18 +92,11 @@ def recheck(asked: Question, progress: Progress | None = None) -> Recheck:
     _require_answerable(asked)
     rng = np.random.default_rng(SEED)
     states = (asked.tapped, asked.running, replace(asked.retapped, name=RETAPPED))
-    groups = grouped(_retapped(asked.after), asked.goal.up_to_hz)
+    groups, reach_hz = grouped(_retapped(asked.after), asked.goal.up_to_hz), _reach_hz(asked)
     known = _known(asked, states, rng)
-    made = ways_of(
-        known, asked.change, states, groups, asked.goal.up_to_hz, progress.within(0, 0.2)
-    )
-    as_drawn = made[0]
-    promise = tracked(
-        as_drawn.joint.after_span,
-        as_drawn.model,
-        drawn(known, as_drawn.joint, DRAWS, rng),
-        asked.goal.up_to_hz,
-    )
+    made = ways_of(known, asked.change, states, groups, reach_hz, progress.within(0.0, 0.2))
+    joint, model = made[0].joint, made[0].model
+    promise = tracked(joint.after_span, model, drawn(known, joint, DRAWS, rng), reach_hz)
     held = []
     for i, way in enumerate(made):
         progress.step("weighing how the change may stand", 0.2 + 0.2 * i / len(made))
@@ -111,6 +106,12 @@ def recheck(asked: Question, progress: Progress | None = None) -> Recheck:
     now = _updated(asked, known, states, leading.way, groups, progress.within(0.4, 0.7))
     promised = _promised(promise, now, asked.goal.up_to_hz)
     return _answer(asked, states, promised, held, likely, now, progress.within(0.7, 1.0))
+
+
+def _reach_hz(asked: Question) -> float:
+    """Up to where modes are followed: a peak may lie above the goal's limit."""
+    highest = max(mode.frequency_hz for mode in (*asked.after.modes, *asked.before.modes))
+    return max(asked.goal.up_to_hz, ABOVE * highest)
 
 
 def _require_answerable(asked: Question) -> None:
@@ -202,7 +203,7 @@ def _updated(
     groups: Sequence[Group],
     progress: Progress,
 ) -> _Updated:
-    joint, up_to_hz = way.joint, asked.goal.up_to_hz
+    joint, up_to_hz = way.joint, _reach_hz(asked)
     old = unknowns_of(joint.before_span, states)
     number = {state.name: i for i, state in enumerate(states[:2])}
     models = [
