@@ -10,7 +10,17 @@ import typer
 from typer.core import TyperGroup
 
 from fieldkit import __version__
-from fieldkit.cli import capturing, curves, installing, mapping, output, rechecking, sheet, spacing
+from fieldkit.cli import (
+    capturing,
+    curves,
+    installing,
+    mapping,
+    output,
+    rechecking,
+    sheet,
+    spacing,
+    waterfall,
+)
 
 OPEN = "open"
 
@@ -158,6 +168,7 @@ def running(
     channel: Channel = 1,
     rate: Rate = None,
     up_to: UpTo = 200.0,
+    over_time: waterfall.Asked = False,
 ) -> None:
     """Read the lines, the level and the natural frequencies of running recordings."""
     with output.answering(as_json=as_json):
@@ -174,6 +185,9 @@ def running(
             else [workup.entry_for(path, "running", channel, rate) for path in files]
         )
         highest_hz = job.goal.up_to_hz if job else up_to
+        if over_time:
+            waterfall.answer(entries, job, highest_hz, as_json=as_json)
+            return
         progress = output.progress()
         readings = tuple(
             workup.read_running_entry(entry, highest_hz, progress) for entry in entries

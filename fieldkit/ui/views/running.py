@@ -50,6 +50,8 @@ class RunningView(View):
         Binding("e", "edit", "Edit", id="running.edit", tooltip="Change the recording on screen"),
         Binding("v", "next", "Next recording", show=False, id="running.next",
                 tooltip="Show the next running recording"),
+        Binding("h", "waterfall", "Waterfall", id="running.waterfall",
+                tooltip="Frequency against time of the recording on screen: does the speed change"),
         Binding("w", "overlay", "With others", show=False, id="running.overlay",
                 tooltip="All running recordings over each other, told apart by letter"),
         Binding("x", "refused", "Refused", show=False, id="running.refused",
@@ -185,6 +187,18 @@ class RunningView(View):
         if found is None or not found.running:
             return None
         return found.running[self.number % len(found.running)]
+
+    def action_waterfall(self) -> None:
+        """Frequency against time, in a window."""
+        from fieldkit.detune.excitation import bands
+        from fieldkit.ui.waterfall_screen import WaterfallScreen
+
+        found, job = self.reading, self.desk.job
+        if found is None or job is None:
+            self.notify("Nothing has been read yet.", severity="warning")
+            return
+        orders = bands(job.excitations, 0.0)
+        self.app.push_screen(WaterfallScreen(found.entry, orders, self.desk.up_to_hz))
 
     def action_severity(self) -> None:
         """Every verdict and every screening, with its source."""
