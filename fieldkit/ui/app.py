@@ -11,6 +11,7 @@ from textual.binding import Binding, BindingType
 from textual.screen import Screen
 from textual.widgets import ContentSwitcher, Footer, Static
 
+from fieldkit.ui import looks
 from fieldkit.ui.commands import COMMANDS, help_text
 from fieldkit.ui.desk import STEPS
 from fieldkit.ui.dialogs import TextScreen
@@ -66,8 +67,10 @@ class FieldkitApp(Measuring):
                 tooltip="Work the whole job out again"),
         Binding("escape", "stop", "Stop", show=False, priority=True, id="work.stop",
                 tooltip="Stop what is being worked out"),
-        Binding("t", "toggle_light", "Light/dark", show=False, id="look.light",
-                tooltip="Light or dark"),
+        Binding("t", "toggle_light", "Colours", show=False, id="look.light",
+                tooltip="Dark, light, high contrast, or no colour at all"),
+        Binding("Y", "copy_view", "Copy", show=False, id="look.copy",
+                tooltip="The view as plain text, and on the clipboard"),
         Binding("question_mark", "help", "Keys", key_display="?", id="help.keys",
                 tooltip="List every key"),
         Binding("q,ctrl+q", "quit", "Quit", key_display="q", id="app.quit",
@@ -76,6 +79,7 @@ class FieldkitApp(Measuring):
 
     def __init__(self, job_path: Path | None = None) -> None:
         super().__init__()
+        looks.prepare(self)
         self.job_path = job_path
         self.here = STEPS[0]
         self.ready = False
@@ -179,8 +183,18 @@ class FieldkitApp(Measuring):
         self.start_work()
 
     def action_toggle_light(self) -> None:
-        """Light or dark."""
-        self.theme = "textual-dark" if self.theme == "textual-light" else "textual-light"
+        """Dark, light, high contrast, no colour."""
+        self.tell(f"{looks.next_look(self)}.")
+
+    def action_copy_view(self) -> None:
+        """Everything on screen as plain text, in a window and on the clipboard."""
+        from fieldkit.ui.as_text import view_text
+
+        base = self.base
+        parts = (self.view(self.here), base.query_one(FrequencyRuler), base.query_one("#reading"))
+        text = view_text(parts)
+        self.copy_to_clipboard(text)
+        self.push_screen(TextScreen(f"{self.here.capitalize()} as text (copied)", text))
 
     def action_help(self) -> None:
         """List every key."""

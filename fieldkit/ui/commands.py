@@ -38,7 +38,8 @@ COMMANDS = (
     Command("Start screen", "start", "New, open, sample, recent jobs"),
     Command("Work out again", "rerun", "Run the whole chain again"),
     Command("Stop", "stop", "Stop what is being worked out"),
-    Command("Light or dark", "toggle_light", "Change the colours"),
+    Command("Colours", "toggle_light", "Dark, light, high contrast, or no colour at all"),
+    Command("Copy view as text", "copy_view", "Everything on screen as plain text"),
     Command("Keys", "help", "List every key"),
     Command("Quit", "quit", "Leave, asking first when something is unsaved"),
 )

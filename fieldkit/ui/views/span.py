@@ -76,7 +76,9 @@ class SpanView(View):
     def on_mount(self) -> None:
         """The shape swings by itself where that is wanted."""
         super().on_mount()
-        self.query_one(SpanDrawing).moving = motion_wanted() and not self.app.is_headless
+        self.query_one(SpanDrawing).moving = (
+            motion_wanted() and not self.app.is_headless and not self.app.no_color
+        )
 
     def draw(self) -> None:
         """Rows, modes, drawing, handbook."""
