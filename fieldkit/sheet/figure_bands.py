@@ -50,12 +50,13 @@ def bands_figure(found: Detuning, measured: Sequence[MeasuredMode], up_to_hz: fl
         labels = ["measured"] * bool(measured) + [clean(name) for name, _ in rows]
         axes.set_yticks(range(count), labels)
         axes.tick_params(axis="y", length=0)
-        axes.set_xlabel("frequency, Hz (chance that all modes are clear in brackets)", loc="left")
+        axes.set_xlabel("frequency, Hz", loc="left")
         others = {mode.direction for mode in measured} - {*DIRECTION_COLOURS}
         _legend(axes, bool(others))
         shown = (
             "Modes beside the bands to avoid (shaded; the excitation itself darker): median as a "
-            "dot, 5 to 95 % as a bar, now and after each of the best changes"
+            "dot, 5 to 95 % as a bar, now and after each of the best changes, in brackets the chance "
+            "that all are clear"
         )
         return Figure(shown, svg_of(figure, "bands", shown))
 
