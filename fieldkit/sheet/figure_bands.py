@@ -55,8 +55,8 @@ def bands_figure(found: Detuning, measured: Sequence[MeasuredMode], up_to_hz: fl
         _legend(axes, bool(others))
         shown = (
             "Modes beside the bands to avoid (shaded; the excitation itself darker): median as a "
-            "dot, 5 to 95 % as a bar, now and after each of the best changes, in brackets the chance "
-            "that all are clear"
+            "dot, 5 to 95 % as a bar, now and after each of the best changes, in brackets the "
+            "chance that all are clear"
         )
         return Figure(shown, svg_of(figure, "bands", shown))
 
