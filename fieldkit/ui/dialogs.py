@@ -98,6 +98,13 @@ class PickScreen(ModalScreen[str | None]):
         self.dismiss(event.option.id)
 
 
+def key_button(name: str, label: str) -> Button:
+    """A button for the mouse: the keyboard has keys of its own for it."""
+    button = Button(Content(label), id=name, compact=True)
+    button.can_focus = False
+    return button
+
+
 class PathSuggester(Suggester):
     """Completes a path from what is on the disk, folders and job files first."""
 
@@ -141,9 +148,12 @@ class PathScreen(ModalScreen[Path | None]):
             yield Static(safe(self.heading), markup=False, classes="window-title")
             yield Input(self.start, suggester=PathSuggester(), select_on_focus=False, compact=True)
             yield Static("", markup=False, id="path-says")
-            yield Static(
-                "tab completes · enter takes it · esc goes back", markup=False, classes="hint"
-            )
+            with Horizontal(classes="keys"):
+                yield key_button("take", "Take it")
+                yield key_button("back", "Back")
+                yield Static(
+                    "tab completes · enter takes it · esc goes back", markup=False, classes="hint"
+                )
 
     def action_complete(self) -> None:
         """Take the greyed-out completion."""
@@ -163,9 +173,19 @@ class PathScreen(ModalScreen[Path | None]):
             return "a file" if self.must_exist else "this file exists and will be replaced"
         return "no such file" if self.must_exist else "a new file"
 
+    def on_button_pressed(self, event: Button.Pressed) -> None:
+        """What enter and escape do."""
+        if event.button.id == "take":
+            self._take(self.query_one(Input).value)
+        else:
+            self.dismiss(None)
+
     def on_input_submitted(self, event: Input.Submitted) -> None:
         """Take the path where it makes sense."""
-        path = Path(event.value).expanduser()
-        if not event.value.strip() or path.is_dir() or (self.must_exist and not path.exists()):
+        self._take(event.value)
+
+    def _take(self, typed: str) -> None:
+        path = Path(typed).expanduser()
+        if not typed.strip() or path.is_dir() or (self.must_exist and not path.exists()):
             return
         self.dismiss(path)

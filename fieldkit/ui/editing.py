@@ -131,10 +131,11 @@ class Editing(Files):
 
         text = self.desk.text
         assert text is not None
+        start = dict(texts) if index is not None and index < 0 else {}
 
         def objection(values: Values) -> str:
             try:
-                forms.with_values(text, form, index, values).job()
+                forms.with_values(text, form, index, start | values).job()
             except FieldkitError as error:
                 return str(error)
             return ""
@@ -148,7 +149,8 @@ class Editing(Files):
         self.typing = {}
         if values is None:
             self.keep_typing({})
-        return values
+            return None
+        return start | values
 
     def reopen_form(self, typing: Mapping[str, Any]) -> None:
         """Go on with a form that was open when the program ended."""

@@ -339,4 +339,4 @@ class Fields(Container):
 
     def focus_on(self, key: str) -> None:
         """Put the keyboard into a field."""
-        self.row(key).input.focus()
+        self.screen.set_focus(self.row(key).input)

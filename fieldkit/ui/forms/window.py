@@ -7,10 +7,11 @@ from typing import ClassVar
 
 from textual.app import ComposeResult
 from textual.binding import Binding, BindingType
-from textual.containers import Vertical
+from textual.containers import Horizontal, Vertical
 from textual.screen import ModalScreen
-from textual.widgets import Static
+from textual.widgets import Button, Static
 
+from fieldkit.ui.dialogs import key_button
 from fieldkit.ui.forms.fields import FieldRow, Fields
 from fieldkit.ui.forms.tables import Form
 from fieldkit.ui.words import safe
@@ -52,7 +53,10 @@ class FormWindow(ModalScreen[Values | None]):
             yield Static(safe(self.heading), markup=False, classes="window-title")
             yield Fields(self.form, self.texts, self.units)
             yield Static("", markup=False, id="form-says")
-            yield Static("↑↓ fields · enter takes all · esc leaves · * needed", classes="hint")
+            with Horizontal(classes="keys"):
+                yield key_button("take", "Take all")
+                yield key_button("leave", "Leave")
+                yield Static("↑↓ fields · enter takes all · esc leaves · * needed", classes="hint")
 
     def on_mount(self) -> None:
         """Start in the first field, or go on with what was typed before."""
@@ -61,7 +65,7 @@ class FormWindow(ModalScreen[Values | None]):
         for row in rows:
             if row.field.key in self.typed:
                 row.input.value = self.typed[row.field.key]
-        rows[0].input.focus()
+        self.set_focus(rows[0].input)
 
     @property
     def fields(self) -> Fields:
@@ -88,12 +92,19 @@ class FormWindow(ModalScreen[Values | None]):
         else:
             await self.action_take()
 
+    async def on_button_pressed(self, event: Button.Pressed) -> None:
+        """What enter and escape do."""
+        if event.button.id == "take":
+            await self.action_take()
+        else:
+            self.dismiss(None)
+
     async def action_take(self) -> None:
         """Hand the values back, unless a field or the whole job objects."""
         await self.fields.caught_up()
         wrong = self.fields.first_wrong
         if wrong is not None:
-            wrong.input.focus()
+            self.set_focus(wrong.input)
             self._say(f"✗ {wrong.error}", wrong=True)
             return
         values = self.changed

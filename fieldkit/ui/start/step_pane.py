@@ -90,7 +90,7 @@ class StepPane(Vertical):
         """Put the keyboard where it was needed last."""
         wanting = (row for row in self.fields.rows if row.error)
         row = next(wanting, self.fields.rows[0]) if self.values else self.fields.rows[0]
-        row.input.focus()
+        self.screen.set_focus(row.input)
 
     def on_fields_typed(self, message: Fields.Typed) -> None:
         """Tell of every key press."""
@@ -125,7 +125,7 @@ class StepPane(Vertical):
         """Put the row in hand into the list; False, and a sentence, where it does not fit."""
         wrong = self.fields.first_wrong
         if wrong is not None:
-            wrong.input.focus()
+            self.screen.set_focus(wrong.input)
             self.call_after_refresh(self.say, f"✗ {wrong.error}", wrong=True)
             return False
         rows = list(self.rows)
@@ -156,7 +156,7 @@ class StepPane(Vertical):
         objection = wrong.error if wrong else self.objection(self.step.table, (self.values,))
         if objection:
             if wrong is not None:
-                wrong.input.focus()
+                self.screen.set_focus(wrong.input)
             self.call_after_refresh(self.say, f"✗ {objection}", wrong=True)
         return not objection
 

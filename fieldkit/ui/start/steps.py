@@ -9,7 +9,7 @@ from pathlib import Path
 from fieldkit.errors import FieldkitError, InputError
 from fieldkit.job.draft import FILLS, Draft, job_of, orders_of
 from fieldkit.job.machines import FIXED, MACHINES
-from fieldkit.quantity import quoted, show
+from fieldkit.quantity import parse, quoted, show
 from fieldkit.ui.forms import offers
 from fieldkit.ui.forms.codecs import Choice, Number, Quantity, Range, Several, Words
 from fieldkit.ui.forms.named import ContentsName, MaterialName, PipeSize, Schedule
@@ -106,9 +106,18 @@ def station_offers(draft: Draft) -> OffersOf:
             station += leg.length_m
             last = number == len(span.legs)
             places.append((station, "end" if last else f"corner {number}"))
-        return [Offer(show(at_m, "length", draft.units), said) for at_m, said in places]
+        return [Offer(station_text(at_m, draft.units), said) for at_m, said in places]
 
     return offered
+
+
+def station_text(at_m: float, units: str) -> str:
+    """A station with as many digits as it takes not to lie beyond it: the end must stay on."""
+    texts = (show(at_m, "length", units, digits) for digits in range(4, 12))
+    return next(
+        (text for text in texts if -1e-5 <= parse(text, "length") - at_m <= 1e-7),
+        show(at_m, "length", units, 12),
+    )
 
 
 def order_offers(values: Mapping[str, str]) -> Sequence[Offer]:
