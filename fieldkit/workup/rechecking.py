@@ -103,4 +103,11 @@ def _evidence(entries: Sequence[RecordingEntry], job: Job, progress: Progress) -
         readings = tap_readings(taps, progress)
         return evidence_from(readings, None, progress, job.goal.up_to_hz)
     running = [read_running_entry(e, job.goal.up_to_hz, progress) for e in entries]
-    return with_running_modes(Evidence(), running)
+    found = with_running_modes(Evidence(), running)
+    if not found.modes:
+        reasons = dict.fromkeys(r.no_modes for r in running if r.no_modes)
+        raise Refusal(
+            f"no natural frequency shows while running: {'; '.join(reasons) or 'no peak is sure'}",
+            "tap the pipe with the machine stopped, where the taps before the change were made",
+        )
+    return found
