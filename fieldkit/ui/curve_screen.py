@@ -66,6 +66,8 @@ class CurveScreen(ModalScreen["Verdict | None"]):
         self.search: Search | None = None
         self.judged: dict[str, FixCurve] = {}
         """Curves worked out so far, by kind."""
+        self.drawn: CurveData | None = None
+        """The one on screen, ready to draw."""
 
     @property
     def found(self) -> FixCurve | None:
@@ -141,6 +143,9 @@ class CurveScreen(ModalScreen["Verdict | None"]):
         assert self.found is not None
         self.at = self.found.varied.drawn
         number = f"Change {self.fix.rank}: " if self.fix.rank else ""
+        self.drawn = curve_data(self.found, self.job.units)
+        kept = kept_text(self.found, self.job.units)
+        self.query_one("#curve-kept", Static).update(safe(kept))
         self._title(f"{number}{headline(self.found).lower() if number else headline(self.found)}")
         self._read()
 
@@ -199,10 +204,10 @@ class CurveScreen(ModalScreen["Verdict | None"]):
     def _read(self) -> None:
         found, units = self.found, self.job.units
         assert found is not None
-        self.query_one(CurvePlot).show(curve_data(found, units), self.at)
+        assert self.drawn is not None
+        self.query_one(CurvePlot).show(self.drawn, self.at)
         self.query_one("#curve-words", Static).update(safe(read_out(found, self.at, units)))
         self.query_one("#curve-modes", Static).update(safe(modes_text(found, self.at)))
-        self.query_one("#curve-kept", Static).update(safe(kept_text(found, units)))
 
 
 def curve_data(found: FixCurve, units: str) -> CurveData:
