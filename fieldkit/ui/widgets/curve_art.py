@@ -45,11 +45,11 @@ class CurveData:
 
     @property
     def top_hz(self) -> float:
-        """Upper end: the highest mode or band, no farther than the question goes."""
+        """Upper end: the highest mode and a band it comes near, as far as the question goes."""
         modes = self.frequency_hz[np.isfinite(self.frequency_hz)]
-        below = [band.avoid_high_hz for band in self.bands if band.avoid_low_hz < self.up_to_hz]
-        highest = max([float(modes.max(initial=0.0)), *below])
-        return min(self.up_to_hz, HEADROOM * highest) or 1.0
+        highest = float(modes.max(initial=0.0))
+        near = [b.avoid_high_hz for b in self.bands if b.avoid_low_hz < HEADROOM * highest]
+        return min(self.up_to_hz, HEADROOM * max([highest, *near])) or 1.0
 
 
 def curve_frame(data: CurveData, columns: int, rows: int) -> Frame:
