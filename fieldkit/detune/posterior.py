@@ -29,6 +29,8 @@ Array = NDArray[np.float64]
 Index = NDArray[np.intp]
 
 MEMBERS = 400
+FIRST_DRAWS = 1600
+"""The members are chosen from these: a draw costs one solve, a lost family a chain of them."""
 MOVES_PER_LEVEL = 2
 RENEWED = (0.25, 0.6, 1.0)
 """How much of a member a move of the mixture draws anew."""
@@ -37,10 +39,10 @@ ELSEWHERE = 0.3
 LOCAL_MOVES = 4
 STRIDES = (0.2, 0.5, 0.9)
 """The same for the moves along the local curvature."""
-ATTEMPTS = 2
-ENOUGH = 40.0
-"""Effective size below which the normals are added to, about members found so far, and the draws
-begun anew: the fewer, the more often a stated interval misses."""
+ATTEMPTS = 3
+ENOUGH = 60.0
+"""Effective size below which the normals are added to, about members found so far, and further
+members drawn: the fewer, the more often a stated interval misses."""
 LEARNT = 40
 MOST_A_FAMILY = 12.0
 """Independent draws that one family may count for: its own moves cannot prove more."""
@@ -60,6 +62,8 @@ class Population:
     levels: int
     acceptance: float
     """Share of the local moves that were taken."""
+    log_evidence: float = 0.0
+    """Logarithm of the evidence, as the resampling estimates it; of two pooled, their sum."""
 
     @property
     def best_log_likelihood(self) -> float:
@@ -88,17 +92,39 @@ def effective_size(values: Array, family: Index) -> float:
 def sample(problem: Problem, rng: np.random.Generator, progress: Progress) -> Population:
     """Draw the posterior; deterministic for a given generator."""
     known = proposal(problem, rng, progress.within(0.0, 0.4))
-    found: list[Population] = []
+    found: Population | None = None
     for attempt in range(ATTEMPTS):
         start = 0.4 + 0.6 * attempt / ATTEMPTS
         work = progress.within(start, start + 0.6 / ATTEMPTS)
         tempered = _tempered(problem, mixture(known), rng, work.within(0.0, 0.6))
-        found.append(_spread(problem, tempered, rng, work.within(0.6, 1.0)))
-        if found[-1].effective_size >= ENOUGH:
+        drawn = _spread(problem, tempered, rng, work.within(0.6, 1.0))
+        found = drawn if found is None else pooled(found, drawn, rng)
+        if found.effective_size >= ENOUGH:
             break
         typical = rng.choice(MEMBERS, LEARNT, replace=False)
-        known = known.beside(about(problem, found[-1].z[typical]))
-    return max(found, key=lambda population: population.effective_size)
+        known = known.beside(about(problem, drawn.z[typical]))
+    assert found is not None
+    return found
+
+
+def pooled(first: Population, second: Population, rng: np.random.Generator) -> Population:
+    """Members of both, as many as one has, each population by its estimate of the evidence.
+
+    The estimates of annealed resampling have no bias, so that weights by them have none either:
+    a population that missed where most of the posterior lies counts little.
+    """
+    both = np.logaddexp(first.log_evidence, second.log_evidence)
+    from_second = int(np.round(MEMBERS * np.exp(second.log_evidence - both)))
+    kept = rng.permutation(MEMBERS)[: MEMBERS - from_second]
+    added = rng.permutation(MEMBERS)[:from_second]
+    return Population(
+        np.concatenate([first.z[kept], second.z[added]]),
+        np.concatenate([first.log_likelihood[kept], second.log_likelihood[added]]),
+        np.concatenate([first.family[kept], second.family[added] + 1 + first.family.max()]),
+        max(first.levels, second.levels),
+        0.5 * (first.acceptance + second.acceptance),
+        float(both),
+    )
 
 
 @dataclass(frozen=True)
@@ -118,6 +144,15 @@ class _Members:
         )
 
 
+@dataclass(frozen=True)
+class _Tempered:
+    """Members at the posterior, and what it took."""
+
+    members: _Members
+    levels: int
+    log_evidence: float
+
+
 def _placed(problem: Problem, made: Mixture, z: Array, family: Index) -> _Members:
     likelihood = log_likelihood(problem, z)
     ratio = likelihood - 0.5 * np.sum(z**2, axis=1) - made.log_density(z)
@@ -126,21 +161,38 @@ def _placed(problem: Problem, made: Mixture, z: Array, family: Index) -> _Member
 
 def _tempered(
     problem: Problem, made: Mixture, rng: np.random.Generator, progress: Progress
-) -> tuple[_Members, int]:
+) -> _Tempered:
     """Carry draws of the mixture to the posterior, level by level."""
-    progress.step("drawing the ensemble", 0.0)
-    members = _placed(problem, made, made.draw(MEMBERS, rng), np.arange(MEMBERS))
-    level, levels = 0.0, 0
+    members = _first_draws(problem, made, rng, progress)
+    level, levels, log_evidence = 0.0, 0, 0.0
     while level < 1.0:
         rise = _next_rise(members.log_ratio, 1.0 - level)
         if levels == MOST_LEVELS:
             rise = 1.0 - level
-        members = members.at(_resample(rise * members.log_ratio, rng))
+        weight = rise * members.log_ratio
+        log_evidence += float(np.logaddexp.reduce(weight) - np.log(len(weight)))
+        members = members.at(_resample(weight, MEMBERS, rng))
         level, levels = level + rise, levels + 1
         for _ in range(MOVES_PER_LEVEL):
             progress.step("drawing the ensemble", min(level, 1.0))
             members = _renew(problem, made, members, level, rng)
-    return members, levels
+    return _Tempered(members, levels, log_evidence)
+
+
+def _first_draws(
+    problem: Problem, made: Mixture, rng: np.random.Generator, progress: Progress
+) -> _Members:
+    placed = []
+    for first in range(0, FIRST_DRAWS, MEMBERS):
+        progress.step("drawing the ensemble", 0.0)
+        family = np.arange(first, first + MEMBERS)
+        placed.append(_placed(problem, made, made.draw(MEMBERS, rng), family))
+    return _Members(
+        np.concatenate([p.z for p in placed]),
+        np.concatenate([p.log_likelihood for p in placed]),
+        np.concatenate([p.log_ratio for p in placed]),
+        np.concatenate([p.family for p in placed]),
+    )
 
 
 def _renew(
@@ -203,12 +255,12 @@ def _stand(problem: Problem, z: Array) -> _Stand:
 
 def _spread(
     problem: Problem,
-    tempered: tuple[_Members, int],
+    tempered: _Tempered,
     rng: np.random.Generator,
     progress: Progress,
 ) -> Population:
     """Metropolis-Hastings steps of every member along the local curvature."""
-    members, levels = tempered
+    members = tempered.members
     progress.step("drawing the ensemble", 0.0)
     here = _stand(problem, members.z)
     accepted = []
@@ -222,7 +274,14 @@ def _spread(
         here = _chosen(taken, there, here)
         accepted.append(float(taken.mean()))
     acceptance = float(np.mean(accepted))
-    return Population(here.z, here.log_likelihood, members.family, levels, acceptance)
+    return Population(
+        here.z,
+        here.log_likelihood,
+        members.family,
+        tempered.levels,
+        acceptance,
+        tempered.log_evidence,
+    )
 
 
 def _chosen(taken: NDArray[np.bool_], there: _Stand, here: _Stand) -> _Stand:
@@ -234,13 +293,14 @@ def _chosen(taken: NDArray[np.bool_], there: _Stand, here: _Stand) -> _Stand:
 
 
 def _next_rise(log_ratio: Array, most: float) -> float:
-    """Largest rise of the level that keeps half the effective size, by bisection."""
-    if _effective_share(most * log_ratio) >= KEPT_EFFECTIVE_SHARE:
+    """Largest rise of the level that leaves half as many effective members, by bisection."""
+    wanted = KEPT_EFFECTIVE_SHARE * MEMBERS / len(log_ratio)
+    if _effective_share(most * log_ratio) >= wanted:
         return most
     low, high = 0.0, most
     for _ in range(30):
         middle = 0.5 * (low + high)
-        if _effective_share(middle * log_ratio) >= KEPT_EFFECTIVE_SHARE:
+        if _effective_share(middle * log_ratio) >= wanted:
             low = middle
         else:
             high = middle
@@ -252,9 +312,9 @@ def _effective_share(log_weight: Array) -> float:
     return float(weight.sum() ** 2 / np.sum(weight**2) / len(weight))
 
 
-def _resample(log_weight: Array, rng: np.random.Generator) -> Index:
-    """Systematic resampling."""
+def _resample(log_weight: Array, count: int, rng: np.random.Generator) -> Index:
+    """Systematic resampling to ``count`` members."""
     weight = np.exp(log_weight - log_weight.max())
     edges = np.cumsum(weight / weight.sum())
-    points = (np.arange(len(weight)) + rng.random()) / len(weight)
+    points = (np.arange(count) + rng.random()) / count
     return np.minimum(np.searchsorted(edges, points), len(weight) - 1)

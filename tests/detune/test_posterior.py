@@ -9,7 +9,7 @@ import pytest
 
 from fieldkit.detune.laplace import Mixture, Normals, mixture
 from fieldkit.detune.match import _require_enough
-from fieldkit.detune.posterior import Population, effective_size
+from fieldkit.detune.posterior import MEMBERS, Population, effective_size, pooled
 from fieldkit.errors import Refusal
 from tests.detune.lines import booster
 
@@ -40,6 +40,21 @@ def test_an_ensemble_of_very_few_unlike_members_is_refused():
     with pytest.raises(Refusal, match="independent parameter sets only") as refused:
         _require_enough(population)
     assert "tap another place" in refused.value.measure_next
+
+
+def test_two_populations_are_pooled_by_their_evidence():
+    """One three times as likely as the other gives three quarters; families stay apart."""
+
+    def population(at: float, log_evidence: float) -> Population:
+        z = np.full((MEMBERS, 2), at)
+        return Population(z, np.zeros(MEMBERS), np.arange(MEMBERS), 2, 0.2, log_evidence)
+
+    first, second = population(0.0, -7.0 + np.log(3)), population(1.0, -7.0)
+    both = pooled(first, second, np.random.default_rng(6))
+    assert len(both.z) == MEMBERS
+    assert np.mean(both.z[:, 0]) == pytest.approx(0.25)
+    assert len(np.unique(both.family)) == MEMBERS
+    assert both.log_evidence == pytest.approx(-7.0 + np.log(4))
 
 
 def _two_hills() -> Mixture:

@@ -15,17 +15,22 @@ from dataclasses import asdict
 from multiprocessing import get_context
 from pathlib import Path
 
-from tests.bench.promises import tables
+from tests.bench.promises import aims, tables
 from tests.bench.promises.trial import Plan, Trial, plans, run
 from tests.bench.promises.truth import LIKE, UNLIKE
+
+EACH = "add each span as a JSON line; spans that stand there already are not answered again"
 
 
 def main() -> None:
     """Answer the spans and print what came out."""
     args = arguments().parse_args()
     ways = (args.way,) if args.way else (LIKE, UNLIKE)
-    trials = []
-    for trial in trials_of(plans(ways, args.spans, args.seed), args.jobs):
+    planned = plans(ways, args.spans, args.seed)
+    trials = read(args.each) if args.each else []
+    done = {(trial.family, trial.way, trial.seed) for trial in trials}
+    left = [plan for plan in planned if (plan.family, plan.way, plan.seed) not in done]
+    for trial in trials_of(left, args.jobs):
         trials.append(trial)
         if args.each:
             with args.each.open("a", encoding="utf-8") as file:
@@ -33,6 +38,7 @@ def main() -> None:
     for way in ways:
         print(f"\nTruth {way}\n{tables.aligned(tables.table(trials, way))}")
         print(f"\n{tables.aligned(tables.fifths(trials, way))}")
+        print(f"\n{tables.aligned(aims.table(trials, way))}")
         print("\n".join(tables.totals(trials, way)))
     if args.plot:
         from tests.bench.promises.calibration_plot import plot
@@ -51,10 +57,16 @@ def arguments() -> argparse.ArgumentParser:
     parser.add_argument("--spans", type=int, default=200, help="spans, shared by the families")
     parser.add_argument("--way", choices=(LIKE, UNLIKE), help="only this truth (default: both)")
     parser.add_argument("--jobs", type=int, default=2, help="processes")
-    parser.add_argument("--each", type=Path, metavar="FILE", help="add each span as a JSON line")
+    parser.add_argument("--each", type=Path, metavar="FILE", help=EACH)
     parser.add_argument("--write", type=Path, metavar="FILE", help="write the tables as Markdown")
     parser.add_argument("--plot", type=Path, metavar="FILE", help="draw promised against kept")
     return parser
+
+
+def read(path: Path) -> list[Trial]:
+    """Trials of an earlier run that was stopped, or whose page is to be written anew."""
+    lines = path.read_text("utf-8").splitlines() if path.exists() else []
+    return [Trial(**json.loads(line)) for line in lines]
 
 
 def trials_of(planned: Sequence[Plan], jobs: int) -> Iterator[Trial]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from tests.bench.promises import tables
+from tests.bench.promises import aims, tables
 from tests.bench.promises.families import FAMILIES
 from tests.bench.promises.trial import Trial
 
@@ -41,6 +41,7 @@ def report(trials: Sequence[Trial], seed: int, spans: int) -> str:
     for way in dict.fromkeys(trial.way for trial in trials):
         parts += [f"\n## Truth {way}\n", tables.markdown(tables.table(trials, way))]
         parts += ["", tables.markdown(tables.fifths(trials, way))]
+        parts += ["", tables.markdown(aims.table(trials, way))]
         parts += ["", *(f"- {line}" for line in tables.totals(trials, way))]
     parts.append(
         "\n## Promised against kept\n\n![Promised chance against share kept](promises.svg)"
