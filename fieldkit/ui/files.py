@@ -140,7 +140,6 @@ class Files(SheetWriting, Keeping):
     def on_open_failed(self, message: say.OpenFailed) -> None:
         """A job file could not be read: the one on the desk stays, or the start comes again."""
         self.say_progress("")
-        self.tell(message.sentence, wrong=True)
         self.mend(message.path)
 
     @work(exclusive=True, group="mend")

@@ -76,7 +76,7 @@ class TextEditing(Editing):
         text = start
         while True:
             if error is not None:
-                window = BrokenScreen(_name(start), error, text.text, "Leave it")
+                window = BrokenScreen(str(start.path or _name(start)), error, text.text, "Leave it")
                 if await self.push_screen_wait(window) != "edit":
                     return None
             changed = self._in_editor(text, line_of(error) if error else None)
@@ -131,7 +131,8 @@ class TextEditing(Editing):
 
         try:
             text = load_text(path)
-        except InputError:
+        except InputError as unreadable:
+            self.tell(str(unreadable), wrong=True)
             return None
         return await self.edited_text(text, error)
 

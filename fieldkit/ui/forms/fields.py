@@ -84,6 +84,11 @@ class FieldRow(Horizontal):
         self.query_one(".field-says", Static).update(safe(says))
         self.set_class(bool(self.error) and bool(self.text), "-wrong")
 
+    def lean(self, chosen: str) -> None:
+        """Show what enter would take."""
+        self.query_one(".field-says", Static).update(safe(f"→ {chosen}"))
+        self.set_class(False, "-wrong")
+
     @property
     def when_empty(self) -> str:
         """What leaving it out means."""
@@ -96,9 +101,17 @@ class Choices(OptionList, can_focus=False):
     ROOM = 26
     """Columns where it has not been laid out yet."""
 
+    @property
+    def _room(self) -> int:
+        """Columns of a line, beside the scroll bar."""
+        stated = self.styles.width
+        if stated is not None and stated.is_cells:
+            return int(stated.value) - 2
+        return (self.content_size.width or self.ROOM) - 1
+
     def show(self, offers: Sequence[Offer]) -> None:
         """Fill it, or hide it where nothing is offered."""
-        room = (self.content_size.width or self.ROOM) - 1
+        room = self._room
         self.clear_options()
         self.add_options([Option(_line(offer, room), id=f"o{i}") for i, offer in enumerate(offers)])
         self.display = bool(offers)
@@ -215,8 +228,8 @@ class Fields(Container):
         self._typed_here = row is self.here
         row.judge()
         if row is self.here:
-            self.explain(row)
             self._offer(row)
+            self.explain(row)
         self._imply()
         self.post_message(self.Typed())
 
@@ -234,12 +247,19 @@ class Fields(Container):
         if isinstance(row, FieldRow):
             self._typed_here = False
             row.scroll_visible(animate=False)
-            self.explain(row)
             self._offer(row)
+            self.explain(row)
 
     def explain(self, row: FieldRow) -> None:
         """What is wrong with a field, or how to type it."""
-        if row.error and row.text:
+        at = self.choices.highlighted
+        if row.error and row.text and at is not None:
+            chosen = self._offers[at].value
+            row.lean(chosen)
+            self.post_message(
+                self.Explained(f"{row.field.label}: enter takes {chosen}, ↓ another", wrong=False)
+            )
+        elif row.error and row.text:
             self.post_message(self.Explained(f"✗ {row.error}", wrong=True))
         else:
             listed = row.field.offers is not None and isinstance(row.field.codec, Choice)
@@ -294,8 +314,11 @@ class Fields(Container):
         here = self.choices.highlighted
         last = len(self._offers) - 1
         there = (0 if step > 0 else -1) if here is None else here + step
+        row = self.here
         if 0 <= there <= last:
             self.choices.highlighted = there
+            if row is not None:
+                row.lean(self._offers[there].value)
         else:
             self._walk(step)
 

@@ -137,8 +137,8 @@ MOTIONS = fixed(
 HEADINGS = fixed(
     Offer("+x", "level"),
     Offer("-x", "level, back"),
-    Offer("+y", "level, left of +x"),
-    Offer("-y", "level, right of +x"),
+    Offer("+y", "level, left"),
+    Offer("-y", "level, right"),
     Offer("+z", "up"),
     Offer("-z", "down"),
 )

@@ -34,7 +34,7 @@ LEAVE = (
     ("discard", "Throw it away"),
     ("back", "Go on describing"),
 )
-HINT = "enter goes on · pgdn next · pgup back · ctrl+d takes out · esc leaves"
+HINT = "enter · pgdn next · pgup back · ^d removes · esc leaves"
 
 
 @dataclass(frozen=True)

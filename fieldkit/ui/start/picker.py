@@ -121,7 +121,8 @@ class FilePicker(ModalScreen[Path | None]):
 
     def _row(self, place: Place) -> Row:
         said = "folder" if place.folder else (self.said.get(place.path) or place.said or "…")
-        return str(place.path), (place.name, said, home_short(place.path.parent))
+        where = "" if place.folder else home_short(place.path.parent)
+        return str(place.path), (place.name, said, where)
 
     def _say(self, typed: str) -> None:
         folder, name = split_path(typed, self.folder)

@@ -86,7 +86,7 @@ def heading_offers(draft: Draft) -> OffersOf:
 def _turn(offer: Offer, before: str) -> str:
     if not before:
         return offer.said
-    return "straight on" if offer.value == before else f"bend, then {offer.said}"
+    return "straight on" if offer.value == before else f"bend: {offer.said}"
 
 
 def _is_back(heading: str, before: str) -> bool:
@@ -151,6 +151,13 @@ def goal_file(draft: Draft, folder: Path) -> str:
     return path.name
 
 
+SHORTER = {
+    "bend_radius": "long radius",
+    "vertical": "by its kind",
+    "lateral": "by its kind",
+    "tolerance": "10 %",
+}
+"""What leaving a field out means, where there is little room."""
 FILL_OFFERS = fixed(
     Offer("full", "as it runs"),
     Offer("drained", "empty when tapped"),
@@ -233,7 +240,10 @@ def _only(table: str, *keys: str) -> Form:
 def _with_offers(form: Form, found: Mapping[str, OffersOf]) -> Form:
     from dataclasses import replace
 
-    fields = tuple(replace(f, offers=found.get(f.key, f.offers)) for f in form.fields)
+    fields = tuple(
+        replace(f, offers=found.get(f.key, f.offers), when_empty=SHORTER.get(f.key, f.when_empty))
+        for f in form.fields
+    )
     return replace(form, fields=fields)
 
 
