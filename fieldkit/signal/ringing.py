@@ -7,6 +7,8 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal.beats import FRAME_S as BEATS_S
+from fieldkit.signal.beats import beats
 from fieldkit.signal.innovation import Level
 
 Real = NDArray[np.float64]
@@ -34,6 +36,8 @@ class Ringing:
     """(f,) largest ratio of power to background over all bins."""
     excess: Real
     """(f,) power above the background, all bins together."""
+    beats: Real
+    """(f,) how far the power about steady lines strays, in longer frames that begin with these."""
 
     @property
     def frame_s(self) -> float:
@@ -53,7 +57,8 @@ class Ringing:
     def end_s(self, start_s: float, limit_s: float) -> float:
         """When the ringing that begins at start has sunk into the background."""
         frames = self.between(start_s, limit_s)
-        quiet = self.over[frames] < RINGS
+        alone = self.time_s[frames] - _FRAME_S / 2 + BEATS_S <= limit_s
+        quiet = (self.over[frames] < RINGS) & ~(alone & (self.beats[frames] > RINGS))
         settled = np.flatnonzero(quiet[:-2] & quiet[1:-1] & quiet[2:])
         if not len(settled):
             return limit_s
@@ -84,7 +89,7 @@ def ringing(level: Level, background_s: tuple[float, float]) -> Ringing:
     hop = max(length // 4, 1)
     if len(level.samples) < length:
         nothing = np.zeros(0)
-        return Ringing(nothing, nothing, np.zeros((0, 0)), nothing, nothing, nothing)
+        return Ringing(nothing, nothing, np.zeros((0, 0)), nothing, nothing, nothing, nothing)
     frames = np.lib.stride_tricks.sliding_window_view(level.samples, length)[::hop]
     window = np.hanning(length + 1)[:-1]
     spectra: NDArray[np.complex128] = np.fft.rfft(frames * window, axis=1)[:, 1:]
@@ -94,13 +99,20 @@ def ringing(level: Level, background_s: tuple[float, float]) -> Ringing:
     ratio = power / quiet
     excess = np.maximum(power - 3 * quiet, 0).sum(axis=1)
     frequency_hz = np.arange(1, power.shape[1] + 1) * level.rate_hz / length
-    return Ringing(time_s, frequency_hz, power, quiet, ratio.max(axis=1), excess)
+    starts = np.arange(len(frames)) * hop
+    strays = beats(level.samples, level.rate_hz, starts, background_s)
+    return Ringing(time_s, frequency_hz, power, quiet, ratio.max(axis=1), excess, strays)
+
+
+def frames_inside(time_s: Real, background_s: tuple[float, float]) -> NDArray[np.bool_]:
+    """(f,) True for frames that lie wholly in the background."""
+    half = _FRAME_S / 2
+    return (time_s - half >= background_s[0]) & (time_s + half <= background_s[1])
 
 
 def background_power(power: Real, time_s: Real, background_s: tuple[float, float]) -> Real:
     """(bins,) mean power of the background, smoothed upwards over neighbouring bins."""
-    half = _FRAME_S / 2
-    inside = (time_s - half >= background_s[0]) & (time_s + half <= background_s[1])
+    inside = frames_inside(time_s, background_s)
     if np.count_nonzero(inside) >= _LEAST_FRAMES:
         mean = power[inside].mean(axis=0)
     else:
