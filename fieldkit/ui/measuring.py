@@ -63,12 +63,8 @@ class Measuring(TextEditing):
                 return await self._practice_job()
             if picked == "open":
                 self.action_open()
-            if picked != "new":
+            if picked != "new" or not await self.describe_new():
                 return False
-            from fieldkit.job.store import new_job_text
-
-            text = new_job_text()
-            self.begin(OpenJob(text, None), text.job())
         if self.open_job is not None and self.open_job.path is None:
             self.tell("Recordings lie beside the job file: save it first.")
             return await self.save_somewhere(None)
