@@ -144,7 +144,7 @@ async def test_keys_are_listed_and_light_follows_dark(app: FieldkitApp) -> None:
         await pilot.press("question_mark")
         await pilot.pause()
         assert isinstance(app.screen, TextScreen)
-        for line in ("Write the job file", "Draw the mode before", "Save this text as a file"):
+        for line in ("Write the job file", "Draw the mode before", "Write the whole sheet"):
             assert line in app.screen.text
         await pilot.press("escape")
         await pilot.pause()
