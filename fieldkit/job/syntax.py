@@ -11,6 +11,8 @@ from fieldkit.errors import InputError, Place
 
 LARGEST_FILE = 1_000_000
 """Bytes; a job file has a few thousand."""
+LONGEST_LINE = 10_000
+"""Characters; a hundred pairs of stations need a quarter of it."""
 _BOM = b"\xef\xbb\xbf"
 _WHERE = re.compile(r"\s*\(at (?:line (\d+), column \d+|end of document)\)")
 _GIVEN_TWICE = re.compile(r"overwrite|twice|mutate|redefine|duplicate", re.IGNORECASE)
@@ -35,6 +37,9 @@ def _bytes_of(path: Path) -> bytes:
         if path.is_dir():
             what = "this is a folder, not a job file"
             raise InputError(what, "name the job file in it, such as job.toml", Place(path))
+        if path.exists() and not path.is_file():
+            what = "this is not a regular file"
+            raise InputError(what, "name a job file on disk", Place(path))
         if path.stat().st_size > LARGEST_FILE:
             what = "this is far too large to be a job file"
             raise InputError(what, "name the .toml file that describes the span", Place(path))
@@ -52,6 +57,7 @@ def _reason(error: Exception) -> str:
 
 def read_table(text: str, path: Path | None = None) -> dict[str, Any]:
     """The plain TOML table of a text; raises InputError with file, line and key."""
+    _check_lines(text, path)
     try:
         return tomllib.loads(text)
     except RecursionError:
@@ -66,6 +72,17 @@ def read_table(text: str, path: Path | None = None) -> dict[str, Any]:
         raise InputError(
             "it holds a number that is far too long", "write it as 1e6", Place(path, 1)
         ) from None
+
+
+def _check_lines(text: str, path: Path | None) -> None:
+    """A key of thousands of parts would take gigabytes to read."""
+    for number, line in enumerate(text.split("\n"), start=1):
+        if len(line) > LONGEST_LINE:
+            raise InputError(
+                f"a line of {len(line):,} characters is far too long for a job file",
+                "break it, or name the .toml file that describes the span",
+                Place(path, number),
+            )
 
 
 def _syntax_error(message: str, text: str, path: Path | None) -> InputError:

@@ -13,6 +13,8 @@ from fieldkit.errors import InputError, Place
 from fieldkit.signal.text_cells import NUMBER, is_data, kind_of, split_cells, without_comment_mark
 
 _LINES_LOOKED_AT = 1000
+LONGEST_ROW = 2**16
+"""Characters; a longer line is no row of a recording."""
 _WRITTEN_AS = (("\t", "."), ("\t", ","), (";", "."), (";", ","), (",", "."), (None, "."))
 _QUOTED_OR_SPACED_COMMA = ((",", ","), (None, ","))
 _WHOLE = re.compile(r"[+-]?\d+", re.ASCII)
@@ -51,11 +53,12 @@ class _Reading:
 def find_layout(lines: Sequence[str], path: Path) -> Layout:
     """The layout that makes sense of the most lines.
 
-    Raises InputError where no line is a row of numbers, or where a comma could be either a
-    delimiter or a decimal mark.
+    Raises InputError where no line is a row of numbers, where a line is too long to be one, or
+    where a comma could be either a delimiter or a decimal mark.
     """
     numbered = ((i, line) for i, line in enumerate(lines) if is_data(line))
     looked_at = list(islice(numbered, _LINES_LOOKED_AT))
+    _check_length(looked_at, path)
     texts = [line for _, line in looked_at]
     readings = [_read(texts, *writing) for writing in _WRITTEN_AS + _QUOTED_OR_SPACED_COMMA]
     best = max(readings, key=lambda reading: reading.usual)
@@ -73,6 +76,16 @@ def find_layout(lines: Sequence[str], path: Path) -> Layout:
     kinds = best.kinds[first]
     assert kinds is not None
     return Layout(best.delimiter, best.decimal, kinds, looked_at[first][0])
+
+
+def _check_length(looked_at: Sequence[tuple[int, str]], path: Path) -> None:
+    for i, line in looked_at:
+        if len(line) > LONGEST_ROW:
+            raise InputError(
+                f"a line of {len(line):,} characters is no row of numbers",
+                "write one row of samples to a line",
+                Place(path, i + 1),
+            )
 
 
 def _read(texts: Sequence[str], delimiter: str | None, decimal: str) -> _Reading:

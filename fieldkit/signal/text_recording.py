@@ -74,7 +74,7 @@ def _recorded(file: _TextFile, stated_hz: float | None) -> TextSamples:
         )
     samples = _columns(file.table.values, kept)
     even = _even(file, time_columns, samples, stated_hz)
-    labels = tuple(file.header.labels[column] for column in kept)
+    labels = tuple(_measured(file.header.labels[column]) for column in kept)
     return TextSamples(even.samples, even.rate_hz, labels, (*even.notes, *_label_notes(labels)))
 
 
@@ -82,6 +82,11 @@ def _columns(values: NDArray[np.float64], kept: Sequence[int]) -> NDArray[np.flo
     """Some columns of a table; those that stand side by side are not copied."""
     first, past = kept[0], kept[-1] + 1
     return values[:, first:past] if past - first == len(kept) else values[:, list(kept)]
+
+
+def _measured(label: Label) -> Label:
+    """A second time column is read as a channel, of no quantity."""
+    return Label(label.name) if label.quantity == TIME else label
 
 
 def _time_columns(file: _TextFile) -> tuple[int, ...]:

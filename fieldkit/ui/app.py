@@ -131,7 +131,7 @@ class FieldkitApp(Measuring):
 
     def refresh_desk(self) -> None:
         """Hand the desk to the strip, the view on screen, the ruler and the reading."""
-        if not self.screen_stack:
+        if not self.is_running or not self.screen_stack:
             return  # a thread's last word while the app closes
         base = self.base
         unsaved = self.open_job is not None and self.open_job.unsaved
@@ -152,7 +152,7 @@ class FieldkitApp(Measuring):
 
     def say_progress(self, doing: str, fraction: float | None = None) -> None:
         """Activity at the right end of the title line."""
-        if self.screen_stack:
+        if self.is_running and self.screen_stack:
             self.base.query_one(Strip).say(doing, fraction)
 
     def on_step_picked(self, message: Step.Picked) -> None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from pathlib import Path
 from typing import Any
 
@@ -65,7 +66,7 @@ WRONG_VALUES = [
     ('"+z"', "[0, 1]", "leg[1].direction", "a list is not a direction"),
     ('"+z"', "[0, 1, nan]", "leg[1].direction", "this direction has no length"),
     ('"+z"', '"-x"', "leg[1].direction", "this leg runs straight back along the one before"),
-    ('"1.1 m"', '"0 m"', "leg[1].length", "'0 m' is not above 0 m"),
+    ('"1.1 m"', '"0 m"', "leg[1].length", "'0 m' is not at least 1.0 mm and at most 1000 m"),
     ('"1.1 m"', '"-1 m"', "leg[1].length", "'-1 m': a length cannot be negative"),
     ('"1.1 m"', '"1.1 kg"', "leg[1].length", "'kg' is the unit of a mass, not of a length"),
     ('"1.1 m"', "true", "leg[1].length", "true is not a length; write '4.2 m'"),
@@ -322,6 +323,13 @@ def test_an_odd_value_anywhere_is_read_or_refused(key: str, value: Any) -> None:
             raise AssertionError(repr(error)) from error
 
 
+def test_a_key_of_thousands_of_parts_is_refused_unread() -> None:
+    """Read, it would take gigabytes."""
+    error = refusal(FULL + f"\n[{'.'.join(['a'] * 20_000)}]\n")
+    assert "a line of 40,001 characters is far too long for a job file" in str(error)
+    assert error.place.line == len(FULL.splitlines()) + 2
+
+
 def test_files_that_cannot_be_read(tmp_path: Path) -> None:
     """Missing file, folder, other encodings and other kinds of file."""
     utf16 = tmp_path / "utf16.toml"
@@ -330,7 +338,10 @@ def test_files_that_cannot_be_read(tmp_path: Path) -> None:
     latin.write_bytes(FULL.replace("Glycol", "Gl\u00fchol").encode("latin-1"))
     huge = tmp_path / "huge.wav"
     huge.write_bytes(b"\0" * 1_000_001)
+    pipe = tmp_path / "pipe.toml"
+    os.mkfifo(pipe)
     cases = {
+        pipe: "this is not a regular file; name a job file on disk",
         tmp_path / "no.toml": "there is no such file; check the name and the folder",
         tmp_path: "this is a folder, not a job file; name the job file in it",
         utf16: "line 1: this is not UTF-8 text; save it from the editor as UTF-8",

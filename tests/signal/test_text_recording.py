@@ -392,6 +392,20 @@ def test_blank_lines_and_empty_columns_do_not_matter(tmp_path):
     assert recording.rate_hz == RATE_HZ
 
 
+def test_second_time_column_is_a_channel_of_no_quantity(tmp_path):
+    """What a column of seconds measures is not known, and no unit is made of it."""
+    lines = ["t (s),elapsed (s)", *rows(T, Y)]
+    (channel,) = load(file(tmp_path, lines)).channels
+    assert (channel.name, channel.quantity, channel.scale) == ("elapsed", None, None)
+
+
+def test_endless_line_is_no_row(tmp_path):
+    """Told at once, without reading a million cells."""
+    error = refusal(file(tmp_path, ["t (s),acc (g)", "1," * 100_000]))
+    assert "200,000 characters" in error.what
+    assert error.place.line == 2
+
+
 def test_long_file_is_read_in_blocks_with_the_right_line_for_its_error(tmp_path):
     lines = [f"{0.1 * (k % 7):.1f};{k % 5}" for k in range(45_000)]
     path = file(tmp_path, ["# fs = 1000", *lines])
