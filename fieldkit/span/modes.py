@@ -32,6 +32,8 @@ EQUAL = 1e-6
 """Relative difference below which two frequencies are one, with any direction in their plane."""
 MIXED = 0.3
 """Share of the lesser of vertical and lateral above which a mode is called both."""
+MOST_MODES = 200
+"""Of one span below the limit; more take minutes, and no list of them helps anyone."""
 TWIST = 0.99
 """Share of energy in turning about the pipe's own axis above which nothing of a mode is felt."""
 
@@ -79,7 +81,8 @@ def solve(
     """(frequency_hz (k,), vectors (6N, k) with unit modal mass) in rising order.
 
     Limited to ``up_to_hz`` or the first ``count``, whichever ends earlier. Rigid motions (below
-    0.1 Hz or lost in rounding) are left out. Refusal where the stiffness is not positive.
+    0.1 Hz or lost in rounding) are left out. Refusal where the stiffness is not positive, or where
+    the modes are too many.
     """
     floor = rounding_floor(stiffness, mass)
     steadied = (stiffness + floor * mass).tocsc()
@@ -94,6 +97,11 @@ def solve(
     if count is not None:
         rigid = _count_below(stiffness, mass, _lowest_hz(floor))
         wanted = min(wanted, count + rigid)
+    if up_to_hz is not None and wanted > MOST_MODES:
+        raise Refusal(
+            f"{wanted} modes lie below {up_to_hz:g} Hz on this span, more than {MOST_MODES}",
+            "lower the frequency limit (goal.up_to), or describe a shorter part of the line",
+        )
     if size <= DENSE_UP_TO or 3 * wanted > size:
         eigenvalue, vectors = _dense(steadied.toarray(), mass.toarray())
     else:

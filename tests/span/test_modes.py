@@ -14,6 +14,7 @@ from fieldkit.span import modes
 from fieldkit.span.factor import Factor
 from fieldkit.span.layout import Leg, PointMass, Span, Support
 from fieldkit.span.modes import free_directions, solve, span_matrices, span_modes
+from fieldkit.span.pipes import PipeSection
 from fieldkit.span.structure import assemble
 from fieldkit.span.supports import Spring, springs
 from tests.reference.spans import STATE, STEEL, anchored, hold, level_span, square_legs, unit_hz
@@ -226,3 +227,10 @@ def test_supports_of_every_kind_give_modes():
             ends = (Support(0.0, kind), Support(3.0, "anchor"))
             span = Span(level_span(3.0, []).pipe, STEEL, (Leg(direction, 3.0),), ends)
             assert span_modes(span, STATE, 100.0)
+
+
+def test_hundreds_of_modes_are_refused_before_they_are_solved_for():
+    """A line of 127 m has too many below 200 Hz to be solved or looked at."""
+    span = level_span(127.0, [anchored(0.0), anchored(4.2)], pipe=PipeSection(0.0889, 0.00549))
+    with pytest.raises(Refusal, match=r"\d+ modes lie below 200 Hz on this span, more than 200"):
+        span_modes(span, STATE, 200.0)
