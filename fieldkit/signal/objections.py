@@ -7,6 +7,7 @@ from collections.abc import Sequence
 import numpy as np
 
 from fieldkit.signal.blows import DOUBLE_SHARE, Blow
+from fieldkit.signal.first_moments import FirstMoments
 from fieldkit.signal.ringing import RINGS, Ringing
 
 Missing = tuple[int, int]
@@ -21,13 +22,19 @@ _STILL_RINGS = 3 * RINGS
 
 
 def objections(
-    blow: Blow, picture: Ringing, start_s: float, end_s: float, full_scale: float | None
+    blow: Blow,
+    picture: Ringing,
+    firsts: FirstMoments,
+    start_s: float,
+    end_s: float,
+    full_scale: float | None,
 ) -> list[str]:
     """All reasons not to use the free decay from start to end; empty where it is good."""
+    sudden = blow.onset.rise_s == 0
     return [
         *(clip_reason(blow, full_scale) or double_reason(blow)),
         *short_reason(blow, picture, start_s, end_s),
-        *weak_reason(picture, start_s, end_s),
+        *weak_reason(picture, firsts if sudden else None, start_s, end_s),
     ]
 
 
@@ -71,9 +78,13 @@ def short_reason(blow: Blow, picture: Ringing, start_s: float, end_s: float) -> 
     ]
 
 
-def weak_reason(picture: Ringing, start_s: float, end_s: float) -> list[str]:
-    """Too weak?"""
+def weak_reason(
+    picture: Ringing, firsts: FirstMoments | None, start_s: float, end_s: float
+) -> list[str]:
+    """Too weak? The first moments tell nothing of a soft blow, whose contact may go on."""
     over = picture.strongest(start_s, min(start_s + 1.0, end_s))
+    if over < RINGS and firsts:
+        over = max(over, firsts.over(start_s, end_s))
     if over >= RINGS:
         return []
     height = (

@@ -16,6 +16,7 @@ from fieldkit.signal.blows import (
     spectral_level,
     without_rattle,
 )
+from fieldkit.signal.first_moments import FirstMoments, first_moments
 from fieldkit.signal.innovation import levels
 from fieldkit.signal.modes import TapRecord
 from fieldkit.signal.objections import Missing, gap_reason, objections
@@ -27,6 +28,8 @@ _LEAST_QUIET_S = 0.5
 _MORE_S = 0.5
 _LEAST_RECORD_S = 2.0
 _BLOCK_S = 0.05
+_FLAT_TO = 0.35
+"""Of its rate up to which a level still holds everything."""
 
 
 @dataclass(frozen=True)
@@ -80,11 +83,13 @@ def find_taps(
     duration_s = len(samples) / rate_hz
     blows = find_blows(scales)
     background_s = quiet_before(blows, duration_s)
-    picture = ringing(spectral_level(scales), background_s)
+    spectral = spectral_level(scales)
+    picture = ringing(spectral, background_s)
     if background_s[1] - background_s[0] < _LEAST_QUIET_S:
         background_s = longest_quiet(blows, picture, background_s)
+    firsts = first_moments(scales[0], _FLAT_TO * spectral.rate_hz, background_s)
     blows = without_rattle(blows, samples, rate_hz, full_scale)
-    taps = tuple(read_blow(b, samples, rate_hz, picture, full_scale) for b in blows)
+    taps = tuple(read_blow(b, samples, rate_hz, picture, firsts, full_scale) for b in blows)
     background = (int(background_s[0] * rate_hz), int(background_s[1] * rate_hz))
     if gaps:
         taps = tuple(without_gaps(tap, gaps, rate_hz) for tap in taps)
@@ -165,6 +170,7 @@ def read_blow(
     samples: Real,
     rate_hz: float,
     picture: Ringing,
+    firsts: FirstMoments,
     full_scale: float | None,
 ) -> Tap:
     """One blow as a tap: its free decay, and what speaks against it."""
@@ -174,7 +180,7 @@ def read_blow(
     end_s = max(picture.end_s(start_s, limit_s) + _MORE_S, start_s + _LEAST_RECORD_S)
     end_s = max(min(end_s, limit_s), start_s)
     near = samples[max(int((at_s - GUARD_S) * rate_hz), 0) : int(end_s * rate_hz) + 1]
-    reasons = objections(blow, picture, start_s, end_s, full_scale)
+    reasons = objections(blow, picture, firsts, start_s, end_s, full_scale)
     start = min(int(np.ceil(start_s * rate_hz)), len(samples))
     end = max(min(int(end_s * rate_hz), len(samples)), start)
     peak = float(np.abs(near).max(initial=0.0))
