@@ -18,7 +18,7 @@ settings.load_profile("same every time" if os.environ.get("CI") else "fresh")
 
 @pytest.fixture(scope="session", autouse=True)
 def own_folders(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
-    """Recent jobs, unsaved work and presets of programs that tests start go to a folder of theirs."""
+    """Recent jobs, unsaved work and presets of what tests start go to a folder of theirs."""
     with pytest.MonkeyPatch.context() as patch:
         for name in ("XDG_STATE_HOME", "XDG_CONFIG_HOME", "XDG_DATA_HOME"):
             patch.setenv(name, str(tmp_path_factory.mktemp("home") / name.lower()))
