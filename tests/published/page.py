@@ -21,8 +21,10 @@ from tests.published.recorder import Check, Comparison, Document, Recorder
 ROOT = Path(__file__).parents[2]
 PAGE = ROOT / "docs" / "validation.md"
 COMMAND = "python -m tests.published.page"
-SHOWN = 6
+SHOWN = 13
 """Values of a row; of a longer one the first, and how many there are."""
+ROUNDING = 1e-10
+"""A relative difference below this one differs from one processor to the next."""
 INTRODUCTION = f"""\
 # Every value checked against the outside world
 
@@ -119,13 +121,17 @@ def _row(case: str, comparison: Comparison) -> str:
 
 
 def _values(row: tuple[float, ...]) -> str:
-    if len(row) > SHOWN + 7:
-        return f"{', '.join(f'{value:.6g}' for value in row[:3])}, … ({len(row)} values)"
-    return ", ".join(f"{value:.6g}" for value in row)
+    if len(row) > SHOWN:
+        return f"{', '.join(map(_number, row[:3]))}, … ({len(row)} values)"
+    return ", ".join(map(_number, row))
+
+
+def _number(value: float) -> str:
+    return "0" if abs(value) < ROUNDING**1.5 else f"{value:.7g}"
 
 
 def _percent(share: float) -> str:
-    return "0" if share == 0 else f"{100 * share:.2g} %"
+    return "0" if share == 0 else "rounding" if share < ROUNDING else f"{100 * share:.2g} %"
 
 
 def _prose(text: str) -> str:
