@@ -38,9 +38,14 @@ def commands_of(text: str) -> Iterator[list[str]]:
     yield from (shlex.split(call) for call in _INLINE.findall(text))
 
 
+def links_of(path: Path) -> list[str]:
+    """Files of the repository that a document links to or shows."""
+    return [link for link, _ in _LINK.findall(path.read_text("utf-8")) if "://" not in link]
+
+
 @pytest.mark.parametrize("path", documents())
 def test_every_link_leads_to_a_file(path: Path) -> None:
-    links = [link for link, _ in _LINK.findall(path.read_text("utf-8")) if "://" not in link]
+    links = links_of(path)
     missing = [link for link in links if not (path.parent / link).exists()]
     assert not missing
 
