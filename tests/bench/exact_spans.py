@@ -7,7 +7,6 @@ Q. J. Mech. Appl. Math. 24, 263 (``tests/reference/dynamic_stiffness.py``).
 
 from __future__ import annotations
 
-import argparse
 import random
 import sys
 from collections.abc import Sequence
@@ -15,6 +14,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from tests.bench.asking import parser
 from tests.reference.random_lines import MODES, random_line, relative_errors
 
 ALLOWED = 1e-3
@@ -63,8 +63,7 @@ def section(figures: Figures) -> str:
 
 def main(words: Sequence[str] | None = None) -> None:
     """Print the line; exit status 1 where a span is beyond what is allowed."""
-    asked = argparse.ArgumentParser(description=__doc__)
-    asked.add_argument("--seed", type=int, default=1)
+    asked = parser("tests.bench.exact_spans", __doc__, "seed")
     asked.add_argument("--spans", type=int, default=200)
     options = asked.parse_args(words)
     figures = measured(options.seed, options.spans)

@@ -7,22 +7,25 @@ shorter, ``--write FILE`` also writes the table as Markdown.
 
 from __future__ import annotations
 
-import argparse
-import json
-import subprocess
-import sys
 import tempfile
-from dataclasses import dataclass
+from collections.abc import Sequence
 from pathlib import Path
 
 import numpy as np
 import soundfile
 
+from fieldkit.signal.integration import CORNER_HZ
+from fieldkit.signal.long_running import BLOCK_SAMPLES, power_density_in
+from fieldkit.signal.source import RecordingSource, open_recording
+from fieldkit.signal.welch import segment_length
+from tests.bench.asking import parser
+from tests.bench.measuring import Cost, cost, in_turn, ratio
+from tests.bench.rows import BY_CLOCK, Growth, Row
 from tests.signal.made_taps import Blow, Made, tap_recording
 
-ROOT = Path(__file__).resolve().parents[2]
 RATE_HZ = 48_000
 MIB = 2**20
+LEAST = "reading the file and one bare transform of its samples"
 
 PROLOGUE = """
 import json, sys, time
@@ -56,13 +59,6 @@ for _ in range(source.frames // length):
     "picture": "read_running_in(source)",
     "taps": "cut_from(source, 1, find_taps_in(source))",
 }
-PEAK = """
-from pathlib import Path
-
-def peak():
-    status = Path("/proc/self/status").read_text().split()
-    return int(status[status.index("VmHWM:") + 1]) * 1024
-"""
 WHOLE = """
 import json, os, sys, time
 os.environ["OPENBLAS_NUM_THREADS"] = "1"
@@ -78,44 +74,101 @@ print(json.dumps({"wall_s": wall, "cpu_s": cpu, "bytes": peak() - idle}), file=s
 """
 
 
-@dataclass(frozen=True)
-class Cost:
-    """Of one piece of work in a process of its own."""
-
-    wall_s: float
-    cpu_s: float
-    bytes: int
-    """By which the peak of the process grew."""
-
-
 def main() -> None:
     """Print the table, and write it where asked."""
-    wanted = argparse.ArgumentParser(description=__doc__)
-    wanted.add_argument("--minutes", type=int, default=60)
-    wanted.add_argument("--write", type=Path)
-    chosen = wanted.parse_args()
+    chosen = parser("tests.bench.long_files", __doc__, "minutes", "write").parse_args()
     with tempfile.TemporaryDirectory() as folder:
-        rows = measured(Path(folder), chosen.minutes)
-    text = table(rows, chosen.minutes)
+        costs = measured(Path(folder), chosen.minutes)
+    text = table(costs, chosen.minutes)
     print(text)
     if chosen.write:
         chosen.write.write_text(page(text, chosen.minutes), encoding="utf-8")
 
 
+def rows(minutes: int, runs: int) -> list[Row]:
+    """Welch beside reading and one transform: time, and memory beside holding the samples."""
+    with tempfile.TemporaryDirectory() as folder:
+        path = written(Path(folder) / "running.flac", 60 * minutes, struck=False)
+        works = {
+            name: PROLOGUE + WORK[name] + EPILOGUE for name in ("density", "read", "transform")
+        }
+        found = [{name: cost(code, path) for name, code in works.items()} for _ in range(runs)]
+    audio = f"{minutes} min of 48 kHz audio"
+    held_mib = 60 * minutes * RATE_HZ * 8 / MIB
+    peak_mib = float(np.median([costs["density"].bytes for costs in found])) / MIB
+    return [
+        _both(f"Welch in blocks over {audio}", [_times(costs, "cpu_s") for costs in found]),
+        _both(
+            f"Welch in blocks over {audio}", [_times(costs, "wall_s") for costs in found], BY_CLOCK
+        ),
+        Row(
+            f"peak memory of Welch over {audio}",
+            peak_mib,
+            held_mib,
+            peak_mib / held_mib,
+            "its samples held at once, 8 bytes each (worked out, not measured)",
+            "MiB over the idle process",
+        ),
+    ]
+
+
+def _times(costs: dict[str, Cost], which: str) -> tuple[float, float]:
+    """Of Welch, and of reading and transforming together."""
+    seconds = {name: float(getattr(one, which)) for name, one in costs.items()}
+    return seconds["density"], seconds["read"] + seconds["transform"]
+
+
+def _both(name: str, times: Sequence[tuple[float, float]], how: str = "of processor") -> Row:
+    ours, theirs = np.array(times).T
+    medians = float(np.median(ours)), float(np.median(theirs))
+    return Row(name, *medians, ratio(ours, theirs), LEAST, f"s {how}", "aim: under 1.3")
+
+
+def growth(lengths_s: Sequence[int], runs: int) -> list[Row]:
+    """Welch against the length of the recording, in this process."""
+    times = [_at_length(seconds, runs if seconds < 600 else 1) for seconds in lengths_s]
+    ours, theirs = np.array(times).T
+    grown = Growth(
+        "Welch in blocks", lengths_s, "s of audio", ours, theirs, LEAST, "s of processor"
+    )
+    return grown.rows()
+
+
+def _at_length(seconds: int, runs: int) -> tuple[float, float]:
+    with tempfile.TemporaryDirectory() as folder:
+        source = open_recording(written(Path(folder) / "running.flac", seconds, struck=False))
+        spent_s = in_turn(
+            {"ours": lambda: power_density_in(source), "least": lambda: _least(source)},
+            runs,
+            warm=seconds < 600,
+        )
+    return float(np.median(spent_s["ours"])), float(np.median(spent_s["least"]))
+
+
+def _least(source: RecordingSource) -> None:
+    """Read every block; transform as many samples once."""
+    for _ in source.blocks(1, BLOCK_SAMPLES):
+        pass
+    length = segment_length(source.frames, source.rate_hz, CORNER_HZ)
+    segment = source.stretch(1, 0, length)
+    for _ in range(source.frames // length):
+        np.fft.rfft(segment)
+
+
 def measured(folder: Path, minutes: int) -> dict[str, Cost]:
     """Costs by name."""
-    taps = written(folder / "taps.flac", minutes, struck=True)
-    running = written(folder / "running.flac", minutes, struck=False)
+    taps = written(folder / "taps.flac", 60 * minutes, struck=True)
+    running = written(folder / "running.flac", 60 * minutes, struck=False)
     rows = {
         name: cost(PROLOGUE + work + EPILOGUE, taps if name == "taps" else running)
         for name, work in WORK.items()
     }
-    rows["peaks"] = cost(WHOLE, "peaks", taps)
-    rows["running"] = cost(WHOLE, "running", running)
+    rows["peaks"] = cost(WHOLE, "peaks", taps, said_on_stderr=True)
+    rows["running"] = cost(WHOLE, "running", running, said_on_stderr=True)
     return rows
 
 
-def written(path: Path, minutes: int, *, struck: bool) -> Path:
+def written(path: Path, seconds: int, *, struck: bool) -> Path:
     """A minute over and over in fresh noise: three blows, or a machine with three lines."""
     rng = np.random.default_rng(1)
     count = 60 * RATE_HZ
@@ -127,22 +180,10 @@ def written(path: Path, minutes: int, *, struck: bool) -> Path:
         lines = ((24.0, 0.1), (48.0, 0.05), (148.0, 0.02))
         minute = sum(a * np.sin(2 * np.pi * hz * turns) for hz, a in lines)
     with soundfile.SoundFile(path, "w", RATE_HZ, 1, subtype="PCM_16") as file:
-        for _ in range(minutes):
-            file.write(minute + 3e-4 * rng.standard_normal(count))
+        for begin in range(0, seconds, 60):
+            count = RATE_HZ * min(60, seconds - begin)
+            file.write(minute[:count] + 3e-4 * rng.standard_normal(count))
     return path
-
-
-def cost(code: str, *words: object) -> Cost:
-    """Of a fresh process; its last line says what it cost."""
-    done = subprocess.run(
-        [sys.executable, "-c", PEAK + code, *map(str, words)],
-        check=True,
-        capture_output=True,
-        text=True,
-        cwd=ROOT,
-    )
-    said = done.stderr if code is WHOLE else done.stdout
-    return Cost(**json.loads(said.strip().splitlines()[-1]))
 
 
 def table(rows: dict[str, Cost], minutes: int) -> str:

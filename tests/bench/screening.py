@@ -1,15 +1,13 @@
 """How fast and how true changes are screened: ``python -m tests.bench.screening``.
 
-Processor time, the best of a few runs. An *answer* is one change on one member of the ensemble. The
-same answers are had from scikit-fem, a general-purpose library, one model at a time, in this run.
+Processor time, medians of a few rounds. An *answer* is one change on one member of the ensemble.
+The same answers are had from scikit-fem, a general-purpose library, one model at a time, in turn.
 """
 
 from __future__ import annotations
 
-import time
-from collections.abc import Callable
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
-from typing import Any
 
 import numpy as np
 
@@ -26,10 +24,12 @@ from fieldkit.span.layout import Leg, Span, State, Support
 from fieldkit.span.materials import material
 from fieldkit.span.pipes import standard_pipe
 from fieldkit.span.supports import springs
+from tests.bench.asking import parser
+from tests.bench.measuring import Real, in_turn, ratio
+from tests.bench.rows import Row, lines, table
 from tests.reference.dynamic_stiffness import Attachment, Beam
 from tests.reference.hermite_beam import natural_frequencies_hz
 
-RUNS = 3
 MEMBERS = 200
 STATIONS, LEVELS = 60, 40
 RE_SOLVED = 24
@@ -37,19 +37,18 @@ UP_TO_HZ = 25.0
 EMPTY = State("running")
 
 
-@dataclass(frozen=True)
-class Figures:
-    """What the table shows."""
+LIBRARY = "a model for each by scikit-fem"
 
-    changes: int
-    counted_per_s: float
-    solved_per_s: float
-    library_per_s: float
-    error_library: float
-    """Largest relative difference from the library, slender pipe, all modes up to the limit."""
-    error_anew_median: float
-    error_anew: float
+
+@dataclass(frozen=True)
+class Errors:
+    """Largest relative differences of the frequencies, all modes up to the limit."""
+
+    library: float
+    """From scikit-fem, slender pipe."""
+    anew: float
     """From our own model built anew with the change in it."""
+    anew_median: float
 
 
 def line() -> Span:
@@ -79,26 +78,50 @@ def searching() -> Search:
     return replace(search, field=some, scatter=scatter)
 
 
-def figures() -> Figures:
-    """Measure everything."""
+def rows(runs: int) -> list[Row]:
+    """Answers a second, counted and solved, beside scikit-fem's, and how many a search counts."""
     search = searching()
-    changes = len(generate(search, Progress()))
-    _, counting = timed(lambda: chance_map(search, "support", "vertical", STATIONS, LEVELS))
-    levels = search.stiffness_levels(LEVELS)
-    places = search.attachable()[::4]
-    _, solving = timed(lambda: [_solved(search, at_m, levels) for at_m in places])
+    levels, places = search.stiffness_levels(LEVELS), search.attachable()[::4]
     some = [(at, k) for at in places for k in levels[::9]][:RE_SOLVED]
-    library, alone = timed(lambda: [_by_library(search, at, k) for at, k in some])
-    anew = [_anew(search, at, k) for at, k in some]
+    spent_s = in_turn(
+        {
+            "counted": lambda: chance_map(search, "support", "vertical", STATIONS, LEVELS),
+            "solved": lambda: [_solved(search, at_m, levels) for at_m in places],
+            "library": lambda: [_by_library(search, at, k) for at, k in some],
+        },
+        runs,
+    )
+    answers = {
+        "counted": STATIONS * LEVELS * MEMBERS,
+        "solved": len(places) * len(levels) * MEMBERS,
+        "library": len(some),
+    }
+    per_s = {name: answers[name] / seconds for name, seconds in spent_s.items()}
+    apart = errors(search, some)
+    tried = f"a search tries {len(generate(search, Progress())):,} single changes"
+    true = f"frequencies within {100 * apart.library:.2g} % of it"
+    return [
+        _rate("fixes judged: bands clear, counted", per_s, "counted", tried),
+        _rate("fixes judged: every frequency solved", per_s, "solved", true),
+    ]
+
+
+def _rate(name: str, per_s: Mapping[str, Real], way: str, note: str) -> Row:
+    ours, theirs = per_s[way], per_s["library"]
+    medians = float(np.median(ours)), float(np.median(theirs))
+    return Row(name, *medians, ratio(ours, theirs), LIBRARY, "a second of processor", note)
+
+
+def errors(search: Search, some: list[tuple[float, float]]) -> Errors:
+    """Of the quick answers, over the changes (station, stiffness) given."""
     quick = [_quick(search, at, k) for at, k in some]
-    return Figures(
-        changes,
-        STATIONS * LEVELS * MEMBERS / counting,
-        len(places) * len(levels) * MEMBERS / solving,
-        len(some) / alone,
+    library = [_by_library(search, at, k) for at, k in some]
+    anew = [_anew(search, at, k) for at, k in some]
+    from_anew = [_apart(own, exact) for own, exact in zip(quick, anew, strict=True)]
+    return Errors(
         max(_apart(own, exact) for own, exact in zip(quick, library, strict=True)),
-        float(np.median([_apart(own, exact) for own, exact in zip(quick, anew, strict=True)])),
-        max(_apart(own, exact) for own, exact in zip(quick, anew, strict=True)),
+        max(from_anew),
+        float(np.median(from_anew)),
     )
 
 
@@ -122,13 +145,13 @@ def _by_library(search: Search, at_m: float, k: float) -> np.ndarray:
     pipe = member.pipe
     beam = Beam(modulus * pipe.second_moment_m4, pipe.wall_area_m2 * 7850.0)
     moved = station_map(search.span, search.field.model.unknowns, search.field.z[0])
-    held = [Attachment(at, k, turning) for at, k, turning in _held(member)]
-    held.append(Attachment(moved(at_m), k))
-    hertz = natural_frequencies_hz(beam, member.length_m, held, 12)
+    attached = [Attachment(at, k, turning) for at, k, turning in held(member)]
+    attached.append(Attachment(moved(at_m), k))
+    hertz = natural_frequencies_hz(beam, member.length_m, attached, 12)
     return np.asarray(hertz[hertz < UP_TO_HZ])
 
 
-def _held(member: Span) -> list[tuple[float, float, float]]:
+def held(member: Span) -> list[tuple[float, float, float]]:
     """(station, vertical stiffness, stiffness against turning) of each support of a member."""
     every = springs(member)
     found = []
@@ -150,31 +173,16 @@ def _apart(own: np.ndarray, exact: np.ndarray) -> float:
     return float(np.abs(own[None, :] / exact[:, None] - 1).min(axis=1).max())
 
 
-def timed(work: Callable[[], Any]) -> tuple[Any, float]:
-    """(result, least processor seconds)."""
-    least = np.inf
-    for _ in range(RUNS):
-        start = time.process_time()
-        result = work()
-        least = min(least, time.process_time() - start)
-    return result, float(least)
-
-
 def main() -> None:
-    """Print the table."""
-    found = figures()
-    per_full = found.library_per_s
-    print(f"single changes tried           {found.changes:12,}")
-    print(f"bands clear, counted           {found.counted_per_s:12,.0f} answers a second")
+    """Print the table, and how far the quick answers are off."""
+    args = parser("tests.bench.screening", __doc__, "runs").parse_args()
+    print(table(lines("fixes", rows(args.runs), busy=False)))
+    search = searching()
+    levels, places = search.stiffness_levels(LEVELS), search.attachable()[::4]
+    apart = errors(search, [(at, k) for at in places for k in levels[::9]][:RE_SOLVED])
     print(
-        f"all frequencies, solved        {found.solved_per_s:12,.0f} answers a second  "
-        f"{found.solved_per_s / per_full:,.0f} x scikit-fem"
-    )
-    print(f"the same by scikit-fem         {per_full:12,.0f} answers a second")
-    print(f"error against scikit-fem       {100 * found.error_library:12.4f} %")
-    print(
-        f"error against a model anew     {100 * found.error_anew:12.4f} %  "
-        f"median {100 * found.error_anew_median:.4f} %"
+        f"\nerror against scikit-fem {100 * apart.library:.4f} %, against our model built anew "
+        f"{100 * apart.anew:.4f} %, median {100 * apart.anew_median:.4f} %"
     )
 
 

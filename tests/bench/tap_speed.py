@@ -11,7 +11,6 @@ import os
 os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")
 os.environ.setdefault("OMP_NUM_THREADS", "1")
 
-import argparse
 import time
 from collections.abc import Callable, Iterator
 from contextlib import ExitStack, contextmanager
@@ -26,6 +25,7 @@ from fieldkit.signal.modes import estimate_modes
 from fieldkit.signal.taps import cut, find_taps
 from tests.bench.accuracy.recordings import Hit, Scene, Simulated, TrueMode, simulate
 from tests.bench.accuracy.surroundings import Density, SteadyTone
+from tests.bench.asking import parser
 
 STEPS = {
     "preparation": "prepare",
@@ -45,9 +45,9 @@ READING, REST, TOTAL = "reading taps", "everything else", "together"
 
 def main() -> None:
     """Print milliseconds by step, the best of several runs."""
-    parser = argparse.ArgumentParser(prog="python -m tests.bench.tap_speed", description=__doc__)
-    parser.add_argument("--runs", type=int, default=7)
-    count = parser.parse_args().runs
+    asked = parser("tests.bench.tap_speed", __doc__, "runs")
+    asked.set_defaults(runs=7)
+    count = asked.parse_args().runs
     best = [quickest(made, count) for made in (five_taps().samples, uneven_decays())]
     print(f"five taps of 8 s at {RATE_HZ / 1000:g} kHz, one core       line    decays")
     for step in best[0]:

@@ -11,8 +11,8 @@ import argparse
 import sys
 from collections.abc import Iterator, Sequence
 from multiprocessing import get_context
-from pathlib import Path
 
+from tests.bench import asking
 from tests.bench.accuracy import replay, tables
 from tests.bench.accuracy.kinds import KINDS
 from tests.bench.accuracy.trial import WAYS, Plan, Trial, run
@@ -49,16 +49,12 @@ def main() -> None:
 
 def arguments() -> argparse.ArgumentParser:
     """Words of the command line."""
-    parser = argparse.ArgumentParser(prog="python -m tests.bench.accuracy", description=__doc__)
-    parser.add_argument("--seed", type=int, default=1, help="start of the random numbers")
+    parser = asking.parser("tests.bench.accuracy", __doc__, "seed", "jobs", "write", "plot")
     parser.add_argument("--records", type=int, default=220, help="recordings, shared by the kinds")
     parser.add_argument("--kind", action="append", choices=KINDS, help="only this kind; repeatable")
     parser.add_argument("--way", choices=WAYS, help="only this way (default: both)")
-    parser.add_argument("--jobs", type=int, default=2, help="processes")
     parser.add_argument("--verbose", action="store_true", help="name what failed, with its seed")
     parser.add_argument("--replay", type=int, metavar="SEED", help="tell all about one recording")
-    parser.add_argument("--write", type=Path, metavar="FILE", help="write the tables as Markdown")
-    parser.add_argument("--plot", type=Path, metavar="FILE", help="draw stated against actual")
     return parser
 
 
