@@ -2,15 +2,20 @@
 
 from __future__ import annotations
 
+import json
+from dataclasses import asdict
+
 import numpy as np
 import pytest
 
 from fieldkit.detune.fixes import AddSupport
 from fieldkit.span.modes import span_modes
+from tests.bench.promises import aims
+from tests.bench.promises.__main__ import read
 from tests.bench.promises.calibration_plot import interval
 from tests.bench.promises.exact import exact_modes
 from tests.bench.promises.families import FAMILIES, described
-from tests.bench.promises.report import report
+from tests.bench.promises.report import reading_in, report
 from tests.bench.promises.tally import Tally
 from tests.bench.promises.taps import _merged, tapped
 from tests.bench.promises.trial import NOMINAL, Trial, plans, run
@@ -113,11 +118,11 @@ def test_the_interval_of_a_share_holds_it_and_narrows_with_the_number():
 
 
 def test_promises_are_kept_on_a_few_spans():
-    """Fourteen spans of a fixed seed: of those promised 0.9 or more at most a fifth fails.
+    """Fourteen spans of a fixed seed, the bounds from docs/promises.md.
 
-    Intervals of 90 % hold at least eight times out of ten, and the usual ways do far worse.
-
-    Fewer spans would say little: of six that each keep with 95 %, two fail once in thirty draws.
+    There nine in ten of the promises of 0.9 or more are kept, and about 84 % of the intervals hold,
+    the two of a span mostly together. So few spans may fall short of that by chance: below four in
+    five kept, or 65 % of the intervals, they fall in one draw of fifty. The usual ways fare worse.
     """
     few = [p for p in plans((LIKE,), 18, 21) if p.family != "several"]
     tally = Tally([run(plan) for plan in few])
@@ -125,8 +130,32 @@ def test_promises_are_kept_on_a_few_spans():
     assert len(tally.offered) >= 8
     assert tally.kept_of_offered >= 0.8
     assert abs(tally.mean_promise - tally.mean_kept) < 0.2
-    assert tally.coverage >= 0.8
+    assert tally.coverage >= 0.65
     assert np.mean(tally.usual(NOMINAL)) < tally.mean_kept - 0.3
+
+
+def test_an_aim_is_missed_only_where_chance_cannot_explain_it():
+    """Of promises of 0.95: 97 of 100 kept reach the aim, 18 of 20 may be chance, 60 of 100 not."""
+
+    def verdict(kept: int, of: int) -> str:
+        trials = [
+            Trial("single", LIKE, i, 3, promised=0.95, kept=i < kept, kind="support")
+            for i in range(of)
+        ]
+        rows = {row[0]: row[-1] for row in aims.table(trials, LIKE)}
+        return rows["kept of those promised 0.9 or more"]
+
+    assert [verdict(97, 100), verdict(18, 20), verdict(60, 100)] == ["yes", "undecided", "no"]
+
+
+def test_what_was_answered_once_is_read_again(tmp_path):
+    trial = Trial("single", LIKE, 1, 3, promised=0.95, kept=True, covered=(True, False))
+    path = tmp_path / "each.jsonl"
+    assert read(path) == []
+    path.write_text(json.dumps(asdict(trial)) + "\n", "utf-8")
+    (again,) = read(path)
+    assert Tally([again]).coverage == Tally([trial]).coverage
+    assert (again.family, again.way, again.seed) == ("single", LIKE, 1)
 
 
 def test_the_page_names_every_family_and_way():
@@ -134,7 +163,8 @@ def test_the_page_names_every_family_and_way():
         Trial("single", way, 1, 3, promised=0.95, kept=True, covered=(True,), error=(0.01,))
         for way in (LIKE, UNLIKE)
     ]
-    page = report(trials, 7, 2)
+    page = report(trials, 7, 2, "Read me.\n")
+    assert reading_in(page) == "Read me.\n"
     assert all(f"| {family} |" in page for family in FAMILIES)
     assert f"Truth {LIKE}" in page
     assert f"Truth {UNLIKE}" in page

@@ -38,6 +38,7 @@ def main() -> None:
     for way in ways:
         print(f"\nTruth {way}\n{tables.aligned(tables.table(trials, way))}")
         print(f"\n{tables.aligned(tables.fifths(trials, way))}")
+        print(f"\n{tables.aligned(tables.by_worth(trials, way))}")
         print(f"\n{tables.aligned(aims.table(trials, way))}")
         print("\n".join(tables.totals(trials, way)))
     if args.plot:
@@ -45,9 +46,10 @@ def main() -> None:
 
         plot(trials, args.plot)
     if args.write:
-        from tests.bench.promises.report import report
+        from tests.bench.promises.report import reading_in, report
 
-        args.write.write_text(report(trials, args.seed, args.spans), "utf-8")
+        reading = reading_in(args.write.read_text("utf-8")) if args.write.exists() else ""
+        args.write.write_text(report(trials, args.seed, args.spans, reading), "utf-8")
 
 
 def arguments() -> argparse.ArgumentParser:

@@ -8,6 +8,7 @@ from tests.bench.promises import aims, tables
 from tests.bench.promises.families import FAMILIES
 from tests.bench.promises.trial import Trial
 
+READING = "\n## Reading\n\n"
 _HEAD = """# Are the promised chances kept?
 
 `python -m tests.bench.promises --seed {seed} --spans {spans} --write docs/promises.md --plot
@@ -30,17 +31,29 @@ any job would be, and the first change is then built into the hidden truth.
 - **Promised, kept**: mean over all first changes, whatever their chance.
 - **Intervals hold**: share of the stated 90 % intervals that hold the true frequency of the first
   two modes after the change; *as it is*: before it. *Median error*: of those after the change.
+- **Effective size**: how many independent parameter sets the ensemble of a span is worth; spans
+  that were not answered are left out.
+- **Reached**: *undecided* where chance alone may explain a miss. Both intervals of a span meet the
+  same bracket, built once, and miss together: their own interval is wider than stated.
 - **Nominal, scaled**: the usual ways. The smallest of the same changes that clears one model with
   stiff supports; the same with its frequencies multiplied by measured over computed of the lowest.
 """
 
 
-def report(trials: Sequence[Trial], seed: int, spans: int) -> str:
+def reading_in(page: str) -> str:
+    """What someone wrote about the figures, which the next page keeps."""
+    _, found, rest = page.partition(READING)
+    return rest.partition("\n## ")[0] if found else ""
+
+
+def report(trials: Sequence[Trial], seed: int, spans: int, reading: str) -> str:
     """The document, Markdown."""
-    parts = [_HEAD.format(seed=seed, spans=spans), "## The families\n", families()]
+    parts = [_HEAD.format(seed=seed, spans=spans) + READING + reading]
+    parts += ["## The families\n", families()]
     for way in dict.fromkeys(trial.way for trial in trials):
         parts += [f"\n## Truth {way}\n", tables.markdown(tables.table(trials, way))]
         parts += ["", tables.markdown(tables.fifths(trials, way))]
+        parts += ["", tables.markdown(tables.by_worth(trials, way))]
         parts += ["", tables.markdown(aims.table(trials, way))]
         parts += ["", *(f"- {line}" for line in tables.totals(trials, way))]
     parts.append(

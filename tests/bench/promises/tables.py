@@ -13,6 +13,8 @@ HEAD = (
     "family", "spans", "refused", "offered ≥ 0.9", "of those kept", "promised", "kept",
     "intervals hold", "as it is", "median error", "nominal: kept", "scaled: kept",
 )  # fmt: skip
+WORTH_HEAD = ("effective size", "spans", "offered ≥ 0.9", "of those kept", "intervals hold")
+WORTH = ((0.0, 30.0), (30.0, 60.0), (60.0, 120.0), (120.0, np.inf))
 FIFTHS_HEAD = ("promised between", "spans", "promised", "kept", "difference")
 
 
@@ -65,6 +67,23 @@ def fifths(trials: Sequence[Trial], way: str) -> list[list[str]]:
             [f"{low:g} to {high:g}", str(len(kept)), *map(share, both), share(both[0] - both[1])]
         )
     return [list(FIFTHS_HEAD), *rows]
+
+
+def by_worth(trials: Sequence[Trial], way: str) -> list[list[str]]:
+    """Spans by how many independent parameter sets their ensemble is worth."""
+    rows = []
+    for low, high in WORTH:
+        tally = Tally([t for t in trials if t.way == way and low <= t.effective < high])
+        rows.append(
+            [
+                f"{low:g} to {high:g}" if high < np.inf else f"from {low:g}",
+                str(len(tally.answered)),
+                percent(tally.offered_share),
+                f"{percent(tally.kept_of_offered)} of {len(tally.offered)}",
+                percent(tally.coverage),
+            ]
+        )
+    return [list(WORTH_HEAD), *rows]
 
 
 def totals(trials: Sequence[Trial], way: str) -> list[str]:
