@@ -278,6 +278,7 @@ def detune(
         from fieldkit import workup
         from fieldkit.sheet import documents, tables
         from fieldkit.sheet import findings as told
+        from fieldkit.sheet.order_response import with_amplification
         from fieldkit.sheet.origin import marked
 
         if map_ is not None:
@@ -301,6 +302,7 @@ def detune(
             *tables.warnings(extra),
         ]
         document = told.with_diagnosis(documents.detune(work.detuning, extra), work.findings)
+        document = with_amplification(document, work)
         if as_json or number is not None:
             document, installs = installing.installed(work, document, number, reach_m)
         if number is not None:

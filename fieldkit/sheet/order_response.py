@@ -7,6 +7,8 @@ from typing import Any
 
 from fieldkit.detune.diagnosis import figure
 from fieldkit.detune.order_response import Amplified, OrderResponse
+from fieldkit.workup.chain import Workup
+from fieldkit.workup.order_response import order_response
 
 HOW = (
     "A single mode multiplies the deflection of a steady force by 1 / sqrt((1 - r^2)^2 + "
@@ -37,6 +39,16 @@ def words(found: Sequence[OrderResponse]) -> str:
 def _damping(found: Sequence[OrderResponse]) -> str:
     known = [one.now.mode.damping_measured for one in found if one.now is not None]
     return ", damping as measured" if all(known) else ", damping assumed where none was measured"
+
+
+def with_amplification(answer: Mapping[str, Any], work: Workup) -> dict[str, Any]:
+    """The document of ``detune``, each fix with what it does to the answer to each order."""
+    fixes = work.detuning.fixes if work.detuning else ()
+    told = [
+        {**entry, "amplification": document(order_response(work, fix))}
+        for entry, fix in zip(answer["fixes"], fixes, strict=True)
+    ]
+    return {**answer, "fixes": told}
 
 
 def document(found: Sequence[OrderResponse]) -> list[Mapping[str, Any]]:

@@ -188,13 +188,16 @@ class FieldkitApp(Measuring):
 
     def action_copy_view(self) -> None:
         """Everything on screen as plain text, in a window and on the clipboard."""
-        from fieldkit.ui.as_text import view_text
+        from fieldkit.ui.as_text import Told, view_text
 
-        base = self.base
-        parts = (self.view(self.here), base.query_one(FrequencyRuler), base.query_one("#reading"))
-        text = view_text(parts)
+        base, name = self.base, self.here.capitalize()
+        if isinstance(self.screen, Told):
+            text = "\n".join(self.screen.as_text())
+        else:
+            ruler, reading = base.query_one(FrequencyRuler), base.query_one("#reading")
+            text = view_text((self.view(self.here), ruler, reading))
         self.copy_to_clipboard(text)
-        self.push_screen(TextScreen(f"{self.here.capitalize()} as text (copied)", text))
+        self.push_screen(TextScreen(f"{name} as text (copied)", text))
 
     def action_help(self) -> None:
         """List every key."""

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
+from typing import Protocol, runtime_checkable
 
 from rich.cells import cell_len
 from textual.widget import Widget
@@ -13,6 +14,14 @@ from fieldkit.ui.widgets.raster import Canvas
 
 COLUMNS, ROWS = 100, 18
 RULER_ROWS = 5
+
+
+@runtime_checkable
+class Told(Protocol):
+    """A screen that tells in words what it draws."""
+
+    def as_text(self) -> list[str]:
+        """Everything on it, line by line."""
 
 
 def view_text(widgets: Iterable[Widget]) -> str:

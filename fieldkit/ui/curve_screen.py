@@ -50,6 +50,7 @@ class CurveScreen(ModalScreen["Verdict | None"]):
         Binding("right", "move(1)", "More", id="curve.more", tooltip="The next larger value"),
         Binding("shift+left", f"move({-FAR})", "Less", show=False, id="curve.far-less"),
         Binding("shift+right", f"move({FAR})", "More", show=False, id="curve.far-more"),
+        Binding("Y", "app.copy_view", "As text", show=False, id="curve.text"),
         Binding("home", "drawn", "Drawn", id="curve.drawn", tooltip="Back to the drawn value"),
         Binding("p", "kind('place')", "Place", id="curve.place"),
         Binding("k", "kind('stiffness')", "Stiffness", id="curve.stiffness"),

@@ -79,6 +79,7 @@ class WaterfallScreen(ModalScreen[None]):
         Binding("down", "move(1)", "Later", id="waterfall.down"),
         Binding("shift+up", f"move({-FAR})", "Earlier", show=False, id="waterfall.far-up"),
         Binding("shift+down", f"move({FAR})", "Later", show=False, id="waterfall.far-down"),
+        Binding("Y", "app.copy_view", "As text", show=False, id="waterfall.text"),
         Binding("home", "strongest", "Strongest", id="waterfall.home",
                 tooltip="To the time when a line is strongest"),
         Binding("plus,equals_sign", "depth(1)", "Deeper", id="waterfall.deeper"),

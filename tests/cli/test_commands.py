@@ -47,9 +47,12 @@ def test_detune_ranks_changes_of_every_sample(name):
     best = answer["fixes"][0]
     assert set(best) == {
         "rank", "kind", "summary", "change", "modes_after", "nearest", "chance", "cautions",
-        "install", "why", "fails",
+        "install", "why", "fails", "amplification",
     }  # fmt: skip
     assert best["chance"] >= 0.9
+    worst = max(e["now"]["amplification"] for e in best["amplification"] if e["now"])
+    after = max(e["after"]["amplification"] for e in best["amplification"] if e["now"])
+    assert after < worst
     assert best["why"]
     assert best["fails"].startswith("fails")
     assert answer["tried"] >= 10_000

@@ -111,3 +111,7 @@ async def test_it_opens_from_the_recording_on_screen(app, monkeypatch):
         await until(pilot, lambda: app.view("running").reading is not None)
         await pilot.press("h")
         await until(pilot, lambda: isinstance(app.screen, WaterfallScreen))
+        await until(pilot, lambda: app.screen.found is not None)
+        told = app.screen.as_text()
+        await pilot.press("Y")
+        await until(pilot, lambda: app.clipboard == "\n".join(told))
