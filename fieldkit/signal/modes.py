@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from fieldkit.errors import Refusal
-from fieldkit.signal.audit import odd_taps
+from fieldkit.signal.audit import free_until, odd_taps, typical_misfit
 from fieldkit.signal.bending import with_drift
 from fieldkit.signal.misfit import searched_beside_misfit
 from fieldkit.signal.polish import Fitted, polished
@@ -43,6 +43,15 @@ class TapRecord:
     """(p,) samples directly before the free decay, from before the blow on; may be empty."""
     since_blow_s: float = 0.0
     """From the blow to the first sample of the free decay."""
+
+    @property
+    def duration_s(self) -> float:
+        """Length of the free decay."""
+        return len(self.samples) / self.rate_hz
+
+    def first(self, until_s: float) -> TapRecord:
+        """Only so much of the free decay."""
+        return replace(self, samples=self.samples[: int(until_s * self.rate_hz)])
 
 
 @dataclass(frozen=True)
@@ -112,10 +121,13 @@ def estimate_modes(
             "no usable tap in these recordings",
             "record at least three taps with a quiet second before the first and let each ring out",
         )
-    ready, found, fitted = fitted_modes([records[k] for k in used], low_hz, high_hz)
+    free_s, (ready, found, fitted) = fitted_while_free([records[k] for k in used], low_hz, high_hz)
+    if free_s:
+        records = [record.first(free_s) for record in records]
+    said = [not_free_after(free_s)] if free_s else []
     odd = odd_taps(fitted, len(used))
     odd[list(found.odd)] = True
-    said = [without_tap(used[i] + 1, len(records)) for i in np.flatnonzero(odd)]
+    said += [without_tap(used[i] + 1, len(records)) for i in np.flatnonzero(odd)]
     if odd.any():
         used = [k for k, left_out in zip(used, odd, strict=True) if not left_out]
         ready, found, fitted = fitted_modes([records[k] for k in used], low_hz, high_hz)
@@ -135,6 +147,21 @@ def estimate_modes(
     )
     estimate = told(verdicts, found, ready, low_hz, high_hz)
     return replace(estimate, warnings=(*said, *estimate.warnings), struck_twice=tuple(twice))
+
+
+def fitted_while_free(
+    records: Sequence[TapRecord], low_hz: float, high_hz: float
+) -> tuple[float | None, tuple[Prepared, Found, tuple[Fitted, ...]]]:
+    """Fits of whole records, or of as much as decays freely and how long that is."""
+    fits = {0.0: fitted_modes(records, low_hz, high_hz)}
+
+    def misfit_until(until_s: float) -> float:
+        fits[until_s] = fitted_modes([r.first(until_s) for r in records], low_hz, high_hz)
+        return typical_misfit(fits[until_s][2], len(records))
+
+    durations_s = [record.duration_s for record in records]
+    free_s = free_until(durations_s, typical_misfit(fits[0.0][2], len(records)), misfit_until)
+    return free_s, fits[free_s or 0.0]
 
 
 def fitted_modes(
@@ -175,6 +202,14 @@ def struck_again(number: int, count: int, blow: SecondBlow) -> str:
         f"usable tap {number} of {count} was struck twice: a second blow "
         f"{1000 * blow.after_s:.0f} ms after the first; let the hammer rebound freely, or use a "
         "lighter one"
+    )
+
+
+def not_free_after(until_s: float) -> str:
+    """Only the first part of the taps could be used."""
+    return (
+        f"the taps do not decay freely for longer than {until_s:.2f} s (struck again unnoticed, or "
+        "touched?): only that much of each was used; wait between blows until it has died away"
     )
 
 
