@@ -44,3 +44,17 @@ def test_every_dependency_has_its_reason() -> None:
     told = (ROOT / "docs" / "dependencies.md").read_text("utf-8")
     names = [re.split(r"[<>=!~ ]", one)[0] for one in wanted]
     assert not [n for n in names if n not in told and n.removeprefix("pytest-") not in told]
+
+
+@pytest.mark.parametrize("page", sorted(p.name for p in (ROOT / "docs").glob("*.md")))
+def test_every_module_a_document_names_is_there(page: str) -> None:
+    """By its full name, or as seen from the package."""
+    text = (ROOT / "docs" / page).read_text("utf-8")
+    named = {name for name in _TICKED.findall(text) if name.endswith((".py", "/"))}
+    roots = [ROOT, ROOT / "fieldkit"]
+    lost = {
+        name
+        for name in named
+        if not any(list(root.glob(one)) for root in roots for one in (name, f"**/{name}"))
+    }
+    assert not lost
