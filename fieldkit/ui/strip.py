@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from time import monotonic
+
 from textual.app import ComposeResult
 from textual.containers import Horizontal, Vertical
 from textual.content import Content
@@ -11,7 +13,7 @@ from textual.widgets import Static
 
 from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
-from fieldkit.ui.words import SIMULATED, safe
+from fieldkit.ui.words import SIMULATED, safe, time_left
 
 
 class Step(Static):
@@ -60,6 +62,9 @@ def verdict(desk: Desk) -> str:
 class Strip(Vertical):
     """Title line and the six steps."""
 
+    begun_s: float | None = None
+    """When what is being done began; None while nothing is."""
+
     def compose(self) -> ComposeResult:
         """Title and activity on one line, the steps below."""
         with Horizontal(id="title-line"):
@@ -84,6 +89,11 @@ class Strip(Vertical):
 
     def say(self, doing: str, fraction: float | None) -> None:
         """What is being done now; an empty text clears it."""
+        now_s = monotonic()
+        if not doing or self.begun_s is None:
+            self.begun_s = now_s if doing else None
         share = f" {fraction:4.0%}" if fraction is not None else ""
-        text = f"  ▸ {doing}{share}  esc stops " if doing else ""
+        left = time_left(now_s - (self.begun_s or now_s), fraction or 0.0)
+        words = ", ".join(part for part in (f"{doing}{share}", left) if part)
+        text = f"  ▸ {words}  esc stops " if doing else ""
         self.query_one("#activity", Static).update(Content(safe(text)))

@@ -52,6 +52,14 @@ def seconds(duration_s: float) -> str:
     return f"{minutes} min {rest:02d} s"
 
 
+def time_left(elapsed_s: float, share: float) -> str:
+    """``4 s left``, at the pace so far; empty while too little is done to tell."""
+    if elapsed_s < 1 or not 0.05 <= share < 1:
+        return ""
+    left_s = elapsed_s * (1 - share) / share
+    return f"{seconds(left_s) if left_s >= 100 else f'{left_s:.0f} s'} left"
+
+
 def count(number: int, word: str) -> str:
     """``1 mode``, ``3 modes``."""
     return f"{number} {word}" if number == 1 else f"{number} {word}s"

@@ -10,7 +10,7 @@ from fieldkit.detune.excitation import excitation_band
 from fieldkit.sheet.plain import percent
 from fieldkit.ui.desk import STEPS, Desk, StepState, step_states
 from fieldkit.ui.readings import nearest_mode, reading
-from fieldkit.ui.words import plus_minus, sentence
+from fieldkit.ui.words import plus_minus, sentence, time_left
 from tests.ui.glycol import DETUNING, EVIDENCE, FIXES, job, workup
 
 FULL = Desk(job=job(), workup=workup())
@@ -131,3 +131,19 @@ def test_nothing_is_claimed_about_a_line_above_the_highest_mode_looked_at() -> N
     assert nearest_mode(low_limit, 49.1) is None
     early = replace(low_limit, workup=workup(findings=None))
     assert "up to 40.0 Hz only" in str(reading("running", early))
+
+
+@pytest.mark.parametrize(
+    ("elapsed_s", "share", "told"),
+    [
+        (3.0, 0.5, "3 s left"),
+        (30.0, 0.1, "4 min 30 s left"),
+        (0.5, 0.5, ""),
+        (20.0, 0.01, ""),
+        (5.0, 1.0, ""),
+    ],
+)
+def test_the_time_left_is_told_once_there_is_a_pace(
+    elapsed_s: float, share: float, told: str
+) -> None:
+    assert time_left(elapsed_s, share) == told
