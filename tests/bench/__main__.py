@@ -50,7 +50,7 @@ QUICK = Scale(
     minutes=2,
     starts=2,
     keys=10,
-    supports=(2, 5),
+    supports=(2, 5, 10),
     lengths_s=(1, 10, 60, 300),
     points=(10**3, 10**4, 10**5, 10**6, 10**7),
 )

@@ -10,6 +10,8 @@ import numpy as np
 BY_CLOCK = "by the clock"
 """Ends the unit of a time that other work on the machine lengthens."""
 HEAD = ("benchmark", "what", "fieldkit", "beside it", "unit", "ratio", "beside what")
+FLAT = 0.05
+"""Below this exponent a cost does not grow, and nothing can be stated as a ratio to it."""
 _BUSY = "the machine was busy"
 
 
@@ -44,9 +46,12 @@ class Growth:
     note: str = ""
 
     def rows(self) -> list[Row]:
-        """One for each size, then the exponents over all sizes and between the two largest."""
+        """One for each size, then the exponents over all sizes and between the two largest.
+
+        The ratio of exponents is NaN where the cost beside it does not grow.
+        """
         each = [
-            Row(f"{self.name}: {size:,g} {self.size}", a, b, a / b, self.against, self.unit)
+            Row(f"{self.name}: {size:,.0f} {self.size}", a, b, a / b, self.against, self.unit)
             for size, a, b in zip(self.sizes, self.ours, self.theirs, strict=True)
         ]
         return [*each, self._exponents()]
@@ -56,7 +61,8 @@ class Growth:
         last = exponent(self.sizes[-2:], self.ours[-2:])
         note = f"{last:.2f} between the two largest" + (f"; {self.note}" if self.note else "")
         name = f"{self.name}: grows as {self.size} to the power of"
-        return Row(name, ours, theirs, ours / theirs, self.against, "exponent", note)
+        ratio = ours / theirs if abs(theirs) > FLAT else np.nan
+        return Row(name, ours, theirs, ratio, self.against, "exponent", note)
 
 
 def exponent(sizes: Sequence[float], values: Sequence[float]) -> float:

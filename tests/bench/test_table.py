@@ -48,6 +48,12 @@ def test_growth_has_a_row_for_each_size_and_one_for_the_exponents() -> None:
     assert last.note == "2.00 between the two largest"
 
 
+def test_exponents_have_no_ratio_where_the_other_cost_does_not_grow() -> None:
+    grown = Growth("redraw", (10, 100), "points", (1, 2), (3, 3), "a bare app", "ms").rows()
+    assert np.isnan(grown[-1].ratio)
+    assert cells(lines("points", grown[-1:], busy=False)[0])[5] == "–"
+
+
 @pytest.mark.parametrize(
     ("value", "said"),
     [
