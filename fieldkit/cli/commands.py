@@ -13,6 +13,7 @@ from fieldkit import __version__
 from fieldkit.cli import (
     capturing,
     curves,
+    how,
     installing,
     mapping,
     output,
@@ -312,6 +313,7 @@ def detune(
 
 sheet.register(app)
 rechecking.register(app)
+how.register(app)
 
 
 def _print_advice(job_file: Path) -> None:

@@ -71,6 +71,8 @@ class FieldkitApp(Measuring):
                 tooltip="Dark, light, high contrast, or no colour at all"),
         Binding("Y", "copy_view", "Copy", show=False, id="look.copy",
                 tooltip="The view as plain text, and on the clipboard"),
+        Binding("H", "how", "How", show=False, id="help.how",
+                tooltip="How the numbers of this view are computed, with sources"),
         Binding("question_mark", "help", "Keys", key_display="?", id="help.keys",
                 tooltip="List every key"),
         Binding("q,ctrl+q", "quit", "Quit", key_display="q", id="app.quit",
@@ -198,6 +200,15 @@ class FieldkitApp(Measuring):
             text = view_text((self.view(self.here), ruler, reading))
         self.copy_to_clipboard(text)
         self.push_screen(TextScreen(f"{name} as text (copied)", text))
+
+    def action_how(self) -> None:
+        """How the numbers on screen are computed, with their sources."""
+        from fieldkit.sheet.how import how
+
+        text = "\n".join(how(self.here, self.desk.workup))
+        self.push_screen(
+            TextScreen(f"How the numbers of {self.here.capitalize()} are computed", text)
+        )
 
     def action_help(self) -> None:
         """List every key."""

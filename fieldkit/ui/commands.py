@@ -40,6 +40,7 @@ COMMANDS = (
     Command("Stop", "stop", "Stop what is being worked out"),
     Command("Colours", "toggle_light", "Dark, light, high contrast, or no colour at all"),
     Command("Copy view as text", "copy_view", "Everything on screen as plain text"),
+    Command("How it is computed", "how", "Formula and source of the numbers on screen"),
     Command("Keys", "help", "List every key"),
     Command("Quit", "quit", "Leave, asking first when something is unsaved"),
 )
