@@ -21,7 +21,7 @@ from tests.bench.measuring import in_turn
 from tests.bench.rows import Growth, Row, lines, table
 from tests.bench.workups import straight_hz
 
-BAY_M, PEAKS = 4.0, 3
+BAY_M, ELEMENTS_PER_BAY, PEAKS = 4.0, 12, 3
 HEAD = """
 fieldkit = 1
 title = "A line in equal bays"
@@ -42,13 +42,13 @@ def growth(counts: Sequence[int]) -> list[Row]:
     """Once each, since the large ones take minutes."""
     costs = [_cost(count) for count in counts]
     ours, theirs = [ours for ours, _ in costs], [theirs for _, theirs in costs]
-    against = "one solve of the line by scikit-fem"
+    against = f"one solve of the line by scikit-fem, {ELEMENTS_PER_BAY} elements a bay"
     return Growth("workup", counts, "supports", ours, theirs, against, "s of processor").rows()
 
 
 def _cost(count: int) -> tuple[float, float]:
-    job = line(count)
-    works = {"ours": lambda: _answered(job), "theirs": lambda: straight_hz(job)}
+    job, elements = line(count), ELEMENTS_PER_BAY * (count - 1)
+    works = {"ours": lambda: _answered(job), "theirs": lambda: straight_hz(job, elements=elements)}
     spent_s = in_turn(works, 1, warm=False)
     return float(spent_s["ours"][0]), float(spent_s["theirs"][0])
 

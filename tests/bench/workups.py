@@ -31,7 +31,7 @@ from tests.reference.hermite_beam import natural_frequencies_hz
 
 SAMPLES = ("glycol-booster", "riser", "small-bore")
 PLACES, STIFFNESSES = 60, (1e5, 1e6, 1e7)
-LOW_HZ, PEAKS, MODES = 2.0, 6, 12
+LOW_HZ, PEAKS, MODES, ELEMENTS = 2.0, 6, 12, 60
 USUAL = (
     "peaks of averaged spectra, and a straight line solved by scikit-fem "
     f"for {PLACES} places x {len(STIFFNESSES)} stiffnesses"
@@ -85,7 +85,7 @@ def usual(job: Job, readings: tuple[workup.TapReading, ...]) -> None:
             straight_hz(job, Attachment(float(at_m), stiffness))
 
 
-def straight_hz(job: Job, *more: Attachment) -> np.ndarray:
+def straight_hz(job: Job, *more: Attachment, elements: int = ELEMENTS) -> np.ndarray:
     """The span as one straight line, unknowns at their medians, with more attached."""
     unknowns = unknowns_of(job.span, (job.tapped, job.running))
     span = member_span(job.span, unknowns, np.zeros(len(unknowns)))
@@ -95,7 +95,8 @@ def straight_hz(job: Job, *more: Attachment) -> np.ndarray:
     beam = Beam(modulus * pipe.second_moment_m4, pipe.wall_area_m2 * density)
     supports = [Attachment(at, k, turning) for at, k, turning in held(span)]
     masses = [Attachment(mass.at_m, mass_kg=mass.mass_kg) for mass in span.masses]
-    return natural_frequencies_hz(beam, span.length_m, [*supports, *masses, *more], MODES)
+    attached = [*supports, *masses, *more]
+    return natural_frequencies_hz(beam, span.length_m, attached, MODES, elements)
 
 
 def main() -> None:
