@@ -90,3 +90,11 @@ def test_every_command_shows_an_example_that_is_a_call(name: str) -> None:
     example = COMMANDS[name].epilog or ""
     assert example.startswith("Example: fieldkit")
     check_call(shlex.split(example.removeprefix("Example: "))[1:])
+
+
+@pytest.mark.parametrize("page", ["README.md", "docs/file-formats.md"])
+def test_every_command_is_told(page: str) -> None:
+    """To whoever is new, and to whoever reads its JSON; ``open`` is what the program does alone."""
+    text = (ROOT / page).read_text("utf-8")
+    told = set(re.findall(r"\w+", " ".join(re.findall(r"`fieldkit [^`]*`|^###.*$", text, re.M))))
+    assert not set(COMMANDS) - {"open"} - told
