@@ -85,7 +85,7 @@ MATCH = (
     Method(
         "doubt of each unknown",
         "prior: supports by kind, "
-        f"an unknown one within a factor of {math.exp(UNKNOWN_SD_LN):.1f} (one standard deviation); "
+        f"an unknown one within a factor of {math.exp(UNKNOWN_SD_LN):.1f}, one standard deviation; "
         "posterior: members of the ensemble by the likelihood of all measured frequencies, each "
         f"with its own ± and {MODEL_ERROR:.1%} of the model",
         "annealed importance resampling: Neal 2001; Del Moral, Doucet and Jasra 2006 (from memory)",
