@@ -170,6 +170,13 @@ class FieldkitApp(Measuring):
         self.refresh_desk()
         self.view(name).focus_home()
 
+    def action_command_palette(self) -> None:
+        """Every command by its name."""
+        from fieldkit.ui.palette import Palette
+
+        if self.use_command_palette and not Palette.is_open(self):
+            self.push_screen(Palette(id="--command-palette"))
+
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Escape belongs to windows and plots while there is nothing to stop."""
         if action == "stop":

@@ -9,6 +9,7 @@ import random
 
 import pytest
 
+from fieldkit.ui.palette import Palette
 from tests.abuse.random_keys import Played, played
 from tests.ui.job_text import JOB_TEXT
 
@@ -20,6 +21,16 @@ async def test_app_survives_random_keys_and_saves(seed, tmp_path, quick):
     told = await played(tmp_path, rng, lambda so_far: so_far.keys < 40, JOB_TEXT)
     assert not told.wrong
     assert told.saved
+
+
+async def test_palette_stands_in_a_terminal_of_one_character(app):
+    """Its list has no line there, and a page of it cannot be turned."""
+    async with app.run_test(size=(1, 1)) as pilot:
+        app.action_command_palette()
+        await pilot.pause(0.3)
+        assert Palette.is_open(app)
+        await pilot.press("pagedown", "down", "end", "pageup")
+        assert app.is_running
 
 
 def test_line_tells_what_went_wrong():
