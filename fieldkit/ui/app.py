@@ -174,7 +174,7 @@ class FieldkitApp(Measuring):
         """Every command by its name."""
         from fieldkit.ui.palette import Palette
 
-        if self.use_command_palette and not Palette.is_open(self):
+        if self.use_command_palette and not isinstance(self.screen, Palette):
             self.push_screen(Palette(id="--command-palette"))
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
