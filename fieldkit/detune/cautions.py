@@ -35,6 +35,7 @@ HEAVY_SHARE = 0.2
 """An added mass above this share of the pipe's own deserves a word."""
 NOTABLE_MOVEMENT_M = 0.5e-3
 NOTABLE_LOAD_N = 20.0
+LEAST_TOLD_N = 1.0
 HOT_K = 273.15 + 60
 """Metal above this burns at a touch (common practice, no source)."""
 PRESSURISED_PA = 0.1e5
@@ -166,6 +167,9 @@ def _new_support_load(change: AddSupport, resting: Resting, units: str) -> list[
 
 
 def _force(newtons: float, units: str) -> str:
+    """A load; below one that matters, in round words."""
+    if newtons < LEAST_TOLD_N:
+        return f"less than {show(LEAST_TOLD_N, 'force', units, 2)}"
     return show(newtons, "force", units, 2)
 
 

@@ -27,7 +27,7 @@ from fieldkit.detune.fixes import (
 from fieldkit.detune.matched import Match
 from fieldkit.detune.push import parts
 from fieldkit.detune.reduced import build
-from fieldkit.detune.scatter import Scatter, as_installed
+from fieldkit.detune.scatter import JUDGING_SEED, Scatter, as_installed
 from fieldkit.detune.unknowns import unknowns_of
 from fieldkit.detune.window import stated_stiffness, stiffness_window
 from fieldkit.errors import Refusal
@@ -115,18 +115,19 @@ def yard(
     goal: Goal,
     units: str = "SI",
 ) -> Yard:
-    """The ensemble in the running state and the line at rest, with the scatter of installation."""
-    rng = np.random.default_rng(SEED)
+    """The members a change is judged on, running, and the line at rest, with the same scatter."""
     unknowns = unknowns_of(span, (tapped, running))
-    prior = rng.standard_normal((PRIOR_MEMBERS, len(unknowns))) if match is None else None
-    members = match.ensemble.standard if match is not None else prior
-    assert members is not None
+    if match is None:
+        rng = np.random.default_rng(SEED)
+        members = rng.standard_normal((PRIOR_MEMBERS, len(unknowns)))
+    else:
+        rng, members = np.random.default_rng(JUDGING_SEED), match.ensemble.judging
     base: Field = field(span, build(span, running, unknowns, goal.up_to_hz), members)
     return Yard(
         field=base,
         bands=bands(excitations, goal.margin),
         goal=goal,
-        scatter=as_installed(base.members, rng),
+        scatter=as_installed(base.members, rng).exact(base.central),
         resting=at_rest(span, tapped, running),
         units=units,
     )

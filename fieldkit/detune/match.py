@@ -42,7 +42,7 @@ SEED = 7
 INFORMED_SD = 0.75
 """A parameter counts as informed when the tap cut its doubt to this share of the prior."""
 LEAST_EFFECTIVE = 4.0
-FEW_EFFECTIVE = 15.0
+FEW_EFFECTIVE = 30.0
 
 
 def match(

@@ -62,6 +62,11 @@ class Ensemble:
     """How many independent draws all of them are worth, where the sampler told."""
 
     @property
+    def judging(self) -> NDArray[np.float64]:
+        """(members, parameters) that what was chosen is judged on."""
+        return self.standard if self.fresh is None else self.fresh
+
+    @property
     def effective_size(self) -> float:
         """Number of independent, equally weighted members that would say as much."""
         if self.independent is not None:

@@ -20,12 +20,12 @@ from fieldkit.detune.other_cures import other_cures
 from fieldkit.detune.pairs import pairs
 from fieldkit.detune.push import parts
 from fieldkit.detune.reduced import build
-from fieldkit.detune.scatter import as_installed
+from fieldkit.detune.scatter import JUDGING_SEED, as_installed
 from fieldkit.detune.speeds import SpeedOffer, speed_offers
 from fieldkit.detune.unknowns import unknowns_of
 from fieldkit.detune.verdict import Detuning, Nearest, Verdict
 from fieldkit.detune.why import fails, why
-from fieldkit.detune.window import scaled
+from fieldkit.detune.window import SHARES, scaled
 from fieldkit.detune.wording import speed_summary, summary
 from fieldkit.errors import InputError, Place
 from fieldkit.progress import Progress
@@ -40,7 +40,6 @@ WHAT_ELSE_HELPS = (
 )
 SEED = 20
 PRIOR_MEMBERS = 256
-SOFTENING = np.geomspace(1.0, 0.01, 25)
 
 
 @dataclass(frozen=True)
@@ -144,8 +143,9 @@ def afresh(search: Search, match: Match | None) -> Search:
     """
     if match is None or match.ensemble.fresh is None:
         return search
-    base = search.field.of(match.ensemble.fresh)
-    scatter = as_installed(base.members, np.random.default_rng(SEED + 1)).exact(base.central)
+    base = search.field.of(match.ensemble.judging)
+    rng = np.random.default_rng(JUDGING_SEED)
+    scatter = as_installed(base.members, rng).exact(base.central)
     return replace(search, field=base, scatter=scatter)
 
 
@@ -293,7 +293,7 @@ def least_share(search: Search, change: Change) -> float | None:
     if states_none or not push.stiffness.any() or push.without_springs:
         return None
     kept = 1.0
-    for share in SOFTENING:
+    for share in SHARES[SHARES <= 1][::-1]:
         if search.counted(scaled(change, float(share))).chance < search.goal.chance:
             return kept
         kept = float(share)

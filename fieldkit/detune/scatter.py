@@ -13,6 +13,8 @@ Array = NDArray[np.float64]
 STIFFNESS_SCATTER_LN = 0.35
 """A bracket comes out this much stiffer or softer than drawn (common practice, no source)."""
 PLACE_SCATTER_M = 0.015
+JUDGING_SEED = 21
+"""Of the brackets that a chosen change is judged with: the same wherever its stiffness is told."""
 SHIFT = 37
 """Members by which the scatter of each further part is shifted: it is built on its own."""
 

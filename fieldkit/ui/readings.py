@@ -205,7 +205,7 @@ def _detune(desk: Desk) -> Reading:
     return Reading(
         says,
         f"change {best.rank} reaches {percent(best.chance)}",
-        "adopt with a, then re-tap to prove it",
+        "build it, tap again, and prove it with p",
     )
 
 

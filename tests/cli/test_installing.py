@@ -7,6 +7,7 @@ from functools import cache
 import pytest
 
 from fieldkit.cli.samples import sample_jobs
+from fieldkit.quantity import show
 from tests.cli.running import fieldkit
 
 JOBS = {path.parent.name: path for path in sample_jobs()}
@@ -91,3 +92,15 @@ def test_bad_choices_are_refused_in_one_sentence(words, says):
     assert ran.status == 2
     assert says in ran.err
     assert "Traceback" not in ran.err
+
+
+def test_the_caution_names_the_same_least_stiffness_as_the_installation():
+    """Both are judged on the members that had no say in the choice."""
+    told = [
+        (fix["cautions"][0], min(fix["install"]["fails_below"].values()))
+        for fix in answer("glycol-booster")["fixes"]
+        if "must give at least" in fix["cautions"][0] and fix["install"].get("fails_below")
+    ]
+    assert told
+    for caution, least in told:
+        assert f"at least {show(least, 'stiffness', 'SI', 2)}: below" in caution
