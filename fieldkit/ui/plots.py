@@ -108,7 +108,8 @@ def decay_lines(
 
 def mode_marks(modes: Iterable[MeasuredMode]) -> tuple[Mark, ...]:
     """Measured modes, with their direction where it is known, and their damping."""
-    return tuple(Mark(mode.frequency_hz, _mode_label(mode)) for mode in modes)
+    strongest_first = sorted(modes, key=lambda mode: -mode.strength)
+    return tuple(Mark(mode.frequency_hz, _mode_label(mode)) for mode in strongest_first)
 
 
 def _mode_label(mode: MeasuredMode) -> str:

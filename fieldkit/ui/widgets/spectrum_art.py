@@ -165,9 +165,10 @@ def _draw_marks(canvas: Canvas, data: SpectrumData, frame: Frame) -> None:
 
 
 def _labels(marks: Sequence[Mark], frame: Frame) -> list[Label]:
+    """Modes first; where room is short, whichever comes first in the data is written."""
     order = ("mode", "model", "tone", "refused")
     labels = []
-    for mark in sorted(marks, key=lambda m: (order.index(m.kind), m.frequency_hz)):
+    for mark in sorted(marks, key=lambda m: order.index(m.kind)):
         column = frame.column(mark.frequency_hz)
         if column is not None:
             number = frequency_text(mark.frequency_hz)
