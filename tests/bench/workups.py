@@ -48,16 +48,20 @@ def of_sample(name: str, runs: int) -> Iterator[Row]:
     """The whole, then each step beside the whole."""
     job = load_job(ROOT / "samples" / name / "job.toml")
     readings = workup.tap_readings(job.recordings_of("tap"), Progress())
-    spent_s = in_turn(
-        {"ours": lambda: workup.run(job), "usual": lambda: usual(job, readings)}, runs
-    )
+    steps: list[dict[str, float]] = []
+    works = {"ours": lambda: steps.append(steps_s(job)), "usual": lambda: usual(job, readings)}
+    spent_s = in_turn(works, runs)
     ours, theirs = spent_s["ours"], spent_s["usual"]
-    medians = float(np.median(ours)), float(np.median(theirs))
-    yield Row(f"workup of {name}", *medians, ratio(ours, theirs), USUAL, UNIT)
-    steps = steps_s(job)
-    whole = sum(steps.values())
-    for step, seconds in steps.items():
-        yield Row(f"workup of {name}: {step}", seconds, whole, seconds / whole, "its whole", UNIT)
+    whole = float(np.median(ours))
+    yield Row(
+        f"workup of {name}", whole, float(np.median(theirs)), ratio(ours, theirs), USUAL, UNIT
+    )
+    for step in steps[0]:
+        each = np.array([run[step] for run in steps[1:]])
+        share = ratio(each, ours)
+        yield Row(
+            f"workup of {name}: {step}", float(np.median(each)), whole, share, "its whole", UNIT
+        )
 
 
 def steps_s(job: Job) -> dict[str, float]:
