@@ -42,12 +42,24 @@ class Table(DataTable[Text]):
         chosen, height = self.chosen, self.cursor_row
         self._rows = fresh
         self.clear()
-        for _, cells in fresh:
-            self.add_row(*(_plain(cell) for cell in cells))
+        texts = [[_plain(cell) for cell in cells] for _, cells in fresh]
+        self._widen(texts)
+        for line in texts:
+            self.add_row(*line)
         keys = [key for key, _ in fresh]
         row = keys.index(chosen) if chosen in keys else min(height, len(keys) - 1)
         if row > 0:
             self.cursor_coordinate = Coordinate(row, 0)
+
+    def _widen(self, texts: Sequence[Sequence[Text]]) -> None:
+        """Columns as wide as what is about to come.
+
+        The table measures new rows when it is idle; a row drawn before that is kept as it was
+        drawn, cut to the old width.
+        """
+        for column, cells in zip(self.ordered_columns, zip(*texts, strict=True), strict=False):
+            widest = max(cell.cell_len for cell in cells)
+            column.content_width = max(column.content_width, widest)
 
     @property
     def chosen(self) -> str | None:
