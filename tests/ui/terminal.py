@@ -23,6 +23,12 @@ _STEERING = re.compile(
 )
 
 
+def _at_the_terminal() -> None:
+    """In the child: a session of its own, which a hang-up ends even where ours ignores it."""
+    fcntl.ioctl(0, termios.TIOCSCTTY, 0)
+    signal.signal(signal.SIGHUP, signal.SIG_DFL)
+
+
 class Terminal:
     """A pseudo terminal; ``seen`` is everything written to it since it was last looked at."""
 
@@ -37,7 +43,7 @@ class Terminal:
         self.process = subprocess.Popen(
             [sys.executable, "-m", "fieldkit", *arguments],
             stdin=slave, stdout=slave, stderr=slave, cwd=folder, env=environment,
-            start_new_session=True, preexec_fn=lambda: fcntl.ioctl(0, termios.TIOCSCTTY, 0),
+            start_new_session=True, preexec_fn=_at_the_terminal,
         )  # fmt: skip
         os.close(slave)
         self.written = b""
