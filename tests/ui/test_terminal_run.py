@@ -117,7 +117,7 @@ def test_a_pipe_is_described_and_saved_from_an_empty_folder(
     window.press("NPage")
     window.until("What shakes it?")
     window.type("fan", "900 rpm", "9")
-    window.until("1, 2, 9 (usual)")
+    window.until("1, 2, 9 (us")
     window.type("", "")
     window.until("Excitation 1")
     window.press("NPage")
