@@ -7,8 +7,8 @@ import shlex
 from collections.abc import Iterator
 from importlib.util import find_spec
 from pathlib import Path
+from typing import Any
 
-import click
 import pytest
 import typer
 
@@ -16,7 +16,7 @@ from fieldkit.cli.commands import app
 
 ROOT = Path(__file__).parents[2]
 DOCUMENTS = sorted([ROOT / "README.md", ROOT / "DEVELOPERS.md", *(ROOT / "docs").glob("*.md")])
-COMMANDS: dict[str, click.Command] = typer.main.get_command(app).commands  # type: ignore[attr-defined]
+COMMANDS: dict[str, Any] = typer.main.get_command(app).commands  # type: ignore[attr-defined]
 _LINK = re.compile(r"!?\[[^\]]*\]\(([^)#\s]+)(#[^)\s]*)?\)")
 _SHELL = re.compile(r"^```sh\n(.*?)^```$", re.MULTILINE | re.DOTALL)
 _INLINE = re.compile(r"`(fieldkit [^`]+)`")
