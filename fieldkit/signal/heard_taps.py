@@ -9,6 +9,7 @@ from typing import Protocol
 import numpy as np
 from numpy.typing import NDArray
 
+from fieldkit.signal import preparation
 from fieldkit.signal.decays import damped
 from fieldkit.signal.decimation import by_phases, lowpass
 from fieldkit.signal.normal_equations import real_columns, sums
@@ -29,20 +30,8 @@ _ORDERS = (0, 2, 4, 8)
 _NEARLY = 1.3
 
 
-class Record(Protocol):
-    """What is needed of a tap record."""
-
-    @property
-    def samples(self) -> Real:
-        """(n,) free decay."""
-
-    @property
-    def rate_hz(self) -> float:
-        """Samples a second."""
-
-    @property
-    def background(self) -> Real:
-        """(m,) samples without a blow."""
+class Record(preparation.Record, Protocol):
+    """What is needed of a tap record besides what a fit needs."""
 
     @property
     def before(self) -> Real:
