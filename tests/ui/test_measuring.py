@@ -49,6 +49,17 @@ async def struck(pilot: Pilot[None], pace: StepPace, blows: int) -> None:
         await play(pilot, pace, lambda n=before: len(screen.run.look().guide.blows) > n)
 
 
+async def practising(pilot: Pilot[None]) -> None:
+    """From the start screen to the guided tap test of the practice rig."""
+    await on_screen(pilot, StartScreen)
+    await pilot.press("p")
+    await on_screen(pilot, PathScreen)
+    await pilot.press("enter")
+    await on_screen(pilot, SetupScreen)
+    await pilot.press("g")
+    await on_screen(pilot, TapScreen)
+
+
 async def test_the_practice_rig_leads_from_the_start_to_a_ranked_change(
     tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
@@ -58,13 +69,7 @@ async def test_the_practice_rig_leads_from_the_start_to_a_ranked_change(
     app = FieldkitApp()
     app.bench = bench_of(tmp_path, pace)
     async with app.run_test(size=(80, 24)) as pilot:
-        await on_screen(pilot, StartScreen)
-        await pilot.press("p")
-        await on_screen(pilot, PathScreen)
-        await pilot.press("enter")
-        await on_screen(pilot, SetupScreen)
-        await pilot.press("g")
-        await on_screen(pilot, TapScreen)
+        await practising(pilot)
         screen = app.screen
         await struck(pilot, pace, 3)
         await pilot.press("d")
@@ -108,13 +113,7 @@ async def test_ctrl_q_while_tapping_saves_into_the_job_and_ends_the_app(
     app = FieldkitApp()
     app.bench = bench_of(tmp_path, pace)
     async with app.run_test(size=(80, 24)) as pilot:
-        await on_screen(pilot, StartScreen)
-        await pilot.press("p")
-        await on_screen(pilot, PathScreen)
-        await pilot.press("enter")
-        await on_screen(pilot, SetupScreen)
-        await pilot.press("g")
-        await on_screen(pilot, TapScreen)
+        await practising(pilot)
         await struck(pilot, pace, 1)
         await pilot.press("ctrl+q")
         await on_screen(pilot, AskScreen)
