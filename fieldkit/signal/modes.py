@@ -208,8 +208,9 @@ def struck_again(number: int, count: int, blow: SecondBlow) -> str:
 def not_free_after(until_s: float) -> str:
     """Only the first part of the taps could be used."""
     return (
-        f"the taps do not decay freely for longer than {until_s:.2f} s (struck again unnoticed, or "
-        "touched?): only that much of each was used; wait between blows until it has died away"
+        f"the taps do not decay as modes do for longer than {until_s:.2f} s (struck again "
+        "unnoticed, touched, or not quite exponential by nature?): only that much of each was "
+        "used; wait between blows until it has died away"
     )
 
 

@@ -29,7 +29,7 @@ def test_blows_nobody_noticed_make_no_false_modes() -> None:
     assert [m.frequency_hz for m in estimate.modes] == pytest.approx(
         [m.frequency_hz for m in MODES], rel=5e-3
     )
-    assert any("do not decay freely for longer than" in text for text in estimate.warnings)
+    assert any("do not decay as modes do for longer than" in text for text in estimate.warnings)
 
 
 @pytest.mark.parametrize(
